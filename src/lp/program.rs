@@ -1,0 +1,120 @@
+//! A linear program: columns and rows known by name, with a sparse matrix.
+
+use std::fmt;
+use std::sync::Arc;
+
+/// The name of a column or row: the address of what it stands for, such as `activities.floor_tile` or `resources.kiln`.
+///
+/// A basis, a difference and a plan refer to columns and rows by key, never by position, so they survive reordering.
+#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub struct Key(Arc<str>);
+
+impl Key {
+    /// The key that `text` spells.
+    #[must_use]
+    pub fn new(text: &str) -> Self {
+        Self(text.into())
+    }
+
+    /// The key as text.
+    #[must_use]
+    pub fn as_str(&self) -> &str {
+        &self.0
+    }
+}
+
+impl fmt::Display for Key {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        f.write_str(&self.0)
+    }
+}
+
+/// A column of one program, by position.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub struct ColumnIndex(pub usize);
+
+/// A row of one program, by position.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub struct RowIndex(pub usize);
+
+/// Whether the aim is to be large or small.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub enum Sense {
+    /// The aim is to be as large as possible.
+    #[default]
+    Maximise,
+    /// The aim is to be as small as possible.
+    Minimise,
+}
+
+impl Sense {
+    /// +1 where the aim is to be small, −1 where it is to be large: what turns the aim into one to minimise.
+    #[must_use]
+    pub fn sign(self) -> f64 {
+        match self {
+            Self::Minimise => 1.0,
+            Self::Maximise => -1.0,
+        }
+    }
+}
+
+/// One column: a level to be found between its bounds.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Column {
+    /// What it stands for.
+    pub key: Key,
+    /// The least value; may be minus infinity.
+    pub lower: f64,
+    /// The greatest value; may be infinity.
+    pub upper: f64,
+    /// What one unit adds to the aim.
+    pub aim: f64,
+    /// Its entries, by row, ascending and without zeros.
+    pub entries: Vec<(RowIndex, f64)>,
+}
+
+/// One row: a sum of columns held between two bounds.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Row {
+    /// What it stands for.
+    pub key: Key,
+    /// The least sum; may be minus infinity.
+    pub lower: f64,
+    /// The greatest sum; may be infinity.
+    pub upper: f64,
+}
+
+/// A linear program: find levels of the columns, within bounds, that keep every row and make the aim largest or smallest.
+///
+/// Columns and rows are in byte order of their keys and no key stands twice.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Program {
+    /// Whether the aim is to be large or small.
+    pub sense: Sense,
+    /// Added to the aim.
+    pub offset: f64,
+    /// The columns, in byte order of keys.
+    pub columns: Vec<Column>,
+    /// The rows, in byte order of keys.
+    pub rows: Vec<Row>,
+}
+
+impl Program {
+    /// The position of a column.
+    #[must_use]
+    pub fn column(&self, key: &Key) -> Option<ColumnIndex> {
+        self.columns.binary_search_by(|column| column.key.cmp(key)).ok().map(ColumnIndex)
+    }
+
+    /// The position of a row.
+    #[must_use]
+    pub fn row(&self, key: &Key) -> Option<RowIndex> {
+        self.rows.binary_search_by(|row| row.key.cmp(key)).ok().map(RowIndex)
+    }
+
+    /// How many entries the matrix has.
+    #[must_use]
+    pub fn entries(&self) -> usize {
+        self.columns.iter().map(|column| column.entries.len()).sum()
+    }
+}

@@ -1,0 +1,16 @@
+//! What people write: the model, reading and checking it, its names and its meaning.
+//!
+//! Knows no solver and no clock, and never writes.
+
+pub mod escape;
+pub mod fault;
+pub mod meaning;
+pub mod name;
+pub mod read;
+pub mod types;
+pub mod value;
+
+pub use fault::{Fault, Faults};
+pub use name::Name;
+pub use types::{Activity, Aim, Bound, Limit, Model, Resource, Term};
+pub use value::{Horizon, Period, Value};

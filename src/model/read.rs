@@ -1,0 +1,1 @@
+//! Reading a model from its files.
