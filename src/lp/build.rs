@@ -148,7 +148,7 @@ fn in_order<'m>(rows: Vec<Row>, sums: Vec<Sum<'m>>) -> (Vec<Row>, Vec<Sum<'m>>) 
 /// The rows' sums, turned round so that an activity's column can be gathered without looking at every row.
 struct Entries<'m> {
     resources: BTreeMap<(&'m Name, Period), RowIndex>,
-    terms: BTreeMap<(&'m Term, Period), Vec<(RowIndex, f64)>>,
+    terms: BTreeMap<(Term, Period), Vec<(RowIndex, f64)>>,
 }
 
 impl<'m> Entries<'m> {
@@ -174,7 +174,7 @@ impl<'m> Entries<'m> {
 
     fn add(&mut self, terms: &'m BTreeMap<Term, Value>, factor: f64, row: RowIndex, period: Period) {
         for (term, coefficient) in terms {
-            self.terms.entry((term, period)).or_default().push((row, coefficient.at(period) * factor));
+            self.terms.entry((term.clone(), period)).or_default().push((row, coefficient.at(period) * factor));
         }
     }
 
@@ -186,7 +186,7 @@ impl<'m> Entries<'m> {
         let terms = std::iter::once(Term::Activity(name.clone()))
             .chain(activity.tags.iter().cloned().map(Term::Tag))
             .chain(std::iter::once(Term::All));
-        let limits = terms.filter_map(|term| self.terms.get(&(&term, period))).flatten().copied();
+        let limits = terms.filter_map(|term| self.terms.get(&(term, period))).flatten().copied();
         summed(uses.chain(limits).collect())
     }
 }
