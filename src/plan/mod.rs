@@ -1,0 +1,7 @@
+//! The plan and the change note, as values and as text.
+//!
+//! Knows models, programs, edits and answers, but no files and no clock.
+
+pub mod types;
+
+pub use types::{Plan, PlannedActivity, PlannedLimit, PlannedResource, Standing, State};

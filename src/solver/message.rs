@@ -1,0 +1,177 @@
+//! What is said across the boundary of the solver: a program or a difference in; an answer and progress out.
+//!
+//! Plain data without pointers, files or clocks, so that the solver can live in another thread or another process.
+
+use std::time::Duration;
+
+use super::basis::{Basis, NamedBasis};
+use super::proof::Proof;
+use crate::lp::{Difference, Program};
+
+/// What the solver is asked.
+#[derive(Clone, Debug)]
+pub struct Request {
+    /// Which model this is about; a live instance is kept for each.
+    pub model: ModelKey,
+    /// The program to solve.
+    pub task: Task,
+    /// How long one run may take.
+    pub time_limit: Duration,
+}
+
+/// Tells the models of one daemon apart.
+#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub struct ModelKey(pub String);
+
+/// The program to solve, whole or as what differs from the one asked last about the same model.
+#[derive(Clone, Debug)]
+pub enum Task {
+    /// A whole program, and the last optimal basis where one is remembered.
+    Whole(Box<Program>, Option<NamedBasis>),
+    /// What differs from the program asked last. Answered by [`Outcome::Forgotten`] where that is no longer held.
+    Change(Box<Difference>),
+}
+
+/// The solver's answer.
+#[derive(Clone, Debug)]
+pub struct Answer {
+    /// What came of it.
+    pub outcome: Outcome,
+    /// How it was reached.
+    pub account: Account,
+}
+
+/// What came of a request.
+#[derive(Clone, Debug)]
+pub enum Outcome {
+    /// An optimal plan, proven.
+    Optimal(Box<Optimum>),
+    /// No levels keep all rows and bounds.
+    Infeasible(Conflict),
+    /// The aim has no limit.
+    Unbounded(Growth),
+    /// Cannot tell: the reason, as a sentence for people.
+    Undecided(String),
+    /// A newer request made this one void.
+    Interrupted,
+    /// A difference came for a program that is no longer held; ask again with the whole program.
+    Forgotten,
+}
+
+/// An optimal plan. Vectors are in the order of the program's columns or rows.
+///
+/// Worths are derivatives of the aim in its own sense: what one unit more of a row's bound, or of a column's level, adds to it.
+#[derive(Clone, Debug)]
+pub struct Optimum {
+    /// The aim, with its constant.
+    pub aim: f64,
+    /// Level of each column.
+    pub levels: Vec<f64>,
+    /// Sum of each row.
+    pub sums: Vec<f64>,
+    /// Per column: what one unit more of its level would add to the aim (reduced cost).
+    pub gains: Vec<f64>,
+    /// Per row: what one unit more of its binding bound would add to the aim (shadow price).
+    pub worths: Vec<f64>,
+    /// The optimal basis.
+    pub basis: Basis,
+    /// Whether no other levels are optimal.
+    pub levels_unique: bool,
+    /// Whether no other worths are optimal.
+    pub worths_unique: bool,
+    /// Ranges, where they were worked out.
+    pub ranges: Option<Ranges>,
+    /// The proof of all this.
+    pub proof: Proof,
+}
+
+/// How far numbers of the program can move, one at a time, before the basis changes.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Ranges {
+    /// Per column: numbers of its worth in the aim between which the levels stay optimal.
+    pub aims: Vec<(f64, f64)>,
+    /// Per row: numbers of its binding bound (or, where it is slack, of the bound nearest its sum) between which the worths stay.
+    pub bounds: Vec<(f64, f64)>,
+}
+
+/// Why there is no plan: rows and bounds that contradict each other, with the multipliers that prove it.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Conflict {
+    /// Rules that cannot all be kept.
+    pub rules: Vec<Rule>,
+    /// Whether our own arithmetic has confirmed the contradiction.
+    pub proven: bool,
+}
+
+/// One side of a row or column that takes part in a contradiction.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Rule {
+    /// The row or column.
+    pub key: crate::lp::Key,
+    /// Whether it is a row (else a column's own bound).
+    pub is_row: bool,
+    /// Whether the upper bound takes part (else the lower).
+    pub upper: bool,
+    /// The bound.
+    pub bound: f64,
+}
+
+/// Why the aim has no limit: columns that can grow together for ever, with their rates.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Growth {
+    /// Columns and how fast each moves, per unit of the strongest.
+    pub rates: Vec<(crate::lp::Key, f64)>,
+    /// Whether our own arithmetic has confirmed it.
+    pub proven: bool,
+}
+
+/// How an answer was reached.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Account {
+    /// The start taken.
+    pub start: Start,
+    /// Simplex iterations, over all runs.
+    pub pivots: usize,
+    /// The last basis under the new data: how many columns and rows break a bound; `None` where there was none.
+    pub primal_infeasible: Option<usize>,
+    /// The last basis under the new data: how many would still improve the aim; `None` where there was none.
+    pub dual_infeasible: Option<usize>,
+    /// Steps down the ladder: what was tried and given up, as short phrases.
+    pub detours: Vec<&'static str>,
+    /// Time in the solver.
+    pub time: Duration,
+}
+
+/// Where a solve starts from.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub enum Start {
+    /// The last basis is still optimal: no pivot.
+    None,
+    /// Primal simplex from the last basis.
+    Primal,
+    /// Dual simplex from the last basis.
+    Dual,
+    /// Afresh.
+    #[default]
+    Cold,
+}
+
+impl Start {
+    /// The word for it.
+    #[must_use]
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::None => "none",
+            Self::Primal => "primal",
+            Self::Dual => "dual",
+            Self::Cold => "cold",
+        }
+    }
+}
+
+/// How a solve is getting on.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Progress {
+    /// Simplex iterations so far.
+    pub pivots: usize,
+}
