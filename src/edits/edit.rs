@@ -1,10 +1,14 @@
 //! One edit: where, from what, to what, and of which kind.
 
+use crate::model::Name;
+
 /// One edit of a model, at the place where a person would point.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Edit {
     /// Where: `resources.kiln.capacity`, `activities.floor_tile.uses.kiln`, or a whole thing such as `activities.mosaic`. Not escaped.
     pub address: String,
+    /// What it is about.
+    pub subject: Subject,
     /// What stood there, as a planner would write it; `None` where nothing did.
     pub old: Option<String>,
     /// What stands there now; `None` where nothing does.
@@ -13,14 +17,27 @@ pub struct Edit {
     pub kind: Kind,
 }
 
+/// What an edit is about.
+#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord)]
+pub enum Subject {
+    /// The model as a whole.
+    Model,
+    /// One resource.
+    Resource(Name),
+    /// One activity.
+    Activity(Name),
+    /// One limit; a changed coefficient of it concerns these activities.
+    Limit(Name, Vec<Name>),
+}
+
 /// The kinds of edit, by what they do to the program.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
 pub enum Kind {
-    /// Titles, labels, units, the currency, tags no limit asks for: no number of the program.
+    /// Titles, labels, units, the currency, the aim's constant, tags no limit asks for, a name: no number of the program that decides.
     Wording,
     /// A price or cost.
     Price,
-    /// The aim turned round, or its constant.
+    /// The aim turned round.
     Aim,
     /// A capacity, or a bound moved.
     Capacity,
@@ -28,6 +45,8 @@ pub enum Kind {
     BoundRemoved,
     /// A new activity, or a prospect made an activity.
     NewActivity,
+    /// A new activity that cannot be left undone: 0 is out of its bounds.
+    NewCommitment,
     /// An activity withdrawn, or made a prospect.
     WithdrawnActivity,
     /// A new limit or resource.
@@ -45,10 +64,10 @@ impl Kind {
         match self {
             Self::Wording => "wording",
             Self::Price => "price",
-            Self::Aim => "aim",
+            Self::Aim => "aim turned round",
             Self::Capacity => "capacity",
             Self::BoundRemoved => "bound taken away",
-            Self::NewActivity => "new activity",
+            Self::NewActivity | Self::NewCommitment => "new activity",
             Self::WithdrawnActivity => "activity withdrawn",
             Self::NewConstraint => "new constraint",
             Self::WithdrawnConstraint => "constraint withdrawn",

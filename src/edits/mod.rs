@@ -1,5 +1,11 @@
 //! Comparing two models in planners' terms: what was edited, of which kind, and what of the last basis survives it.
+//!
+//! Knows models, but no solver, no files and no clock.
 
+pub mod compare;
 pub mod edit;
+pub mod kept;
 
-pub use edit::{Edit, Kind};
+pub use compare::compare;
+pub use edit::{Edit, Kind, Subject};
+pub use kept::{Kept, LastPlan};

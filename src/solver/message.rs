@@ -26,10 +26,21 @@ pub struct ModelKey(pub String);
 /// The program to solve, whole or as what differs from the one asked last about the same model.
 #[derive(Clone, Debug)]
 pub enum Task {
-    /// A whole program, and the last optimal basis where one is remembered.
-    Whole(Box<Program>, Option<NamedBasis>),
+    /// A whole program, and one solved earlier to start from where that is remembered.
+    Whole(Box<Program>, Option<Box<Last>>),
     /// What differs from the program asked last. Answered by [`Outcome::Forgotten`] where that is no longer held.
     Change(Box<Difference>),
+}
+
+/// A program solved earlier, and the basis it was solved with.
+#[derive(Clone, Debug)]
+pub struct Last {
+    /// The program.
+    pub program: Program,
+    /// Its optimal basis.
+    pub basis: NamedBasis,
+    /// Iterations of its last solve from nothing, where that is remembered.
+    pub cold_pivots: Option<usize>,
 }
 
 /// The solver's answer.
@@ -136,6 +147,8 @@ pub struct Account {
     pub primal_infeasible: Option<usize>,
     /// The last basis under the new data: how many would still improve the aim; `None` where there was none.
     pub dual_infeasible: Option<usize>,
+    /// Iterations of the last solve from nothing.
+    pub cold_pivots: Option<usize>,
     /// Steps down the ladder: what was tried and given up, as short phrases.
     pub detours: Vec<&'static str>,
     /// Time in the solver.

@@ -3,5 +3,21 @@
 //! Knows programs, but no files. Spoken to by the plain messages of [`message`].
 
 pub mod basis;
+pub mod certificate;
+pub mod change;
+pub mod cold;
+pub mod desk;
+pub mod instance;
+pub mod live;
+pub mod look;
 pub mod message;
+pub mod optimum;
 pub mod proof;
+pub mod ranging;
+pub mod session;
+pub mod soft;
+pub mod sum;
+pub mod swap;
+pub mod ties;
+pub mod vertex;
+pub mod worker;

@@ -1,0 +1,268 @@
+//! Comparing two models: every edit, in planners' terms.
+
+use std::collections::{BTreeMap, BTreeSet};
+
+use super::edit::{Edit, Kind, Subject};
+use crate::model::{Activity, Bound, Limit, Model, Name, Resource, Term, Value};
+
+/// Every edit that turns `old` into `new`, in the order of the model: its own keys, resources, activities, limits.
+#[must_use]
+pub fn compare(old: &Model, new: &Model) -> Vec<Edit> {
+    let mut edits = Edits::default();
+    edits.model(old, new);
+    for (name, pair) in pairs(&old.resources, &new.resources) {
+        edits.resource(name, pair);
+    }
+    let asked = asked_tags(old, new);
+    for (name, pair) in pairs(&old.activities, &new.activities) {
+        edits.activity(name, pair, &asked);
+    }
+    for (name, pair) in pairs(&old.limits, &new.limits) {
+        edits.limit(name, pair, &Concerned { old, new });
+    }
+    edits.0
+}
+
+/// What was there and what is.
+type Pair<'a, T> = (Option<&'a T>, Option<&'a T>);
+
+fn pairs<'a, T>(old: &'a BTreeMap<Name, T>, new: &'a BTreeMap<Name, T>) -> impl Iterator<Item = (&'a Name, Pair<'a, T>)> {
+    let names: BTreeSet<&Name> = old.keys().chain(new.keys()).collect();
+    names.into_iter().map(move |name| (name, (old.get(name), new.get(name))))
+}
+
+/// The tags that limits ask for, before or after.
+fn asked_tags<'a>(old: &'a Model, new: &'a Model) -> BTreeSet<&'a Name> {
+    let limits = old.limits.values().chain(new.limits.values());
+    let terms = limits.flat_map(|limit| limit.terms.keys().chain(limit.per.iter().flat_map(BTreeMap::keys)));
+    terms.filter_map(|term| if let Term::Tag(tag) = term { Some(tag) } else { None }).collect()
+}
+
+/// The models, for finding out which activities a limit's term concerns.
+struct Concerned<'a> {
+    old: &'a Model,
+    new: &'a Model,
+}
+
+impl Concerned<'_> {
+    fn by(&self, term: &Term) -> Vec<Name> {
+        let all = self.old.activities.iter().chain(&self.new.activities);
+        let concerned = all.filter(|(name, activity)| match term {
+            Term::Activity(one) => one == *name,
+            Term::Tag(tag) => activity.tags.contains(tag),
+            Term::All => true,
+        });
+        let names: BTreeSet<&Name> = concerned.map(|(name, _)| name).collect();
+        names.into_iter().cloned().collect()
+    }
+}
+
+#[derive(Default)]
+struct Edits(Vec<Edit>);
+
+impl Edits {
+    fn push(&mut self, address: String, subject: &Subject, kind: Kind, old: Option<String>, new: Option<String>) {
+        if old != new {
+            self.0.push(Edit { address, subject: subject.clone(), old, new, kind });
+        }
+    }
+
+    /// A text that decides nothing.
+    fn words(&mut self, address: String, subject: &Subject, old: Option<&String>, new: Option<&String>) {
+        self.push(address, subject, Kind::Wording, old.cloned(), new.cloned());
+    }
+
+    fn number(&mut self, address: String, subject: &Subject, kind: Kind, old: &Value, new: &Value) {
+        self.push(address, subject, kind, Some(shown(old)), Some(shown(new)));
+    }
+
+    /// A bound: moved, put there, or taken away.
+    fn bound(&mut self, address: String, subject: &Subject, old: &Value, new: &Value) {
+        let gone = has_bound(old) && !has_bound(new);
+        let kind = if gone { Kind::BoundRemoved } else { Kind::Capacity };
+        self.push(address, subject, kind, bound_shown(old), bound_shown(new));
+    }
+
+    fn model(&mut self, old: &Model, new: &Model) {
+        let subject = Subject::Model;
+        self.words("title".into(), &subject, old.title.as_ref(), new.title.as_ref());
+        self.words("currency".into(), &subject, old.currency.as_ref(), new.currency.as_ref());
+        let aims = (Some(old.aim.word().to_owned()), Some(new.aim.word().to_owned()));
+        self.push("aim".into(), &subject, Kind::Aim, aims.0, aims.1);
+        self.push("constant".into(), &subject, Kind::Wording, Some(old.constant.to_string()), Some(new.constant.to_string()));
+    }
+
+    fn resource(&mut self, name: &Name, pair: Pair<'_, Resource>) {
+        let subject = Subject::Resource(name.clone());
+        let address = format!("resources.{name}");
+        match pair {
+            (Some(old), Some(new)) => {
+                self.words(format!("{address}.label"), &subject, old.label.as_ref(), new.label.as_ref());
+                self.words(format!("{address}.unit"), &subject, old.unit.as_ref(), new.unit.as_ref());
+                self.bound(format!("{address}.capacity"), &subject, &old.capacity, &new.capacity);
+                self.bound(format!("{address}.at_least"), &subject, &old.at_least, &new.at_least);
+                self.number(format!("{address}.cost"), &subject, Kind::Price, &old.cost, &new.cost);
+            }
+            (None, Some(new)) => {
+                self.push(address, &subject, Kind::NewConstraint, None, Some(resource_in_short(new)));
+            }
+            (Some(old), None) => {
+                self.push(address, &subject, Kind::WithdrawnConstraint, Some(resource_in_short(old)), None);
+            }
+            (None, None) => {}
+        }
+    }
+
+    fn activity(&mut self, name: &Name, pair: Pair<'_, Activity>, asked: &BTreeSet<&Name>) {
+        let subject = Subject::Activity(name.clone());
+        let address = format!("activities.{name}");
+        match pair {
+            (Some(old), Some(new)) => self.activity_changed(&address, &subject, old, new, asked),
+            (None, Some(new)) => {
+                self.push(address, &subject, new_activity(new), None, Some(activity_in_short(new)));
+            }
+            (Some(old), None) => {
+                self.push(address, &subject, Kind::WithdrawnActivity, Some(activity_in_short(old)), None);
+            }
+            (None, None) => {}
+        }
+    }
+
+    fn activity_changed(&mut self, address: &str, subject: &Subject, old: &Activity, new: &Activity, asked: &BTreeSet<&Name>) {
+        self.words(format!("{address}.label"), subject, old.label.as_ref(), new.label.as_ref());
+        self.words(format!("{address}.unit"), subject, old.unit.as_ref(), new.unit.as_ref());
+        if old.prospect != new.prospect {
+            let kind = if new.prospect { Kind::WithdrawnActivity } else { new_activity(new) };
+            let flag = |activity: &Activity| Some(activity.prospect.to_string());
+            self.push(format!("{address}.prospect"), subject, kind, flag(old), flag(new));
+        }
+        self.number(format!("{address}.price"), subject, Kind::Price, &old.price, &new.price);
+        self.number(format!("{address}.cost"), subject, Kind::Price, &old.cost, &new.cost);
+        for (resource, (old, new)) in pairs(&old.uses, &new.uses) {
+            let address = format!("{address}.uses.{resource}");
+            self.push(address, subject, Kind::Recipe, old.map(shown), new.map(shown));
+        }
+        self.bound(format!("{address}.at_least"), subject, &old.at_least, &new.at_least);
+        self.bound(format!("{address}.at_most"), subject, &old.at_most, &new.at_most);
+        for tag in old.tags.symmetric_difference(&new.tags) {
+            let kind = if asked.contains(tag) { Kind::Recipe } else { Kind::Wording };
+            let carried = |activity: &Activity| activity.tags.contains(tag).then(|| tag.to_string());
+            self.push(format!("{address}.tags"), subject, kind, carried(old), carried(new));
+        }
+    }
+
+    fn limit(&mut self, name: &Name, pair: Pair<'_, Limit>, concerned: &Concerned<'_>) {
+        let address = format!("limits.{name}");
+        let whole = Subject::Limit(name.clone(), Vec::new());
+        match pair {
+            (Some(old), Some(new)) => {
+                self.words(format!("{address}.label"), &whole, old.label.as_ref(), new.label.as_ref());
+                self.terms(&format!("{address}.terms"), name, &old.terms, &new.terms, concerned);
+                let none = BTreeMap::new();
+                let (old_per, new_per) = (old.per.as_ref().unwrap_or(&none), new.per.as_ref().unwrap_or(&none));
+                self.terms(&format!("{address}.per"), name, old_per, new_per, concerned);
+                self.limit_bounds(&address, name, old, new, concerned);
+            }
+            (None, Some(new)) => self.push(address, &whole, Kind::NewConstraint, None, Some(limit_in_short(new))),
+            (Some(old), None) => self.push(address, &whole, Kind::WithdrawnConstraint, Some(limit_in_short(old)), None),
+            (None, None) => {}
+        }
+    }
+
+    fn terms(
+        &mut self,
+        address: &str,
+        limit: &Name,
+        old: &BTreeMap<Term, Value>,
+        new: &BTreeMap<Term, Value>,
+        concerned: &Concerned<'_>,
+    ) {
+        let terms: BTreeSet<&Term> = old.keys().chain(new.keys()).collect();
+        for term in terms {
+            let subject = Subject::Limit(limit.clone(), concerned.by(term));
+            let address = format!("{address}.{}", term_shown(term));
+            self.push(address, &subject, Kind::Recipe, old.get(term).map(shown), new.get(term).map(shown));
+        }
+    }
+
+    /// With `per`, a bound is a coefficient of the row, and each bound has a row of its own.
+    fn limit_bounds(&mut self, address: &str, name: &Name, old: &Limit, new: &Limit, concerned: &Concerned<'_>) {
+        let (olds, news) = (bounds(&old.bound), bounds(&new.bound));
+        let per: Vec<Name> = new.per.iter().chain(&old.per).flat_map(BTreeMap::keys).flat_map(|term| concerned.by(term)).collect();
+        for ((word, old_bound), (_, new_bound)) in olds.into_iter().zip(news) {
+            let (was, is) = (has_bound(&old_bound), has_bound(&new_bound));
+            let by_per = old.per.is_some() || new.per.is_some();
+            let kind = match (was, is) {
+                (true, true) if by_per => Kind::Recipe,
+                (false, true) if by_per => Kind::NewConstraint,
+                (true, false) if by_per => Kind::WithdrawnConstraint,
+                (true, false) => Kind::BoundRemoved,
+                _ => Kind::Capacity,
+            };
+            let subject = Subject::Limit(name.clone(), per.clone());
+            self.push(format!("{address}.{word}"), &subject, kind, bound_shown(&old_bound), bound_shown(&new_bound));
+        }
+    }
+}
+
+fn new_activity(activity: &Activity) -> Kind {
+    let needless = activity.at_least.numbers().iter().all(|&least| least <= 0.0)
+        && activity.at_most.numbers().iter().all(|&most| most >= 0.0);
+    if needless || activity.prospect { Kind::NewActivity } else { Kind::NewCommitment }
+}
+
+/// The three ways to bound a limit, each with its number; infinite where it is not used.
+fn bounds(bound: &Bound) -> [(&'static str, Value); 3] {
+    let none = || Value::Every(f64::INFINITY);
+    match bound {
+        Bound::Between(least, most) => [("at_least", least.clone()), ("at_most", most.clone()), ("equals", none())],
+        Bound::Equals(value) => [("at_least", none()), ("at_most", none()), ("equals", value.clone())],
+    }
+}
+
+fn has_bound(value: &Value) -> bool {
+    value.numbers().iter().any(|number| number.is_finite())
+}
+
+fn bound_shown(value: &Value) -> Option<String> {
+    has_bound(value).then(|| shown(value))
+}
+
+fn shown(value: &Value) -> String {
+    match value.numbers() {
+        [number] => number.to_string(),
+        numbers => format!("{numbers:?}"),
+    }
+}
+
+fn term_shown(term: &Term) -> String {
+    match term {
+        Term::Activity(name) => name.to_string(),
+        Term::Tag(tag) => format!("tag:{tag}"),
+        Term::All => "activities.*".to_owned(),
+    }
+}
+
+fn resource_in_short(resource: &Resource) -> String {
+    let parts = [("at least", &resource.at_least), ("capacity", &resource.capacity)];
+    in_short(parts.into_iter().filter_map(|(word, value)| Some(format!("{word} {}", bound_shown(value)?))))
+}
+
+fn activity_in_short(activity: &Activity) -> String {
+    let price = (activity.price != Value::Every(0.0)).then(|| format!("price {}", shown(&activity.price)));
+    let cost = (activity.cost != Value::Every(0.0)).then(|| format!("cost {}", shown(&activity.cost)));
+    let prospect = activity.prospect.then(|| "prospect".to_owned());
+    in_short(price.into_iter().chain(cost).chain(prospect))
+}
+
+fn limit_in_short(limit: &Limit) -> String {
+    let bounds = bounds(&limit.bound).into_iter().filter_map(|(word, value)| {
+        Some(format!("{} {}", word.replace('_', " "), bound_shown(&value)?))
+    });
+    in_short(bounds)
+}
+
+fn in_short(parts: impl Iterator<Item = String>) -> String {
+    let text = parts.collect::<Vec<_>>().join(", ");
+    if text.is_empty() { "as written".to_owned() } else { text }
+}

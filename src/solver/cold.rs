@@ -1,0 +1,147 @@
+//! Solving afresh, down a ladder of settings until one gives an answer that can be proven.
+
+use std::time::Duration;
+
+use super::certificate;
+use super::instance::Instance;
+use super::live::{Ending, Refusal, Stop};
+use super::look::Look;
+use super::message::{Conflict, Growth, Outcome};
+use super::proof::TOLERANCE;
+use crate::lp::Program;
+
+/// How a solve from nothing is set up.
+struct Rung {
+    name: &'static str,
+    presolve: &'static str,
+    solver: &'static str,
+    strategy: i32,
+}
+
+/// From the fastest to the most patient.
+const LADDER: [Rung; 4] = [
+    Rung { name: "dual simplex with presolve", presolve: "choose", solver: "simplex", strategy: 1 },
+    Rung { name: "dual simplex without presolve", presolve: "off", solver: "simplex", strategy: 1 },
+    Rung { name: "primal simplex without presolve", presolve: "off", solver: "simplex", strategy: 4 },
+    Rung { name: "interior point and crossover", presolve: "choose", solver: "ipm", strategy: 1 },
+];
+
+/// What a solve from nothing came to.
+pub struct Cold {
+    /// How it ended.
+    pub end: End,
+    /// Simplex iterations of the run that gave the answer.
+    pub pivots: usize,
+    /// Rungs tried in vain.
+    pub detours: Vec<&'static str>,
+}
+
+/// How a solve from nothing ended.
+pub enum End {
+    /// A proven basis, in an instance ready for warm starts.
+    Optimal(Box<Instance>, Box<Look>),
+    /// No plan, or no end, or no answer.
+    Other(Outcome),
+}
+
+/// Solves `program` from nothing.
+pub fn solve(program: &Program, limit: Duration, stop: &Stop) -> Cold {
+    let mut detours = Vec::new();
+    let mut unproven: Option<Outcome> = None;
+    let mut pivots = 0;
+    if let Some(conflict) = certificate::plain_contradiction(program) {
+        return Cold { end: End::Other(Outcome::Infeasible(conflict)), pivots, detours };
+    }
+    for rung in &LADDER {
+        match climb(program, rung, limit, stop, &mut pivots) {
+            Ok(End::Other(Outcome::Infeasible(Conflict { proven: false, rules }))) => {
+                unproven.get_or_insert(Outcome::Infeasible(Conflict { proven: false, rules }));
+            }
+            Ok(End::Other(Outcome::Unbounded(Growth { proven: false, rates }))) => {
+                unproven.get_or_insert(Outcome::Unbounded(Growth { proven: false, rates }));
+            }
+            Ok(End::Other(Outcome::Undecided(_))) | Err(_) => {}
+            Ok(end) => return Cold { end, pivots, detours },
+        }
+        detours.push(rung.name);
+    }
+    let reason = "every setting of the solver ended in numerical trouble; the coefficients may be spread too widely";
+    Cold { end: End::Other(unproven.unwrap_or_else(|| Outcome::Undecided(reason.to_owned()))), pivots, detours }
+}
+
+fn climb(
+    program: &Program,
+    rung: &Rung,
+    limit: Duration,
+    stop: &Stop,
+    pivots: &mut usize,
+) -> Result<End, Refusal> {
+    let mut scratch = Instance::new(program)?;
+    scratch.live.set("simplex_dual_edge_weight_strategy", -1)?;
+    scratch.live.set("presolve", rung.presolve)?;
+    scratch.live.set("solver", rung.solver)?;
+    scratch.live.set("simplex_strategy", rung.strategy)?;
+    scratch.live.set("time_limit", limit.as_secs_f64())?;
+    let ending = scratch.live.run(stop);
+    *pivots = scratch.live.pivots();
+    Ok(match ending {
+        Ending::Optimal => {
+            let basis = scratch.basis()?;
+            drop(scratch);
+            let mut instance = ready(program)?;
+            instance.set_basis(&basis)?;
+            let mut look = Look::at(&mut instance, program)?;
+            if !look.is_optimal() {
+                // The solver's tolerances are wider than the proof's: a few more pivots with tight ones.
+                instance.live.set("time_limit", limit.as_secs_f64())?;
+                let polished = instance.live.run(stop);
+                *pivots += instance.live.pivots();
+                if polished == Ending::Stopped {
+                    return Ok(End::Other(Outcome::Interrupted));
+                }
+                look = Look::at(&mut instance, program)?;
+            }
+            if look.is_optimal() {
+                End::Optimal(Box::new(instance), Box::new(look))
+            } else {
+                End::Other(Outcome::Undecided(String::new()))
+            }
+        }
+        Ending::Infeasible => End::Other(Outcome::Infeasible(explain_infeasible(program, &mut scratch))),
+        Ending::Unbounded => End::Other(Outcome::Unbounded(explain_unbounded(program, &mut scratch))),
+        Ending::OutOfTime => {
+            End::Other(Outcome::Undecided(format!("the time limit of {} s was reached", limit.as_secs_f64())))
+        }
+        Ending::Stopped => End::Other(Outcome::Interrupted),
+        Ending::OutOfPivots | Ending::Trouble => End::Other(Outcome::Undecided(String::new())),
+    })
+}
+
+/// An instance with `program`, set up for warm starts and tight tolerances.
+///
+/// # Errors
+/// When the solver refuses the program.
+pub fn ready(program: &Program) -> Result<Instance, Refusal> {
+    let mut instance = Instance::new(program)?;
+    instance.live.set("primal_feasibility_tolerance", TOLERANCE)?;
+    instance.live.set("dual_feasibility_tolerance", TOLERANCE)?;
+    Ok(instance)
+}
+
+/// The contradiction behind an infeasible run: from the instance's ray, which voids its point.
+pub fn explain_infeasible(program: &Program, instance: &mut Instance) -> Conflict {
+    let ray = instance.live.dual_ray();
+    ray.map_or_else(Conflict::default, |ray| {
+        let own: Vec<f64> = instance.rows.iter().map(|&at| ray[at]).collect();
+        certificate::conflict(program, &own)
+    })
+}
+
+/// The growth behind an unbounded run: from the instance's ray, which voids its point.
+pub fn explain_unbounded(program: &Program, instance: &mut Instance) -> Growth {
+    let ray = instance.live.primal_ray();
+    ray.map_or_else(Growth::default, |ray| {
+        let own: Vec<f64> = instance.columns.iter().map(|&at| ray[at]).collect();
+        certificate::growth(program, &own)
+    })
+}

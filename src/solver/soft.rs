@@ -1,0 +1,111 @@
+//! Withdrawing softly: a program on the way from the old to the new one that keeps the last basis valid.
+//!
+//! Deleting a basic column or a binding row would ruin the basis, and so would taking away the bound that a nonbasic column or row
+//! stands on. On the way, a column that is to go is held at 0, and a row or bound that is to go is held at its present value on
+//! the side by which it may now leave. Once that program is solved, the rest is let go.
+
+use super::basis::{Basis, Position};
+use super::vertex::{Vertex, bound_at};
+use crate::lp::{Column, Key, Program, Row, RowIndex};
+
+/// The program on the way from `old`, whose last basis and vertex are given, to `new`. It is `new` itself where nothing is
+/// withdrawn that the basis leans on.
+#[must_use]
+pub fn on_the_way(old: &Program, basis: &Basis, vertex: &Vertex, new: &Program) -> Program {
+    let rows = rows_on_the_way(old, basis, vertex, new);
+    let place = |key: &Key| rows.binary_search_by(|row| row.key.cmp(key)).ok().map(RowIndex);
+    let from_new: Vec<Option<RowIndex>> = new.rows.iter().map(|row| place(&row.key)).collect();
+    let from_old: Vec<Option<RowIndex>> = old.rows.iter().map(|row| place(&row.key)).collect();
+    let is_ghost: Vec<bool> = old.rows.iter().map(|row| new.row(&row.key).is_none()).collect();
+
+    let mut columns: Vec<Column> = new
+        .columns
+        .iter()
+        .map(|column| {
+            let mut way = Column { entries: moved(&column.entries, &from_new), ..column.clone() };
+            if let Some(at) = old.column(&column.key) {
+                let ghostly = old.columns[at.0].entries.iter().filter(|&&(row, _)| is_ghost[row.0]);
+                way.entries.extend(ghostly.filter_map(|&(row, value)| Some((from_old[row.0]?, value))));
+                way.entries.sort_by_key(|entry| entry.0);
+                let stands = Stands::column(old, at.0, basis, vertex);
+                (way.lower, way.upper) = stands.held_within(column.lower, column.upper);
+            }
+            way
+        })
+        .collect();
+    for (at, column) in old.columns.iter().enumerate() {
+        let idle = bound_at(basis.columns[at], column.lower, column.upper) == Some(0.0);
+        if !idle && new.column(&column.key).is_none() {
+            columns.push(Column { lower: 0.0, upper: 0.0, entries: moved(&column.entries, &from_old), ..column.clone() });
+        }
+    }
+    columns.sort_by(|a, b| a.key.cmp(&b.key));
+    Program { sense: new.sense, offset: new.offset, columns, rows }
+}
+
+fn rows_on_the_way(old: &Program, basis: &Basis, vertex: &Vertex, new: &Program) -> Vec<Row> {
+    let mut rows: Vec<Row> = new
+        .rows
+        .iter()
+        .map(|row| {
+            let Some(at) = old.row(&row.key) else { return row.clone() };
+            let (lower, upper) = Stands::row(old, at.0, basis, vertex).held_within(row.lower, row.upper);
+            Row { lower, upper, ..row.clone() }
+        })
+        .collect();
+    for (at, row) in old.rows.iter().enumerate() {
+        if basis.rows[at] != Position::Basic && new.row(&row.key).is_none() {
+            let (lower, upper) = Stands::row(old, at, basis, vertex).held_within(f64::NEG_INFINITY, f64::INFINITY);
+            rows.push(Row { lower, upper, ..row.clone() });
+        }
+    }
+    rows.sort_by(|a, b| a.key.cmp(&b.key));
+    rows
+}
+
+fn moved(entries: &[(RowIndex, f64)], map: &[Option<RowIndex>]) -> Vec<(RowIndex, f64)> {
+    entries.iter().filter_map(|&(row, value)| Some((map[row.0]?, value))).collect()
+}
+
+/// How something stands in the last basis, and which way it would go if it could.
+struct Stands {
+    /// The bound it stands at; `None` for what is basic.
+    at: Option<f64>,
+    /// Whether the aim gains when it goes up rather than down.
+    rises: bool,
+}
+
+impl Stands {
+    fn column(program: &Program, at: usize, basis: &Basis, vertex: &Vertex) -> Self {
+        let column = &program.columns[at];
+        let charged: f64 = column.entries.iter().map(|&(row, value)| value * vertex.worths[row.0]).sum();
+        let gain = column.aim - charged;
+        Self {
+            at: bound_at(basis.columns[at], column.lower, column.upper),
+            rises: rises(basis.columns[at], column.lower, column.upper, program.sense.sign() * gain),
+        }
+    }
+
+    fn row(program: &Program, at: usize, basis: &Basis, vertex: &Vertex) -> Self {
+        let row = &program.rows[at];
+        Self {
+            at: bound_at(basis.rows[at], row.lower, row.upper),
+            rises: rises(basis.rows[at], row.lower, row.upper, program.sense.sign() * vertex.worths[at]),
+        }
+    }
+
+    /// Bounds to take on the way where its own are to become these: its own where it can stand at one of them, else held at its
+    /// present value on the side by which it may now leave.
+    fn held_within(&self, lower: f64, upper: f64) -> (f64, f64) {
+        match self.at {
+            Some(value) if self.rises && upper.is_infinite() && lower < value => (value, upper),
+            Some(value) if !self.rises && lower.is_infinite() && value < upper => (lower, value),
+            _ => (lower, upper),
+        }
+    }
+}
+
+/// What stands at its upper bound would rise if it could, at its lower it would fall; where both are one, the gain decides.
+fn rises(position: Position, lower: f64, upper: f64, cost: f64) -> bool {
+    if lower < upper { position == Position::AtUpper } else { cost < 0.0 }
+}
