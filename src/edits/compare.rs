@@ -26,7 +26,10 @@ pub fn compare(old: &Model, new: &Model) -> Vec<Edit> {
 /// What was there and what is.
 type Pair<'a, T> = (Option<&'a T>, Option<&'a T>);
 
-fn pairs<'a, T>(old: &'a BTreeMap<Name, T>, new: &'a BTreeMap<Name, T>) -> impl Iterator<Item = (&'a Name, Pair<'a, T>)> {
+fn pairs<'a, T>(
+    old: &'a BTreeMap<Name, T>,
+    new: &'a BTreeMap<Name, T>,
+) -> impl Iterator<Item = (&'a Name, Pair<'a, T>)> {
     let names: BTreeSet<&Name> = old.keys().chain(new.keys()).collect();
     names.into_iter().map(move |name| (name, (old.get(name), new.get(name))))
 }
@@ -89,7 +92,13 @@ impl Edits {
         self.words("currency".into(), &subject, old.currency.as_ref(), new.currency.as_ref());
         let aims = (Some(old.aim.word().to_owned()), Some(new.aim.word().to_owned()));
         self.push("aim".into(), &subject, Kind::Aim, aims.0, aims.1);
-        self.push("constant".into(), &subject, Kind::Wording, Some(old.constant.to_string()), Some(new.constant.to_string()));
+        self.push(
+            "constant".into(),
+            &subject,
+            Kind::Wording,
+            Some(old.constant.to_string()),
+            Some(new.constant.to_string()),
+        );
     }
 
     fn resource(&mut self, name: &Name, pair: Pair<'_, Resource>) {
@@ -128,7 +137,14 @@ impl Edits {
         }
     }
 
-    fn activity_changed(&mut self, address: &str, subject: &Subject, old: &Activity, new: &Activity, asked: &BTreeSet<&Name>) {
+    fn activity_changed(
+        &mut self,
+        address: &str,
+        subject: &Subject,
+        old: &Activity,
+        new: &Activity,
+        asked: &BTreeSet<&Name>,
+    ) {
         self.words(format!("{address}.label"), subject, old.label.as_ref(), new.label.as_ref());
         self.words(format!("{address}.unit"), subject, old.unit.as_ref(), new.unit.as_ref());
         if old.prospect != new.prospect {
@@ -188,7 +204,8 @@ impl Edits {
     /// With `per`, a bound is a coefficient of the row, and each bound has a row of its own.
     fn limit_bounds(&mut self, address: &str, name: &Name, old: &Limit, new: &Limit, concerned: &Concerned<'_>) {
         let (olds, news) = (bounds(&old.bound), bounds(&new.bound));
-        let per: Vec<Name> = new.per.iter().chain(&old.per).flat_map(BTreeMap::keys).flat_map(|term| concerned.by(term)).collect();
+        let per: Vec<Name> =
+            new.per.iter().chain(&old.per).flat_map(BTreeMap::keys).flat_map(|term| concerned.by(term)).collect();
         for ((word, old_bound), (_, new_bound)) in olds.into_iter().zip(news) {
             let (was, is) = (has_bound(&old_bound), has_bound(&new_bound));
             let by_per = old.per.is_some() || new.per.is_some();
@@ -256,9 +273,9 @@ fn activity_in_short(activity: &Activity) -> String {
 }
 
 fn limit_in_short(limit: &Limit) -> String {
-    let bounds = bounds(&limit.bound).into_iter().filter_map(|(word, value)| {
-        Some(format!("{} {}", word.replace('_', " "), bound_shown(&value)?))
-    });
+    let bounds = bounds(&limit.bound)
+        .into_iter()
+        .filter_map(|(word, value)| Some(format!("{} {}", word.replace('_', " "), bound_shown(&value)?)));
     in_short(bounds)
 }
 

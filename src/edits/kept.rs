@@ -75,13 +75,25 @@ impl LastPlan {
             Kind::Capacity | Kind::NewConstraint => Kept::Dual,
             Kind::NewCommitment => Kept::Neither,
             Kind::BoundRemoved | Kind::WithdrawnConstraint => {
-                if self.leans_on(&edit.subject) { Kept::Primal } else { Kept::Both }
+                if self.leans_on(&edit.subject) {
+                    Kept::Primal
+                } else {
+                    Kept::Both
+                }
             }
             Kind::WithdrawnActivity => {
-                if self.is_idle(&edit.subject) { Kept::Both } else { Kept::Dual }
+                if self.is_idle(&edit.subject) {
+                    Kept::Both
+                } else {
+                    Kept::Dual
+                }
             }
             Kind::Recipe => {
-                if self.is_idle(&edit.subject) { Kept::Primal } else { Kept::Neither }
+                if self.is_idle(&edit.subject) {
+                    Kept::Primal
+                } else {
+                    Kept::Neither
+                }
             }
         }
     }

@@ -21,7 +21,8 @@ pub fn conflict(program: &Program, ray: &[f64]) -> Conflict {
 /// Columns or rows whose own bounds contradict each other, or rows that no column touches and that are not kept at 0.
 #[must_use]
 pub fn plain_contradiction(program: &Program) -> Option<Conflict> {
-    let columns = program.columns.iter().filter(|c| c.lower > c.upper).flat_map(|c| crossed(&c.key, false, c.lower, c.upper));
+    let columns =
+        program.columns.iter().filter(|c| c.lower > c.upper).flat_map(|c| crossed(&c.key, false, c.lower, c.upper));
     let rows = program.rows.iter().filter(|r| r.lower > r.upper).flat_map(|r| crossed(&r.key, true, r.lower, r.upper));
     let rules: Vec<Rule> = columns.chain(rows).take(2).collect();
     if !rules.is_empty() {
@@ -31,7 +32,8 @@ pub fn plain_contradiction(program: &Program) -> Option<Conflict> {
     for &(row, _) in program.columns.iter().flat_map(|column| &column.entries) {
         touched[row.0] = true;
     }
-    let broken = program.rows.iter().zip(touched).find(|(row, touched)| !touched && (row.lower > 0.0 || row.upper < 0.0));
+    let broken =
+        program.rows.iter().zip(touched).find(|(row, touched)| !touched && (row.lower > 0.0 || row.upper < 0.0));
     broken.map(|(row, _)| Conflict { rules: vec![row_rule(row, row.upper < 0.0)], proven: true })
 }
 
@@ -39,7 +41,8 @@ pub fn plain_contradiction(program: &Program) -> Option<Conflict> {
 #[must_use]
 pub fn growth(program: &Program, ray: &[f64]) -> Growth {
     let largest = ray.iter().fold(0.0_f64, |largest, rate| largest.max(rate.abs()));
-    let rates: Vec<f64> = ray.iter().map(|&rate| if rate.abs() <= NOISE * largest { 0.0 } else { rate / largest }).collect();
+    let rates: Vec<f64> =
+        ray.iter().map(|&rate| if rate.abs() <= NOISE * largest { 0.0 } else { rate / largest }).collect();
     let mut sums = vec![Sum::default(); program.rows.len()];
     let mut scales = vec![0.0_f64; program.rows.len()];
     let mut gain = Sum::default();
@@ -55,7 +58,11 @@ pub fn growth(program: &Program, ray: &[f64]) -> Growth {
         (rate <= noise || upper.is_infinite()) && (rate >= -noise || lower.is_infinite())
     };
     let columns_go = program.columns.iter().zip(&rates).all(|(c, &rate)| goes_on(rate, 0.0, c.lower, c.upper));
-    let rows_go = program.rows.iter().zip(sums.iter().zip(&scales)).all(|(r, (sum, &scale))| goes_on(sum.value(), scale, r.lower, r.upper));
+    let rows_go = program
+        .rows
+        .iter()
+        .zip(sums.iter().zip(&scales))
+        .all(|(r, (sum, &scale))| goes_on(sum.value(), scale, r.lower, r.upper));
     let named = program.columns.iter().zip(&rates).filter(|&(_, &rate)| rate != 0.0);
     Growth {
         rates: named.map(|(column, &rate)| (column.key.clone(), rate)).collect(),

@@ -12,12 +12,7 @@ use crate::lp::{Difference, Key, Program};
 ///
 /// # Errors
 /// When the solver refuses a change.
-pub fn change(
-    instance: &mut Instance,
-    from: &Program,
-    to: &Program,
-    difference: &Difference,
-) -> Result<(), Refusal> {
+pub fn change(instance: &mut Instance, from: &Program, to: &Program, difference: &Difference) -> Result<(), Refusal> {
     if difference.sense.is_some() || difference.offset.is_some() {
         instance.live.set_aim(to.sense, to.offset)?;
     }
@@ -64,9 +59,10 @@ fn carry(instance: &Instance, from: &Program, to: &Program) -> Carried {
     let columns = to.columns.iter().scan(0, |next, column| {
         Some(advance(&from.columns, next, &column.key, |column| &column.key).map(|at| instance.columns[at]))
     });
-    let rows = to.rows.iter().scan(0, |next, row| {
-        Some(advance(&from.rows, next, &row.key, |row| &row.key).map(|at| instance.rows[at]))
-    });
+    let rows = to
+        .rows
+        .iter()
+        .scan(0, |next, row| Some(advance(&from.rows, next, &row.key, |row| &row.key).map(|at| instance.rows[at])));
     Carried { columns: columns.collect(), rows: rows.collect() }
 }
 
@@ -78,12 +74,7 @@ fn advance<T>(list: &[T], next: &mut usize, key: &Key, key_of: impl Fn(&T) -> &K
     list.get(*next).is_some_and(|item| key_of(item) == key).then_some(*next)
 }
 
-fn numbers(
-    instance: &mut Instance,
-    to: &Program,
-    carried: &Carried,
-    difference: &Difference,
-) -> Result<(), Refusal> {
+fn numbers(instance: &mut Instance, to: &Program, carried: &Carried, difference: &Difference) -> Result<(), Refusal> {
     let column = |key| to.column(key).and_then(|at| carried.columns[at.0]);
     let row = |key| to.row(key).and_then(|at| carried.rows[at.0]);
     for (key, aim) in &difference.aims {
@@ -109,12 +100,7 @@ fn numbers(
     Ok(())
 }
 
-fn add(
-    instance: &mut Instance,
-    to: &Program,
-    mut carried: Carried,
-    difference: &Difference,
-) -> Result<(), Refusal> {
+fn add(instance: &mut Instance, to: &Program, mut carried: Carried, difference: &Difference) -> Result<(), Refusal> {
     if !difference.added_rows.is_empty() {
         let mut entries: BTreeMap<&Key, Vec<(usize, f64)>> = BTreeMap::new();
         for (key, row, value) in &difference.entries {
@@ -135,9 +121,8 @@ fn add(
     if !difference.added_columns.is_empty() {
         let mut batch = Batch::default();
         for (place, column) in difference.added_columns.iter().enumerate() {
-            let entries = column.entries.iter().filter_map(|(row, value)| {
-                to.row(row).map(|at| (instance.rows[at.0], *value))
-            });
+            let entries =
+                column.entries.iter().filter_map(|(row, value)| to.row(row).map(|at| (instance.rows[at.0], *value)));
             batch.push(column.aim, column.lower, column.upper, entries);
             if let Some(at) = to.column(&column.key) {
                 carried.columns[at.0] = Some(instance.live.columns() + place);

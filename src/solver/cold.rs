@@ -69,13 +69,7 @@ pub fn solve(program: &Program, limit: Duration, stop: &Stop) -> Cold {
     Cold { end: End::Other(unproven.unwrap_or_else(|| Outcome::Undecided(reason.to_owned()))), pivots, detours }
 }
 
-fn climb(
-    program: &Program,
-    rung: &Rung,
-    limit: Duration,
-    stop: &Stop,
-    pivots: &mut usize,
-) -> Result<End, Refusal> {
+fn climb(program: &Program, rung: &Rung, limit: Duration, stop: &Stop, pivots: &mut usize) -> Result<End, Refusal> {
     let mut scratch = Instance::new(program)?;
     scratch.live.set("simplex_dual_edge_weight_strategy", -1)?;
     scratch.live.set("presolve", rung.presolve)?;

@@ -62,24 +62,22 @@ impl Look {
     fn count(&mut self, program: &Program) {
         let sign = program.sense.sign();
         for (at, column) in program.columns.iter().enumerate() {
-            let scale = column.entries.iter().fold(column.aim.abs(), |scale, &(row, value)| {
-                scale.max((value * self.vertex.worths[row.0]).abs())
-            });
-            self.primal += usize::from(outside(self.vertex.levels[at], column.lower, column.upper));
-            let cost = sign * self.checked.gains[at] / scale.max(1.0);
+            self.primal += usize::from(outside(self.vertex.levels[at], 0.0, column.lower, column.upper));
+            let cost = sign * self.checked.gains[at] / self.checked.gain_scales[at].max(1.0);
             self.dual += usize::from(improves(self.basis.columns[at], column.lower, column.upper, cost));
         }
         for (at, row) in program.rows.iter().enumerate() {
-            self.primal += usize::from(outside(self.checked.sums[at], row.lower, row.upper));
-            // A row that rises charges its worth: rising by its own bound is what its dual prices.
+            self.primal +=
+                usize::from(outside(self.checked.sums[at], self.checked.sum_scales[at], row.lower, row.upper));
             let cost = sign * self.vertex.worths[at];
             self.dual += usize::from(improves(self.basis.rows[at], row.lower, row.upper, cost));
         }
     }
 }
 
-fn outside(value: f64, lower: f64, upper: f64) -> bool {
-    let size = TOLERANCE * value.abs().max(1.0);
+/// Whether a value breaks a bound by more than its rounding, as the proof measures it.
+fn outside(value: f64, scale: f64, lower: f64, upper: f64) -> bool {
+    let size = TOLERANCE * value.abs().max(scale).max(1.0);
     value < lower - size || value > upper + size || value.is_nan()
 }
 

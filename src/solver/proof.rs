@@ -49,6 +49,10 @@ pub struct Checked {
     pub sums: Vec<f64>,
     /// Gain of each column: what one unit more of it adds to the aim, less what the rows charge for it.
     pub gains: Vec<f64>,
+    /// Per row: the largest term of its sum, which its rounding error is relative to.
+    pub sum_scales: Vec<f64>,
+    /// Per column: the largest term of its gain, which its rounding error is relative to.
+    pub gain_scales: Vec<f64>,
     /// How well all laws are kept.
     pub proof: Proof,
 }
@@ -63,6 +67,7 @@ pub fn check(program: &Program, levels: &[f64], worths: &[f64]) -> Checked {
     aim.add(program.offset);
     tally.bound.add(program.offset);
     let mut gains = Vec::with_capacity(program.columns.len());
+    let mut gain_scales = Vec::with_capacity(program.columns.len());
     for (column, &level) in program.columns.iter().zip(levels) {
         aim.add_product(column.aim, level);
         let mut gain = Sum::default();
@@ -77,13 +82,14 @@ pub fn check(program: &Program, levels: &[f64], worths: &[f64]) -> Checked {
         let gain = gain.value();
         tally.side(level, 0.0, column.lower, column.upper, gain, scale);
         gains.push(gain);
+        gain_scales.push(scale);
     }
     let sums: Vec<f64> = sums.into_iter().map(Sum::value).collect();
     for (at, row) in program.rows.iter().enumerate() {
         tally.side(sums[at], scales[at], row.lower, row.upper, worths[at], 0.0);
     }
     let aim = aim.value();
-    Checked { aim, sums, gains, proof: tally.proof(aim) }
+    Checked { aim, sums, gains, sum_scales: scales, gain_scales, proof: tally.proof(aim) }
 }
 
 /// Gathers breaches over columns and rows alike: a value between bounds, and the multiplier that leans on them.

@@ -123,7 +123,12 @@ impl Session {
 
     fn cap(&self) -> usize {
         let share = |pivots: usize| {
-            #[expect(clippy::cast_precision_loss, clippy::cast_possible_truncation, clippy::cast_sign_loss, reason = "a rough share of a count")]
+            #[expect(
+                clippy::cast_precision_loss,
+                clippy::cast_possible_truncation,
+                clippy::cast_sign_loss,
+                reason = "a rough share of a count"
+            )]
             let share = (pivots as f64 * SHARE_OF_COLD) as usize;
             share.max(PIVOTS_ALLOWED)
         };
@@ -260,12 +265,7 @@ fn settle(
     Err("neither simplex variant got there")
 }
 
-fn simplex(
-    instance: &mut Instance,
-    variant: Start,
-    run: &Run<'_>,
-    account: &mut Account,
-) -> Result<Ending, Refusal> {
+fn simplex(instance: &mut Instance, variant: Start, run: &Run<'_>, account: &mut Account) -> Result<Ending, Refusal> {
     let left = run.cap.saturating_sub(account.pivots);
     instance.live.set("simplex_strategy", if variant == Start::Primal { 4 } else { 1 })?;
     instance.live.set("simplex_iteration_limit", i32::try_from(left).unwrap_or(i32::MAX))?;

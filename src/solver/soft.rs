@@ -36,7 +36,12 @@ pub fn on_the_way(old: &Program, basis: &Basis, vertex: &Vertex, new: &Program) 
     for (at, column) in old.columns.iter().enumerate() {
         let idle = bound_at(basis.columns[at], column.lower, column.upper) == Some(0.0);
         if !idle && new.column(&column.key).is_none() {
-            columns.push(Column { lower: 0.0, upper: 0.0, entries: moved(&column.entries, &from_old), ..column.clone() });
+            columns.push(Column {
+                lower: 0.0,
+                upper: 0.0,
+                entries: moved(&column.entries, &from_old),
+                ..column.clone()
+            });
         }
     }
     columns.sort_by(|a, b| a.key.cmp(&b.key));

@@ -56,7 +56,9 @@ pub fn enter(
         let basic = basics.iter().zip(&rates).filter_map(|(&basic, &rate)| {
             // The factorisation keeps a row's logical as minus its sum.
             let (value, lower, upper, rate) = match basic {
-                Member::Column(c) => (look.vertex.levels[c.0], program.columns[c.0].lower, program.columns[c.0].upper, rate),
+                Member::Column(c) => {
+                    (look.vertex.levels[c.0], program.columns[c.0].lower, program.columns[c.0].upper, rate)
+                }
                 Member::Row(r) => (look.checked.sums[r.0], program.rows[r.0].lower, program.rows[r.0].upper, -rate),
             };
             (rate.abs() >= PIVOT).then(|| Block::of(basic, value, lower, upper, sign * rate))

@@ -10,14 +10,22 @@ use crate::lp::{Program, Sense};
 /// Whether no basic column or row stands at a bound of its own: then the worths are unique.
 #[must_use]
 pub fn worths_unique(program: &Program, look: &Look) -> bool {
-    let columns = program.columns.iter().zip(&look.basis.columns).zip(&look.vertex.levels);
-    let rows = program.rows.iter().zip(&look.basis.rows).zip(&look.checked.sums);
-    !columns.into_iter().any(|((column, &position), &level)| at_bound(position, level, column.lower, column.upper))
-        && !rows.into_iter().any(|((row, &position), &sum)| at_bound(position, sum, row.lower, row.upper))
+    let Look { basis, vertex, checked, .. } = look;
+    let column_at_bound = program
+        .columns
+        .iter()
+        .enumerate()
+        .any(|(at, column)| at_bound(basis.columns[at], vertex.levels[at], 0.0, column.lower, column.upper));
+    let row_at_bound = program
+        .rows
+        .iter()
+        .enumerate()
+        .any(|(at, row)| at_bound(basis.rows[at], checked.sums[at], checked.sum_scales[at], row.lower, row.upper));
+    !column_at_bound && !row_at_bound
 }
 
-fn at_bound(position: Position, value: f64, lower: f64, upper: f64) -> bool {
-    let near = TOLERANCE * value.abs().max(1.0);
+fn at_bound(position: Position, value: f64, scale: f64, lower: f64, upper: f64) -> bool {
+    let near = TOLERANCE * value.abs().max(scale).max(1.0);
     position == Position::Basic && ((value - lower).abs() <= near || (upper - value).abs() <= near)
 }
 
@@ -81,9 +89,7 @@ impl Face {
             }
         }
         for (at, column) in face.columns.iter_mut().enumerate() {
-            let scale = column.entries.iter().fold(column.aim.abs(), |scale, &(row, value)| {
-                scale.max((value * look.vertex.worths[row.0]).abs())
-            });
+            let scale = look.checked.gain_scales[at];
             column.aim = column.entries.iter().map(|&(row, value)| row_aims[row.0] * value).sum();
             match stance(look.basis.columns[at], column.lower, column.upper, look.checked.gains[at], scale) {
                 Stance::Basic => {}
