@@ -72,7 +72,7 @@ fn molder_optimum() -> Optimum {
 }
 
 fn made(model: &Model, optimum: &Optimum) -> Plan {
-    make(model, Meaning::of(model), &build::build(model), optimum).unwrap()
+    make(model, Meaning::of(model), &build(model), optimum).unwrap()
 }
 
 fn close(told: Option<f64>, expected: f64) {
@@ -253,7 +253,7 @@ fn what_is_no_number_makes_no_plan() {
     let refused = |change: &dyn Fn(&mut Optimum)| {
         let mut optimum = molder_optimum();
         change(&mut optimum);
-        make(&model, Meaning::of(&model), &build::build(&model), &optimum).unwrap_err().to_string()
+        make(&model, Meaning::of(&model), &build(&model), &optimum).unwrap_err().to_string()
     };
     assert_eq!(refused(&|o| o.aim = f64::NAN), "the aim of `the plan` is NaN, which no plan may say");
     assert!(refused(&|o| o.levels[1] = INF).contains("the level of `activities.six_oz` is inf"));
@@ -262,6 +262,6 @@ fn what_is_no_number_makes_no_plan() {
     assert_eq!(refused(&|o| o.levels.truncate(2)), "the answer has 2 levels, the program 3");
     let other = Model { activities: [].into(), ..molder(0.0) };
     let optimum = Optimum { levels: vec![], gains: vec![], ranges: None, ..molder_optimum() };
-    let error = make(&model, Meaning::of(&model), &build::build(&other), &optimum).unwrap_err();
+    let error = make(&model, Meaning::of(&model), &build(&other), &optimum).unwrap_err();
     assert_eq!(error.to_string(), "the program has no `activities.champagne`");
 }
