@@ -117,7 +117,7 @@ fn told(number: f64) -> String {
     format!("{:?}", number + 0.0)
 }
 
-/// Whether some number of the program is of a size that no model holds; writing copes, reading refuses.
+/// Whether some number of the program is of a size that no model holds: writing copes, reading refuses it or takes it as 0.
 fn is_out_of_reach(program: &Program) -> bool {
     let mut entries =
         program.columns.iter().flat_map(|column| column.entries.iter().map(|entry| entry.1).chain([column.aim]));

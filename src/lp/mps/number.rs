@@ -7,18 +7,12 @@ const NO_LIMIT: f64 = 1e20;
 /// The largest magnitude a model may hold.
 const LARGEST: f64 = 1e15;
 /// The smallest magnitude of a coefficient that is not 0.
-const SMALLEST_COEFFICIENT: f64 = 1e-9;
+pub(super) const SMALLEST_COEFFICIENT: f64 = 1e-9;
 
-/// A coefficient, of a row or the objective.
-pub(super) fn coefficient(text: &str) -> Result<f64, Flaw> {
+/// A coefficient, of a row or the objective; `None` where it is not 0 but too small for a model, which takes it as 0.
+pub(super) fn coefficient(text: &str) -> Result<Option<f64>, Flaw> {
     let number = within_reach(finite(text)?, text)?;
-    if number != 0.0 && number.abs() < SMALLEST_COEFFICIENT {
-        return Err(Flaw::new(
-            format!("coefficient {} is smaller than {SMALLEST_COEFFICIENT:e}", quoted(text)),
-            "leave it out or scale the row or column",
-        ));
-    }
-    Ok(number)
+    Ok(Some(number).filter(|number| *number == 0.0 || number.abs() >= SMALLEST_COEFFICIENT))
 }
 
 /// The objective's right-hand side: a number that must be finite.
@@ -88,7 +82,7 @@ mod tests {
     #[test]
     fn numbers_are_read_as_files_write_them() {
         for (text, number) in [("1.5D+03", 1500.0), ("1d-2", 0.01), ("-.5", -0.5), ("3518.", 3518.0), ("+2E1", 20.0)] {
-            assert_eq!(coefficient(text).unwrap().to_bits(), f64::to_bits(number), "{text}");
+            assert_eq!(coefficient(text).unwrap().map(f64::to_bits), Some(f64::to_bits(number)), "{text}");
         }
         for text in ["", "x", "nan", "NaN", "1d2d3", "d", "0x10", "1,5", "--1"] {
             assert!(bound(text).is_err(), "{text}");
@@ -109,8 +103,8 @@ mod tests {
 
     #[test]
     fn coefficients_are_zero_or_large_enough() {
-        assert!(coefficient("9.99e-10").is_err());
-        assert!(coefficient("1e-9").is_ok() && coefficient("0.0").is_ok());
+        assert_eq!([coefficient("9.99e-10").unwrap(), coefficient("-1e-300").unwrap()], [None, None]);
+        assert!(coefficient("1e-9").unwrap().is_some() && coefficient("0.0").unwrap().is_some());
         assert!(bound("1e-12").is_ok() && constant("1e-12").is_ok());
     }
 

@@ -21,7 +21,7 @@ pub struct Reading {
 ///
 /// Columns become activities and rows become limits. A name that is not one of ours is escaped
 /// ([`names`](super::names)) and stands in the label. Left out, with a warning: free rows beside the objective, rows that
-/// nothing holds, and all sets of right-hand sides, ranges or bounds but the first.
+/// nothing holds, coefficients below 1e-9 (the solver would ignore them too), and all sets of right-hand sides, ranges or bounds but the first.
 ///
 /// # Errors
 /// The first thing wrong, in whichever layout gets further into the file.
@@ -253,8 +253,15 @@ impl<'t> Reader<'t> {
         }
         self.draft.open_column(card.head.unwrap_or_default(), line)?;
         for (row, value) in card.pairs() {
-            let value = number::coefficient(value.unwrap_or_default())?;
-            self.draft.add_entry(row, value, line)?;
+            let text = value.unwrap_or_default();
+            let value = number::coefficient(text)?;
+            if value.is_none() {
+                let smallest = number::SMALLEST_COEFFICIENT;
+                self.warnings.add(line, || {
+                    format!("coefficient {} is smaller than {smallest:e} and taken as 0", quoted(text))
+                });
+            }
+            self.draft.add_entry(row, value.unwrap_or_default(), line)?;
         }
         Ok(())
     }

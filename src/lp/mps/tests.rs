@@ -155,6 +155,14 @@ fn what_is_left_out_is_said() {
 }
 
 #[test]
+fn a_coefficient_too_small_for_a_model_is_taken_as_0_and_said() {
+    let Reading { model, warnings, .. } = read(&file("").replace("B.1 -1", "B.1 -.9D-9")).unwrap();
+    assert!(model.limits["B_x2e_1"].terms.is_empty());
+    assert_eq!(warnings.reported[0].line, 8);
+    assert_eq!(warnings.reported[0].message, "coefficient `-.9D-9` is smaller than 1e-9 and taken as 0");
+}
+
+#[test]
 fn a_thing_said_twice_names_both_lines() {
     for (old, new, told) in [
         (" E B.1\n", " E B.1\n L KILN\n", "line 6: row `KILN` is given twice, in lines 4 and 6"),
