@@ -257,9 +257,8 @@ impl<'t> Reader<'t> {
             let value = number::coefficient(text)?;
             if value.is_none() {
                 let smallest = number::SMALLEST_COEFFICIENT;
-                self.warnings.add(line, || {
-                    format!("coefficient {} is smaller than {smallest:e} and taken as 0", quoted(text))
-                });
+                self.warnings
+                    .add(line, || format!("coefficient {} is smaller than {smallest:e} and taken as 0", quoted(text)));
             }
             self.draft.add_entry(row, value.unwrap_or_default(), line)?;
         }
