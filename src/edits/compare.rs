@@ -48,12 +48,16 @@ struct Concerned<'a> {
 }
 
 impl Concerned<'_> {
+    /// Activities of both models: what is new or withdrawn brings or takes its terms with it.
     fn by(&self, term: &Term) -> Vec<Name> {
         let all = self.old.activities.iter().chain(&self.new.activities);
-        let concerned = all.filter(|(name, activity)| match term {
-            Term::Activity(one) => one == *name,
-            Term::Tag(tag) => activity.tags.contains(tag),
-            Term::All => true,
+        let concerned = all.filter(|(name, activity)| {
+            let asked = match term {
+                Term::Activity(one) => one == *name,
+                Term::Tag(tag) => activity.tags.contains(tag),
+                Term::All => true,
+            };
+            asked && self.old.activities.contains_key(*name) && self.new.activities.contains_key(*name)
         });
         let names: BTreeSet<&Name> = concerned.map(|(name, _)| name).collect();
         names.into_iter().cloned().collect()

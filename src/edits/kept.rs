@@ -89,7 +89,9 @@ impl LastPlan {
                 }
             }
             Kind::Recipe => {
-                if self.is_idle(&edit.subject) {
+                if matches!(&edit.subject, Subject::Limit(_, concerned) if concerned.is_empty()) {
+                    Kept::Both
+                } else if self.is_idle(&edit.subject) {
                     Kept::Primal
                 } else {
                     Kept::Neither
