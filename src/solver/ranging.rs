@@ -85,7 +85,8 @@ fn row_bound(
     let sum = look.checked.sums[at];
     let position = look.basis.rows[at];
     if position == Position::Basic {
-        return Ok(if row.upper.is_finite() { (sum, f64::INFINITY) } else { (f64::NEG_INFINITY, sum) });
+        let upper_is_nearest = row.upper - sum <= sum - row.lower;
+        return Ok(if upper_is_nearest { (sum, f64::INFINITY) } else { (f64::NEG_INFINITY, sum) });
     }
     let mut unit = vec![0.0; program.rows.len()];
     unit[at] = 1.0;
