@@ -37,6 +37,20 @@ pub fn plain_contradiction(program: &Program) -> Option<Conflict> {
     broken.map(|(row, _)| Conflict { rules: vec![row_rule(row, row.upper < 0.0)], proven: true })
 }
 
+/// A column in no row that improves the aim without limit. The solver finds no ray where no row has entries at all.
+#[must_use]
+pub fn plain_growth(program: &Program) -> Option<Growth> {
+    let improves = |column: &Column| {
+        let cost = program.sense.sign() * column.aim;
+        column.entries.is_empty()
+            && ((cost < 0.0 && column.upper.is_infinite()) || (cost > 0.0 && column.lower.is_infinite()))
+    };
+    let at = program.columns.iter().position(improves)?;
+    let mut ray = vec![0.0; program.columns.len()];
+    ray[at] = -program.sense.sign() * program.columns[at].aim.signum();
+    Some(growth(program, &ray))
+}
+
 /// The growth that `ray`, one rate per column, shows in `program`.
 #[must_use]
 pub fn growth(program: &Program, ray: &[f64]) -> Growth {
@@ -120,4 +134,27 @@ fn row_rule(row: &Row, upper: bool) -> Rule {
 fn crossed(key: &Key, is_row: bool, lower: f64, upper: f64) -> [Rule; 2] {
     let rule = |is_upper, bound| Rule { key: key.clone(), is_row, upper: is_upper, bound };
     [rule(false, lower), rule(true, upper)]
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::lp::Sense;
+
+    #[test]
+    fn what_is_in_no_row_may_grow_for_ever() {
+        let column = |lower, upper, aim| Column { key: Key::new("x"), lower, upper, aim, entries: Vec::new() };
+        let alone =
+            |sense, column| plain_growth(&Program { sense, offset: 0.0, columns: vec![column], rows: Vec::new() });
+        for (sense, lower, upper, aim, rate) in [
+            (Sense::Maximise, 0.0, f64::INFINITY, 3.0, 1.0),
+            (Sense::Maximise, f64::NEG_INFINITY, 0.0, -3.0, -1.0),
+            (Sense::Minimise, f64::NEG_INFINITY, 0.0, 3.0, -1.0),
+        ] {
+            let growth = alone(sense, column(lower, upper, aim));
+            assert_eq!(growth, Some(Growth { rates: vec![(Key::new("x"), rate)], proven: true }));
+        }
+        assert_eq!(alone(Sense::Maximise, column(0.0, 9.0, 3.0)), None);
+        assert_eq!(alone(Sense::Minimise, column(0.0, f64::INFINITY, 3.0)), None);
+    }
 }

@@ -134,8 +134,9 @@ pub fn explain_infeasible(program: &Program, instance: &mut Instance) -> Conflic
 /// The growth behind an unbounded run: from the instance's ray, which voids its point.
 pub fn explain_unbounded(program: &Program, instance: &mut Instance) -> Growth {
     let ray = instance.live.primal_ray();
-    ray.map_or_else(Growth::default, |ray| {
+    let shown = ray.map(|ray| {
         let own: Vec<f64> = instance.columns.iter().map(|&at| ray[at]).collect();
         certificate::growth(program, &own)
-    })
+    });
+    shown.or_else(|| certificate::plain_growth(program)).unwrap_or_default()
 }
