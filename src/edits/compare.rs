@@ -13,12 +13,12 @@ pub fn compare(old: &Model, new: &Model) -> Vec<Edit> {
     for (name, pair) in pairs(&old.resources, &new.resources) {
         edits.resource(name, pair);
     }
-    let asked = asked_tags(old, new);
+    let concerned = Concerned { old, new, asked: asked_tags(old, new) };
     for (name, pair) in pairs(&old.activities, &new.activities) {
-        edits.activity(name, pair, &asked);
+        edits.activity(name, pair, &concerned);
     }
     for (name, pair) in pairs(&old.limits, &new.limits) {
-        edits.limit(name, pair, &Concerned { old, new });
+        edits.limit(name, pair, &concerned);
     }
     edits.0
 }
@@ -41,10 +41,12 @@ fn asked_tags<'a>(old: &'a Model, new: &'a Model) -> BTreeSet<&'a Name> {
     terms.filter_map(|term| if let Term::Tag(tag) = term { Some(tag) } else { None }).collect()
 }
 
-/// The models, for finding out which activities a limit's term concerns.
+/// The models, for finding out what else an edit of one of their parts concerns.
 struct Concerned<'a> {
     old: &'a Model,
     new: &'a Model,
+    /// Tags that limits ask for.
+    asked: BTreeSet<&'a Name>,
 }
 
 impl Concerned<'_> {
@@ -61,6 +63,16 @@ impl Concerned<'_> {
         });
         let names: BTreeSet<&Name> = concerned.map(|(name, _)| name).collect();
         names.into_iter().cloned().collect()
+    }
+
+    /// What a changed rate of `activity` is about: a resource that is new or withdrawn brings or takes its rates with it.
+    fn rate(&self, activity: &Subject, resource: &Name) -> (Subject, Kind) {
+        let is_in = |model: &Model| model.resources.contains_key(resource);
+        match (is_in(self.old), is_in(self.new)) {
+            (false, true) => (Subject::Resource(resource.clone()), Kind::NewConstraint),
+            (true, false) => (Subject::Resource(resource.clone()), Kind::WithdrawnConstraint),
+            _ => (activity.clone(), Kind::Recipe),
+        }
     }
 }
 
@@ -83,11 +95,14 @@ impl Edits {
         self.push(address, subject, kind, Some(shown(old)), Some(shown(new)));
     }
 
-    /// A bound: moved, put there, or taken away.
-    fn bound(&mut self, address: String, subject: &Subject, old: &Value, new: &Value) {
-        let gone = has_bound(old) && !has_bound(new);
-        let kind = if gone { Kind::BoundRemoved } else { Kind::Capacity };
-        self.push(address, subject, kind, bound_shown(old), bound_shown(new));
+    /// Two bounds: each moved, put there, or taken away.
+    fn bounds(&mut self, addresses: [String; 2], subject: &Subject, old: [&Value; 2], new: [&Value; 2]) {
+        let let_go = let_go(old, new);
+        for (at, address) in addresses.into_iter().enumerate() {
+            let gone = has_bound(old[at]) && !has_bound(new[at]);
+            let kind = bound_kind(let_go.map(|let_go| let_go[at]), gone);
+            self.push(address, subject, kind, bound_shown(old[at]), bound_shown(new[at]));
+        }
     }
 
     fn model(&mut self, old: &Model, new: &Model) {
@@ -112,25 +127,28 @@ impl Edits {
             (Some(old), Some(new)) => {
                 self.words(format!("{address}.label"), &subject, old.label.as_ref(), new.label.as_ref());
                 self.words(format!("{address}.unit"), &subject, old.unit.as_ref(), new.unit.as_ref());
-                self.bound(format!("{address}.capacity"), &subject, &old.capacity, &new.capacity);
-                self.bound(format!("{address}.at_least"), &subject, &old.at_least, &new.at_least);
+                let addresses = ["at_least", "capacity"].map(|word| format!("{address}.{word}"));
+                let (was, is) = ([&old.at_least, &old.capacity], [&new.at_least, &new.capacity]);
+                self.bounds(addresses, &subject, was, is);
                 self.number(format!("{address}.cost"), &subject, Kind::Price, &old.cost, &new.cost);
             }
             (None, Some(new)) => {
-                self.push(address, &subject, Kind::NewConstraint, None, Some(resource_in_short(new)));
+                self.push(address.clone(), &subject, Kind::NewConstraint, None, Some(resource_in_short(new)));
+                self.number(format!("{address}.cost"), &subject, Kind::Price, &Value::Every(0.0), &new.cost);
             }
             (Some(old), None) => {
-                self.push(address, &subject, Kind::WithdrawnConstraint, Some(resource_in_short(old)), None);
+                self.push(address.clone(), &subject, Kind::WithdrawnConstraint, Some(resource_in_short(old)), None);
+                self.number(format!("{address}.cost"), &subject, Kind::Price, &old.cost, &Value::Every(0.0));
             }
             (None, None) => {}
         }
     }
 
-    fn activity(&mut self, name: &Name, pair: Pair<'_, Activity>, asked: &BTreeSet<&Name>) {
+    fn activity(&mut self, name: &Name, pair: Pair<'_, Activity>, concerned: &Concerned<'_>) {
         let subject = Subject::Activity(name.clone());
         let address = format!("activities.{name}");
         match pair {
-            (Some(old), Some(new)) => self.activity_changed(&address, &subject, old, new, asked),
+            (Some(old), Some(new)) => self.activity_changed(&address, &subject, old, new, concerned),
             (None, Some(new)) => {
                 self.push(address, &subject, new_activity(new), None, Some(activity_in_short(new)));
             }
@@ -147,7 +165,7 @@ impl Edits {
         subject: &Subject,
         old: &Activity,
         new: &Activity,
-        asked: &BTreeSet<&Name>,
+        concerned: &Concerned<'_>,
     ) {
         self.words(format!("{address}.label"), subject, old.label.as_ref(), new.label.as_ref());
         self.words(format!("{address}.unit"), subject, old.unit.as_ref(), new.unit.as_ref());
@@ -160,12 +178,13 @@ impl Edits {
         self.number(format!("{address}.cost"), subject, Kind::Price, &old.cost, &new.cost);
         for (resource, (old, new)) in pairs(&old.uses, &new.uses) {
             let address = format!("{address}.uses.{resource}");
-            self.push(address, subject, Kind::Recipe, old.map(shown), new.map(shown));
+            let (subject, kind) = concerned.rate(subject, resource);
+            self.push(address, &subject, kind, old.map(shown), new.map(shown));
         }
-        self.bound(format!("{address}.at_least"), subject, &old.at_least, &new.at_least);
-        self.bound(format!("{address}.at_most"), subject, &old.at_most, &new.at_most);
+        let addresses = ["at_least", "at_most"].map(|word| format!("{address}.{word}"));
+        self.bounds(addresses, subject, [&old.at_least, &old.at_most], [&new.at_least, &new.at_most]);
         for tag in old.tags.symmetric_difference(&new.tags) {
-            let kind = if asked.contains(tag) { Kind::Recipe } else { Kind::Wording };
+            let kind = if concerned.asked.contains(tag) { Kind::Recipe } else { Kind::Wording };
             let carried = |activity: &Activity| activity.tags.contains(tag).then(|| tag.to_string());
             self.push(format!("{address}.tags"), subject, kind, carried(old), carried(new));
         }
@@ -175,6 +194,11 @@ impl Edits {
         let address = format!("limits.{name}");
         let whole = Subject::Limit(name.clone(), Vec::new());
         match pair {
+            // With `per` it stands in rows of their own: another rule under the same name.
+            (Some(old), Some(new)) if old.per.is_some() != new.per.is_some() => {
+                self.push(address.clone(), &whole, Kind::WithdrawnConstraint, Some(limit_in_short(old)), None);
+                self.push(address, &whole, Kind::NewConstraint, None, Some(limit_in_short(new)));
+            }
             (Some(old), Some(new)) => {
                 self.words(format!("{address}.label"), &whole, old.label.as_ref(), new.label.as_ref());
                 self.terms(&format!("{address}.terms"), name, &old.terms, &new.terms, concerned);
@@ -208,17 +232,17 @@ impl Edits {
     /// With `per`, a bound is a coefficient of the row, and each bound has a row of its own.
     fn limit_bounds(&mut self, address: &str, name: &Name, old: &Limit, new: &Limit, concerned: &Concerned<'_>) {
         let (olds, news) = (bounds(&old.bound), bounds(&new.bound));
+        let let_go = let_go([&olds[0].1, &olds[1].1], [&news[0].1, &news[1].1]);
         let per: Vec<Name> =
             new.per.iter().chain(&old.per).flat_map(BTreeMap::keys).flat_map(|term| concerned.by(term)).collect();
-        for ((word, old_bound), (_, new_bound)) in olds.into_iter().zip(news) {
+        for (at, ((word, old_bound), (_, new_bound))) in olds.into_iter().zip(news).enumerate() {
             let (was, is) = (has_bound(&old_bound), has_bound(&new_bound));
             let by_per = old.per.is_some() || new.per.is_some();
             let kind = match (was, is) {
                 (true, true) if by_per => Kind::Recipe,
                 (false, true) if by_per => Kind::NewConstraint,
                 (true, false) if by_per => Kind::WithdrawnConstraint,
-                (true, false) => Kind::BoundRemoved,
-                _ => Kind::Capacity,
+                _ => bound_kind(let_go.and_then(|let_go| let_go.get(at).copied()), was && !is),
             };
             let subject = Subject::Limit(name.clone(), per.clone());
             self.push(format!("{address}.{word}"), &subject, kind, bound_shown(&old_bound), bound_shown(&new_bound));
@@ -227,9 +251,18 @@ impl Edits {
 }
 
 fn new_activity(activity: &Activity) -> Kind {
-    let needless = activity.at_least.numbers().iter().all(|&least| least <= 0.0)
-        && activity.at_most.numbers().iter().all(|&most| most >= 0.0);
-    if needless || activity.prospect { Kind::NewActivity } else { Kind::NewCommitment }
+    let (leasts, mosts) = (activity.at_least.numbers(), activity.at_most.numbers());
+    // Out of the basis it stands at a bound, or at 0 where it is free.
+    let needless = all_are(leasts, 0.0) || all_are(mosts, 0.0);
+    let free = all_are(leasts, f64::NEG_INFINITY) && all_are(mosts, f64::INFINITY);
+    let crossed = leasts.iter().any(|&least| least > 0.0) || mosts.iter().any(|&most| most < 0.0);
+    let rests_at_0 = (needless || free) && !crossed;
+    if rests_at_0 || activity.prospect { Kind::NewActivity } else { Kind::NewCommitment }
+}
+
+#[expect(clippy::float_cmp, reason = "numbers are read, not computed")]
+fn all_are(numbers: &[f64], bound: f64) -> bool {
+    numbers.iter().all(|&number| number == bound)
 }
 
 /// The three ways to bound a limit, each with its number; infinite where it is not used.
@@ -239,6 +272,17 @@ fn bounds(bound: &Bound) -> [(&'static str, Value); 3] {
         Bound::Between(least, most) => [("at_least", least.clone()), ("at_most", most.clone()), ("equals", none())],
         Bound::Equals(value) => [("at_least", none()), ("at_most", none()), ("equals", value.clone())],
     }
+}
+
+/// Where both bounds were one and part: which of them lets go of what they held. Where both have moved, what they held stands at
+/// neither, which is as if one of them were taken away and the other moved. `None` where they do not part.
+fn let_go(old: [&Value; 2], new: [&Value; 2]) -> Option<[bool; 2]> {
+    let parted = has_bound(old[0]) && old[0] == old[1] && new[0] != new[1];
+    parted.then(|| [old[0] != new[0] && old[1] == new[1], old[1] != new[1]])
+}
+
+fn bound_kind(lets_go: Option<bool>, gone: bool) -> Kind {
+    if lets_go.unwrap_or(gone) { Kind::BoundRemoved } else { Kind::Capacity }
 }
 
 fn has_bound(value: &Value) -> bool {

@@ -45,7 +45,7 @@ pub enum Kind {
     BoundRemoved,
     /// A new activity, or a prospect made an activity.
     NewActivity,
-    /// A new activity that cannot be left undone: 0 is out of its bounds.
+    /// A new activity that does not come in at 0: that is none of its bounds, and it is not free.
     NewCommitment,
     /// An activity withdrawn, or made a prospect.
     WithdrawnActivity,

@@ -11,6 +11,7 @@ pub mod instance;
 pub mod live;
 pub mod look;
 pub mod message;
+pub mod opened;
 pub mod optimum;
 pub mod proof;
 pub mod ranging;

@@ -9,10 +9,10 @@ use super::instance::{Instance, Member};
 use super::live::{Ending, Refusal, Stop};
 use super::look::Look;
 use super::message::{Account, Answer, Outcome, Start};
-use super::optimum;
 use super::soft::on_the_way;
 use super::swap::{self, Entrant};
 use super::vertex::{Vertex, bound_at};
+use super::{opened, optimum};
 use crate::lp::{ColumnIndex, Difference, Program, RowIndex};
 
 /// A warm run may take this share of the last cold run's iterations; past it, starting afresh is the better bet.
@@ -183,6 +183,8 @@ fn warm(anchor: &mut Anchor, program: &Program, run: &Run<'_>, account: &mut Acc
             }
             return Ok(Warm::Other(Outcome::Interrupted));
         }
+        // The way is narrower than the program: that it leads nowhere says nothing of the program.
+        Settled::Other(Outcome::Infeasible(_)) if way != *program => return Err("a contradiction on the way"),
         Settled::Other(outcome) => return Ok(Warm::Other(outcome)),
     };
     let difference = Difference::between(&way, program);
@@ -210,7 +212,9 @@ fn live(anchor: &mut Anchor) -> Result<Box<Instance>, Refusal> {
 }
 
 fn step(instance: &mut Instance, from: &Program, to: &Program) -> Result<Look, Refusal> {
-    change(instance, from, to, &Difference::between(from, to))?;
+    let difference = Difference::between(from, to);
+    change(instance, from, to, &difference)?;
+    opened::stay(instance, from, to, &difference)?;
     Look::at(instance, to)
 }
 

@@ -58,14 +58,32 @@ fn rows_on_the_way(old: &Program, basis: &Basis, vertex: &Vertex, new: &Program)
             Row { lower, upper, ..row.clone() }
         })
         .collect();
+    let robbed = robbed_rows(old, basis, new);
     for (at, row) in old.rows.iter().enumerate() {
         if basis.rows[at] != Position::Basic && new.row(&row.key).is_none() {
-            let (lower, upper) = Stands::row(old, at, basis, vertex).held_within(f64::NEG_INFINITY, f64::INFINITY);
+            // A row that loses an activity with it cannot stay where it is; its own bounds contradict that less often.
+            let (lower, upper) = if robbed[at] {
+                (row.lower, row.upper)
+            } else {
+                Stands::row(old, at, basis, vertex).held_within(f64::NEG_INFINITY, f64::INFINITY)
+            };
             rows.push(Row { lower, upper, ..row.clone() });
         }
     }
     rows.sort_by(|a, b| a.key.cmp(&b.key));
     rows
+}
+
+/// Which rows of `old` have a column that is done and that `new` has no more.
+fn robbed_rows(old: &Program, basis: &Basis, new: &Program) -> Vec<bool> {
+    let mut robbed = vec![false; old.rows.len()];
+    for (at, column) in old.columns.iter().enumerate() {
+        let idle = bound_at(basis.columns[at], column.lower, column.upper) == Some(0.0);
+        if !idle && new.column(&column.key).is_none() {
+            column.entries.iter().for_each(|&(row, _)| robbed[row.0] = true);
+        }
+    }
+    robbed
 }
 
 fn moved(entries: &[(RowIndex, f64)], map: &[Option<RowIndex>]) -> Vec<(RowIndex, f64)> {

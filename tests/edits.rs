@@ -1,0 +1,122 @@
+//! Edits of models: the kind each is given, what the kind promises of the last basis, and the answer from there.
+
+#![expect(clippy::unwrap_used, clippy::panic, reason = "helpers of tests fail the test")]
+
+#[path = "support/random.rs"]
+mod random;
+#[path = "support/random_edit.rs"]
+mod random_edit;
+#[path = "support/rng.rs"]
+mod rng;
+#[path = "support/solve.rs"]
+mod support;
+#[path = "support/tileworks.rs"]
+mod tileworks;
+
+use millreeve::edits::{Edit, Kept, LastPlan, compare};
+use millreeve::lp::{Program, build};
+use millreeve::model::Model;
+use millreeve::model::meaning::Meaning;
+use millreeve::plan::{self, last};
+use millreeve::solver::message::{Account, Optimum, Outcome, Start};
+use millreeve::solver::session::Session;
+use rng::Rng;
+use support::{least, same, size, solve};
+use tileworks::{ROWS, Row, tileworks};
+
+fn last_plan(model: &Model, program: &Program, optimum: &Optimum) -> LastPlan {
+    last::of(&plan::make(model, Meaning::of(model), program, optimum).unwrap(), model)
+}
+
+/// Whether what was promised of the last basis was found of it.
+fn promise_kept(kept: Kept, account: &Account) -> bool {
+    let primal = account.primal_infeasible == Some(0);
+    let dual = account.dual_infeasible == Some(0);
+    match kept {
+        Kept::Both => primal && dual && account.start == Start::None,
+        Kept::Primal => primal && account.start != Start::Dual,
+        Kept::Dual => dual && account.start != Start::Primal,
+        Kept::Neither => true,
+    }
+}
+
+fn told(edits: &[Edit]) -> String {
+    let lines = edits.iter().map(|e| format!("  {} {:?} -> {:?} ({:?})", e.address, e.old, e.new, e.kind));
+    lines.collect::<Vec<_>>().join("\n")
+}
+
+/// Each row of the table of kinds, on a small tileworks.
+#[test]
+fn every_kind_of_edit_starts_as_it_promises() {
+    let model = tileworks();
+    let program = build(&model);
+    for Row { what, edit, kinds, kept, start, most_pivots } in ROWS {
+        let mut session = Session::default();
+        let Outcome::Optimal(first) = solve(&mut session, &program).outcome else { panic!("no plan") };
+        let mut edited = model.clone();
+        edit(&mut edited);
+        let edits = compare(&model, &edited);
+        assert_eq!(edits.iter().map(|edit| edit.kind).collect::<Vec<_>>(), kinds, "{what}");
+        assert_eq!(last_plan(&model, &program, &first).kept(&edits), kept, "{what}");
+        let after = build(&edited);
+        let answer = solve(&mut session, &after);
+        let account = answer.account;
+        assert!(promise_kept(kept, &account), "{what}: {account:?}");
+        assert_eq!(account.start, start, "{what}: {account:?}");
+        assert!(account.pivots <= most_pivots, "{what}: {account:?}");
+        assert!(account.detours.is_empty(), "{what}: {account:?}");
+        let cold = solve(&mut Session::default(), &after).outcome;
+        let (warm, cold) = (least(&after, &answer.outcome), least(&after, &cold));
+        assert!(same(warm, cold, 1.0), "{what}: {warm} and {cold}");
+    }
+}
+
+const CHAINS: u64 = 1000;
+const EDITS: usize = 8;
+
+/// Chains of edits: the answer from the last basis is that from nothing, and what a kind promises is found.
+#[test]
+fn random_edits_keep_what_their_kinds_promise() {
+    let mut promised = [0; 4];
+    let mut starts = [0; 4];
+    for seed in 0..CHAINS {
+        let mut model = random::model(seed);
+        let mut rng = Rng::new(!seed);
+        let mut session = Session::default();
+        let mut last = optimal(&model, &solve(&mut session, &build(&model)).outcome);
+        for step in 0..EDITS {
+            let edited = random_edit::edit(&mut rng, &model);
+            let program = build(&edited);
+            let answer = solve(&mut session, &program);
+            let account = &answer.account;
+            let edits = compare(&model, &edited);
+            let case = || {
+                let (from, to) = (build(&model), &program);
+                format!("seed {seed}, step {step}:\n{}\n{account:?}\n{from:?}\n{to:?}", told(&edits))
+            };
+            let cold = solve(&mut Session::default(), &program).outcome;
+            let scale = if let Outcome::Optimal(optimum) = &cold { size(&program, optimum) } else { 1.0 };
+            let (warm, cold) = (least(&program, &answer.outcome), least(&program, &cold));
+            assert!(same(warm, cold, scale), "{warm} and {cold}, {}", case());
+            // Where the model before has no plan, the answer starts from the last plan there was, of which nothing is promised.
+            if let Some(last) = &last
+                && account.primal_infeasible.is_some()
+            {
+                let kept = last.kept(&edits);
+                assert!(promise_kept(kept, account), "{kept:?} was promised, {last:?}, {}", case());
+                promised[kept as usize] += 1;
+                starts[account.start as usize] += 1;
+            }
+            last = optimal(&edited, &answer.outcome);
+            model = edited;
+        }
+    }
+    assert!(promised.iter().all(|&count| count >= 50), "too few of a kind: {promised:?}");
+    assert!(starts[..3].iter().all(|&count| count >= 50), "too few of a start: {starts:?}");
+}
+
+/// What stands at a bound in a model's plan, where there is one.
+fn optimal(model: &Model, outcome: &Outcome) -> Option<LastPlan> {
+    let Outcome::Optimal(optimum) = outcome else { return None };
+    Some(last_plan(model, &build(model), optimum))
+}
