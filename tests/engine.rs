@@ -1,6 +1,6 @@
 //! Random models, solved by an independent engine as well.
 
-#![expect(clippy::unwrap_used, clippy::panic, reason = "helpers of tests fail the test")]
+#![expect(clippy::unwrap_used, reason = "helpers of tests fail the test")]
 
 #[path = "support/clarabel.rs"]
 mod clarabel;

@@ -36,7 +36,7 @@ fn optimum(what: &str, answer: Answer) -> Optimum {
 }
 
 fn near(a: f64, b: f64) -> bool {
-    a == b || (a - b).abs() <= 1e-9 * a.abs().max(b.abs()).max(1.0)
+    a.total_cmp(&b).is_eq() || (a - b).abs() <= 1e-9 * a.abs().max(b.abs()).max(1.0)
 }
 
 fn plan(model: &Model, program: &Program, optimum: &Optimum) -> Plan {

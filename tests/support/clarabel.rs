@@ -59,7 +59,7 @@ fn sides(program: &Program) -> (Vec<Side>, Vec<Side>) {
     let mut hold = |terms: &[(usize, f64)], lower: f64, upper: f64| {
         let times =
             |factor: f64, right| Side { terms: terms.iter().map(|&(at, value)| (at, factor * value)).collect(), right };
-        if lower >= upper && lower <= upper {
+        if lower.total_cmp(&upper).is_eq() {
             equal.push(times(1.0, upper));
             return;
         }
