@@ -2,7 +2,9 @@
 //!
 //! Knows models, programs, edits and answers, but no files and no clock.
 
+pub mod compare;
 pub mod make;
+pub mod note;
 pub mod number;
 pub mod text;
 pub mod types;
