@@ -39,12 +39,18 @@ pub struct Markdown<'a>(pub &'a str);
 
 impl Display for Markdown<'_> {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        for character in self.0.chars() {
+        let mut characters = self.0.chars().peekable();
+        let mut before = ' ';
+        while let Some(character) = characters.next() {
+            // Inside a word, as in most names, an underscore means nothing.
+            let inside_word = before.is_alphanumeric() && characters.peek().is_some_and(|next| next.is_alphanumeric());
+            before = character;
             match character {
+                '_' if inside_word => f.write_char('_')?,
                 '&' => f.write_str("&amp;")?,
                 '<' => f.write_str("&lt;")?,
                 '>' => f.write_str("&gt;")?,
-                '\\' | '`' | '*' | '[' | ']' | '|' | '!' | '#' | '~' => {
+                '\\' | '`' | '*' | '_' | '[' | ']' | '|' | '!' | '#' | '~' => {
                     f.write_char('\\')?;
                     f.write_char(character)?;
                 }
@@ -94,6 +100,7 @@ mod tests {
     #[test]
     fn markdown_signs_lose_their_meaning() {
         assert_eq!(Markdown("<b>|`x`").to_string(), "&lt;b&gt;\\|\\`x\\`");
+        assert_eq!(Markdown("floor_tile __bold__ _a").to_string(), "floor_tile \\_\\_bold\\_\\_ \\_a");
     }
 
     #[test]

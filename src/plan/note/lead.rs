@@ -1,0 +1,146 @@
+//! The sentence that says it all.
+
+use super::words::{amount, amounts, count, difference, listed, per_cent, total, unit_of_activity, values, with_unit};
+use super::{Report, Trouble, Verdict, nothing_moves, tables, was_held};
+use crate::edits::Kind;
+use crate::model::escape::Markdown;
+use crate::plan::compare::{Comparison, Move, is_made, moved};
+use crate::plan::types::Plan;
+
+/// The first sentence of the note.
+pub(super) fn sentence(report: &Report<'_>, comparison: Option<&Comparison>) -> String {
+    match (&report.verdict, comparison) {
+        (Verdict::Planned(plan), Some(comparison)) => planned_again(report, plan, comparison),
+        (Verdict::Planned(plan), None) => first(report, plan),
+        (Verdict::Trouble(trouble), _) => no_plan(report, *trouble),
+        (Verdict::Retired, _) if report.before.is_some() => {
+            "The model is gone. Its last plan stays and is marked retired.".to_owned()
+        }
+        (Verdict::Retired, _) => "The model is gone, and it never had a plan.".to_owned(),
+    }
+}
+
+fn no_plan(report: &Report<'_>, trouble: Trouble<'_>) -> String {
+    let why = match trouble {
+        Trouble::Faults(_) => "the model cannot be read",
+        Trouble::Infeasible(_) => "its rules contradict each other",
+        Trouble::Unbounded(_) => "nothing limits what it could gain",
+        Trouble::Undecided(_) => "the solver cannot tell",
+    };
+    match report.before {
+        Some(_) => format!("There is no plan for this model now: {why}. The last good plan stays and is marked held."),
+        None => format!("There is no plan for this model yet: {why}."),
+    }
+}
+
+fn first(report: &Report<'_>, plan: &Plan) -> String {
+    let aim = aim_told(plan, &amount(plan.aim.abs()));
+    let mut made: Vec<_> = plan.activities.iter().filter(|planned| is_made(planned)).collect();
+    let weight = |planned: &&crate::plan::PlannedActivity| {
+        tables::weight(report.model, &planned.name, total(Some(&planned.level)))
+    };
+    made.sort_by(|a, b| weight(b).total_cmp(&weight(a)).then_with(|| a.name.cmp(&b.name)));
+    let mut told: Vec<String> = made
+        .iter()
+        .take(3)
+        .map(|planned| {
+            let level = super::words::value(&planned.level);
+            format!(
+                "{} {}",
+                Markdown(planned.name.as_str()),
+                with_unit(&level, unit_of_activity(report.model, &planned.name))
+            )
+        })
+        .collect();
+    match made.len() {
+        0 => told.push("nothing is made".to_owned()),
+        number if number > 3 => told.push(format!("{} more", number - 3)),
+        _ => {}
+    }
+    format!("The first plan {aim}: {}.", listed(&told))
+}
+
+fn planned_again(report: &Report<'_>, plan: &Plan, comparison: &Comparison) -> String {
+    let subject = if was_held(report) { "There is a plan again: it" } else { "The plan" };
+    let Some((before, after)) = comparison.aim else {
+        let aim = aim_told(plan, &amount(plan.aim.abs()));
+        let why = "which cannot be compared with before, as the aim or its currency was changed";
+        return format!("{subject} now {aim}, {why}; {}.", moves(report, comparison));
+    };
+    if !moved(before, after) {
+        return stands(report, plan, comparison, subject);
+    }
+    let (_, shown) = amounts(before.abs(), after.abs());
+    let gained = difference(before, after);
+    let share = if before.abs() > 0.0 { format!(" ({})", per_cent(gained / before)) } else { String::new() };
+    let by = with_unit(&amount(gained.abs()), plan.currency.as_deref());
+    let direction = direction(plan, before, after);
+    format!("{subject} {}, {by}{share} {direction} than before; {}.", aim_told(plan, &shown), moves(report, comparison))
+}
+
+fn stands(report: &Report<'_>, plan: &Plan, comparison: &Comparison, subject: &str) -> String {
+    let aim = aim_told(plan, &amount(plan.aim.abs()));
+    if !nothing_moves(comparison) {
+        return format!("{subject} {aim}, as before; {}.", moves(report, comparison));
+    }
+    if was_held(report) {
+        return format!("There is a plan again: nothing moves, and it {aim} as before.");
+    }
+    let only_wording = !report.edits.is_empty() && report.edits.iter().all(|told| told.edit.kind == Kind::Wording);
+    let why = if only_wording { "only wording was edited" } else { "nothing moves" };
+    format!("The plan stands: {why}, and it {aim} as before.")
+}
+
+/// `earns 43 265.1 EUR`, with `size` as the number without its sign.
+fn aim_told(plan: &Plan, size: &str) -> String {
+    let verb = match (plan.minimise, plan.aim < 0.0) {
+        (false, false) | (true, true) => "earns",
+        (false, true) => "loses",
+        (true, false) => "costs",
+    };
+    format!("{verb} {}", with_unit(size, plan.currency.as_deref()))
+}
+
+/// Which way the aim went, so that it fits the verb: a loss that shrinks is less.
+fn direction(plan: &Plan, before: f64, after: f64) -> &'static str {
+    let crosses = (before < 0.0) != (after < 0.0);
+    match (crosses, plan.minimise) {
+        (true, false) => return if after > before { "better" } else { "worse" },
+        (true, true) => return if after < before { "better" } else { "worse" },
+        _ => {}
+    }
+    if after.abs() > before.abs() { "more" } else { "less" }
+}
+
+/// The move that matters most, and how many more there are.
+fn moves(report: &Report<'_>, comparison: &Comparison) -> String {
+    let ordered = tables::by_weight(report.model, &comparison.moved);
+    let Some(first) = ordered.first() else { return "no level moves".to_owned() };
+    let told = one_move(report, first);
+    match ordered.len() - 1 {
+        0 => told,
+        1 => format!("{told}, and 1 more level moves"),
+        more => format!("{told}, and {} move", count(more, "more level")),
+    }
+}
+
+fn one_move(report: &Report<'_>, told: &Move) -> String {
+    let name = Markdown(told.name.as_str());
+    let unit = unit_of_activity(report.model, &told.name);
+    let is_nil = |value: &crate::model::Value| value.numbers().iter().all(|number| number.abs() <= 0.0);
+    let before = told.before.as_ref().filter(|value| !is_nil(value));
+    let after = told.after.as_ref().filter(|value| !is_nil(value));
+    match (before, after) {
+        (Some(before), Some(after)) => {
+            let (before, after) = values(before, after);
+            format!("{name} goes from {before} to {}", with_unit(&after, unit))
+        }
+        (None, Some(after)) => {
+            format!("{name} enters the mix with {}", with_unit(&super::words::value(after), unit))
+        }
+        (Some(before), None) => {
+            format!("{name}, {} before, leaves the mix", with_unit(&super::words::value(before), unit))
+        }
+        (None, None) => format!("{name} stays out of the mix"),
+    }
+}

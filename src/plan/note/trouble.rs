@@ -1,0 +1,175 @@
+//! Why there is no plan, in a planner's words.
+
+use super::words::{amount, count, listed, text, with_unit};
+use super::{ROWS, Trouble};
+use crate::lp::Key;
+use crate::model::escape::{Markdown, Plain};
+use crate::model::fault::{Fault, Faults, Place};
+use crate::model::{Bound, Model};
+use crate::solver::message::{Conflict, Growth, Rule};
+
+/// Why a plan is held, in one plain sentence without a full stop. Not escaped.
+#[must_use]
+pub fn reason(trouble: Trouble<'_>, model: Option<&Model>) -> String {
+    match trouble {
+        Trouble::Faults(faults) => match faults.reported.as_slice() {
+            [] => "the model cannot be read".to_owned(),
+            [only] if faults.more == 0 => format!("the model has a fault: {}{}", where_in_file(only), only.message),
+            [first, ..] => {
+                let number = faults.reported.len() + faults.more;
+                format!("the model has {number} faults, the first: {}{}", where_in_file(first), first.message)
+            }
+        },
+        Trouble::Infeasible(conflict) if conflict.rules.is_empty() => "the rules contradict each other".to_owned(),
+        Trouble::Infeasible(conflict) => {
+            let rules: Vec<String> = conflict.rules.iter().take(ROWS).map(|rule| rule_told(rule, model)).collect();
+            let more = conflict.rules.len().saturating_sub(ROWS);
+            let more = if more > 0 { format!(" and {more} more") } else { String::new() };
+            format!("these cannot all be kept: {}{more}", rules.join(", "))
+        }
+        Trouble::Unbounded(growth) if growth.rates.is_empty() => "nothing limits the aim".to_owned(),
+        Trouble::Unbounded(growth) => {
+            let names: Vec<String> = growth.rates.iter().take(ROWS).map(|(key, _)| parts(key).1.to_owned()).collect();
+            format!("nothing limits {}", listed(&names))
+        }
+        Trouble::Undecided(why) => format!("the solver cannot tell: {}", why.trim_end_matches('.')),
+    }
+}
+
+fn where_in_file(fault: &Fault) -> String {
+    fault.place.as_ref().map_or(String::new(), |place| format!("line {}: ", place.line))
+}
+
+/// What stands below the first sentence of a note without a plan.
+pub(super) fn told(trouble: Trouble<'_>, model: Option<&Model>) -> String {
+    match trouble {
+        Trouble::Faults(faults) => faults_told(faults),
+        Trouble::Infeasible(conflict) => conflict_told(conflict, model),
+        Trouble::Unbounded(growth) => growth_told(growth, model),
+        Trouble::Undecided(why) => format!("\n{}\n", text(why)),
+    }
+}
+
+fn faults_told(faults: &Faults) -> String {
+    let mut out = format!("\n## {}\n", heading(faults.reported.len() + faults.more));
+    for fault in &faults.reported {
+        out.push_str(&fault_told(fault));
+    }
+    if faults.more > 0 {
+        out.push_str(&format!("\n… and {}.\n", count(faults.more, "more fault")));
+    }
+    out
+}
+
+fn heading(faults: usize) -> String {
+    if faults == 1 { "What is wrong".to_owned() } else { format!("What is wrong: {}", count(faults, "fault")) }
+}
+
+fn fault_told(fault: &Fault) -> String {
+    let file = fault.path.file_name().unwrap_or(fault.path.as_os_str()).to_string_lossy();
+    let place = match &fault.place {
+        Some(place) => format!(", line {}, column {}", place.line, place.column),
+        None => String::new(),
+    };
+    let mut out = format!("\n{}{place}: **{}**\n", text(&file), text(&fault.message));
+    if let Some(place) = &fault.place {
+        out.push_str(&excerpt(place));
+    }
+    if !fault.help.is_empty() {
+        out.push_str(&format!("\nCure: {}\n", text(&fault.help)));
+    }
+    out
+}
+
+/// The line and a caret, as an indented code block: one line of text cannot break out of it.
+fn excerpt(place: &Place) -> String {
+    let shown = &place.excerpt;
+    let characters = |from: usize, number: usize| shown.text.chars().skip(from).take(number).collect::<String>();
+    let width = |text: &str| unicode_width::UnicodeWidthStr::width(Plain(text).to_string().as_str());
+    let before = width(&characters(0, shown.before)) + usize::from(shown.cut_left);
+    let marked = width(&characters(shown.before, place.width)).max(1);
+    let (left, right) = (if shown.cut_left { "…" } else { "" }, if shown.cut_right { "…" } else { "" });
+    format!("\n    {left}{}{right}\n    {}{}\n", Plain(&shown.text), " ".repeat(before), "^".repeat(marked))
+}
+
+fn conflict_told(conflict: &Conflict, model: Option<&Model>) -> String {
+    if conflict.rules.is_empty() {
+        return "\nWhich rules they are could not be told.\n".to_owned();
+    }
+    let mut out = "\n## These cannot all be kept\n\n".to_owned();
+    for rule in conflict.rules.iter().take(ROWS) {
+        out.push_str(&format!("- {}\n", Markdown(&rule_told(rule, model))));
+    }
+    if conflict.rules.len() > ROWS {
+        out.push_str(&format!("- … and {} more\n", conflict.rules.len() - ROWS));
+    }
+    out.push_str("\nGive way in one of them, and look again.\n");
+    if !conflict.proven {
+        out.push_str("This comes from the solver alone and has not been confirmed.\n");
+    }
+    out
+}
+
+fn growth_told(growth: &Growth, model: Option<&Model>) -> String {
+    if growth.rates.is_empty() {
+        return "\nWhich activities they are could not be told.\n".to_owned();
+    }
+    let mut out = "\n## These can grow together without end\n\n".to_owned();
+    for (key, rate) in growth.rates.iter().take(ROWS) {
+        let (_, name, _) = parts(key);
+        let unit = model.and_then(|model| model.activities.get(name)?.unit.as_deref());
+        let way = if *rate < 0.0 { "falls" } else { "grows" };
+        out.push_str(&format!("- {} {way} by {}\n", Markdown(name), with_unit(&amount(rate.abs()), unit)));
+    }
+    if growth.rates.len() > ROWS {
+        out.push_str(&format!("- … and {} more\n", growth.rates.len() - ROWS));
+    }
+    out.push_str("\nA price, a capacity or an upper bound is missing or mistyped.\n");
+    if !growth.proven {
+        out.push_str("This comes from the solver alone and has not been confirmed.\n");
+    }
+    out
+}
+
+/// A rule in words: `capacity of kiln (at most 84 h)`, `floor_tile at least 5 000 m2`. Not escaped.
+fn rule_told(rule: &Rule, model: Option<&Model>) -> String {
+    let (table, name, side) = parts(&rule.key);
+    let way = if rule.upper { "at most" } else { "at least" };
+    match table {
+        "resources" => {
+            let unit = model.and_then(|model| model.resources.get(name)?.unit.as_deref());
+            let what = if rule.upper { "capacity" } else { "minimum load" };
+            format!("{what} of {name} ({way} {})", with_plain_unit(rule.bound, unit))
+        }
+        "limits" => {
+            let limit = model.and_then(|model| model.limits.get(name));
+            let own = limit.filter(|limit| limit.per.is_some()).map(|limit| &limit.bound);
+            let first = |value: &crate::model::Value| value.numbers().first().copied().unwrap_or_default();
+            let (way, bound) = match (own, limit.map(|limit| &limit.bound)) {
+                (Some(Bound::Between(least, _)), _) if side == Some("at_least") => ("at least", first(least)),
+                (Some(Bound::Between(_, most)), _) => ("at most", first(most)),
+                (_, Some(Bound::Equals(value))) => ("exactly", first(value)),
+                _ => (way, rule.bound),
+            };
+            let share = if own.is_some() { ", as a share" } else { "" };
+            format!("limit {name} ({way} {}{share})", amount(bound))
+        }
+        _ => {
+            let unit = model.and_then(|model| model.activities.get(name)?.unit.as_deref());
+            format!("{name} {way} {}", with_plain_unit(rule.bound, unit))
+        }
+    }
+}
+
+fn with_plain_unit(number: f64, unit: Option<&str>) -> String {
+    match unit {
+        Some(unit) if !unit.is_empty() => format!("{} {unit}", amount(number)),
+        _ => amount(number),
+    }
+}
+
+/// The table, the name and, for one of two rows of a limit, the side that a key spells. Names have no dots.
+fn parts(key: &Key) -> (&str, &str, Option<&str>) {
+    let mut parts = key.as_str().splitn(3, '.');
+    (parts.next().unwrap_or_default(), parts.next().unwrap_or_default(), parts.next())
+}
