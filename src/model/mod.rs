@@ -9,6 +9,7 @@ pub mod name;
 pub mod read;
 pub mod types;
 pub mod value;
+pub mod write;
 
 pub use fault::{Fault, Faults};
 pub use name::Name;

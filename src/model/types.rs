@@ -8,8 +8,8 @@ use std::collections::{BTreeMap, BTreeSet};
 use super::name::Name;
 use super::value::{Horizon, Value};
 
-/// A checked model.
-#[derive(Clone, Debug, PartialEq)]
+/// A checked model. The default is an empty one.
+#[derive(Clone, Debug, Default, PartialEq)]
 pub struct Model {
     /// What people call the model; decides nothing.
     pub title: Option<String>,

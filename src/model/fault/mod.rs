@@ -1,5 +1,7 @@
 //! Faults: what is wrong with a model, where, and what would mend it.
 
+mod render;
+
 use std::path::PathBuf;
 
 /// The most faults one reading reports; the rest are counted.

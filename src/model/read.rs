@@ -1,1 +1,0 @@
-//! Reading a model from its files.

@@ -1,0 +1,136 @@
+//! The walk over a parsed document: from its top-level keys to a model.
+
+use std::collections::BTreeMap;
+
+use toml::de::DeValue;
+
+use super::fields::{Fields, name};
+use super::findings::{Findings, shown};
+use super::keys::{self, Keys};
+use super::limit::Known;
+use super::number::Role;
+use super::toml_types::{Table, kind};
+use super::{activity, caps, limit, near, resource};
+use crate::model::name::Name;
+use crate::model::types::{Aim, Model};
+
+/// The version of the format that is read.
+const FORMAT: &str = "1";
+/// The sections of a model, each with an example of a table in it.
+const SECTIONS: [(&str, &str); 3] =
+    [("resources", "[resources.kiln]"), ("activities", "[activities.floor_tile]"), ("limits", "[limits.glazed_share]")];
+
+/// The model in a document. Where something is faulty its default stands, so that what follows can still be checked.
+pub(super) fn model(root: &Table<'_>, findings: &mut Findings) -> Model {
+    let mut model = Model::default();
+    if !format(root, findings) {
+        return model;
+    }
+    head(root, &mut model, findings);
+    model.resources = section(root, "resources", &keys::RESOURCE, findings, resource::read);
+    let known = Known { table: table(root, "resources"), names: &model.resources };
+    model.activities =
+        section(root, "activities", &keys::ACTIVITY, findings, |fields| activity::read(fields, model.aim, &known));
+    let known = Known { table: table(root, "activities"), names: &model.activities };
+    let tags = limit::tags(&model.activities);
+    model.limits = section(root, "limits", &keys::LIMIT, findings, |fields| limit::read(fields, &known, &tags));
+    caps::check(root, &model, &tags, findings);
+    model
+}
+
+/// The keys of the model itself; that its sections are tables is checked as well.
+fn head(root: &Table<'_>, model: &mut Model, findings: &mut Findings) {
+    let mut fields = Fields::open(root, 0..0, &keys::MODEL, findings);
+    model.title = fields.text("title");
+    model.currency = fields.text("currency");
+    model.constant = fields.number("constant", Role::Amount).unwrap_or(0.0);
+    model.aim = aim(&mut fields);
+    for (section, example) in SECTIONS {
+        fields.table(section, example);
+    }
+}
+
+fn table<'a, 'i>(root: &'a Table<'i>, section: &str) -> Option<&'a Table<'i>> {
+    root.get(section).and_then(|node| node.get_ref().as_table())
+}
+
+/// Pairs of names that look alike, as warnings.
+pub(super) fn twins(root: &Table<'_>, model: &Model) -> Findings {
+    let mut warnings = Findings::default();
+    warn("resources", root, near::twins(model.resources.keys()), &mut warnings);
+    warn("activities", root, near::twins(model.activities.keys()), &mut warnings);
+    warn("limits", root, near::twins(model.limits.keys()), &mut warnings);
+    warnings
+}
+
+fn warn(section: &str, root: &Table<'_>, pairs: Vec<(&Name, &Name, String)>, warnings: &mut Findings) {
+    let Some(table) = table(root, section) else { return };
+    for (first, second, oddity) in pairs {
+        let Some((key, _)) = table.get_key_value(second.as_str()) else { continue };
+        let message = format!("`{second}` looks like `{first}`, but is another name");
+        warnings.add(&key.span(), "look-alike", message, format!("{oddity}; rename one of the two"));
+    }
+}
+
+/// Whether the document says it is of the format read here.
+fn format(root: &Table<'_>, findings: &mut Findings) -> bool {
+    let Some((key, node)) = root.get_key_value("format") else {
+        let message = "`format` is missing".to_owned();
+        findings.add(&(0..0), "no-format", message, "begin the file with `format = 1`");
+        return true;
+    };
+    match node.get_ref() {
+        DeValue::Integer(integer) if integer.as_str() == FORMAT => true,
+        DeValue::Integer(integer) if integer.as_str().starts_with(|first: char| matches!(first, '1'..='9')) => {
+            let version = shown(&integer.to_string());
+            let message = format!("this file is of format {version}, written for a newer version of millreeve");
+            findings.add(&node.span(), "newer-format", message, "this version reads format 1; update millreeve");
+            false
+        }
+        _ => {
+            findings.add(&key.span(), "bad-format", "`format` must be 1".to_owned(), "write `format = 1`");
+            true
+        }
+    }
+}
+
+fn aim(fields: &mut Fields<'_, '_>) -> Aim {
+    let Some(node) = fields.node("aim") else { return Aim::default() };
+    let given = node.get_ref().as_str();
+    let found = [Aim::Maximise, Aim::Minimise].into_iter().find(|aim| given == Some(aim.word()));
+    found.unwrap_or_else(|| {
+        let given = given.map_or_else(|| kind(node).to_owned(), |text| format!("`{}`", shown(text)));
+        let message = format!("the aim is \"maximise\" or \"minimise\", not {given}");
+        let help = match node.get_ref().as_str() {
+            Some(text) if text.starts_with("min") => "write aim = \"minimise\"",
+            _ => "write aim = \"maximise\", or leave it out",
+        };
+        fields.findings().add(&node.span(), "bad-aim", message, help);
+        Aim::default()
+    })
+}
+
+/// Every entry of a section, read by `read`. An entry whose name is faulty is read as well, for its own faults.
+fn section<T>(
+    root: &Table<'_>,
+    section: &str,
+    keys: &'static Keys,
+    findings: &mut Findings,
+    read: impl Fn(&mut Fields<'_, '_>) -> T,
+) -> BTreeMap<Name, T> {
+    let mut entries = BTreeMap::new();
+    for (key, node) in table(root, section).into_iter().flatten() {
+        let name = name(key.get_ref(), &key.span(), findings);
+        let Some(table) = node.get_ref().as_table() else {
+            let message = format!("`{section}` holds tables, but `{}` is {}", shown(key.get_ref()), kind(node));
+            let help = format!("write it as a table that begins with [{section}.{}]", shown(key.get_ref()));
+            findings.add(&key.span(), "wrong-type", message, help);
+            continue;
+        };
+        let entry = read(&mut Fields::open(table, key.span(), keys, findings));
+        if let Some(name) = name {
+            entries.insert(name, entry);
+        }
+    }
+    entries
+}

@@ -1,0 +1,135 @@
+//! One table of a model, read key by key.
+
+use toml::de::DeValue;
+
+use super::findings::{Findings, Span, shown};
+use super::keys::Keys;
+use super::number::{self, Role};
+use super::toml_types::{Node, Table, kind};
+use crate::model::name::Name;
+use crate::model::value::Value;
+
+/// The longest text a model may hold, in characters.
+pub const LONGEST_TEXT: usize = 1000;
+
+/// A value that was written out, and where.
+#[derive(Clone, Debug)]
+pub(super) struct Given {
+    pub(super) value: Value,
+    pub(super) span: Span,
+}
+
+/// A table whose keys have been checked; each method reads one key, and answers `None` where it is left out or faulty.
+pub(super) struct Fields<'a, 'i> {
+    table: &'a Table<'i>,
+    span: Span,
+    findings: &'a mut Findings,
+}
+
+impl<'a, 'i> Fields<'a, 'i> {
+    /// Opens a table: whatever is not one of `keys` is a fault.
+    /// `span` is where the table begins, for what it lacks.
+    pub(super) fn open(table: &'a Table<'i>, span: Span, keys: &'static Keys, findings: &'a mut Findings) -> Self {
+        for key in table.keys() {
+            keys.check(key, findings);
+        }
+        Self { table, span, findings }
+    }
+
+    /// Where the table begins.
+    pub(super) fn span(&self) -> Span {
+        self.span.clone()
+    }
+
+    /// Where faults of this table go.
+    pub(super) fn findings(&mut self) -> &mut Findings {
+        self.findings
+    }
+
+    /// Where `key` stands, if it is there.
+    pub(super) fn key_span(&self, key: &str) -> Option<Span> {
+        self.table.get_key_value(key).map(|(key, _)| key.span())
+    }
+
+    /// The value of `key` as it was parsed.
+    pub(super) fn node(&self, key: &str) -> Option<&'a Node<'i>> {
+        self.table.get(key)
+    }
+
+    /// A text for people.
+    pub(super) fn text(&mut self, key: &str) -> Option<String> {
+        let node = self.table.get(key)?;
+        match node.get_ref().as_str() {
+            Some(text) if text.len() > LONGEST_TEXT && text.chars().count() > LONGEST_TEXT => {
+                let message = format!("`{key}` is longer than {LONGEST_TEXT} characters");
+                self.findings.add(&node.span(), "too-long", message, "say the rest in a comment");
+                None
+            }
+            Some(text) => Some(text.to_owned()),
+            None => self.wrong(key, node, "a text", "put it in double quotes"),
+        }
+    }
+
+    /// True or false; false where it is left out.
+    pub(super) fn flag(&mut self, key: &str) -> bool {
+        let Some(node) = self.table.get(key) else { return false };
+        node.get_ref().as_bool().or_else(|| self.wrong(key, node, "true or false", "write true, without quotes"))
+            == Some(true)
+    }
+
+    /// A number, in a role.
+    pub(super) fn value(&mut self, key: &str, role: Role) -> Option<Given> {
+        let node = self.table.get(key)?;
+        let value = number::value(key, node, role, self.findings)?;
+        Some(Given { value, span: node.span() })
+    }
+
+    /// A number that cannot differ by period.
+    pub(super) fn number(&mut self, key: &str, role: Role) -> Option<f64> {
+        number::number(key, self.table.get(key)?, role, self.findings)
+    }
+
+    /// A table.
+    pub(super) fn table(&mut self, key: &str, example: &str) -> Option<&'a Table<'i>> {
+        let node = self.table.get(key)?;
+        node.get_ref().as_table().or_else(|| self.wrong(key, node, "a table", &format!("write it as {example}")))
+    }
+
+    /// A list of names.
+    pub(super) fn names(&mut self, key: &str) -> Vec<Name> {
+        let Some(node) = self.table.get(key) else { return Vec::new() };
+        let DeValue::Array(list) = node.get_ref() else {
+            let example = node.get_ref().as_str().and_then(|text| Name::new(text).ok());
+            let help = format!("write it as [\"{}\"]", example.as_ref().map_or("glazed", Name::as_str));
+            self.wrong::<()>(key, node, "a list of names", &help);
+            return Vec::new();
+        };
+        list.iter().filter_map(|item| self.name_in(key, item)).collect()
+    }
+
+    fn name_in(&mut self, key: &str, node: &Node<'i>) -> Option<Name> {
+        let Some(text) = node.get_ref().as_str() else {
+            let message = format!("`{key}` holds names, not {}", kind(node));
+            self.findings.add(&node.span(), "wrong-type", message, "put each name in double quotes");
+            return None;
+        };
+        name(text, &node.span(), self.findings)
+    }
+
+    fn wrong<T>(&mut self, key: &str, node: &Node<'_>, wanted: &str, help: &str) -> Option<T> {
+        let message = format!("`{key}` must be {wanted}, not {}", kind(node));
+        self.findings.add(&node.span(), "wrong-type", message, help);
+        None
+    }
+}
+
+/// The name that `text` spells.
+pub(super) fn name(text: &str, span: &Span, findings: &mut Findings) -> Option<Name> {
+    match Name::new(text) {
+        Ok(name) => Some(name),
+        Err(error) => {
+            findings.add(span, "bad-name", format!("`{}` is not a name", shown(text)), error.to_string());
+            None
+        }
+    }
+}

@@ -1,0 +1,141 @@
+//! Reading one limit.
+
+use std::collections::BTreeMap;
+
+use toml::de::DeValue;
+
+use super::bounds;
+use super::fields::{Fields, Given};
+use super::findings::shown;
+use super::keys::Later;
+use super::number::{self, Role};
+use super::term;
+use super::toml_types::Table;
+use crate::model::name::Name;
+use crate::model::types::{Activity, Bound, Limit, Term};
+use crate::model::value::Value;
+
+/// What other tables may refer to: the entries that were read, and those that were declared but could not be.
+pub(super) struct Known<'a, 'i, T> {
+    pub(super) table: Option<&'a Table<'i>>,
+    pub(super) names: &'a BTreeMap<Name, T>,
+}
+
+impl<T> Known<'_, '_, T> {
+    /// The name spelt so, if there is one.
+    pub(super) fn find(&self, text: &str) -> Option<Name> {
+        self.names.get_key_value(text).map(|(name, _)| name.clone())
+    }
+
+    /// Whether it is there, though faulty: then its own fault says enough.
+    pub(super) fn declares(&self, text: &str) -> bool {
+        self.table.is_some_and(|table| table.contains_key(text))
+    }
+}
+
+/// How many activities carry each tag.
+pub(super) type Tags = BTreeMap<Name, usize>;
+
+/// The tags that activities carry.
+pub(super) fn tags(activities: &BTreeMap<Name, Activity>) -> Tags {
+    let mut tags = Tags::new();
+    for tag in activities.values().flat_map(|activity| &activity.tags) {
+        *tags.entry(tag.clone()).or_default() += 1;
+    }
+    tags
+}
+
+/// The limit in a table.
+pub(super) fn read(fields: &mut Fields<'_, '_>, activities: &Known<'_, '_, Activity>, tags: &Tags) -> Limit {
+    over(fields);
+    let bound = bound(fields);
+    Limit {
+        label: fields.text("label"),
+        terms: sum(fields, "terms", activities, tags).unwrap_or_else(|| missing(fields)),
+        per: sum(fields, "per", activities, tags),
+        bound,
+    }
+}
+
+fn missing(fields: &mut Fields<'_, '_>) -> BTreeMap<Term, Value> {
+    if fields.node("terms").is_none() {
+        let message = "a limit needs `terms`: what it sums up".to_owned();
+        let span = fields.span();
+        fields.findings().add(&span, "no-terms", message, "add terms = { floor_tile = 1.0 }");
+    }
+    BTreeMap::new()
+}
+
+fn over(fields: &mut Fields<'_, '_>) {
+    let Some(node) = fields.node("over") else { return };
+    match node.get_ref() {
+        DeValue::String(text) if text == "each" => {}
+        DeValue::String(text) if text != "all" => {
+            let message = format!("`over` is \"each\" or \"all\", not `{}`", shown(text));
+            fields.findings().add(&node.span(), "bad-over", message, "take it out: this version plans a single period");
+        }
+        DeValue::String(_) | DeValue::Array(_) => {
+            Later::Periods.refuse("`over` several periods", &node.span(), fields.findings());
+        }
+        _ => {
+            let message = "`over` is \"each\", \"all\" or a list of periods".to_owned();
+            fields.findings().add(&node.span(), "bad-over", message, "take it out: this version plans a single period");
+        }
+    }
+}
+
+fn bound(fields: &mut Fields<'_, '_>) -> Bound {
+    let at_least = fields.value("at_least", Role::Least);
+    let at_most = fields.value("at_most", Role::Most);
+    let equals = fields.value("equals", Role::Amount);
+    if let Some(span) = fields.key_span("equals") {
+        for other in ["at_least", "at_most"] {
+            if let Some(other_span) = fields.key_span(other) {
+                let later = if other_span.start > span.start { other_span } else { span.clone() };
+                let message = format!("`equals` and `{other}` cannot stand together");
+                fields.findings().add(&later, "equals-and-bound", message, "keep one of the two");
+            }
+        }
+        return Bound::Equals(equals.map_or(Value::Every(0.0), |given| given.value));
+    }
+    if let (Some(least), Some(most)) = (&at_least, &at_most) {
+        bounds::ordered(("at_least", least), ("at_most", most), fields.findings());
+    }
+    if fields.key_span("at_least").is_none() && fields.key_span("at_most").is_none() {
+        let message = "a limit needs a bound".to_owned();
+        let span = fields.span();
+        fields.findings().add(&span, "no-bound", message, "add `at_most`, `at_least` or `equals`");
+    }
+    let or = |given: Option<Given>, number| given.map_or(Value::Every(number), |given| given.value);
+    Bound::Between(or(at_least, f64::NEG_INFINITY), or(at_most, f64::INFINITY))
+}
+
+/// The sum written under `key`.
+fn sum(
+    fields: &mut Fields<'_, '_>,
+    key: &str,
+    activities: &Known<'_, '_, Activity>,
+    tags: &Tags,
+) -> Option<BTreeMap<Term, Value>> {
+    let table = fields.table(key, &format!("{key} = {{ floor_tile = 1.0 }}"))?;
+    if key == "per" && table.is_empty() {
+        let message = "`per` is empty, so the bounds would be multiplied by nothing".to_owned();
+        let span = fields.key_span(key).unwrap_or_default();
+        fields.findings().add(&span, "no-terms", message, "name what the bounds are per, or take `per` out");
+    }
+    let mut sum = BTreeMap::new();
+    let mut spelt: BTreeMap<Term, &str> = BTreeMap::new();
+    for (word, node) in table {
+        if term::refuse_dotted(word, node, fields.findings()) {
+            continue;
+        }
+        let value = number::value(word.get_ref(), node, Role::Rate, fields.findings());
+        let Some(term) = term::read(word, activities, tags, fields.findings()) else { continue };
+        if let Some(first) = spelt.insert(term.clone(), word.get_ref()) {
+            let message = format!("`{first}` and `{}` are the same term", shown(word.get_ref()));
+            fields.findings().add(&word.span(), "duplicate-term", message, "keep one, with the sum of the two numbers");
+        }
+        sum.insert(term, value.unwrap_or(Value::Every(0.0)));
+    }
+    Some(sum)
+}

@@ -1,0 +1,60 @@
+//! Reading a model: from bytes to a checked [`Model`], or to all the faults that keep it from being one.
+//!
+//! One pass with places: the bytes are made a text, the text is parsed into tables that know where they stand, and the
+//! tables are walked once. Nothing is guessed and nothing is passed over: what is not understood is a fault.
+
+mod activity;
+mod bounds;
+mod bytes;
+mod caps;
+mod document;
+mod duplicate;
+mod fields;
+mod file;
+mod findings;
+mod keys;
+mod limit;
+mod near;
+mod number;
+mod resource;
+mod source;
+mod syntax;
+mod term;
+mod toml_types;
+
+use std::path::Path;
+
+pub use caps::{MOST_ACTIVITIES, MOST_BYTES, MOST_COEFFICIENTS, MOST_LIMITS, MOST_LINES, MOST_RESOURCES, MOST_TOKENS};
+pub use fields::LONGEST_TEXT;
+pub use file::{FileProblem, file};
+pub use number::{LARGEST, SMALLEST_RATE};
+
+use super::fault::{Fault, Faults};
+use super::types::Model;
+use findings::Findings;
+
+/// A model that was read, and what is odd about it though nothing is wrong.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Reading {
+    /// The model.
+    pub model: Model,
+    /// Oddities: names that look alike. At most [`MOST_REPORTED`](super::fault::MOST_REPORTED).
+    pub warnings: Vec<Fault>,
+}
+
+/// The model that the bytes of a file spell. Pure: `path` is only repeated in faults.
+///
+/// # Errors
+/// All faults found, in the order of the file; the first [`MOST_REPORTED`](super::fault::MOST_REPORTED) are told and the rest
+/// counted. A file that is no UTF-8 text or no TOML is not looked into further.
+pub fn text(path: &Path, bytes: &[u8]) -> Result<Reading, Faults> {
+    let source = bytes::text(path, bytes).map_err(|fault| Faults { reported: vec![*fault], more: 0 })?;
+    let root = syntax::parse(source)?;
+    let mut findings = Findings::default();
+    let model = document::model(root.get_ref(), &mut findings);
+    if !findings.is_empty() {
+        return Err(findings.finish(source, &model));
+    }
+    let warnings = document::twins(root.get_ref(), &model).finish(source, &model).reported;
+    Ok(Reading { model, warnings })
+}

@@ -1,0 +1,166 @@
+//! Numbers of a model: which are allowed where, and whether they can be kept as they are written.
+
+use toml::de::{DeFloat, DeInteger, DeValue};
+
+use super::findings::{Findings, Span, shown};
+use super::keys::Later;
+use super::toml_types::{Node, Table, kind};
+use crate::model::value::Value;
+
+/// The largest magnitude a model may hold.
+pub const LARGEST: f64 = 1e15;
+/// The smallest magnitude of a coefficient that is not 0.
+pub const SMALLEST_RATE: f64 = 1e-9;
+/// The largest integer up to which every integer is exact.
+const LARGEST_EXACT: i128 = 1 << 53;
+
+/// What a number stands for, which decides the values it may take.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) enum Role {
+    /// A price, a cost, a right-hand side: finite.
+    Amount,
+    /// A coefficient: finite, and not so small that it is a slip.
+    Rate,
+    /// An upper bound: `inf` for no limit.
+    Most,
+    /// A lower bound: finite; left out for no limit.
+    Least,
+    /// The lower bound of a level: `-inf` frees it.
+    Level,
+}
+
+/// The value of `key`: a number, or a table that gives one for each period.
+pub(super) fn value(key: &str, node: &Node<'_>, role: Role, findings: &mut Findings) -> Option<Value> {
+    match node.get_ref() {
+        DeValue::Table(table) => each(key, table, &node.span(), role, findings),
+        DeValue::Array(_) => {
+            let message = format!(
+                "a list for `{}` gives one number per period, but this version plans a single period",
+                shown(key)
+            );
+            findings.add(&node.span(), "unsupported", message, "give one number");
+            None
+        }
+        _ => number(key, node, role, findings).map(Value::Every),
+    }
+}
+
+fn each(key: &str, table: &Table<'_>, span: &Span, role: Role, findings: &mut Findings) -> Option<Value> {
+    let mut found = None;
+    for (word, node) in table {
+        match word.get_ref().as_ref() {
+            "each" => found = number(key, node, role, findings).map(Value::Every),
+            "per_day" => Later::Periods.refuse("`per_day`", &word.span(), findings),
+            other => {
+                let message = format!(
+                    "`{}` is not `each`, so it would be a period, but this version plans a single period",
+                    shown(other)
+                );
+                let help = format!("give one number, or {{ each = … }}, for `{}`", shown(key));
+                findings.add(&word.span(), "unsupported", message, help);
+            }
+        }
+    }
+    if table.is_empty() {
+        let message = format!("`{}` has an empty table where a number is meant", shown(key));
+        findings.add(span, "wrong-type", message, "give a number, such as 168");
+    }
+    found
+}
+
+/// The number that `node` holds, if it may stand there.
+pub(super) fn number(key: &str, node: &Node<'_>, role: Role, findings: &mut Findings) -> Option<f64> {
+    let number = match node.get_ref() {
+        DeValue::Integer(integer) => whole(integer),
+        DeValue::Float(float) => decimal(float),
+        _ => Err(not_a_number(key, node)),
+    };
+    match number.and_then(|number| allowed(key, number, role)) {
+        Ok(number) => Some(number + 0.0),
+        Err(Refusal { code, message, help }) => {
+            findings.add(&node.span(), code, message, help);
+            None
+        }
+    }
+}
+
+struct Refusal {
+    code: &'static str,
+    message: String,
+    help: String,
+}
+
+fn refusal(code: &'static str, message: String, help: impl Into<String>) -> Refusal {
+    Refusal { code, message, help: help.into() }
+}
+
+fn not_a_number(key: &str, node: &Node<'_>) -> Refusal {
+    let help = match node.get_ref().as_str() {
+        Some(text) if text.trim().parse::<f64>().is_ok() => format!("write {} without quotes", shown(text.trim())),
+        Some(text) if text.trim().replace(',', ".").parse::<f64>().is_ok() => {
+            format!("write {} without quotes, with a decimal point", shown(&text.trim().replace(',', ".")))
+        }
+        _ => "give a number, such as 168 or 0.02".to_owned(),
+    };
+    refusal("wrong-type", format!("`{}` must be a number, not {}", shown(key), kind(node)), help)
+}
+
+fn whole(integer: &DeInteger<'_>) -> Result<f64, Refusal> {
+    match i128::from_str_radix(integer.as_str(), integer.radix()) {
+        #[expect(clippy::cast_precision_loss, reason = "exact up to 2^53, which the guard has checked")]
+        Ok(number) if number.abs() <= LARGEST_EXACT => Ok(number as f64),
+        _ => Err(refusal(
+            "inexact-number",
+            format!("{} is too large to be kept exactly", shown(&integer.to_string())),
+            "magnitudes go up to 1e15; choose a larger unit",
+        )),
+    }
+}
+
+fn decimal(float: &DeFloat<'_>) -> Result<f64, Refusal> {
+    let text = float.as_str();
+    let number: f64 = text.parse().unwrap_or(f64::NAN);
+    let mantissa = text.split(['e', 'E']).next().unwrap_or(text);
+    let written_zero = !mantissa.bytes().any(|byte| matches!(byte, b'1'..=b'9'));
+    if number.is_nan() {
+        return Err(refusal("not-finite", "`nan` is not a number".to_owned(), "give a number, or leave the key out"));
+    }
+    if number.is_infinite() && !text.contains("inf") {
+        return Err(too_large(text));
+    }
+    if number.abs() < f64::MIN_POSITIVE && !written_zero {
+        let message = format!("{} is too small to be told from 0", shown(text));
+        return Err(refusal("too-small", message, "write 0, or choose a smaller unit"));
+    }
+    Ok(number)
+}
+
+fn too_large(text: &str) -> Refusal {
+    let help = "magnitudes go up to 1e15; choose a larger unit";
+    refusal("too-large", format!("{} is too large", shown(text)), help)
+}
+
+fn allowed(key: &str, number: f64, role: Role) -> Result<f64, Refusal> {
+    let key = shown(key);
+    if number.is_infinite() {
+        let upward = number > 0.0;
+        return match role {
+            Role::Most if upward => Ok(number),
+            Role::Level if !upward => Ok(number),
+            Role::Most => Err(refusal("not-finite", format!("`{key}` cannot be -inf"), "give a number")),
+            Role::Least if !upward => {
+                let help = "leave the key out where there is no limit";
+                Err(refusal("not-finite", format!("`{key}` cannot be -inf here"), help))
+            }
+            _ => Err(refusal("not-finite", format!("`{key}` must be a finite number"), "give a number")),
+        };
+    }
+    if number.abs() > LARGEST {
+        return Err(too_large(&format!("{number:e}")));
+    }
+    if role == Role::Rate && number.abs() < SMALLEST_RATE && number.abs() > 0.0 {
+        let message = format!("{number:e} for `{key}` is too small for a coefficient");
+        return Err(refusal("too-small", message, "coefficients are 0 or at least 1e-9; choose a smaller unit"));
+    }
+    Ok(number)
+}
