@@ -2,6 +2,10 @@
 //!
 //! Knows models, programs, edits and answers, but no files and no clock.
 
+pub mod make;
+pub mod number;
+pub mod text;
 pub mod types;
 
+pub use make::make;
 pub use types::{Plan, PlannedActivity, PlannedLimit, PlannedResource, Standing, State};

@@ -1,5 +1,6 @@
 //! The plan as a value: what `NAME.plan.toml` says.
 
+use crate::model::meaning::Meaning;
 use crate::model::{Name, Value};
 
 /// Version of the plan file's layout.
@@ -11,8 +12,8 @@ pub const RULES: u32 = 1;
 /// A plan. Lists are in byte order of names.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Plan {
-    /// Hash of the meaning of the model that it answers, as text.
-    pub answers: String,
+    /// The meaning of the model that it answers.
+    pub answers: Meaning,
     /// Whether it may be worked to.
     pub standing: Standing,
     /// The aim, in currency.
@@ -21,7 +22,7 @@ pub struct Plan {
     pub minimise: bool,
     /// Unit of the aim.
     pub currency: Option<String>,
-    /// Whether nothing was decided by a tolerance.
+    /// Whether nothing was decided by a tolerance; if not, the plan is proven within 1e-9 only.
     pub exact: bool,
     /// Whether other plans earn as much.
     pub ties: bool,
@@ -69,9 +70,9 @@ pub struct PlannedActivity {
     pub state: State,
     /// Prices (costs, where the aim is to be small) between which these levels stay optimal. Infinite where there is no limit.
     pub price_range: Option<(f64, f64)>,
-    /// Idle or prospect: the price (cost) at which it would enter.
+    /// Idle or prospect: the price above which (the cost below which) it would enter.
     pub break_even: Option<f64>,
-    /// What making one unit would cost the aim.
+    /// Idle or prospect: what making one unit would cost the aim; negative for a prospect that would pay.
     pub loses: Option<f64>,
 }
 
@@ -122,7 +123,7 @@ pub struct PlannedResource {
     pub spare: Option<Value>,
     /// What one unit more would add to the aim, as a rate (positive is better, under either aim).
     pub worth_of_more: Option<f64>,
-    /// What one unit less would take away.
+    /// What one unit less would take away; infinite where there would be no plan.
     pub loss_of_less: Option<f64>,
     /// Capacities between which those rates hold. Infinite where there is no limit.
     pub holds_between: Option<(f64, f64)>,
@@ -135,12 +136,13 @@ pub struct PlannedLimit {
     pub name: Name,
     /// What its terms come to; with `per`, the ratio of terms to `per` (`None` where `per` comes to 0).
     pub value: Option<Value>,
-    /// What is left up to `at_most`, in the unit of the terms.
+    /// What is left up to `at_most`, in the unit of the terms; `None` where there is no `at_most`.
     pub spare: Option<Value>,
-    /// What one unit more of its binding bound would add to the aim, in the unit of the terms.
+    /// What one unit more of its binding bound, in the unit of the terms, would add to the aim (positive is better); negative
+    /// where `at_least` binds, 0 where nothing does.
     pub worth_of_more: Option<f64>,
-    /// What one unit less would take away.
+    /// What one unit less of it would take away.
     pub loss_of_less: Option<f64>,
-    /// Bounds between which those rates hold; left out with `per`.
+    /// Numbers of the binding bound (where none binds: of the nearest) between which those rates hold; left out with `per`.
     pub holds_between: Option<(f64, f64)>,
 }

@@ -1,0 +1,67 @@
+//! The plan as the text of `NAME.plan.toml`: writing it, reading it, and telling whether it is ours and unharmed.
+
+mod mark;
+mod read;
+mod write;
+
+pub use mark::marked;
+pub use read::{PlanError, Written, read};
+pub use write::write;
+
+/// The first line of every plan file.
+pub const HEADER: &str = "# Written by millreeve. Do not edit: the next plan replaces it.";
+
+/// What the first line of every note begins with.
+pub const NOTE_HEADER: &str = "<!-- Written by millreeve. Do not edit: the next note replaces it.";
+
+/// Whether a file that begins with `bytes` is a plan or note of ours, and may be replaced.
+#[must_use]
+pub fn is_ours(bytes: &[u8]) -> bool {
+    let line = bytes.split(|&byte| byte == b'\n').next().unwrap_or_default();
+    let line = line.strip_suffix(b"\r").unwrap_or(line);
+    line == HEADER.as_bytes() || (line.starts_with(NOTE_HEADER.as_bytes()) && line.ends_with(b"-->"))
+}
+
+/// The seal that a plan's text carries, whether or not it is right.
+#[must_use]
+pub fn seal(text: &str) -> Option<&str> {
+    head(text).find_map(|line| value_of(line, "seal")).map(|value| value.trim_matches('"'))
+}
+
+/// The seal that `text` should carry: the hash of all its lines but the one that says it. Line ends do not count.
+#[must_use]
+pub fn seal_for(text: &str) -> String {
+    let mut hasher = blake3::Hasher::new();
+    let mut rest = text;
+    // Only the head is gone through line by line: the seal stands there, and the rest may be long.
+    while !rest.starts_with('[')
+        && let Some((line, after)) = rest.split_once('\n')
+    {
+        rest = after;
+        if value_of(line, "seal").is_some() {
+            break;
+        }
+        hasher.update(line.trim_end_matches('\r').as_bytes());
+        hasher.update(b"\n");
+    }
+    if rest.contains('\r') {
+        hasher.update(rest.replace("\r\n", "\n").as_bytes());
+    } else {
+        hasher.update(rest.as_bytes());
+    }
+    hasher.finalize().to_hex().to_string()
+}
+
+/// The lines before the first table.
+fn head(text: &str) -> impl Iterator<Item = &str> {
+    text.lines().take_while(|line| !line.starts_with('['))
+}
+
+/// What stands after `key =` on a line.
+fn value_of<'a>(line: &'a str, key: &str) -> Option<&'a str> {
+    line.strip_prefix(key)?.trim_start().strip_prefix('=').map(str::trim)
+}
+
+#[cfg(test)]
+#[path = "text/tests.rs"]
+mod tests;

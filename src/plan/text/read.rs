@@ -1,0 +1,230 @@
+//! Reading a plan back.
+
+use serde::Deserialize;
+
+use super::{HEADER, head, seal, seal_for, value_of};
+use crate::model::escape::Plain;
+use crate::model::meaning::Meaning;
+use crate::model::{Name, Value};
+use crate::plan::types::{FORMAT, Plan, PlannedActivity, PlannedLimit, PlannedResource, RULES, Standing, State};
+
+/// A plan that was read from a file.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Written {
+    /// The plan.
+    pub plan: Plan,
+    /// The seal the file carries.
+    pub seal: String,
+    /// Whether the seal is right: nobody has edited the file since it was written.
+    pub sealed: bool,
+}
+
+/// Why a file gives no plan.
+#[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
+pub enum PlanError {
+    /// Its first line is not that of our plans.
+    #[error("not a plan written by millreeve")]
+    NotOurs,
+    /// A later version wrote it.
+    #[error("written by a newer millreeve: {what} {found}, this one knows up to {known}")]
+    Newer {
+        /// The version that is ahead: `format` or `rules`.
+        what: &'static str,
+        /// Its number in the file.
+        found: u32,
+        /// The highest number known.
+        known: u32,
+    },
+    /// Its first line is ours, but what follows is no plan. One line, safe to show.
+    #[error("not a whole plan: {0}")]
+    Broken(String),
+    /// It has been edited since it was written.
+    #[error("edited since it was written: its seal does not fit")]
+    Edited,
+}
+
+/// The plan that `text` says.
+///
+/// A plan whose seal does not fit is still read; [`Written::sealed`] tells.
+///
+/// # Errors
+/// Says that the text is not ours, comes from a newer version, or is no whole plan.
+pub fn read(text: &str) -> Result<Written, PlanError> {
+    let mut lines = text.lines();
+    if lines.next() != Some(HEADER) {
+        return Err(PlanError::NotOurs);
+    }
+    refuse_newer(text, "format", FORMAT)?;
+    refuse_newer(text, "rules", RULES)?;
+    let file: File = toml::from_str(text).map_err(|error| broken(text, &error))?;
+    let plan = file.plan()?;
+    let seal = seal(text).unwrap_or_default().to_owned();
+    let sealed = seal == seal_for(text);
+    Ok(Written { plan, seal, sealed })
+}
+
+fn refuse_newer(text: &str, what: &'static str, known: u32) -> Result<(), PlanError> {
+    let found = head(text).find_map(|line| value_of(line, what)).and_then(|value| value.parse().ok());
+    match found {
+        Some(found) if found > known => Err(PlanError::Newer { what, found, known }),
+        Some(_) => Ok(()),
+        None => Err(PlanError::Broken(format!("it does not say its `{what}`"))),
+    }
+}
+
+/// A parser's message, without its copy of the text, cut to a readable length.
+fn broken(text: &str, error: &toml::de::Error) -> PlanError {
+    let line = error.span().map_or(1, |span| 1 + text.bytes().take(span.start).filter(|&byte| byte == b'\n').count());
+    let message: String = error.message().chars().take(200).collect();
+    PlanError::Broken(format!("line {line}: {}", Plain(&message)))
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct File {
+    #[serde(rename = "format")]
+    _format: u32,
+    #[serde(rename = "rules")]
+    _rules: u32,
+    answers: String,
+    #[serde(rename = "seal")]
+    _seal: String,
+    standing: String,
+    held: Option<String>,
+    aim: f64,
+    #[serde(default)]
+    minimise: bool,
+    currency: Option<String>,
+    exact: bool,
+    ties: bool,
+    complete: bool,
+    #[serde(default)]
+    activities: Vec<ActivityEntry>,
+    #[serde(default)]
+    resources: Vec<ResourceEntry>,
+    #[serde(default)]
+    limits: Vec<LimitEntry>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct ActivityEntry {
+    name: String,
+    level: Numbers,
+    state: String,
+    #[serde(alias = "cost_range")]
+    price_range: Option<(f64, f64)>,
+    break_even: Option<f64>,
+    loses: Option<f64>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct ResourceEntry {
+    name: String,
+    used: Numbers,
+    spare: Option<Numbers>,
+    worth_of_more: Option<f64>,
+    loss_of_less: Option<f64>,
+    holds_between: Option<(f64, f64)>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct LimitEntry {
+    name: String,
+    value: Option<Numbers>,
+    spare: Option<Numbers>,
+    worth_of_more: Option<f64>,
+    loss_of_less: Option<f64>,
+    holds_between: Option<(f64, f64)>,
+}
+
+#[derive(Deserialize)]
+#[serde(untagged)]
+enum Numbers {
+    One(f64),
+    Several(Vec<f64>),
+}
+
+impl From<Numbers> for Value {
+    fn from(numbers: Numbers) -> Self {
+        match numbers {
+            Numbers::One(number) => Self::Every(number),
+            Numbers::Several(list) => Self::Listed(list),
+        }
+    }
+}
+
+impl File {
+    fn plan(self) -> Result<Plan, PlanError> {
+        let standing = match (self.standing.as_str(), self.held) {
+            ("current", None) => Standing::Current,
+            ("retired", None) => Standing::Retired,
+            ("held", Some(reason)) => Standing::Held(reason),
+            _ => return Err(PlanError::Broken("its `standing` and `held` do not fit together".to_owned())),
+        };
+        let answers = Meaning::parse(&self.answers)
+            .ok_or_else(|| PlanError::Broken("its `answers` is no hash of a meaning".to_owned()))?;
+        let activities = self.activities.into_iter().map(ActivityEntry::planned).collect::<Result<Vec<_>, _>>()?;
+        let resources = self.resources.into_iter().map(ResourceEntry::planned).collect::<Result<Vec<_>, _>>()?;
+        let limits = self.limits.into_iter().map(LimitEntry::planned).collect::<Result<Vec<_>, _>>()?;
+        Ok(Plan {
+            answers,
+            standing,
+            aim: self.aim,
+            minimise: self.minimise,
+            currency: self.currency,
+            exact: self.exact,
+            ties: self.ties,
+            complete: self.complete,
+            activities,
+            resources,
+            limits,
+        })
+    }
+}
+
+fn name(text: &str) -> Result<Name, PlanError> {
+    Name::new(text).map_err(|error| PlanError::Broken(format!("a name is wrong: {error}")))
+}
+
+impl ActivityEntry {
+    fn planned(self) -> Result<PlannedActivity, PlanError> {
+        let state = State::ALL.into_iter().find(|state| state.words() == self.state);
+        Ok(PlannedActivity {
+            name: name(&self.name)?,
+            level: self.level.into(),
+            state: state.ok_or_else(|| PlanError::Broken(format!("no state is called `{}`", Plain(&self.state))))?,
+            price_range: self.price_range,
+            break_even: self.break_even,
+            loses: self.loses,
+        })
+    }
+}
+
+impl ResourceEntry {
+    fn planned(self) -> Result<PlannedResource, PlanError> {
+        Ok(PlannedResource {
+            name: name(&self.name)?,
+            used: self.used.into(),
+            spare: self.spare.map(Value::from),
+            worth_of_more: self.worth_of_more,
+            loss_of_less: self.loss_of_less,
+            holds_between: self.holds_between,
+        })
+    }
+}
+
+impl LimitEntry {
+    fn planned(self) -> Result<PlannedLimit, PlanError> {
+        Ok(PlannedLimit {
+            name: name(&self.name)?,
+            value: self.value.map(Value::from),
+            spare: self.spare.map(Value::from),
+            worth_of_more: self.worth_of_more,
+            loss_of_less: self.loss_of_less,
+            holds_between: self.holds_between,
+        })
+    }
+}
