@@ -5,6 +5,7 @@
 pub mod apply;
 pub mod build;
 pub mod difference;
+pub mod mps;
 pub mod program;
 
 pub use build::build;
