@@ -20,6 +20,9 @@ struct Checked<'a> {
     /// How many more faults there are than are told.
     more: usize,
     warnings: &'a [Fault],
+    /// Why the file could not be read.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    unread: Option<String>,
 }
 
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf]) -> Result<Outcome, Error> {
@@ -28,7 +31,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
         let settings = setting.for_path(path)?;
         for model in models::under(path, &Ignored::new(&settings.ignore)?)? {
             tally.models += 1;
-            one(screen, &model, &mut tally)?;
+            one(screen, &model, &mut tally);
         }
     }
     if tally.models == 0 {
@@ -38,7 +41,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
     if screen.out_is_terminal() && !screen.json() {
         screen.say(tally.words());
     }
-    Ok(Outcome::good_if(tally.faults == 0))
+    Ok(tally.outcome())
 }
 
 #[derive(Default)]
@@ -46,11 +49,21 @@ struct Tally {
     models: usize,
     faulty: usize,
     faults: usize,
+    /// Files that are no models, or that the system would not let us read.
+    unread: usize,
+    refused: bool,
 }
 
 impl Tally {
+    fn outcome(&self) -> Outcome {
+        if self.refused { Outcome::Failed } else { Outcome::good_if(self.faults + self.unread == 0) }
+    }
+
     fn words(&self) -> String {
         let models = counted(self.models, "model");
+        if self.unread > 0 {
+            return format!("{BAD}{models}, {} not read, {}{BAD:#}", self.unread, counted(self.faults, "fault"));
+        }
         if self.faults == 0 {
             return format!("{GOOD}{models}, no faults{GOOD:#}");
         }
@@ -67,23 +80,28 @@ pub(super) fn counted(count: usize, what: &str) -> String {
     format!("{count} {what}{}", if count == 1 { "" } else { "s" })
 }
 
-fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) -> Result<(), Error> {
-    let bytes = match read::file(path) {
-        Ok(bytes) => bytes,
-        Err(problem) => return Err(unreadable(&problem)),
-    };
-    let (faults, warnings) = match read::text(path, &bytes) {
-        Ok(Reading { warnings, .. }) => (Faults::default(), warnings),
-        Err(faults) => (faults, Vec::new()),
+fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
+    let (faults, warnings, unread) = match read::file(path).map(|bytes| read::text(path, &bytes)) {
+        Ok(Ok(Reading { warnings, .. })) => (Faults::default(), warnings, None),
+        Ok(Err(faults)) => (faults, Vec::new(), None),
+        Err(problem) => {
+            let error = unreadable(&problem);
+            tally.unread += 1;
+            tally.refused |= error.is_failure();
+            if !screen.json() {
+                screen.error(&error);
+            }
+            (Faults::default(), Vec::new(), Some(error.message().to_owned()))
+        }
     };
     let count = faults.reported.len() + faults.more;
     tally.faults += count;
     tally.faulty += usize::from(count > 0);
     if screen.json() {
-        let name = models::stem(path).file_name().unwrap_or_default().to_string_lossy().into_owned();
+        let model = models::stem(path).file_name().unwrap_or_default().to_string_lossy().into_owned();
         let Faults { reported, more } = &faults;
-        screen.object(&Checked { model: name, path: text(path), faults: reported, more: *more, warnings: &warnings });
-        return Ok(());
+        screen.object(&Checked { model, path: text(path), faults: reported, more: *more, warnings: &warnings, unread });
+        return;
     }
     if count > 0 {
         // The screen takes the colours out again where they are not wanted.
@@ -93,7 +111,6 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) -> Result<(), Error>
     for warning in &warnings {
         screen.aside(format_args!("{WARN}odd, but no fault:{WARN:#} {}\n", warning.terminal(false)));
     }
-    Ok(())
 }
 
 /// What is wrong with a file that cannot be read: the command line where it is not there or is no file, else the system.

@@ -13,6 +13,8 @@ pub(crate) enum Outcome {
     Good,
     /// A model is held or faulty, or its plan is not what it should be.
     Amiss,
+    /// Part of the work was done and the system refused the rest, which has been told.
+    Failed,
 }
 
 impl Outcome {
@@ -27,6 +29,7 @@ impl From<Outcome> for ExitCode {
         Self::from(match outcome {
             Outcome::Good => 0,
             Outcome::Amiss => 1,
+            Outcome::Failed => 3,
         })
     }
 }
@@ -79,6 +82,11 @@ impl Error {
             Kind::Usage => 2,
             Kind::Failure => 3,
         }
+    }
+
+    /// Whether the system refused, rather than anybody having made a mistake.
+    pub(crate) fn is_failure(&self) -> bool {
+        self.kind == Kind::Failure
     }
 
     /// The message alone.
