@@ -127,6 +127,8 @@ impl Records {
     /// It cannot be written; what was remembered before still is. A record of a newer layout is not replaced.
     pub fn save(&self, record: &Record) -> Result<(), StoreError> {
         let bytes = encode(record)?;
+        // The watched folder may have been removed and made again, and this one with it.
+        fs::create_dir_all(&self.folder).map_err(StoreError::failed(Step::MakeFolder, &self.folder))?;
         atomic::write(&self.path(&record.model), &bytes, replaceable, Durability::Cached).map(|_| ())
     }
 
