@@ -3,6 +3,7 @@
 //! The layers run one way; each uses those before it and never those after it:
 //! [`model`] → [`lp`] → [`edits`] → [`solver`] → [`plan`] → [`store`] → [`keep`] → `cli`.
 
+pub mod cli;
 pub mod edits;
 pub mod keep;
 pub mod lp;
