@@ -6,7 +6,7 @@ mod tables;
 mod trouble;
 mod words;
 
-use super::compare::{Comparison, compare};
+use super::compare::compare;
 use super::text::NOTE_HEADER;
 use super::types::{Plan, Standing};
 use crate::edits::{Edit, Kind};
@@ -146,9 +146,4 @@ fn reservations(plan: &Plan) -> String {
 /// Whether the plan before was held.
 fn was_held(report: &Report<'_>) -> bool {
     report.before.is_some_and(|before| matches!(before.standing, Standing::Held(_)))
-}
-
-/// Whether nothing in a plan but its numbers' last digits changed.
-fn nothing_moves(comparison: &Comparison) -> bool {
-    comparison.moved.is_empty()
 }

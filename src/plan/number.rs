@@ -32,13 +32,9 @@ fn push_digits(out: &mut String, number: f64, after_first: usize) {
         });
         return;
     }
-    let start = out.len();
-    // Writing to a string cannot fail.
-    let _ = write!(out, "{:.after_first$e}", number + 0.0);
-    let (digits, exponent) = taken_apart(&out[start..]);
-    let negative = out[start..].starts_with('-');
-    out.truncate(start);
-    if negative {
+    let quick = if after_first == AFTER_FIRST { taken_apart_quickly(number) } else { None };
+    let (digits, exponent) = quick.unwrap_or_else(|| taken_apart(&format!("{number:.after_first$e}")));
+    if number < 0.0 {
         out.push('-');
     }
     match exponent {
@@ -92,6 +88,46 @@ impl Significant {
     fn as_str(&self) -> &str {
         std::str::from_utf8(&self.bytes[..self.length]).unwrap_or("0")
     }
+}
+
+/// Ten digits and the exponent of a number of common size, by one multiplication. `None` where that could round another way than
+/// the exact decimal value of the number does.
+fn taken_apart_quickly(number: f64) -> Option<(Significant, i32)> {
+    const POWERS: [f64; 16] = [1e0, 1e1, 1e2, 1e3, 1e4, 1e5, 1e6, 1e7, 1e8, 1e9, 1e10, 1e11, 1e12, 1e13, 1e14, 1e15];
+    let size = number.abs();
+    if !(1e-5..1e15).contains(&size) {
+        return None;
+    }
+    // Where the first digit stands: before the point by so many places, or behind it.
+    let before = POWERS.partition_point(|&power| power <= size).checked_sub(1);
+    let (scaled, mut exponent) = match before {
+        Some(places) if places <= AFTER_FIRST => (size * POWERS[AFTER_FIRST - places], i32::try_from(places).ok()?),
+        Some(places) => (size / POWERS[places - AFTER_FIRST], i32::try_from(places).ok()?),
+        None => {
+            let behind = (1..=5).find(|&places| size * POWERS[places] >= 1.0)?;
+            (size * POWERS[AFTER_FIRST + behind], -i32::try_from(behind).ok()?)
+        }
+    };
+    // The product is wrong by less than 2e-6, so a half is the only place where it could matter.
+    if (scaled.fract() - 0.5).abs() < 1e-5 {
+        return None;
+    }
+    let mut rounded = scaled.round();
+    if rounded >= 1e10 {
+        rounded = 1e9;
+        exponent += 1;
+    }
+    #[expect(clippy::cast_possible_truncation, clippy::cast_sign_loss, reason = "whole, and between 1e9 and 1e10")]
+    let mut whole = rounded as u64;
+    let mut digits = Significant { bytes: [b'0'; 17], length: DIGITS };
+    for digit in digits.bytes[..DIGITS].iter_mut().rev() {
+        *digit = b'0' + u8::try_from(whole % 10).unwrap_or(0);
+        whole /= 10;
+    }
+    while digits.length > 1 && digits.bytes[digits.length - 1] == b'0' {
+        digits.length -= 1;
+    }
+    Some((digits, exponent))
 }
 
 /// Digits and exponent of a number in the form `-1.23400e5`.
@@ -196,6 +232,17 @@ mod tests {
             prop_assert_eq!(written(back), text.clone());
             prop_assert!(text.len() <= 17, "{}", text);
             prop_assert_eq!(written(rounded(number)), text);
+        }
+
+        #[test]
+        fn the_quick_way_rounds_as_the_exact_one(exponent in -6..16_i32, mantissa in 1.0..10.0_f64, places in 0..14_i32) {
+            let shortened = (mantissa * 10_f64.powi(places)).round() / 10_f64.powi(places);
+            for number in [mantissa, shortened, shortened + 0.5 * 10_f64.powi(-9)].map(|m| m * 10_f64.powi(exponent)) {
+                let (exact, exact_exponent) = taken_apart(&format!("{number:.AFTER_FIRST$e}"));
+                if let Some((quick, exponent)) = taken_apart_quickly(number) {
+                    prop_assert_eq!((quick.as_str(), exponent), (exact.as_str(), exact_exponent));
+                }
+            }
         }
     }
 }

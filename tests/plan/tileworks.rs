@@ -12,7 +12,7 @@ use millreeve::solver::proof::Proof;
 
 const INF: f64 = f64::INFINITY;
 
-pub fn name(text: &str) -> Name {
+pub(crate) fn name(text: &str) -> Name {
     Name::new(text).unwrap()
 }
 
@@ -20,7 +20,7 @@ fn resource(unit: &str, capacity: f64) -> Resource {
     Resource { unit: Some(unit.to_owned()), capacity: capacity.into(), ..Resource::default() }
 }
 
-pub fn activity(price: f64, cost: f64, uses: &[(&str, f64)]) -> Activity {
+pub(crate) fn activity(price: f64, cost: f64, uses: &[(&str, f64)]) -> Activity {
     Activity {
         unit: Some("m2".to_owned()),
         price: price.into(),
@@ -31,7 +31,7 @@ pub fn activity(price: f64, cost: f64, uses: &[(&str, f64)]) -> Activity {
 }
 
 /// Floor and wall tiles in the mix, mosaic idle, a terrace slab asked about.
-pub fn model() -> Model {
+pub(crate) fn model() -> Model {
     let floor = activity(21.0, 6.5, &[("dryer", 0.01), ("kiln", 0.02), ("press", 0.01)]);
     let wall = activity(18.0, 5.0, &[("dryer", 0.01), ("kiln", 0.015), ("press", 0.02)]);
     let mosaic = activity(30.0, 9.0, &[("kiln", 0.03), ("press", 0.015)]);
@@ -68,7 +68,7 @@ pub fn model() -> Model {
 
 /// The optimum with floor and wall tiles between their bounds, the kiln and the press full, all else slack, by Cramer's rule:
 /// 0.02 f + 0.015 w = kiln, 0.01 f + 0.02 w = press. Worths solve the transposed equations for the margins.
-pub fn optimum(model: &Model, program: &Program) -> Optimum {
+pub(crate) fn optimum(model: &Model, program: &Program) -> Optimum {
     let number = |value: &millreeve::model::Value| value.numbers()[0];
     let capacity = |resource: &str| number(&model.resources[&name(resource)].capacity);
     let margin = |what: &str| {
@@ -128,7 +128,7 @@ pub fn optimum(model: &Model, program: &Program) -> Optimum {
     }
 }
 
-pub fn planned(model: &Model) -> Plan {
+pub(crate) fn planned(model: &Model) -> Plan {
     let program = lp::build(model);
     plan::make(model, Meaning::of(model), &program, &optimum(model, &program)).unwrap()
 }

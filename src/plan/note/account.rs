@@ -15,7 +15,9 @@ pub(super) fn line(reckoning: &Reckoning, proven: bool) -> String {
     }
     parts.push(basis(reckoning));
     parts.push(start(reckoning));
-    parts.push(count(reckoning.pivots, "pivot"));
+    if reckoning.taken != Start::None || reckoning.pivots > 0 {
+        parts.push(count(reckoning.pivots, "pivot"));
+    }
     if !reckoning.detours.is_empty() {
         let detours: Vec<String> = reckoning.detours.iter().map(|detour| Markdown(detour).to_string()).collect();
         parts.push(format!("given up on the way: {}", detours.join(", ")));
@@ -59,13 +61,13 @@ fn start(reckoning: &Reckoning) -> String {
         format!("{taken}, as expected")
     } else {
         let expected: Vec<&str> = words().map(told).collect();
-        format!("{taken}, where {} was expected", expected.join(" or "))
+        format!("{taken} (expected: {})", expected.join(" or "))
     }
 }
 
 fn told(start: &str) -> &str {
     const WORDS: [(Start, &str); 4] = [
-        (Start::None, "nothing to solve"),
+        (Start::None, "no pivot needed"),
         (Start::Primal, "primal simplex"),
         (Start::Dual, "dual simplex"),
         (Start::Cold, "cold solve"),

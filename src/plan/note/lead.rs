@@ -1,16 +1,21 @@
 //! The sentence that says it all.
 
-use super::words::{amount, amounts, count, difference, listed, per_cent, total, unit_of_activity, values, with_unit};
-use super::{Report, Trouble, Verdict, nothing_moves, tables, was_held};
+use super::words::{
+    amount, amounts, count, difference, listed, per_cent, text, total, unit_of_activity, value, values, with_unit,
+};
+use super::{Report, Trouble, Verdict, reason, tables, was_held};
 use crate::edits::Kind;
+use crate::model::Value;
 use crate::model::escape::Markdown;
 use crate::plan::compare::{Comparison, Move, is_made, moved};
-use crate::plan::types::Plan;
+use crate::plan::types::{Plan, PlannedActivity};
 
 /// The first sentence of the note.
 pub(super) fn sentence(report: &Report<'_>, comparison: Option<&Comparison>) -> String {
     match (&report.verdict, comparison) {
-        (Verdict::Planned(plan), Some(comparison)) => planned_again(report, plan, comparison),
+        (Verdict::Planned(plan), Some(comparison)) => {
+            format!("{}{}", planned_again(report, plan, comparison), would_pay(comparison))
+        }
         (Verdict::Planned(plan), None) => first(report, plan),
         (Verdict::Trouble(trouble), _) => no_plan(report, *trouble),
         (Verdict::Retired, _) if report.before.is_some() => {
@@ -22,10 +27,10 @@ pub(super) fn sentence(report: &Report<'_>, comparison: Option<&Comparison>) -> 
 
 fn no_plan(report: &Report<'_>, trouble: Trouble<'_>) -> String {
     let why = match trouble {
-        Trouble::Faults(_) => "the model cannot be read",
-        Trouble::Infeasible(_) => "its rules contradict each other",
-        Trouble::Unbounded(_) => "nothing limits what it could gain",
-        Trouble::Undecided(_) => "the solver cannot tell",
+        // The rules, or the reason, follow at once.
+        Trouble::Infeasible(_) => "its rules contradict each other".to_owned(),
+        Trouble::Undecided(_) => "the solver cannot tell".to_owned(),
+        _ => text(&reason(trouble, report.model)),
     };
     match report.before {
         Some(_) => format!("There is no plan for this model now: {why}. The last good plan stays and is marked held."),
@@ -36,15 +41,13 @@ fn no_plan(report: &Report<'_>, trouble: Trouble<'_>) -> String {
 fn first(report: &Report<'_>, plan: &Plan) -> String {
     let aim = aim_told(plan, &amount(plan.aim.abs()));
     let mut made: Vec<_> = plan.activities.iter().filter(|planned| is_made(planned)).collect();
-    let weight = |planned: &&crate::plan::PlannedActivity| {
-        tables::weight(report.model, &planned.name, total(Some(&planned.level)))
-    };
+    let weight = |planned: &&PlannedActivity| tables::weight(report.model, &planned.name, total(Some(&planned.level)));
     made.sort_by(|a, b| weight(b).total_cmp(&weight(a)).then_with(|| a.name.cmp(&b.name)));
     let mut told: Vec<String> = made
         .iter()
         .take(3)
         .map(|planned| {
-            let level = super::words::value(&planned.level);
+            let level = value(&planned.level);
             format!(
                 "{} {}",
                 Markdown(planned.name.as_str()),
@@ -80,7 +83,7 @@ fn planned_again(report: &Report<'_>, plan: &Plan, comparison: &Comparison) -> S
 
 fn stands(report: &Report<'_>, plan: &Plan, comparison: &Comparison, subject: &str) -> String {
     let aim = aim_told(plan, &amount(plan.aim.abs()));
-    if !nothing_moves(comparison) {
+    if !comparison.moved.is_empty() {
         return format!("{subject} {aim}, as before; {}.", moves(report, comparison));
     }
     if was_held(report) {
@@ -112,22 +115,34 @@ fn direction(plan: &Plan, before: f64, after: f64) -> &'static str {
     if after.abs() > before.abs() { "more" } else { "less" }
 }
 
-/// The move that matters most, and how many more there are.
+/// The one or two moves that matter most, and how many more there are.
 fn moves(report: &Report<'_>, comparison: &Comparison) -> String {
     let ordered = tables::by_weight(report.model, &comparison.moved);
-    let Some(first) = ordered.first() else { return "no level moves".to_owned() };
-    let told = one_move(report, first);
-    match ordered.len() - 1 {
-        0 => told,
-        1 => format!("{told}, and 1 more level moves"),
-        more => format!("{told}, and {} move", count(more, "more level")),
+    match ordered.as_slice() {
+        [] => "no level moves".to_owned(),
+        [only] => one_move(report, only),
+        [first, second] => format!("{}, and {}", one_move(report, first), one_move(report, second)),
+        [first, more @ ..] => format!("{}, and {} more levels move", one_move(report, first), more.len()),
+    }
+}
+
+/// What a planner should hear of prospects at once.
+fn would_pay(comparison: &Comparison) -> String {
+    match comparison.would_enter.as_slice() {
+        [] => String::new(),
+        [only] => format!(" The prospect {} would pay now.", Markdown(only.as_str())),
+        [first, more @ ..] => format!(
+            " The prospect {} and {} would pay now.",
+            Markdown(first.as_str()),
+            count(more.len(), "other prospect").replacen("1 other", "another", 1)
+        ),
     }
 }
 
 fn one_move(report: &Report<'_>, told: &Move) -> String {
     let name = Markdown(told.name.as_str());
     let unit = unit_of_activity(report.model, &told.name);
-    let is_nil = |value: &crate::model::Value| value.numbers().iter().all(|number| number.abs() <= 0.0);
+    let is_nil = |value: &Value| value.numbers().iter().all(|number| number.abs() <= 0.0);
     let before = told.before.as_ref().filter(|value| !is_nil(value));
     let after = told.after.as_ref().filter(|value| !is_nil(value));
     match (before, after) {
@@ -136,10 +151,10 @@ fn one_move(report: &Report<'_>, told: &Move) -> String {
             format!("{name} goes from {before} to {}", with_unit(&after, unit))
         }
         (None, Some(after)) => {
-            format!("{name} enters the mix with {}", with_unit(&super::words::value(after), unit))
+            format!("{name} enters the mix with {}", with_unit(&value(after), unit))
         }
         (Some(before), None) => {
-            format!("{name}, {} before, leaves the mix", with_unit(&super::words::value(before), unit))
+            format!("{name}, {} before, leaves the mix", with_unit(&value(before), unit))
         }
         (None, None) => format!("{name} stays out of the mix"),
     }

@@ -11,6 +11,9 @@ use crate::model::{Model, Name};
 use crate::plan::compare::{Comparison, Move, is_scarce, offered, would_enter};
 use crate::plan::types::{Plan, PlannedActivity, State};
 
+/// The most names told in a row.
+const NAMES: usize = 6;
+
 /// What was edited, and what each edit was worth.
 pub(super) fn edits(report: &Report<'_>) -> String {
     if report.edits.is_empty() {
@@ -33,7 +36,7 @@ pub(super) fn edits(report: &Report<'_>) -> String {
         }
         row
     });
-    section("What was edited", &table(&header, rows.collect(), "more edits"))
+    section("What was edited", &table(&header, header.len() - 1, &rows.collect::<Vec<_>>(), "more edits"))
 }
 
 /// What the plan does, beside what it did before.
@@ -54,7 +57,10 @@ fn levels(report: &Report<'_>, plan: &Plan) -> String {
         let level = with_unit(&value(&planned.level), unit_of_activity(report.model, &planned.name));
         vec![name_of_activity(report, &planned.name), level, planned.state.words().to_owned()]
     });
-    section("What is made", &table(&["activity", "level", "how it stands"], rows.collect(), "more activities are made"))
+    section(
+        "What is made",
+        &table(&["activity", "level", "how it stands"], 1, &rows.collect::<Vec<_>>(), "more activities are made"),
+    )
 }
 
 fn moves(report: &Report<'_>, comparison: &Comparison) -> String {
@@ -70,7 +76,7 @@ fn moves(report: &Report<'_>, comparison: &Comparison) -> String {
         let moved = change(total(told.before.as_ref()), total(told.after.as_ref()));
         vec![name_of_activity(report, &told.name), before, after, with_unit(&moved, unit)]
     });
-    let mut body = table(&["activity", "before", "now", "change"], rows.collect(), "more levels move");
+    let mut body = table(&["activity", "before", "now", "change"], 3, &rows.collect::<Vec<_>>(), "more levels move");
     for (names, words) in [(&comparison.entered, "Entered the mix"), (&comparison.left, "Left the mix")] {
         if !names.is_empty() {
             body.push_str(&format!("\n{words}: {}.\n", few(names)));
@@ -132,9 +138,9 @@ fn scarce(report: &Report<'_>, plan: &Plan, comparison: Option<&Comparison>) -> 
         });
     }
     binding.sort_by(|a, b| b.weight.total_cmp(&a.weight).then_with(|| a.row.cmp(&b.row)));
-    let rows = binding.into_iter().map(|binding| binding.row).collect();
-    let header = ["what binds", "at", "one more is worth", "as long as it is"];
-    let mut body = table(&header, rows, "more bind");
+    let rows: Vec<_> = binding.into_iter().map(|binding| binding.row).collect();
+    let header = ["what binds", "at", "one more is worth", "holds for"];
+    let mut body = table(&header, 3, &rows, "more bind");
     if let Some(comparison) = comparison.filter(|comparison| !comparison.eases.is_empty()) {
         body.push_str(&format!("\nNo longer scarce: {}.\n", few(&comparison.eases)));
     }
@@ -216,9 +222,9 @@ fn name_of_activity(report: &Report<'_>, name: &Name) -> String {
 
 /// Names in a row, the first of them where there are many.
 fn few(names: &[Name]) -> String {
-    let mut told: Vec<String> = names.iter().take(ROWS).map(|name| Markdown(name.as_str()).to_string()).collect();
-    if names.len() > ROWS {
-        told.push(format!("{} more", names.len() - ROWS));
+    let mut told: Vec<String> = names.iter().take(NAMES).map(|name| Markdown(name.as_str()).to_string()).collect();
+    if names.len() > NAMES {
+        told.push(format!("{} more", names.len() - NAMES));
     }
     listed(&told)
 }
@@ -227,12 +233,15 @@ fn section(title: &str, body: &str) -> String {
     if body.is_empty() { String::new() } else { format!("\n## {title}\n\n{}\n", body.trim_matches('\n')) }
 }
 
-/// A table of at most [`ROWS`] rows, then how many there are beyond; empty without rows. The first column is text, the others numbers.
-fn table(header: &[&str], rows: Vec<Vec<String>>, beyond: &str) -> String {
+/// A table of at most [`ROWS`] rows, then how many there are beyond; empty without rows. The first column is text,
+/// then come `numbers` columns of numbers, then text again.
+fn table(header: &[&str], numbers: usize, rows: &[Vec<String>], beyond: &str) -> String {
     if rows.is_empty() {
         return String::new();
     }
-    let mut out = format!("| {} |\n| --- |{}\n", header.join(" | "), " ---: |".repeat(header.len() - 1));
+    let rule = |column: usize| if (1..=numbers).contains(&column) { " ---: |" } else { " --- |" };
+    let rules: String = (0..header.len()).map(rule).collect();
+    let mut out = format!("| {} |\n|{rules}\n", header.join(" | "));
     for row in rows.iter().take(ROWS) {
         out.push_str(&format!("| {} |\n", row.join(" | ")));
     }

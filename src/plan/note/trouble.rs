@@ -12,14 +12,15 @@ use crate::solver::message::{Conflict, Growth, Rule};
 #[must_use]
 pub fn reason(trouble: Trouble<'_>, model: Option<&Model>) -> String {
     match trouble {
-        Trouble::Faults(faults) => match faults.reported.as_slice() {
-            [] => "the model cannot be read".to_owned(),
-            [only] if faults.more == 0 => format!("the model has a fault: {}{}", where_in_file(only), only.message),
-            [first, ..] => {
-                let number = faults.reported.len() + faults.more;
-                format!("the model has {number} faults, the first: {}{}", where_in_file(first), first.message)
+        Trouble::Faults(faults) => {
+            let Some(first) = faults.reported.first() else { return "the model cannot be read".to_owned() };
+            let place = first.place.as_ref().map_or(String::new(), |place| format!(" in line {}", place.line));
+            let message: String = first.message.chars().take(300).collect();
+            match faults.reported.len() + faults.more {
+                1 => format!("the model has a fault{place}: {message}"),
+                number => format!("the model has {number} faults, the first{place}: {message}"),
             }
-        },
+        }
         Trouble::Infeasible(conflict) if conflict.rules.is_empty() => "the rules contradict each other".to_owned(),
         Trouble::Infeasible(conflict) => {
             let rules: Vec<String> = conflict.rules.iter().take(ROWS).map(|rule| rule_told(rule, model)).collect();
@@ -34,10 +35,6 @@ pub fn reason(trouble: Trouble<'_>, model: Option<&Model>) -> String {
         }
         Trouble::Undecided(why) => format!("the solver cannot tell: {}", why.trim_end_matches('.')),
     }
-}
-
-fn where_in_file(fault: &Fault) -> String {
-    fault.place.as_ref().map_or(String::new(), |place| format!("line {}: ", place.line))
 }
 
 /// What stands below the first sentence of a note without a plan.
@@ -151,8 +148,8 @@ fn rule_told(rule: &Rule, model: Option<&Model>) -> String {
                 (_, Some(Bound::Equals(value))) => ("exactly", first(value)),
                 _ => (way, rule.bound),
             };
-            let share = if own.is_some() { ", as a share" } else { "" };
-            format!("limit {name} ({way} {}{share})", amount(bound))
+            let ratio = if own.is_some() { ", as a ratio" } else { "" };
+            format!("limit {name} ({way} {}{ratio})", amount(bound))
         }
         _ => {
             let unit = model.and_then(|model| model.activities.get(name)?.unit.as_deref());

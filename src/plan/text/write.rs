@@ -134,6 +134,13 @@ fn list(out: &mut String, numbers: &[f64]) {
 }
 
 fn quoted(out: &mut String, text: &str) {
+    if text.bytes().all(|byte| byte.is_ascii_alphanumeric() || matches!(byte, b'_' | b'-' | b' ')) {
+        // Most texts need no escape, and there are thousands.
+        out.push('"');
+        out.push_str(text);
+        out.push('"');
+        return;
+    }
     // Writing to a string cannot fail.
     let _ = write!(out, "{}", Toml(text));
 }
