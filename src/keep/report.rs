@@ -6,6 +6,7 @@ use serde::Serialize;
 
 use crate::model::escape::Plain;
 use crate::model::fault::Fault;
+use crate::plan::compare::Event;
 
 /// What is told about one replan. Serialises to the object of `--json`; texts are not escaped.
 #[derive(Clone, Debug, Default, PartialEq, Serialize)]
@@ -29,7 +30,7 @@ pub struct Report {
     /// The start taken; none where nothing was solved.
     pub start: Option<&'static str>,
     /// The start that the kinds of edit foretold.
-    pub expected_start: Option<&'static str>,
+    pub expected_start: Option<String>,
     /// Simplex iterations.
     pub pivots: usize,
     /// Where the time went.
@@ -41,7 +42,7 @@ pub struct Report {
     /// Prospects whose price has passed their break-even.
     pub would_enter: Vec<String>,
     /// What happened that somebody may want to hear of.
-    pub events: Vec<Happening>,
+    pub events: Vec<Event>,
     /// What is wrong with the model.
     pub faults: Vec<FaultLine>,
 }
@@ -57,16 +58,6 @@ pub struct Milliseconds {
     pub write: f64,
     /// From start to end.
     pub all: f64,
-}
-
-/// One thing that happened.
-#[derive(Clone, Debug, PartialEq, Eq, Serialize)]
-pub struct Happening {
-    /// Its kind: `entered`, `left`, `would_enter`, `binds`, `eases`, `moved`, `held`, `mended`.
-    pub event: &'static str,
-    /// What it is about: an activity or a resource; left out where it is the model.
-    #[serde(skip_serializing_if = "Option::is_none")]
-    pub name: Option<String>,
 }
 
 /// One fault, as the object of `--json` has it.
@@ -149,7 +140,7 @@ mod tests {
             aim_before: Some(43_265.1),
             edit: vec!["capacity"],
             start: Some("dual"),
-            expected_start: Some("dual"),
+            expected_start: Some("dual".into()),
             pivots: 3,
             milliseconds: Milliseconds { all: 4.06, ..Milliseconds::default() },
             ..Report::default()

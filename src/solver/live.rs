@@ -40,6 +40,12 @@ pub struct Stop {
 }
 
 impl Stop {
+    /// One that is asked to end by raising `flag`.
+    #[must_use]
+    pub fn watching(flag: Arc<AtomicBool>) -> Self {
+        Self { stop: flag, pivots: Arc::default() }
+    }
+
     /// Asks the solve to end as soon as it looks.
     pub fn stop(&self) {
         self.stop.store(true, Ordering::Relaxed);
