@@ -4,7 +4,7 @@
 mod instances;
 
 use millreeve::lp::{build, mps};
-use millreeve::solver::{live::Stop, message::Outcome, session::Session};
+use millreeve::solver::{message::Outcome, session::Session, stop::Stop};
 use std::time::Duration;
 
 #[test]

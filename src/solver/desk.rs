@@ -3,8 +3,8 @@
 use std::collections::BTreeMap;
 use std::time::Duration;
 
-use super::live::Stop;
 use super::message::{Answer, Last, ModelKey, Outcome, Request, Task};
+use super::stop::Stop;
 use super::worker::Solver;
 use crate::lp::{Difference, Program};
 

@@ -2,9 +2,10 @@
 
 use super::basis::Position;
 use super::cold;
-use super::live::{Ending, Refusal, Stop};
+use super::live::{Ending, Refusal};
 use super::look::Look;
 use super::proof::TOLERANCE;
+use super::stop::Stop;
 use crate::lp::{Program, Sense};
 
 /// Whether no basic column or row stands at a bound of its own: then the worths are unique.

@@ -2,9 +2,9 @@
 
 use std::collections::BTreeMap;
 
-use super::live::Stop;
 use super::message::{Account, Answer, ModelKey, Outcome, Request, Task};
 use super::session::Session;
+use super::stop::Stop;
 use crate::lp::Program;
 
 /// Memory a live instance takes per entry, column or row, in bytes: measured between 350 and 560 per entry.

@@ -26,8 +26,8 @@ use crate::plan::note::{Reckoning, Trouble, Verdict};
 use crate::plan::text::{self, marked};
 use crate::plan::{self, Plan, Standing};
 use crate::solver::desk::Desk;
-use crate::solver::live;
 use crate::solver::message::{Account, Answer, ModelKey, Optimum, Outcome};
+use crate::solver::stop;
 use crate::solver::worker::Worker;
 use crate::store::{Record, StoreError, Written};
 
@@ -193,7 +193,7 @@ impl Replanner {
         let program = build(&read.model);
         let edits = known.as_ref().map(|known| compare(&known.model, &read.model)).unwrap_or_default();
         let key = ModelKey(job.path.relative().to_string_lossy().into_owned());
-        let solver_stop = live::Stop::watching(stop.flag());
+        let solver_stop = stop::Stop::watching(stop.flag());
         if !self.memory.solved_last(&job.path, self.number) {
             self.desk.forget(&key);
         }
