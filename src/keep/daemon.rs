@@ -1,10 +1,11 @@
-//! The dispatcher: one closed set of events, one owner of all state. An event in, a list of actions out; time is passed in.
+//! The dispatcher: the one owner of the daemon's state. An event in, a list of actions out; time is passed in.
 
 use std::collections::{BTreeMap, BTreeSet};
-use std::path::{Path, PathBuf};
+use std::path::Path;
 use std::sync::Arc;
 use std::time::{Duration, Instant};
 
+use super::event::{Action, Event, Scanned, Weight};
 use super::path::ModelPath;
 use super::pool::{Job, Replanned, What, Word, Worker};
 use super::queue::Queue;
@@ -26,66 +27,6 @@ const FIRST_PAUSE: Duration = Duration::from_secs(1);
 const LONGEST_PAUSE: Duration = Duration::from_secs(60);
 /// How long workers have to give up when the daemon ends.
 const END_WITHIN: Duration = Duration::from_millis(1500);
-
-/// All that can happen to the daemon.
-#[derive(Debug)]
-pub enum Event {
-    /// The system says that something may have changed.
-    Hint(Hint),
-    /// A scan is done.
-    Scanned(Scanned),
-    /// The folder was claimed: locked and, where events are used, watched.
-    Claimed(FolderId),
-    /// The folder could not be claimed again: why. The next scan asks anew.
-    Unclaimed(String),
-    /// A worker says something.
-    Word(Word),
-    /// The time that [`Dispatcher::wake`] named has come.
-    Tick,
-    /// The daemon is to end.
-    Stop,
-}
-
-/// A scan that is done.
-#[derive(Debug)]
-pub struct Scanned {
-    /// When it began.
-    pub began: Instant,
-    /// What it found, or why the folder cannot be read.
-    pub found: Result<Scan, String>,
-    /// Whether the lock on the folder was still in place.
-    pub locked: bool,
-}
-
-/// What the loop around the dispatcher is to do.
-#[derive(Debug)]
-pub enum Action {
-    /// Scan the folder.
-    Scan,
-    /// Give a worker a job.
-    Run(Worker, Job),
-    /// Raise the stop flag of the job that a worker has in hand.
-    Interrupt(Worker),
-    /// Remove those of these temporary files that are orphans.
-    Sweep(Vec<PathBuf>),
-    /// Claim the folder again: another one stands in its place, or the lock is gone.
-    Claim,
-    /// Pass on what came of a job.
-    Tell(ModelPath, Replanned),
-    /// Log a line.
-    Say(Weight, String),
-    /// End.
-    End,
-}
-
-/// How much a log line weighs.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Weight {
-    /// As it should be.
-    Info,
-    /// Somebody should look at it.
-    Warning,
-}
 
 /// A model that could not be planned for a reason outside it.
 #[derive(Debug)]
@@ -245,7 +186,7 @@ impl Dispatcher {
     fn tick(&mut self, now: Instant, actions: &mut Vec<Action>) {
         for open in self.settling.quiet(now) {
             let text = format!(
-                "{}: still open for writing since {} s ago, and nothing was written for a while; it is read as it is",
+                "{}: still open for writing after {} s, though nothing has been written for a while; it is read as it is",
                 open.model,
                 open.age.as_secs()
             );

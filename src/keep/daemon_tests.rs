@@ -1,5 +1,7 @@
 //! The dispatcher under made-up time: what it does about each event.
 
+use std::path::PathBuf;
+
 use super::*;
 use crate::keep::report::Report;
 
@@ -145,7 +147,7 @@ fn a_half_written_model_is_not_read() {
     bench.hint(Hint::Writing, "a");
     bench.pass(11 * SECOND);
     assert!(
-        bench.said.iter().any(|text| text.contains("a.model.toml: still open for writing since 10 s")),
+        bench.said.iter().any(|text| text.contains("a.model.toml: still open for writing after 10 s")),
         "{:?}",
         bench.said
     );

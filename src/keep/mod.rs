@@ -4,6 +4,7 @@
 //! rests on, events only cut the delay.
 
 pub mod daemon;
+pub mod event;
 pub mod once;
 pub mod path;
 pub mod pool;

@@ -9,7 +9,8 @@ use tokio::sync::mpsc::{UnboundedSender, unbounded_channel};
 use tokio::task::spawn_blocking;
 use tokio::time::sleep_until;
 
-use super::daemon::{Action, Dispatcher, Event, Scanned, Weight};
+use super::daemon::Dispatcher;
+use super::event::{Action, Event, Scanned, Weight};
 use super::path::{Ignore, IgnoreError, ModelPath};
 use super::pool::{Factory, Pool, Replanned, Stop, Worker};
 use super::scan::{FolderId, scan};

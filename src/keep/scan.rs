@@ -17,10 +17,10 @@ pub struct Stamp {
     device: u64,
     inode: u64,
     size: u64,
-    /// Nanoseconds since 1970.
-    modified: i128,
-    /// Nanoseconds since 1970; moves with every write and cannot be set back.
-    changed: i128,
+    /// Seconds since 1970, and nanoseconds.
+    modified: (i64, i64),
+    /// The same; moves with every write and cannot be set back.
+    changed: (i64, i64),
 }
 
 impl Stamp {
@@ -33,19 +33,18 @@ impl Stamp {
     /// When the file last changed by the clock of its file system, in nanoseconds since 1970.
     #[must_use]
     pub fn changed(&self) -> i128 {
-        self.changed
+        i128::from(self.changed.0) * 1_000_000_000 + i128::from(self.changed.1)
     }
 }
 
 impl From<&Metadata> for Stamp {
     fn from(metadata: &Metadata) -> Self {
-        let nanoseconds = |seconds: i64, rest: i64| i128::from(seconds) * 1_000_000_000 + i128::from(rest);
         Self {
             device: metadata.dev(),
             inode: metadata.ino(),
             size: metadata.size(),
-            modified: nanoseconds(metadata.mtime(), metadata.mtime_nsec()),
-            changed: nanoseconds(metadata.ctime(), metadata.ctime_nsec()),
+            modified: (metadata.mtime(), metadata.mtime_nsec()),
+            changed: (metadata.ctime(), metadata.ctime_nsec()),
         }
     }
 }
