@@ -74,6 +74,11 @@ impl Findings {
         }
     }
 
+    /// Counts faults that come after those that are reported.
+    pub(super) fn pass_over(&mut self, count: usize) {
+        self.dropped += count;
+    }
+
     /// Whether nothing was found.
     pub(super) fn is_empty(&self) -> bool {
         self.kept.is_empty()

@@ -7,7 +7,7 @@ use super::duplicate;
 use super::findings::{Findings, Span, shown};
 use super::source::Source;
 use super::toml_types::Table;
-use crate::model::fault::Faults;
+use crate::model::fault::{Faults, MOST_REPORTED};
 use crate::model::types::Model;
 
 /// The largest text in which the parser looks for more than one fault: recovering takes it many times the memory.
@@ -34,15 +34,19 @@ fn faults(source: Source<'_>, first: Error) -> Faults {
         if source.text.len() <= MOST_RECOVERED { DeTable::parse_recoverable(source.text).1 } else { vec![first] };
     let mut placed: Vec<(Span, &Error)> = errors.iter().map(|error| (span(source, error), error)).collect();
     placed.sort_by_key(|(span, _)| span.start);
-    let mut findings = Findings::default();
+    // What follows on the same line is mostly the first fault again.
     let mut line_end = 0;
-    for (span, error) in placed {
-        // What follows on the same line is mostly the first fault again.
-        if span.start < line_end {
-            continue;
+    placed.retain(|(span, _)| {
+        let first = span.start >= line_end;
+        if first {
+            let (start, line) = source.line_at(span.start);
+            line_end = start + line.len() + 1;
         }
-        let (start, line) = source.line_at(span.start);
-        line_end = start + line.len() + 1;
+        first
+    });
+    let mut findings = Findings::default();
+    findings.pass_over(placed.len().saturating_sub(MOST_REPORTED));
+    for (span, error) in placed.into_iter().take(MOST_REPORTED) {
         tell(source, &span, error.message(), &mut findings);
     }
     findings.finish(source, &Model::default())
