@@ -1,5 +1,7 @@
 //! Reading models: what a good one becomes, and what is said about a bad one.
 
+#![expect(clippy::unwrap_used, reason = "helpers of tests stop at what they did not expect")]
+
 #[path = "reading/faults.rs"]
 mod faults;
 #[path = "reading/files.rs"]

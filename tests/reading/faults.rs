@@ -62,7 +62,7 @@ fn keys_and_types() {
 fn references() {
     insta::assert_snapshot!(told(&[
         ("kiln = 0.020", "kilm = 0.020"),
-        ("kiln = 0.020", "k\u{456}ln = 0.020"),
+        ("kiln = 0.020", "\"k\u{456}ln\" = 0.020"),
         ("kiln = 0.020", "packing_line = 0.020"),
         ("kiln = 0.020", "\"kiln.capacity\" = 0.020"),
         ("terms    = { wall_tile = 1.0 }", "terms = { wal_tile = 1.0 }"),
@@ -167,6 +167,7 @@ fn syntax() {
         ("unit     = \"h\"", "unit = \"\"\"h"),
         ("tags     = [\"glazed\"]", "tags = [\"glazed\""),
         ("tags     = [\"glazed\"]", "tags = [\"glazed\" \"small\"]"),
+        ("tags     = [\"glazed\"]", "tags = [\n\"glazed\"\n\"small\"\n]"),
         ("tags     = [\"glazed\"]", "tags = [,]"),
         ("uses     = { kiln = 0.045, press = 0.02, dryer = 1 }", "uses = { kiln = 0.045, press = 0.02"),
         ("uses     = { kiln = 0.045, press = 0.02, dryer = 1 }", "uses = { kiln = 0.045 press = 0.02 }"),
@@ -226,7 +227,9 @@ fn beyond_twenty_faults_are_counted() {
 
 #[test]
 fn a_fault_has_a_form_for_each_reader() {
-    let faults = bad(edited("kiln = 0.020", "kilm\u{456} = 0.020").replace("EUR\"", "\u{1F}\"").as_bytes());
+    let faults = bad(edited("kiln = 0.020", "\"k\u{456}ln\" = 0.020")
+        .replace("press = 0.02,", "\"\\u001b[2J\" = 1,")
+        .as_bytes());
     insta::assert_snapshot!("on_a_line", faults.to_string());
     insta::assert_snapshot!("in_a_note", faults.markdown());
     insta::assert_snapshot!("in_colour", faults.terminal(true).to_string().replace('\u{1b}', "␛"));

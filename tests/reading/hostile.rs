@@ -73,7 +73,7 @@ fn long_names_texts_and_lines_are_cut() {
 fn files_too_large_to_plan() {
     let cases = [
         "#".repeat(MOST_BYTES + 1),
-        "\n".repeat(MOST_LINES + 1),
+        format!("format = 1{}", "\n".repeat(MOST_LINES + 1)),
         format!("format = 1\nx = [{}]", "1,".repeat(4_000_000)),
         format!(
             "format = 1\n{}",

@@ -6,7 +6,7 @@ use super::keys::Keys;
 use super::near;
 use super::source::Source;
 use crate::model::fault::{Fault, Faults, MOST_REPORTED};
-use crate::model::name::Name;
+use crate::model::name::{LONGEST, Name, NameError};
 use crate::model::types::Model;
 
 /// A place in the text, as byte offsets.
@@ -123,6 +123,8 @@ fn nearest(wrong: &str, among: Among, model: &Model) -> String {
 fn declare(section: &str, name: &str) -> String {
     match Name::new(name) {
         Ok(_) => format!("add a table `[{section}.{}]`, or take it out here", quoted(name)),
+        // The name may have been cut, so its own length would mislead.
+        Err(NameError::TooLong(_)) => format!("a name has at most {LONGEST} characters"),
         Err(error) => error.to_string(),
     }
 }
