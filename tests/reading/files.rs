@@ -70,11 +70,19 @@ fn a_file_too_large_is_not_read() {
     assert_eq!(read::file(&folder.path().join("sparse")).unwrap().len(), MOST_BYTES);
 }
 
-/// Files of the system without a size of their own, such as those under `/proc`, are read to their end all the same.
+/// The system's own files say that they are empty.
 #[test]
-fn the_cap_holds_while_reading() {
-    let read = read::file(Path::new("/proc/self/status")).unwrap();
-    assert!(!read.is_empty());
+fn a_file_is_read_to_its_end_whatever_size_was_told() {
+    assert!(!read::file(Path::new("/proc/self/status")).unwrap().is_empty());
+}
+
+#[test]
+fn what_may_not_be_read_is_told_apart() {
+    let error = FileProblem::Forbidden("works.model.toml".into());
+    assert_eq!(
+        (error.kind(), error.to_string()),
+        told(ErrorKind::PermissionDenied, "works.model.toml: no permission to read it")
+    );
 }
 
 #[test]
