@@ -194,6 +194,7 @@ fn given_twice() {
         ("capacity = 168", "capacity = 168\ncapacity = 170"),
         ("[resources.press]", "[resources.kiln]"),
         ("[resources.press]", "[resources.\"kiln\"]"),
+        ("[resources.press]", "[resources.kiln]\n[resources.oven]\nunit = \"m\""),
         ("kiln = 0.020", "kiln = 0.020, kiln = 0.021"),
         ("[resources.press]", "[activities.floor_tile.uses]\n[resources.press]"),
         ("currency = \"EUR\"", "currency = \"EUR\"\nresources.kiln.cost = 2"),

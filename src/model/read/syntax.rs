@@ -71,8 +71,9 @@ impl Echo {
         self.garbled |= !twice;
         self.open = left_open(source, span, told);
         if twice && line.trim_start().starts_with('[') {
-            let rest = source.text.get(self.line_end..).unwrap_or_default();
-            self.table_end = self.line_end + rest.find("\n[").unwrap_or(rest.len());
+            let from = start + line.len();
+            let rest = source.text.get(from..).unwrap_or_default();
+            self.table_end = from + rest.find("\n[").unwrap_or(rest.len());
         }
         false
     }
