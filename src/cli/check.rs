@@ -5,9 +5,10 @@ use std::path::{Path, PathBuf};
 use serde::Serialize;
 
 use super::Setting;
-use super::exit::{Error, Outcome, text};
-use super::models::{self, Ignored};
+use super::exit::{Error, Outcome, shown, text};
+use super::models;
 use super::screen::{BAD, GOOD, Screen, WARN};
+use crate::keep::Ignore;
 use crate::model::read::{self, FileProblem, Reading};
 use crate::model::{Fault, Faults};
 
@@ -29,17 +30,24 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
     let mut tally = Tally::default();
     for path in paths {
         let settings = setting.for_path(path)?;
-        for model in models::under(path, &Ignored::new(&settings.ignore)?)? {
+        let ignore = Ignore::new(&settings.keep.ignore).map_err(|error| Error::usage(error, ""))?;
+        let found = models::under(path, &ignore)?;
+        for folder in &found.unread {
+            tally.refused = true;
+            screen.error(&Error::failure(format_args!("cannot read the folder {}", shown(folder)), ""));
+        }
+        for model in &found.models {
             tally.models += 1;
-            one(screen, &model, &mut tally);
+            one(screen, model, &mut tally);
         }
     }
-    if tally.models == 0 {
+    if tally.models == 0 && !tally.refused {
         let help = format!("a model is a file whose name ends in {}", models::MODEL);
         return Err(Error::usage("there is no model to check", help));
     }
     if screen.out_is_terminal() && !screen.json() {
-        screen.say(tally.words());
+        let gap = if tally.faulty > 0 { "\n" } else { "" };
+        screen.say(format_args!("{gap}{}", tally.words()));
     }
     Ok(tally.outcome())
 }
@@ -105,8 +113,8 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
     }
     if count > 0 {
         // The screen takes the colours out again where they are not wanted.
-        screen.say(faults.terminal(true).to_string().trim_end_matches('\n'));
-        screen.say("");
+        let gap = if tally.faulty > 1 { "\n" } else { "" };
+        screen.say(format_args!("{gap}{}", faults.terminal(true).to_string().trim_end_matches('\n')));
     }
     for warning in &warnings {
         screen.aside(format_args!("{WARN}odd, but no fault:{WARN:#} {}\n", warning.terminal(false)));

@@ -5,7 +5,7 @@ use std::path::Path;
 use super::check::unreadable;
 use super::demo::failed;
 use super::exit::{Error, Outcome, shown, text};
-use super::models::{MODEL, is_model};
+use super::models::{MODEL, names_model};
 use super::screen::{Screen, WARN};
 use crate::lp::mps::{self, Warnings};
 use crate::model::escape::Plain;
@@ -22,7 +22,7 @@ enum Kind {
 impl Kind {
     fn of(path: &Path) -> Result<Self, Error> {
         let is_mps = path.extension().is_some_and(|ending| ending.eq_ignore_ascii_case("mps"));
-        match (is_mps, is_model(path)) {
+        match (is_mps, names_model(path)) {
             (true, _) => Ok(Self::Mps),
             (false, true) => Ok(Self::Model),
             (false, false) => {

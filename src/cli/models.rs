@@ -3,10 +3,12 @@
 use std::collections::BTreeSet;
 use std::fs;
 use std::path::{Path, PathBuf};
-
-use globset::{Glob, GlobSet, GlobSetBuilder};
+use std::sync::Arc;
 
 use super::exit::{Error, shown};
+use crate::keep::path::is_model;
+use crate::keep::scan::{Scan, scan};
+use crate::keep::{Ignore, ModelPath};
 
 /// How the name of a model file ends.
 pub(crate) const MODEL: &str = ".model.toml";
@@ -15,73 +17,36 @@ pub(crate) const PLAN: &str = ".plan.toml";
 /// How the name of a note ends.
 pub(crate) const NOTE: &str = ".note.md";
 
-/// How deep folders are followed.
-const DEEPEST: usize = 64;
-
-/// Which files of a folder are not looked at.
-pub(crate) struct Ignored(GlobSet);
-
-impl Ignored {
-    /// What `globs` match.
-    pub(crate) fn new(globs: &[Glob]) -> Result<Self, Error> {
-        let mut builder = GlobSetBuilder::new();
-        for glob in globs {
-            builder.add(glob.clone());
-        }
-        let set =
-            builder.build().map_err(|error| Error::usage(format_args!("`watch.ignore` is too much: {error}"), ""))?;
-        Ok(Self(set))
-    }
+/// What a path on the command line means.
+#[derive(Debug, Default, PartialEq, Eq)]
+pub(crate) struct Found {
+    /// The models, also those that are named like one and are no plain file.
+    pub(crate) models: BTreeSet<PathBuf>,
+    /// Folders that could not be read.
+    pub(crate) unread: Vec<PathBuf>,
 }
 
-/// All models that `path` means, in byte order: the file itself, or every model in the folder and those below it that `ignored`
-/// does not match. Links are not followed and hidden folders not entered.
-pub(crate) fn under(path: &Path, ignored: &Ignored) -> Result<BTreeSet<PathBuf>, Error> {
+/// All models that `path` means: the file itself, or every model in the folder and those below it that `ignore` does not cover.
+pub(crate) fn under(path: &Path, ignore: &Ignore) -> Result<Found, Error> {
     let about = fs::symlink_metadata(path).map_err(|error| Error::reading(path, &error))?;
-    let mut models = BTreeSet::new();
-    if about.is_dir() {
-        walk(path, path, ignored, 0, &mut models)?;
-    } else if is_model(path) {
-        models.insert(path.to_owned());
-    } else {
+    if path.is_dir() && (about.is_dir() || !names_model(path)) {
+        let root = Arc::from(path);
+        let Scan { sights, odd, unread, .. } = scan(&root, ignore).map_err(|error| Error::reading(path, &error))?;
+        // A plan without a model is no model.
+        let models = sights.into_iter().filter(|(_, sight)| sight.model.is_some()).map(|(model, _)| model);
+        let models = models.chain(odd).map(|model: ModelPath| model.full()).collect();
+        return Ok(Found { models, unread: unread.into_iter().map(|folder| root.join(folder)).collect() });
+    }
+    if !names_model(path) {
         let help = format!("the name of a model ends in {MODEL}");
         return Err(Error::usage(format_args!("{} is not a model", shown(path)), help));
     }
-    Ok(models)
+    Ok(Found { models: BTreeSet::from([path.to_owned()]), unread: Vec::new() })
 }
 
-fn walk(
-    root: &Path,
-    folder: &Path,
-    ignored: &Ignored,
-    depth: usize,
-    models: &mut BTreeSet<PathBuf>,
-) -> Result<(), Error> {
-    let entries = fs::read_dir(folder).map_err(|error| Error::reading(folder, &error))?;
-    for entry in entries {
-        let entry = entry.map_err(|error| Error::reading(folder, &error))?;
-        let path = entry.path();
-        if hidden(&path) || ignored.0.is_match(path.strip_prefix(root).unwrap_or(&path)) {
-            continue;
-        }
-        let kind = entry.file_type().map_err(|error| Error::reading(&path, &error))?;
-        if kind.is_dir() && depth < DEEPEST {
-            walk(root, &path, ignored, depth + 1, models)?;
-        } else if !kind.is_dir() && is_model(&path) {
-            models.insert(path);
-        }
-    }
-    Ok(())
-}
-
-fn hidden(path: &Path) -> bool {
-    path.file_name().is_some_and(|name| name.as_encoded_bytes().starts_with(b"."))
-}
-
-/// Whether a file is a model by its name: it ends in [`MODEL`], with something before, and is no editor's lock or hidden file.
-pub(crate) fn is_model(path: &Path) -> bool {
-    let Some(name) = path.file_name().map(std::ffi::OsStr::as_encoded_bytes) else { return false };
-    name.len() > MODEL.len() && name.ends_with(MODEL.as_bytes()) && !matches!(name.first(), Some(b'.' | b'#'))
+/// Whether a path is that of a model, by its name.
+pub(crate) fn names_model(path: &Path) -> bool {
+    path.file_name().is_some_and(is_model)
 }
 
 /// `path` with another ending: the model, the plan and the note of one name.
@@ -103,6 +68,7 @@ pub(crate) fn stem(path: &Path) -> PathBuf {
 }
 
 #[cfg(test)]
+#[expect(clippy::disallowed_methods, reason = "tests lay out files as other programs would")]
 mod tests {
     use super::*;
 
@@ -118,9 +84,13 @@ mod tests {
             fs::write(at(name), "").unwrap();
         }
         fs::write(at(".git/c.model.toml"), "").unwrap();
-        let ignored = Ignored::new(&[Glob::new("old*").unwrap()]).unwrap();
-        let found = under(folder.path(), &ignored).unwrap();
-        assert_eq!(found.into_iter().collect::<Vec<_>>(), [at("b.model.toml"), at("deep/er/a.model.toml")]);
+        let ignore = Ignore::new(&["old*".to_owned()]).unwrap();
+        let found = under(folder.path(), &ignore).unwrap();
+        assert_eq!(found.models.into_iter().collect::<Vec<_>>(), [at("b.model.toml"), at("deep/er/a.model.toml")]);
+        let alone = under(&at("old.model.toml"), &ignore).unwrap();
+        assert_eq!(alone.models.into_iter().collect::<Vec<_>>(), [at("old.model.toml")]);
+        assert_eq!(under(&at("b.plan.toml"), &ignore).unwrap_err().status(), 2);
+        assert_eq!(under(&at("nothing"), &ignore).unwrap_err().status(), 2);
     }
 
     #[test]

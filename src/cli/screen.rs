@@ -106,7 +106,7 @@ impl Screen {
             self.aside(json::line(&serde_json::json!({ "error": error.message(), "help": error.help() })));
             return;
         }
-        self.aside(format_args!("{BAD}millreeve:{BAD:#} {}", error.message()));
+        self.aside(format_args!("{BAD}error:{BAD:#} {}", error.message()));
         if !error.help().is_empty() {
             self.aside(format_args!("  {HINT}{}{HINT:#}", error.help()));
         }

@@ -131,24 +131,23 @@ fn from_file(settings: &mut Settings, path: &Path, text: &str, may_set: impl Fn(
             let Some(known) = Key::ALL.into_iter().find(|known| known.address() == address) else {
                 return Err(wrong(key.span().start, format!("no setting `{}`", Plain(&address)), nearest(&address)));
             };
-            settings.set(known, &given(value.get_ref())).map_err(|takes| {
-                let found = given(value.get_ref()).word();
-                wrong(
-                    value.span().start,
-                    format!("`{address}` cannot be {}: {takes}", told(&given(value.get_ref()), found)),
-                    String::new(),
-                )
+            let given = given(value.get_ref());
+            settings.set(known, &given).map_err(|takes| {
+                let message = format!("`{address}` cannot be {}: {takes}", told(&given));
+                wrong(value.span().start, message, String::new())
             })?;
         }
     }
     Ok(())
 }
 
-fn told(given: &Given, word: &str) -> String {
+/// A value as a message names it.
+fn told(given: &Given) -> String {
     match given {
         Given::Text(text) => format!("\"{}\"", Plain(text)),
         Given::Number(number) => number.to_string(),
-        _ => word.to_owned(),
+        Given::Texts(_) => "this list".to_owned(),
+        Given::Other(words) => (*words).to_owned(),
     }
 }
 
@@ -228,9 +227,11 @@ fn line_of(text: &str, at: usize) -> usize {
 }
 
 #[cfg(test)]
+#[expect(clippy::disallowed_methods, reason = "tests lay out files as other programs would")]
 mod tests {
     use super::*;
-    use crate::cli::settings::{LogFormat, WatchBy};
+    use crate::cli::settings::LogFormat;
+    use crate::keep::By;
     use std::time::Duration;
 
     fn parsed(text: &str) -> Result<Settings, String> {
@@ -247,7 +248,7 @@ mod tests {
     #[test]
     fn the_commented_default_says_the_defaults_and_names_every_key() {
         let text = include_str!("../../../config/millreeve.toml");
-        assert_eq!(parsed(text), Ok(Settings::default()));
+        assert_eq!(format!("{:?}", parsed(text).unwrap()), format!("{:?}", Settings::default()));
         let document: toml::Table = text.parse().unwrap();
         for key in Key::ALL {
             let (group, name) = key.parts();
@@ -261,13 +262,13 @@ mod tests {
             [solve]\nworkers = 3\ntime_limit = \"7 s\"\nmemory_limit = \"9 MiB\"\n\
             [state]\ndir = \"/var/lib/m\"\n[log]\nformat = \"json\"\nlevel = \"warn\"\n";
         let settings = parsed(text).unwrap();
-        assert_eq!(settings.by, WatchBy::Poll);
-        assert_eq!(settings.scan_every, Duration::from_secs(5));
-        assert_eq!(settings.ignore.iter().map(globset::Glob::glob).collect::<Vec<_>>(), ["old/**"]);
-        assert_eq!(settings.workers.map(usize::from), Some(3));
-        assert_eq!(settings.time_limit, Duration::from_secs(7));
-        assert_eq!(settings.memory_limit, 9 << 20);
-        assert_eq!(settings.state_dir, Path::new("/var/lib/m"));
+        assert_eq!(settings.keep.by, By::Poll);
+        assert_eq!(settings.keep.scan_every, Duration::from_secs(5));
+        assert_eq!(settings.keep.ignore, ["old/**"]);
+        assert_eq!(settings.keep.workers, 3);
+        assert_eq!(settings.keep.time_limit, Duration::from_secs(7));
+        assert_eq!(settings.keep.memory_limit, Some(9 << 20));
+        assert_eq!(settings.keep.state_dir.as_deref(), Some(Path::new("/var/lib/m")));
         assert_eq!(settings.log_format, LogFormat::Json);
         assert_eq!(settings.log_level, tracing::level_filters::LevelFilter::WARN);
     }
@@ -279,7 +280,7 @@ mod tests {
             ("\n[wach]\n", "s.toml:2: no group [wach] in the settings / did you mean `watch`?"),
             (
                 "[log]\n\nlevel = 3",
-                "s.toml:3: `log.level` cannot be 3: it is one of \"error\" or \"warn\" or \"info\" or \"debug\" or \"trace\" / ",
+                "s.toml:3: `log.level` cannot be 3: it is one of \"error\", \"warn\", \"info\", \"debug\", \"trace\" / ",
             ),
             (
                 "[solve]\nworkers = -1",
@@ -288,7 +289,7 @@ mod tests {
             ("watch = 3", "s.toml:1: [watch] is a group of keys, not a value / "),
         ];
         for (text, expected) in cases {
-            assert_eq!(parsed(text), Err(expected.to_owned()));
+            assert_eq!(parsed(text).unwrap_err(), expected);
         }
         assert!(parsed("[watch]\nby = ").unwrap_err().starts_with("s.toml:2: "));
         assert!(parsed("[watch]\nignore = [\"a[\"]").unwrap_err().contains("watch.ignore"));
@@ -303,9 +304,9 @@ mod tests {
             .unwrap();
         let given = environment(&[("MILLREEVE_SOLVE_MEMORY_LIMIT", "3 MiB"), ("OTHER", "x")]);
         let settings = load_for_folder(Some(&config), folder.path(), given).unwrap();
-        assert_eq!(settings.workers.map(usize::from), Some(1));
-        assert_eq!(settings.time_limit, Duration::from_secs(2));
-        assert_eq!(settings.memory_limit, 3 << 20);
+        assert_eq!(settings.keep.workers, 1);
+        assert_eq!(settings.keep.time_limit, Duration::from_secs(2));
+        assert_eq!(settings.keep.memory_limit, Some(3 << 20));
     }
 
     #[test]
@@ -322,9 +323,9 @@ mod tests {
             let mut settings = Settings::default();
             from_environment(&mut settings, environment(&[(name, value)])).map(|()| settings)
         };
-        assert_eq!(of("MILLREEVE_SOLVE_WORKERS", "4").unwrap().workers.map(usize::from), Some(4));
-        assert_eq!(of("MILLREEVE_WATCH_IGNORE", "a/**").unwrap().ignore.len(), 1);
-        assert_eq!(of("MILLREEVE_WATCH_IGNORE", "[\"a\", \"b\"]").unwrap().ignore.len(), 2);
+        assert_eq!(of("MILLREEVE_SOLVE_WORKERS", "4").unwrap().keep.workers, 4);
+        assert_eq!(of("MILLREEVE_WATCH_IGNORE", "a/**").unwrap().keep.ignore.len(), 1);
+        assert_eq!(of("MILLREEVE_WATCH_IGNORE", "[\"a\", \"b\"]").unwrap().keep.ignore.len(), 2);
         let wrong = of("MILLREEVE_SOLVE_WORKER", "4").unwrap_err();
         assert_eq!(wrong.help(), "did you mean `MILLREEVE_SOLVE_WORKERS`?");
         assert!(

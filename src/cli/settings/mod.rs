@@ -4,45 +4,24 @@ mod load;
 mod units;
 
 use std::num::NonZeroUsize;
-use std::path::PathBuf;
-use std::time::Duration;
+use std::path::{Path, PathBuf};
 
-use globset::Glob;
 use tracing::level_filters::LevelFilter;
 
+use crate::keep::{self, By, Ignore};
+use crate::store::folder::OWN;
 pub(crate) use load::{Wrong, load, load_for_folder};
 use units::{duration, size};
 
 /// All settings, with their defaults where nothing else is said. `config/millreeve.toml` says what each means.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug)]
 pub(crate) struct Settings {
-    /// How edits are noticed.
-    pub(crate) by: WatchBy,
-    /// The least time between two scans of the folder.
-    pub(crate) scan_every: Duration,
-    /// Globs of what is not looked at, relative to the folder.
-    pub(crate) ignore: Vec<Glob>,
-    /// How many models are solved at a time; `None`: one per processor.
-    pub(crate) workers: Option<NonZeroUsize>,
-    /// How long one solve may take.
-    pub(crate) time_limit: Duration,
-    /// How many bytes the live models may take together.
-    pub(crate) memory_limit: u64,
-    /// Where the daemon's own state lies, relative to the kept folder.
-    pub(crate) state_dir: PathBuf,
+    /// How models are watched and solved, and where the state lies.
+    pub(crate) keep: keep::Settings,
     /// How the log is written.
     pub(crate) log_format: LogFormat,
     /// What is logged.
     pub(crate) log_level: LevelFilter,
-}
-
-/// How edits are noticed.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub(crate) enum WatchBy {
-    /// By events of the file system, with a scan now and then.
-    Events,
-    /// By scanning alone.
-    Poll,
 }
 
 /// How the log is written.
@@ -56,17 +35,8 @@ pub(crate) enum LogFormat {
 
 impl Default for Settings {
     fn default() -> Self {
-        Self {
-            by: WatchBy::Events,
-            scan_every: Duration::from_secs(2),
-            ignore: Vec::new(),
-            workers: None,
-            time_limit: Duration::from_secs(60),
-            memory_limit: 1 << 30,
-            state_dir: PathBuf::from(".millreeve"),
-            log_format: LogFormat::Text,
-            log_level: LevelFilter::INFO,
-        }
+        let keep = keep::Settings { memory_limit: Some(1 << 30), ..keep::Settings::default() };
+        Self { keep, log_format: LogFormat::Text, log_level: LevelFilter::INFO }
     }
 }
 
@@ -134,7 +104,7 @@ enum Given {
     Text(String),
     Number(u64),
     Texts(Vec<String>),
-    /// Something no key takes, with the word for it.
+    /// Something no key takes, with the words for it.
     Other(&'static str),
 }
 
@@ -145,28 +115,21 @@ impl Given {
             _ => None,
         }
     }
-
-    fn word(&self) -> &'static str {
-        match self {
-            Self::Text(_) => "a text",
-            Self::Number(_) => "a number",
-            Self::Texts(_) => "a list",
-            Self::Other(word) => word,
-        }
-    }
 }
 
 impl Settings {
     /// Sets one key. On failure says what the key takes instead.
     fn set(&mut self, key: Key, given: &Given) -> Result<(), String> {
         match key {
-            Key::WatchBy => self.by = choice(given, &[("events", WatchBy::Events), ("poll", WatchBy::Poll)])?,
-            Key::WatchScanEvery => self.scan_every = duration(given)?,
-            Key::WatchIgnore => self.ignore = globs(given)?,
-            Key::SolveWorkers => self.workers = workers(given)?,
-            Key::SolveTimeLimit => self.time_limit = duration(given)?,
-            Key::SolveMemoryLimit => self.memory_limit = size(given)?,
-            Key::StateDir => self.state_dir = folder(given)?,
+            Key::WatchBy => self.keep.by = choice(given, &[("events", By::Events), ("poll", By::Poll)])?,
+            Key::WatchScanEvery => self.keep.scan_every = duration(given)?,
+            Key::WatchIgnore => self.keep.ignore = globs(given)?,
+            Key::SolveWorkers => {
+                self.keep.workers = workers(given)?.map_or_else(|| keep::Settings::default().workers, usize::from);
+            }
+            Key::SolveTimeLimit => self.keep.time_limit = duration(given)?,
+            Key::SolveMemoryLimit => self.keep.memory_limit = Some(size(given)?),
+            Key::StateDir => self.keep.state_dir = folder(given)?,
             Key::LogFormat => {
                 self.log_format = choice(given, &[("text", LogFormat::Text), ("json", LogFormat::Json)])?;
             }
@@ -175,7 +138,7 @@ impl Settings {
         Ok(())
     }
 
-    /// The level that is logged at when `-v` is given so many times, for a command that by itself logs from `least` on.
+    /// The level that is logged at when `-v` is given so many times, for a command that by itself logs at `least` severity.
     pub(crate) fn level(&self, least: LevelFilter, verbose: u8) -> LevelFilter {
         match verbose {
             0 => self.log_level.min(least),
@@ -194,11 +157,12 @@ const LEVELS: [(&str, LevelFilter); 5] = [
 ];
 
 fn choice<T: Copy>(given: &Given, choices: &[(&str, T)]) -> Result<T, String> {
-    let words = || choices.iter().map(|(word, _)| format!("\"{word}\"")).collect::<Vec<_>>().join(" or ");
+    let words = || choices.iter().map(|(word, _)| format!("\"{word}\"")).collect::<Vec<_>>().join(", ");
     let found = given.text().and_then(|text| choices.iter().find(|(word, _)| *word == text));
     found.map(|&(_, value)| value).ok_or_else(|| format!("it is one of {}", words()))
 }
 
+/// How many workers; `None` for 0, which leaves it to the machine.
 fn workers(given: &Given) -> Result<Option<NonZeroUsize>, String> {
     let number = match given {
         Given::Number(number) => usize::try_from(*number).ok(),
@@ -210,20 +174,23 @@ fn workers(given: &Given) -> Result<Option<NonZeroUsize>, String> {
     Ok(NonZeroUsize::new(number))
 }
 
-fn folder(given: &Given) -> Result<PathBuf, String> {
+/// A folder of its own for the state; `None` for the one in the kept folder.
+fn folder(given: &Given) -> Result<Option<PathBuf>, String> {
     match given.text() {
-        Some(text) if !text.is_empty() => Ok(PathBuf::from(text)),
-        _ => Err("it is the path of a folder, as a text".to_owned()),
+        Some(OWN) => Ok(None),
+        Some(text) if Path::new(text).is_absolute() => Ok(Some(PathBuf::from(text))),
+        _ => Err(format!("it is \"{OWN}\", which is in the kept folder, or the absolute path of another folder")),
     }
 }
 
-fn globs(given: &Given) -> Result<Vec<Glob>, String> {
+fn globs(given: &Given) -> Result<Vec<String>, String> {
     let texts = match given {
         Given::Texts(texts) => texts.as_slice(),
         Given::Text(text) => std::slice::from_ref(text),
         _ => return Err("it is a list of globs, such as [\"old/**\"]".to_owned()),
     };
-    texts.iter().map(|text| Glob::new(text).map_err(|error| format!("{:?}: {}", error.glob(), error.kind()))).collect()
+    Ignore::new(texts).map_err(|error| error.to_string())?;
+    Ok(texts.to_vec())
 }
 
 #[cfg(test)]

@@ -7,7 +7,6 @@ use super::super::number::{align, short, signed, value};
 use super::super::object::number;
 use super::sum::{self, Line, NoSum, Sum, What};
 use super::{Subject, titled, unit_or, with_unit};
-use crate::model::Activity;
 use crate::model::escape::Plain;
 use crate::plan::{PlannedActivity, State};
 
@@ -29,7 +28,7 @@ pub(super) fn tell(screen: &mut Screen, subject: &Subject<'_>, planned: &Planned
         Ok(sum) => {
             screen.say(format_args!("\nWhat one {unit} earns and takes{}:\n", in_currency(subject.currency)));
             screen.say(lines(subject, &sum, &unit));
-            screen.say(format_args!("\n{}", meaning(subject, planned, activity, &sum, &unit)));
+            screen.say(format_args!("\n{}", meaning(subject, planned, &sum, &unit)));
         }
         Err(reason) => screen.say(format_args!("\n{}", without(&reason))),
     }
@@ -100,21 +99,24 @@ fn line_sum(subject: &Subject<'_>, line: &Line) -> String {
         What::Price | What::Cost | What::Loads { .. } => String::new(),
         What::Resource { name, rate, worth, cost } => {
             let unit = subject.model.resources.get(name).and_then(|resource| resource.unit.as_deref());
-            let used = with_unit(*rate, unit);
+            if *worth == 0.0 && *cost == 0.0 {
+                return format!("{}; more would be worth nothing", with_unit(*rate, unit));
+            }
+            // With its sign, so that what stands here comes to the amount.
+            let used = with_unit(0.0 - *rate, unit);
             match (*worth != 0.0, *cost != 0.0) {
                 (true, true) => format!("{used} x ({} worth + {} cost)", short(*worth), short(*cost)),
                 (true, false) => format!("{used} x {} worth", short(*worth)),
-                (false, true) => format!("{used} x {} cost; more would be worth nothing", short(*cost)),
-                (false, false) => format!("{used}; more would be worth nothing"),
+                (false, _) => format!("{used} x {} cost; more would be worth nothing", short(*cost)),
             }
         }
-        What::Limit { rate, worth, .. } if *worth == 0.0 => format!("{}; does not bind", short(*rate)),
-        What::Limit { rate, worth, .. } => format!("{} x {} worth", short(*rate), short(*worth)),
+        What::Limit { worth, .. } if *worth == 0.0 => "does not bind".to_owned(),
+        What::Limit { rate, worth, .. } => format!("{} x {} worth", short(0.0 - *rate), short(*worth)),
     }
 }
 
 /// What the sum says of the state.
-fn meaning(subject: &Subject<'_>, planned: &PlannedActivity, activity: &Activity, sum: &Sum, unit: &str) -> String {
+fn meaning(subject: &Subject<'_>, planned: &PlannedActivity, sum: &Sum, unit: &str) -> String {
     let minimise = subject.shown.plan.minimise;
     let size = subject.money(sum.gain.abs());
     match planned.state {
@@ -127,7 +129,7 @@ fn meaning(subject: &Subject<'_>, planned: &PlannedActivity, activity: &Activity
         }
         State::Fixed => format!("Its bounds leave one level only; one {unit} more would gain {size}."),
         State::Idle | State::Prospect => match planned.break_even {
-            Some(even) if sum.gain > 0.0 => pays(planned, activity, even, minimise, subject),
+            Some(even) if sum.gain > 0.0 => pays(planned, even, minimise, subject),
             Some(even) if minimise => format!("It would enter at a cost below {}.", subject.money(even)),
             Some(even) => format!("It would enter at a price above {}.", subject.money(even)),
             None => format!("Making one {unit} would lose {size}."),
@@ -135,7 +137,7 @@ fn meaning(subject: &Subject<'_>, planned: &PlannedActivity, activity: &Activity
     }
 }
 
-fn pays(planned: &PlannedActivity, _activity: &Activity, even: f64, minimise: bool, subject: &Subject<'_>) -> String {
+fn pays(planned: &PlannedActivity, even: f64, minimise: bool, subject: &Subject<'_>) -> String {
     let (side, what) = if minimise { ("below", "cost") } else { ("above", "price") };
     let even = subject.money(even);
     match planned.state {
