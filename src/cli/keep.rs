@@ -5,17 +5,12 @@ use std::path::Path;
 use tracing::level_filters::LevelFilter;
 
 use super::exit::{Error, Outcome, shown};
-use super::once::{Planners, locked};
+use super::once::locked;
 use super::screen::Screen;
 use super::{Setting, logging, told};
-use crate::keep::{self, KeepError, Replanned};
+use crate::keep::{self, KeepError, Replanned, replan};
 
-pub(super) fn run(
-    screen: &mut Screen,
-    setting: &Setting<'_>,
-    dir: &Path,
-    planners: Planners,
-) -> Result<Outcome, Error> {
+pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path) -> Result<Outcome, Error> {
     let about = std::fs::metadata(dir).map_err(|error| Error::reading(dir, &error))?;
     if !about.is_dir() {
         return Err(Error::usage(
@@ -25,7 +20,7 @@ pub(super) fn run(
     }
     let settings = setting.for_path(dir)?;
     logging::start(settings.log_format, settings.level(LevelFilter::TRACE, setting.common.verbose));
-    let kept = keep::keep(dir, &settings.keep, planners(&settings.keep), |model, replanned| {
+    let kept = keep::keep(dir, &settings.keep, replan::factory(&settings.keep), |model, replanned| {
         // What was given up or has vanished is looked at again, and told then.
         if screen.json() && !matches!(replanned, Replanned::Interrupted | Replanned::Vanished) {
             told::object(screen, model, replanned);

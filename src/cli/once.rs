@@ -5,18 +5,10 @@ use std::path::{Path, PathBuf};
 use super::exit::{Error, Outcome, shown};
 use super::screen::Screen;
 use super::{Setting, told};
-use crate::keep::{self, Factory, OnceError};
+use crate::keep::{self, OnceError, replan};
 use crate::store::{LockError, StoreError};
 
-/// Makes the planners that work by some settings.
-pub(super) type Planners = fn(&keep::Settings) -> Factory;
-
-pub(super) fn run(
-    screen: &mut Screen,
-    setting: &Setting<'_>,
-    paths: &[PathBuf],
-    planners: Planners,
-) -> Result<Outcome, Error> {
+pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf]) -> Result<Outcome, Error> {
     for path in paths {
         std::fs::symlink_metadata(path).map_err(|error| Error::reading(path, &error))?;
     }
@@ -25,16 +17,17 @@ pub(super) fn run(
     // Each path by itself: a folder may have settings of its own.
     for path in paths {
         let settings = setting.for_path(path)?.keep;
-        let done = keep::once(std::slice::from_ref(path), &settings, &planners(&settings), |model, replanned| {
-            count += 1;
-            worst = worst.max(told::outcome(replanned));
-            if screen.json() {
-                told::object(screen, model, replanned);
-            } else {
-                told::line(screen, model, replanned);
-                screen.progress(format_args!("{count} done"));
-            }
-        });
+        let done =
+            keep::once(std::slice::from_ref(path), &settings, &replan::factory(&settings), |model, replanned| {
+                count += 1;
+                worst = worst.max(told::outcome(replanned));
+                if screen.json() {
+                    told::object(screen, model, replanned);
+                } else {
+                    told::line(screen, model, replanned);
+                    screen.progress(format_args!("{count} done"));
+                }
+            });
         done.map_err(|error| not_done(path, &error))?;
     }
     if count == 0 {
