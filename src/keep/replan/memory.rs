@@ -7,10 +7,10 @@ use std::path::Path;
 use std::sync::atomic::{AtomicUsize, Ordering};
 use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 
-use crate::edits::LastPlan;
+use crate::edits::{LastPlan, Renames};
 use crate::keep::path::ModelPath;
-use crate::lp::{Program, build};
-use crate::model::{Model, read};
+use crate::lp::{Key, Program, build};
+use crate::model::{Model, Name, read};
 use crate::plan::last::last_plan;
 use crate::plan::{Plan, text};
 use crate::solver::basis::NamedBasis;
@@ -44,10 +44,45 @@ impl Known {
         Some(Last { program: self.program.clone(), basis, cold_pivots: self.cold_pivots })
     }
 
+    /// The same under the names that things have now.
+    pub(super) fn renamed(&self, renames: &Renames) -> Self {
+        let model = renames.applied(&self.model);
+        let basis = self.basis.as_ref().map(|basis| basis.renamed(|key| renamed_key(renames, key)));
+        let program = build(&model);
+        let mut plan = self.plan.clone();
+        rename(&mut plan.resources, &renames.resources, |planned| &planned.name, |planned, name| planned.name = name);
+        rename(&mut plan.activities, &renames.activities, |planned| &planned.name, |planned, name| planned.name = name);
+        rename(&mut plan.limits, &renames.limits, |planned| &planned.name, |planned, name| planned.name = name);
+        Self { model, program, plan, basis, cold_pivots: self.cold_pivots }
+    }
+
     /// What mattered in the plan.
     pub(super) fn last_plan(&self) -> LastPlan {
         self.basis.as_ref().map(|basis| last_plan(&self.model, &self.plan, basis)).unwrap_or_default()
     }
+}
+
+fn rename<T>(list: &mut [T], names: &BTreeMap<Name, Name>, name: fn(&T) -> &Name, set: fn(&mut T, Name)) {
+    for planned in list.iter_mut() {
+        if let Some(new) = names.get(name(planned)).cloned() {
+            set(planned, new);
+        }
+    }
+    list.sort_by(|a, b| name(a).cmp(name(b)));
+}
+
+/// A column's or row's key after renaming; `None` where its thing kept its name.
+fn renamed_key(renames: &Renames, key: &Key) -> Option<Key> {
+    let mut parts = key.as_str().splitn(3, '.');
+    let (table, name, rest) = (parts.next()?, parts.next()?, parts.next());
+    let names = match table {
+        "resources" => &renames.resources,
+        "activities" => &renames.activities,
+        _ => &renames.limits,
+    };
+    let name = names.get(name)?;
+    let rest = rest.map(|rest| format!(".{rest}")).unwrap_or_default();
+    Some(Key::new(&format!("{table}.{name}{rest}")))
 }
 
 /// Shared by all workers.

@@ -17,7 +17,7 @@ use self::telling::Telling;
 use super::pool::{Factory, Job, Planner, Replanned, Stop, What};
 use super::report::Report;
 use super::settings::Settings;
-use crate::edits::{Edit, compare};
+use crate::edits::{Edit, Renames, compare};
 use crate::lp::{Program, build};
 use crate::model::meaning::Meaning;
 use crate::model::read::{self, FileProblem};
@@ -48,6 +48,7 @@ pub fn factory(settings: &Settings) -> Factory {
 struct Replanner {
     memory: Arc<Memory>,
     desk: Desk<Worker>,
+    time_limit: Duration,
     /// Tells this planner's solver from those of other workers.
     number: usize,
 }
@@ -109,7 +110,7 @@ struct Told {
 impl Replanner {
     fn new(memory: Arc<Memory>, memory_limit: usize, time_limit: Duration) -> Self {
         let number = memory.number();
-        Self { memory, desk: Desk::new(Worker::new(memory_limit), time_limit), number }
+        Self { memory, desk: Desk::new(Worker::new(memory_limit), time_limit), time_limit, number }
     }
 
     fn bring_up_to_date(&mut self, job: &Job, bytes: Vec<u8>, stop: &Stop, begun: Instant) -> Result<Told, Stopped> {
@@ -193,9 +194,11 @@ impl Replanner {
     fn solve(&mut self, job: &Job, read: Read, known: Option<Arc<Known>>, stop: &Stop) -> Result<Told, Stopped> {
         let program = build(&read.model);
         let edits = known.as_ref().map(|known| compare(&known.model, &read.model)).unwrap_or_default();
+        let renames = known.as_ref().map(|known| Renames::between(&known.model, &read.model)).unwrap_or_default();
+        let known = if renames.is_empty() { known } else { known.map(|known| Arc::new(known.renamed(&renames))) };
         let key = ModelKey(job.path.relative().to_string_lossy().into_owned());
         let solver_stop = stop::Stop::watching(stop.flag());
-        if !self.memory.solved_last(&job.path, self.number) {
+        if !renames.is_empty() || !self.memory.solved_last(&job.path, self.number) {
             self.desk.forget(&key);
         }
         let answer = self.desk.solve(&key, &program, || known.as_ref().and_then(|known| known.last()), &solver_stop);
@@ -204,7 +207,8 @@ impl Replanner {
         let reckoning = |optimum: Option<&Optimum>| reckoning(known.as_deref(), &edits, &account, optimum);
         match outcome {
             Outcome::Optimal(optimum) => {
-                let worths = worths::of_each(known.as_deref(), &read.model, &edits, optimum.aim);
+                let worths =
+                    worths::of_each(known.as_deref(), &read.model, &edits, optimum.aim, self.time_limit, &solver_stop);
                 let reckoning = reckoning(Some(&optimum));
                 self.publish(job, read, program, *optimum, Solved { known, edits, worths, reckoning, account })
             }
