@@ -1,5 +1,6 @@
 //! The program as its users meet it: exit statuses, what goes where, and shapes of the objects.
 #![expect(clippy::disallowed_methods, reason = "tests lay out files as other programs would")]
+#![expect(clippy::unwrap_used, clippy::panic, reason = "helpers outside test functions")]
 
 #[path = "cli/show.rs"]
 mod show;

@@ -29,7 +29,7 @@ struct Checked<'a> {
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf]) -> Result<Outcome, Error> {
     let mut tally = Tally::default();
     for path in paths {
-        let settings = setting.for_path(path)?;
+        let settings = setting.for_folder(path)?;
         let ignore = Ignore::new(&settings.keep.ignore).map_err(|error| Error::usage(error, ""))?;
         let found = models::under(path, &ignore)?;
         for folder in &found.unread {

@@ -5,17 +5,13 @@ use std::path::Path;
 use tracing::level_filters::LevelFilter;
 
 use super::exit::{Error, Outcome, shown};
-use super::once::{Planners, locked};
+use super::once::locked;
 use super::screen::Screen;
 use super::{Setting, logging, told};
+use crate::keep::replan::factory;
 use crate::keep::{self, KeepError, Replanned};
 
-pub(super) fn run(
-    screen: &mut Screen,
-    setting: &Setting<'_>,
-    dir: &Path,
-    planners: Planners,
-) -> Result<Outcome, Error> {
+pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path) -> Result<Outcome, Error> {
     let about = std::fs::metadata(dir).map_err(|error| Error::reading(dir, &error))?;
     if !about.is_dir() {
         return Err(Error::usage(
@@ -23,16 +19,20 @@ pub(super) fn run(
             "`millreeve once` plans a single model",
         ));
     }
-    let settings = setting.for_path(dir)?;
+    let settings = setting.for_folder(dir)?;
     logging::start(settings.log_format, settings.level(LevelFilter::TRACE, setting.common.verbose));
-    let kept = keep::keep(dir, &settings.keep, planners(&settings.keep), |model, replanned| {
-        // What was given up or has vanished is looked at again, and told then.
-        if screen.json() && !matches!(replanned, Replanned::Interrupted | Replanned::Vanished) {
+    tracing::info!("keeping {}", shown(dir));
+    let kept = keep::keep(dir, &settings.keep, factory(&settings.keep), |model, replanned| {
+        // One object per replan: a look that changed nothing is none, and what was given up or has vanished is looked at again.
+        if screen.json() && matches!(replanned, Replanned::Done(_) | Replanned::Failed { .. }) {
             told::object(screen, model, replanned);
         }
     });
     match kept {
-        Ok(()) => Ok(Outcome::Good),
+        Ok(()) => {
+            tracing::info!("stopped");
+            Ok(Outcome::Good)
+        }
         Err(KeepError::Lock(error)) => Err(locked(&error)),
         Err(error @ KeepError::Ignore(_)) => Err(Error::usage(error, "")),
         Err(error @ (KeepError::Store(_) | KeepError::System(_))) => Err(Error::failure(error, "")),

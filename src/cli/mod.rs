@@ -22,7 +22,6 @@ use std::process::ExitCode;
 use clap::Parser as _;
 use tracing::level_filters::LevelFilter;
 
-use crate::keep::Factory;
 use args::{Cli, Command, Common};
 use exit::{Error, Outcome};
 use screen::Screen;
@@ -55,10 +54,10 @@ fn run(screen: &mut Screen, common: &Common, command: Command) -> Result<Outcome
         Command::Convert { from, to, force } => convert::run(screen, &from, &to, force),
         Command::Demo { dir } => demo::run(screen, &dir),
         Command::Completions { shell } => completions::run(screen, shell),
-        Command::Keep { dir } => keep::run(screen, &setting, &dir, planners),
+        Command::Keep { dir } => keep::run(screen, &setting, &dir),
         Command::Once { paths } => {
             setting.log(LevelFilter::WARN)?;
-            once::run(screen, &setting, &paths, planners)
+            once::run(screen, &setting, &paths)
         }
     }
 }
@@ -69,16 +68,10 @@ struct Setting<'a> {
 }
 
 impl Setting<'_> {
-    /// The settings for the models that a path means: a folder may have its own.
-    fn for_path(&self, path: &Path) -> Result<Settings, Error> {
+    /// The settings for the models in a folder, which may have some of its own.
+    fn for_folder(&self, folder: &Path) -> Result<Settings, Error> {
         let config = self.common.config.as_deref();
-        let environment = std::env::vars_os();
-        let settings = if path.is_dir() {
-            settings::load_for_folder(config, path, environment)
-        } else {
-            settings::load(config, environment)
-        };
-        settings.map_err(|wrong| misset(&wrong))
+        settings::load_for_folder(config, folder, std::env::vars_os()).map_err(|wrong| misset(&wrong))
     }
 
     /// Starts the log of a command that by itself logs from `least` on, and gives the settings without any folder's own.
@@ -92,16 +85,4 @@ impl Setting<'_> {
 
 fn misset(wrong: &Wrong) -> Error {
     Error::usage(wrong, wrong.help())
-}
-
-/// The planners of `keep` and `once`.
-fn planners(_settings: &crate::keep::Settings) -> Factory {
-    // TO BE WIRED: the factory of keep::replan goes here.
-    struct Unwired;
-    impl crate::keep::Planner for Unwired {
-        fn replan(&mut self, _: &crate::keep::Job, _: &crate::keep::Stop) -> crate::keep::Replanned {
-            crate::keep::Replanned::Failed { message: "this build cannot plan".to_owned(), retry: false }
-        }
-    }
-    std::sync::Arc::new(|| Box::new(Unwired))
 }

@@ -5,27 +5,21 @@ use std::path::{Path, PathBuf};
 use super::exit::{Error, Outcome, shown};
 use super::screen::Screen;
 use super::{Setting, told};
-use crate::keep::{self, Factory, OnceError};
-use crate::store::{LockError, StoreError};
+use crate::keep::replan::factory;
+use crate::keep::{self, OnceError};
+use crate::store::{Folder, LockError, StoreError};
 
-/// Makes the planners that work by some settings.
-pub(super) type Planners = fn(&keep::Settings) -> Factory;
-
-pub(super) fn run(
-    screen: &mut Screen,
-    setting: &Setting<'_>,
-    paths: &[PathBuf],
-    planners: Planners,
-) -> Result<Outcome, Error> {
+pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf]) -> Result<Outcome, Error> {
     for path in paths {
         std::fs::symlink_metadata(path).map_err(|error| Error::reading(path, &error))?;
     }
     let mut worst = Outcome::Good;
     let mut count = 0;
-    // Each path by itself: a folder may have settings of its own.
+    // Each path by itself: the folder it belongs to may have settings of its own.
     for path in paths {
-        let settings = setting.for_path(path)?.keep;
-        let done = keep::once(std::slice::from_ref(path), &settings, &planners(&settings), |model, replanned| {
+        let root = Folder::root_of(path).map_err(|error| Error::failure(error, ""))?;
+        let settings = setting.for_folder(&root)?.keep;
+        let done = keep::once(std::slice::from_ref(path), &settings, &factory(&settings), |model, replanned| {
             count += 1;
             worst = worst.max(told::outcome(replanned));
             if screen.json() {

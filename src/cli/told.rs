@@ -38,16 +38,19 @@ pub(super) fn object(screen: &mut Screen, model: &ModelPath, replanned: &Replann
 /// Tells one line for people.
 pub(super) fn line(screen: &mut Screen, model: &ModelPath, replanned: &Replanned) {
     match replanned {
-        Replanned::Done(report) if outcome(replanned) == Outcome::Good => {
-            screen.say(format_args!("{GOOD}planned{GOOD:#}  {report}"));
-        }
         Replanned::Done(report) => {
-            screen.say(format_args!("{WARN}{}{WARN:#}  {}", Plain(&report.standing), faults(report)))
+            let look = if outcome(replanned) == Outcome::Good { GOOD } else { WARN };
+            screen.say(format_args!("{look}{:<9}{look:#}  {}", Plain(&report.standing), faults(report)));
         }
-        Replanned::Unchanged(report) => screen.say(format_args!("{} as it was  {model}", Plain(&report.standing))),
-        Replanned::Vanished => screen.aside(format_args!("{BAD}gone{BAD:#}  {model}: there is no such file")),
-        Replanned::Interrupted => screen.aside(format_args!("{WARN}given up{WARN:#}  {model}")),
-        Replanned::Failed { message, .. } => screen.aside(format_args!("{BAD}failed{BAD:#}  {model}: {message}")),
+        Replanned::Unchanged(_) if outcome(replanned) == Outcome::Good => {
+            screen.say(format_args!("unchanged  {model}"));
+        }
+        Replanned::Unchanged(report) => {
+            screen.say(format_args!("{WARN}{:<9}{WARN:#}  {}, unchanged", Plain(&report.standing), faults(report)));
+        }
+        Replanned::Vanished => screen.aside(format_args!("{BAD}gone{BAD:#}       {model}: there is no such file")),
+        Replanned::Interrupted => screen.aside(format_args!("{WARN}given up{WARN:#}   {model}")),
+        Replanned::Failed { message, .. } => screen.aside(format_args!("{BAD}failed{BAD:#}     {model}: {message}")),
     }
 }
 
