@@ -8,8 +8,7 @@ use super::exit::{Error, Outcome, shown};
 use super::once::locked;
 use super::screen::Screen;
 use super::{Setting, logging, told};
-use crate::keep::replan::factory;
-use crate::keep::{self, KeepError, Replanned};
+use crate::keep::{self, KeepError, Replanned, replan};
 
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path) -> Result<Outcome, Error> {
     let about = std::fs::metadata(dir).map_err(|error| Error::reading(dir, &error))?;
@@ -22,7 +21,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path) -> Res
     let settings = setting.for_folder(dir)?;
     logging::start(settings.log_format, settings.level(LevelFilter::TRACE, setting.common.verbose));
     tracing::info!("keeping {}", shown(dir));
-    let kept = keep::keep(dir, &settings.keep, factory(&settings.keep), |model, replanned| {
+    let kept = keep::keep(dir, &settings.keep, replan::factory(&settings.keep), |model, replanned| {
         // One object per replan: a look that changed nothing is none, and what was given up or has vanished is looked at again.
         if screen.json() && matches!(replanned, Replanned::Done(_) | Replanned::Failed { .. }) {
             told::object(screen, model, replanned);

@@ -34,14 +34,14 @@ impl Kept {
         }
     }
 
-    /// The start that theory expects, in words.
+    /// The start that theory expects, in words; `look` where only a look at the last basis can tell.
     #[must_use]
     pub fn expected(self) -> &'static str {
         match self {
             Self::Both => "none",
             Self::Primal => "none or primal",
             Self::Dual => "none or dual",
-            Self::Neither => "look and choose",
+            Self::Neither => "look",
         }
     }
 }

@@ -95,9 +95,12 @@ impl fmt::Display for Report {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         write!(f, "{}: ", Plain(&self.model))?;
         match &self.held {
+            // The faults, told below, are the reason.
+            Some(_) if !self.faults.is_empty() => f.write_str("held")?,
             Some(reason) => write!(f, "held: {}", Plain(reason))?,
             None if self.standing != "current" => f.write_str(&self.standing)?,
-            None if self.edit.is_empty() => f.write_str("planned")?,
+            None if self.edit.is_empty() && self.aim_before.is_none() => f.write_str("first plan")?,
+            None if self.edit.is_empty() => f.write_str("as before")?,
             None => f.write_str(&self.edit.join(", "))?,
         }
         match (self.aim_before, self.aim) {
@@ -168,7 +171,7 @@ mod tests {
         };
         assert_eq!(
             held.to_string(),
-            "tileworks: held: the model cannot be read; tileworks.model.toml:4:3: `capcity`\\u{a}is unknown (and 1 more)"
+            "tileworks: held; tileworks.model.toml:4:3: `capcity`\\u{a}is unknown (and 1 more)"
         );
     }
 

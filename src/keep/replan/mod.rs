@@ -119,6 +119,7 @@ impl Replanner {
         // The bytes of the last plan: nothing needs to be parsed to know that it stands.
         if let Some(record) = &record
             && record.source == bytes
+            && text::is_current(&record.plan)
             && disk.stands(record)
         {
             return Ok(Told { report: Telling::of(job).standing(&record.plan), changed: false });

@@ -6,6 +6,7 @@ use crate::keep::report::Report;
 use crate::model::Model;
 use crate::plan::compare::{Event, events, standing_event};
 use crate::plan::note::{self, EditTold, Reckoning, Verdict};
+use crate::plan::number::rounded;
 use crate::plan::{Plan, Standing, text};
 use crate::solver::message::{Account, Start};
 
@@ -89,7 +90,7 @@ impl<'a> Telling<'a> {
     ) -> Box<Report> {
         let mut report = self.report();
         stand(&mut report, plan);
-        report.aim_before = before.filter(|before| before.minimise == plan.minimise).map(|before| before.aim);
+        report.aim_before = before.filter(|before| before.minimise == plan.minimise).map(|before| rounded(before.aim));
         worked_out(&mut report, solved);
         tell(&mut report, events(before, plan, SHARE));
         Box::new(report)
@@ -126,7 +127,7 @@ impl<'a> Telling<'a> {
 fn stand(report: &mut Report, plan: &Plan) {
     report.standing = plan.standing.word().to_owned();
     report.held = if let Standing::Held(reason) = &plan.standing { Some(reason.clone()) } else { None };
-    report.aim = Some(plan.aim);
+    report.aim = Some(rounded(plan.aim));
 }
 
 fn worked_out(report: &mut Report, solved: Option<(&Reckoning, &Account)>) {
