@@ -120,7 +120,7 @@ edit "in place" "The mistake mended" \
 
 printf '\n---- The plan as it stands now\n\n'
 "$millreeve" show "$model"
-printf '\n---- Why no terrace slab?\n\n'
+printf '\n---- Should we make the terrace slab?\n\n'
 "$millreeve" show "$model" --why terrace_slab
 
 kill -TERM "$daemon"

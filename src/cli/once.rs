@@ -14,6 +14,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
     }
     let mut worst = Outcome::Good;
     let mut count = 0;
+    screen.progress("planning …");
     // Each path by itself: the folder it belongs to may have settings of its own.
     for path in paths {
         let root = Folder::root_of(path).map_err(|error| Error::failure(error, ""))?;
@@ -26,7 +27,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
                     told::object(screen, model, replanned);
                 } else {
                     told::line(screen, model, replanned);
-                    screen.progress(format_args!("{count} done"));
+                    screen.progress(format_args!("{count} done, planning …"));
                 }
             });
         done.map_err(|error| not_done(path, &error))?;

@@ -9,9 +9,9 @@ use millreeve::model::meaning::Meaning;
 use millreeve::model::{Model, read};
 use millreeve::plan::text;
 use millreeve::plan::{Plan, Standing, make};
-use millreeve::solver::live::Stop;
 use millreeve::solver::message::Outcome;
 use millreeve::solver::session::Session;
+use millreeve::solver::stop::Stop;
 use tempfile::TempDir;
 
 use super::{folder_with, objects, run};
