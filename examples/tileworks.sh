@@ -11,6 +11,7 @@ millreeve=${CARGO_TARGET_DIR:-target}/release/millreeve
 place=$(mktemp -d "${TMPDIR:-/tmp}/tileworks.XXXXXX")
 works=$place/works
 model=$works/tileworks.model.toml
+plan=$works/tileworks.plan.toml
 note=$works/tileworks.note.md
 replans=$place/replans.jsonl
 log=$place/daemon.log
@@ -23,17 +24,18 @@ cleanup() {
 trap cleanup EXIT
 trap 'exit 130' INT TERM
 
-: >"$replans"
 "$millreeve" --json keep "$works" >"$replans" 2>"$log" &
 daemon=$!
 
-# How many replans of the model the daemon has told of; it tells when plan and note are in their place.
-told() { grep -c '"model":"tileworks"' "$replans" || :; }
+# The seal that the plan carries, and that of the plan which the note speaks of.
+plan_seal() { sed -n 's/^seal *= *"\(.*\)"/\1/p' "$plan" 2>/dev/null || :; }
+note_seal() { sed -n '1s/.*Plan: \([0-9a-f]*\).*/\1/p' "$note" 2>/dev/null || :; }
+note_sum() { cksum <"$note" 2>/dev/null || echo none; }
 
-# Waits until the daemon has told of more than $1 replans, for half a minute at most.
-wait_for_more_than() {
+# Waits until there is another note than the one whose sum is $1, and the plan it speaks of; for half a minute at most.
+wait_for_other_than() {
     looks=0
-    until [ "$(told)" -gt "$1" ]; do
+    while [ "$(note_sum)" = "$1" ] || [ "$(note_seal)" != "$(plan_seal)" ]; do
         if ! kill -0 "$daemon" 2>/dev/null; then
             echo "The daemon has stopped; its last words:" >&2
             tail -n 5 "$log" >&2
@@ -41,7 +43,7 @@ wait_for_more_than() {
         fi
         looks=$((looks + 1))
         if [ "$looks" -gt 600 ]; then
-            echo "No plan after half a minute; the daemon's log is $log" >&2
+            echo "No note after half a minute; the daemon's log is $log" >&2
             exit 1
         fi
         sleep 0.05
@@ -53,29 +55,29 @@ show_note() { sed 's/^/    /' "$note"; }
 # edit HOW WHAT SCRIPT: edits the model by an awk program, in place or beside and renamed, and shows the note.
 edit() {
     printf '\n---- %s (%s)\n\n' "$2" "$1"
-    before=$(told)
+    before=$(note_sum)
     awk "$3" "$model" >"$place/edited"
     case $1 in
         "in place") cat "$place/edited" >"$model" ;;
         "renamed") cp "$place/edited" "$works/.tileworks.new" && mv "$works/.tileworks.new" "$model" ;;
     esac
-    wait_for_more_than "$before"
+    wait_for_other_than "$before"
     show_note
 }
 
 # append WHAT TEXT: adds a table to the end of the model.
 append() {
     printf '\n---- %s (appended)\n\n' "$1"
-    before=$(told)
+    before=$(note_sum)
     printf '%s\n' "$2" >>"$model"
-    wait_for_more_than "$before"
+    wait_for_other_than "$before"
     show_note
 }
 
 # within TABLE: the start of an awk program whose rule acts on one table only.
 within() { printf '/^\\[/ { here = ($0 == "[%s]") } ' "$1"; }
 
-wait_for_more_than 0
+wait_for_other_than none
 printf '\n---- The first plan\n\n'
 show_note
 
@@ -118,7 +120,7 @@ edit "in place" "The mistake mended" \
 
 printf '\n---- The plan as it stands now\n\n'
 "$millreeve" show "$model"
-printf '\n---- Why no terrace slab?\n\n'
+printf '\n---- Should we make the terrace slab?\n\n'
 "$millreeve" show "$model" --why terrace_slab
 
 kill -TERM "$daemon"

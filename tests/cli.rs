@@ -1,5 +1,6 @@
 //! The program as its users meet it: exit statuses, what goes where, and shapes of the objects.
 #![expect(clippy::disallowed_methods, reason = "tests lay out files as other programs would")]
+#![expect(clippy::unwrap_used, clippy::panic, reason = "helpers outside test functions")]
 
 #[path = "cli/show.rs"]
 mod show;
@@ -206,5 +207,41 @@ fn names_of_files_cannot_steer_the_terminal() {
     for arguments in [&["check", "."][..], &["--json", "check", "."][..]] {
         let (_, out, err) = run(folder.path(), arguments);
         assert!(!out.contains(['\u{1b}', '\u{202e}']) && !err.contains(['\u{1b}', '\u{202e}']), "{out}{err}");
+    }
+}
+
+#[test]
+fn once_plans_what_needs_it_and_says_what_it_did() {
+    let folder = folder_with(&[("a.model.toml", GOOD), ("b.model.toml", BAD)]);
+    let (status, out, err) = run(folder.path(), &["--json", "once", "a.model.toml"]);
+    assert_eq!((status, err.as_str()), (0, ""));
+    let told = objects(&out);
+    assert_eq!((told[0]["model"].as_str(), told[0]["standing"].as_str()), (Some("a"), Some("current")));
+    // Nine hours of kiln at one an hour, sold at 3.
+    assert_eq!((told[0]["aim"].as_f64(), told[0]["start"].as_str()), (Some(27.0), Some("cold")));
+    assert_eq!(run(folder.path(), &["show", "a"]).0, 0);
+    let plan = fs::read(folder.path().join("a.plan.toml")).unwrap();
+    let (status, out, _) = run(folder.path(), &["once", "a.model.toml"]);
+    assert_eq!((status, out.as_str()), (0, "a: unchanged\n"));
+    assert_eq!(fs::read(folder.path().join("a.plan.toml")).unwrap(), plan);
+    let (status, out, _) = run(folder.path(), &["--json", "once", "."]);
+    assert_eq!(status, 1, "one of them is faulty");
+    let faulty = objects(&out).into_iter().find(|told| told["model"] == "b").unwrap();
+    assert_eq!(faulty["faults"][0]["line"], 3);
+    assert_eq!(run(folder.path(), &["once", "c.model.toml"]).0, 2);
+    assert_eq!(run(folder.path(), &["keep", "a.model.toml"]).0, 2);
+}
+
+#[test]
+fn work_goes_on_where_nobody_takes_the_log() {
+    let folder = folder_with(&[("a.model.toml", GOOD), ("b.model.toml", BAD)]);
+    let program = assert_cmd::cargo::cargo_bin!("millreeve");
+    for closed in ["2>&-", ">&- 2>&-", "2>/dev/full"] {
+        let line = format!("exec \"$0\" -vv once . {closed}");
+        let done =
+            std::process::Command::new("sh").arg("-c").arg(line).arg(program).current_dir(folder.path()).output();
+        assert_eq!(done.unwrap().status.code(), Some(1), "{closed}: one model is faulty, and nothing else is wrong");
+        assert!(folder.path().join("a.plan.toml").exists(), "{closed}");
+        fs::remove_file(folder.path().join("a.plan.toml")).unwrap();
     }
 }

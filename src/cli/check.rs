@@ -29,7 +29,8 @@ struct Checked<'a> {
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf]) -> Result<Outcome, Error> {
     let mut tally = Tally::default();
     for path in paths {
-        let settings = setting.for_path(path)?;
+        let folder = if path.is_dir() { path } else { path.parent().unwrap_or(path) };
+        let settings = setting.for_folder(folder)?;
         let ignore = Ignore::new(&settings.keep.ignore).map_err(|error| Error::usage(error, ""))?;
         let found = models::under(path, &ignore)?;
         for folder in &found.unread {

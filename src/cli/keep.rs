@@ -18,16 +18,20 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path) -> Res
             "`millreeve once` plans a single model",
         ));
     }
-    let settings = setting.for_path(dir)?;
+    let settings = setting.for_folder(dir)?;
     logging::start(settings.log_format, settings.level(LevelFilter::TRACE, setting.common.verbose));
+    tracing::info!("keeping {}", shown(dir));
     let kept = keep::keep(dir, &settings.keep, replan::factory(&settings.keep), |model, replanned| {
-        // What was given up or has vanished is looked at again, and told then.
-        if screen.json() && !matches!(replanned, Replanned::Interrupted | Replanned::Vanished) {
+        // One object per replan: a look that changed nothing is none, and what was given up or has vanished is looked at again.
+        if screen.json() && matches!(replanned, Replanned::Done(_) | Replanned::Failed { .. }) {
             told::object(screen, model, replanned);
         }
     });
     match kept {
-        Ok(()) => Ok(Outcome::Good),
+        Ok(()) => {
+            tracing::info!("stopped");
+            Ok(Outcome::Good)
+        }
         Err(KeepError::Lock(error)) => Err(locked(&error)),
         Err(error @ KeepError::Ignore(_)) => Err(Error::usage(error, "")),
         Err(error @ (KeepError::Store(_) | KeepError::System(_))) => Err(Error::failure(error, "")),

@@ -68,16 +68,10 @@ struct Setting<'a> {
 }
 
 impl Setting<'_> {
-    /// The settings for the models that a path means: a folder may have its own.
-    fn for_path(&self, path: &Path) -> Result<Settings, Error> {
+    /// The settings for the models in a folder, which may have some of its own.
+    fn for_folder(&self, folder: &Path) -> Result<Settings, Error> {
         let config = self.common.config.as_deref();
-        let environment = std::env::vars_os();
-        let settings = if path.is_dir() {
-            settings::load_for_folder(config, path, environment)
-        } else {
-            settings::load(config, environment)
-        };
-        settings.map_err(|wrong| misset(&wrong))
+        settings::load_for_folder(config, folder, std::env::vars_os()).map_err(|wrong| misset(&wrong))
     }
 
     /// Starts the log of a command that by itself logs from `least` on, and gives the settings without any folder's own.

@@ -6,7 +6,7 @@ use super::exit::{Error, Outcome, shown};
 use super::screen::Screen;
 use super::{Setting, told};
 use crate::keep::{self, OnceError, replan};
-use crate::store::{LockError, StoreError};
+use crate::store::{Folder, LockError, StoreError};
 
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf]) -> Result<Outcome, Error> {
     for path in paths {
@@ -14,9 +14,11 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
     }
     let mut worst = Outcome::Good;
     let mut count = 0;
-    // Each path by itself: a folder may have settings of its own.
+    screen.progress("planning …");
+    // Each path by itself: the folder it belongs to may have settings of its own.
     for path in paths {
-        let settings = setting.for_path(path)?.keep;
+        let root = Folder::root_of(path).map_err(|error| Error::failure(error, ""))?;
+        let settings = setting.for_folder(&root)?.keep;
         let done =
             keep::once(std::slice::from_ref(path), &settings, &replan::factory(&settings), |model, replanned| {
                 count += 1;
@@ -25,7 +27,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
                     told::object(screen, model, replanned);
                 } else {
                     told::line(screen, model, replanned);
-                    screen.progress(format_args!("{count} done"));
+                    screen.progress(format_args!("{count} done, planning …"));
                 }
             });
         done.map_err(|error| not_done(path, &error))?;

@@ -3,7 +3,7 @@
 use serde_json::json;
 
 use super::exit::{Outcome, text};
-use super::screen::{BAD, GOOD, Screen, WARN};
+use super::screen::{BAD, Screen, WARN};
 use crate::keep::{ModelPath, Replanned, Report};
 use crate::model::escape::Plain;
 
@@ -35,19 +35,18 @@ pub(super) fn object(screen: &mut Screen, model: &ModelPath, replanned: &Replann
     }
 }
 
-/// Tells one line for people.
+/// Tells one line for people; a model with faults has one more for each after the first.
 pub(super) fn line(screen: &mut Screen, model: &ModelPath, replanned: &Replanned) {
+    let good = outcome(replanned) == Outcome::Good;
     match replanned {
-        Replanned::Done(report) if outcome(replanned) == Outcome::Good => {
-            screen.say(format_args!("{GOOD}planned{GOOD:#}  {report}"));
+        Replanned::Done(report) if good => screen.say(report),
+        Replanned::Unchanged(_) if good => screen.say(format_args!("{}: unchanged", Plain(&model.name()))),
+        Replanned::Done(report) | Replanned::Unchanged(report) => {
+            screen.say(format_args!("{WARN}{}{WARN:#}", faults(report)));
         }
-        Replanned::Done(report) => {
-            screen.say(format_args!("{WARN}{}{WARN:#}  {}", Plain(&report.standing), faults(report)))
-        }
-        Replanned::Unchanged(report) => screen.say(format_args!("{} as it was  {model}", Plain(&report.standing))),
-        Replanned::Vanished => screen.aside(format_args!("{BAD}gone{BAD:#}  {model}: there is no such file")),
-        Replanned::Interrupted => screen.aside(format_args!("{WARN}given up{WARN:#}  {model}")),
-        Replanned::Failed { message, .. } => screen.aside(format_args!("{BAD}failed{BAD:#}  {model}: {message}")),
+        Replanned::Vanished => screen.aside(format_args!("{BAD}{model}: there is no such file{BAD:#}")),
+        Replanned::Interrupted => screen.aside(format_args!("{WARN}{model}: given up{WARN:#}")),
+        Replanned::Failed { message, .. } => screen.aside(format_args!("{BAD}{model}: {message}{BAD:#}")),
     }
 }
 

@@ -9,9 +9,9 @@ use millreeve::model::meaning::Meaning;
 use millreeve::model::{Model, read};
 use millreeve::plan::text;
 use millreeve::plan::{Plan, Standing, make};
-use millreeve::solver::live::Stop;
 use millreeve::solver::message::Outcome;
 use millreeve::solver::session::Session;
+use millreeve::solver::stop::Stop;
 use tempfile::TempDir;
 
 use super::{folder_with, objects, run};
@@ -104,9 +104,12 @@ fn a_spreadsheet_gets_numbers_and_no_formulas() {
     assert!(rows.iter().all(|row| row.len() == 15));
 }
 
+/// Something done to a folder.
+type Edit = fn(&Path);
+
 #[test]
 fn a_plan_that_may_not_be_worked_to_says_why() {
-    let edits: [(&str, fn(&Path)); 5] = [
+    let edits: [(&str, Edit); 5] = [
         ("edited since", |folder| {
             let model = folder.join("tiles.model.toml");
             fs::write(&model, SMALL.replace("capacity = 100", "capacity = 120")).unwrap();

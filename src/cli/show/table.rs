@@ -7,6 +7,7 @@ use super::number::{align, range, short, value};
 use super::{Shown, Standing};
 use crate::model::escape::Plain;
 use crate::model::{Bound, Value};
+use crate::plan::State;
 
 pub(super) fn show(screen: &mut Screen, shown: &Shown) {
     screen.say(heading(shown));
@@ -35,16 +36,21 @@ fn heading(shown: &Shown) -> String {
     )
 }
 
-fn remarks(shown: &Shown) -> Vec<&'static str> {
+fn remarks(shown: &Shown) -> Vec<String> {
     let plan = &shown.plan;
     let mut remarks = Vec::new();
-    if plan.ties && plan.minimise {
-        remarks.push("Other plans cost as little: levels can differ without loss.");
-    } else if plan.ties {
-        remarks.push("Other plans earn as much: levels can differ without loss.");
+    for activity in &plan.activities {
+        if activity.state == State::Prospect && activity.loses.is_some_and(|loses| loses < 0.0) {
+            remarks.push(format!("The prospect {} would pay.", activity.name));
+        }
+    }
+    if plan.ties {
+        let as_good = if plan.minimise { "cost as little" } else { "earn as much" };
+        remarks.push(format!("Other plans {as_good}: levels can differ without loss."));
     }
     if !plan.complete {
-        remarks.push("Worths and ranges that depend on which of several equal answers is taken are left out.");
+        remarks
+            .push("Worths and ranges that depend on which of several equal answers is taken are left out.".to_owned());
     }
     remarks
 }
