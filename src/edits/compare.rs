@@ -84,16 +84,15 @@ impl Edits {
     }
 
     fn renames(&mut self, renames: &Renames) {
-        let tables: [(&str, &BTreeMap<Name, Name>, fn(Name) -> Subject); 3] = [
-            ("resources", &renames.resources, Subject::Resource),
-            ("activities", &renames.activities, Subject::Activity),
-            ("limits", &renames.limits, |name| Subject::Limit(name, Vec::new())),
-        ];
-        for (table, names, subject) in tables {
-            for (was, is) in names {
-                let (old, new) = (Some(was.to_string()), Some(is.to_string()));
-                self.push(format!("{table}.{is}"), &subject(is.clone()), Kind::Wording, old, new);
-            }
+        self.renamed("resources", &renames.resources, Subject::Resource);
+        self.renamed("activities", &renames.activities, Subject::Activity);
+        self.renamed("limits", &renames.limits, |name| Subject::Limit(name, Vec::new()));
+    }
+
+    fn renamed(&mut self, table: &str, names: &BTreeMap<Name, Name>, subject: impl Fn(Name) -> Subject) {
+        for (was, is) in names {
+            let (old, new) = (Some(was.to_string()), Some(is.to_string()));
+            self.push(format!("{table}.{is}"), &subject(is.clone()), Kind::Wording, old, new);
         }
     }
 

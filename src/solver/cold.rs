@@ -46,6 +46,7 @@ pub enum End {
 }
 
 /// Solves `program` from nothing.
+#[must_use]
 pub fn solve(program: &Program, limit: Duration, stop: &Stop) -> Cold {
     let mut detours = Vec::new();
     let mut unproven: Option<Outcome> = None;
