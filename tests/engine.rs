@@ -13,9 +13,9 @@ use std::time::Duration;
 
 use clarabel::Verdict;
 use millreeve::lp::{Program, build};
-use millreeve::solver::live::Stop;
 use millreeve::solver::message::Outcome;
 use millreeve::solver::session::Session;
+use millreeve::solver::stop::Stop;
 
 const MODELS: u64 = 3000;
 

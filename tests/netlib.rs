@@ -16,9 +16,9 @@ use std::time::Duration;
 use instances::netlib;
 use millreeve::lp::{Program, build, mps};
 use millreeve::model::{Model, read, write};
-use millreeve::solver::live::Stop;
 use millreeve::solver::message::{Answer, Optimum, Outcome, Start};
 use millreeve::solver::session::Session;
+use millreeve::solver::stop::Stop;
 use program_edit::EDITS;
 use rng::Rng;
 

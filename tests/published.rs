@@ -18,9 +18,9 @@ use millreeve::lp::{Key, Program, Sense, build};
 use millreeve::model::meaning::Meaning;
 use millreeve::model::{Activity, Bound, Limit, Model, Name, Term};
 use millreeve::plan::{self, Plan, State, last};
-use millreeve::solver::live::Stop;
 use millreeve::solver::message::{Answer, Conflict, Optimum, Outcome, Start};
 use millreeve::solver::session::Session;
+use millreeve::solver::stop::Stop;
 
 const INF: f64 = f64::INFINITY;
 
@@ -339,7 +339,7 @@ fn edits_come_to_what_is_published() {
         let edits = compare(model, &edited);
         assert_eq!(edits.iter().map(|edit| edit.kind).collect::<Vec<_>>(), kinds, "{what}");
         assert!(starts.contains(&account.start), "{what}: {account:?}");
-        let kept = last::of(&plan(model, &before, &first), model).kept(&edits);
+        let kept = last::last_plan(model, &plan(model, &before, &first), &first.basis.named(&before)).kept(&edits);
         assert!(kept.expected().contains(account.start.word()), "{what}: {kept:?}, {account:?}");
     }
 }

@@ -3,11 +3,24 @@
 use std::collections::{BTreeMap, BTreeSet};
 
 use super::edit::{Edit, Kind, Subject};
+use super::rename::Renames;
 use crate::model::{Activity, Bound, Limit, Model, Name, Resource, Term, Value};
 
 /// Every edit that turns `old` into `new`, in the order of the model: its own keys, resources, activities, limits.
+///
+/// A rename is a withdrawal and something new, unless every number agrees: then it is wording, told under the new name.
 #[must_use]
 pub fn compare(old: &Model, new: &Model) -> Vec<Edit> {
+    let renames = Renames::between(old, new);
+    if renames.is_empty() {
+        return compared(old, new).0;
+    }
+    let mut edits = compared(&renames.applied(old), new);
+    edits.renames(&renames);
+    edits.0
+}
+
+fn compared(old: &Model, new: &Model) -> Edits {
     let mut edits = Edits::default();
     edits.model(old, new);
     for (name, pair) in pairs(&old.resources, &new.resources) {
@@ -20,7 +33,7 @@ pub fn compare(old: &Model, new: &Model) -> Vec<Edit> {
     for (name, pair) in pairs(&old.limits, &new.limits) {
         edits.limit(name, pair, &concerned);
     }
-    edits.0
+    edits
 }
 
 /// What was there and what is.
@@ -83,6 +96,19 @@ impl Edits {
     fn push(&mut self, address: String, subject: &Subject, kind: Kind, old: Option<String>, new: Option<String>) {
         if old != new {
             self.0.push(Edit { address, subject: subject.clone(), old, new, kind });
+        }
+    }
+
+    fn renames(&mut self, renames: &Renames) {
+        self.renamed("resources", &renames.resources, Subject::Resource);
+        self.renamed("activities", &renames.activities, Subject::Activity);
+        self.renamed("limits", &renames.limits, |name| Subject::Limit(name, Vec::new()));
+    }
+
+    fn renamed(&mut self, table: &str, names: &BTreeMap<Name, Name>, subject: impl Fn(Name) -> Subject) {
+        for (was, is) in names {
+            let (old, new) = (Some(was.to_string()), Some(is.to_string()));
+            self.push(format!("{table}.{is}"), &subject(is.clone()), Kind::Wording, old, new);
         }
     }
 

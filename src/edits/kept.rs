@@ -1,7 +1,7 @@
 //! What of the last basis an edit leaves standing, and the start that theory says follows.
 //!
 //! Textbook post-optimality (Dantzig, *Linear Programming and Extensions*, 1963, ch. 12): new numbers in the aim leave the basis primal
-//! feasible, new numbers on the right-hand side leave it dual feasible. What is withdrawn softly (see [`crate::solver`]'s
+//! feasible, new numbers on the right-hand side leave it dual feasible. What is withdrawn softly (see the solver's
 //! `soft`) leaves the side standing that the table below says.
 
 use std::collections::BTreeSet;
@@ -34,14 +34,14 @@ impl Kept {
         }
     }
 
-    /// The start that theory expects, in words.
+    /// The start that theory expects, in words; `look` where only a look at the last basis can tell.
     #[must_use]
     pub fn expected(self) -> &'static str {
         match self {
             Self::Both => "none",
             Self::Primal => "none or primal",
             Self::Dual => "none or dual",
-            Self::Neither => "look and choose",
+            Self::Neither => "look",
         }
     }
 }

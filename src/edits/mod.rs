@@ -2,10 +2,14 @@
 //!
 //! Knows models, but no solver, no files and no clock.
 
+pub mod apply;
 pub mod compare;
 pub mod edit;
 pub mod kept;
+pub mod rename;
 
+pub use apply::apply;
 pub use compare::compare;
 pub use edit::{Edit, Kind, Subject};
 pub use kept::{Kept, LastPlan};
+pub use rename::Renames;

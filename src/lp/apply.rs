@@ -22,6 +22,23 @@ impl Difference {
     /// # Errors
     /// Where the difference was taken from another program than `from`.
     pub fn apply(&self, from: &Program) -> Result<Program, Misfit> {
+        let mut to = if self.keeps_shape() { from.clone() } else { self.reshaped(from)? };
+        to.sense = self.sense.unwrap_or(from.sense);
+        to.offset = self.offset.unwrap_or(from.offset);
+        self.renumber(&mut to)?;
+        Ok(to)
+    }
+
+    /// Whether columns and rows stay as they are, but for their numbers.
+    fn keeps_shape(&self) -> bool {
+        self.added_columns.is_empty()
+            && self.removed_columns.is_empty()
+            && self.added_rows.is_empty()
+            && self.removed_rows.is_empty()
+    }
+
+    /// `from` with the columns and rows that come and without those that go; no other number has changed yet.
+    fn reshaped(&self, from: &Program) -> Result<Program, Misfit> {
         let mut rows: BTreeMap<&Key, Row> = from.rows.iter().map(|row| (&row.key, row.clone())).collect();
         for key in &self.removed_rows {
             rows.remove(key).ok_or_else(|| Misfit::Missing(key.clone()))?;
@@ -31,18 +48,36 @@ impl Difference {
                 return Err(Misfit::Doubled(row.key.clone()));
             }
         }
-        for (key, lower, upper) in &self.row_bounds {
-            let row = rows.get_mut(key).ok_or_else(|| Misfit::Missing(key.clone()))?;
-            (row.lower, row.upper) = (*lower, *upper);
-        }
         let rows: Vec<Row> = rows.into_values().collect();
         let columns = self.columns(from, &rows)?;
-        Ok(Program {
-            sense: self.sense.unwrap_or(from.sense),
-            offset: self.offset.unwrap_or(from.offset),
-            columns,
-            rows,
-        })
+        Ok(Program { sense: from.sense, offset: from.offset, columns, rows })
+    }
+
+    fn renumber(&self, to: &mut Program) -> Result<(), Misfit> {
+        let missing = |key: &Key| Misfit::Missing(key.clone());
+        for (key, lower, upper) in &self.row_bounds {
+            let at = to.row(key).ok_or_else(|| missing(key))?;
+            (to.rows[at.0].lower, to.rows[at.0].upper) = (*lower, *upper);
+        }
+        for (key, aim) in &self.aims {
+            let at = to.column(key).ok_or_else(|| missing(key))?;
+            to.columns[at.0].aim = *aim;
+        }
+        for (key, lower, upper) in &self.column_bounds {
+            let at = to.column(key).ok_or_else(|| missing(key))?;
+            (to.columns[at.0].lower, to.columns[at.0].upper) = (*lower, *upper);
+        }
+        for (key, row, value) in &self.entries {
+            let row = to.row(row).ok_or_else(|| missing(row))?;
+            let at = to.column(key).ok_or_else(|| missing(key))?;
+            let entries = &mut to.columns[at.0].entries;
+            match (entries.binary_search_by_key(&row, |entry| entry.0), *value) {
+                (Ok(at), 0.0) => drop(entries.remove(at)),
+                (Ok(at), value) => entries[at].1 = value,
+                (Err(at), value) => entries.insert(at, (row, value)),
+            }
+        }
+        Ok(())
     }
 
     fn columns(&self, from: &Program, rows: &[Row]) -> Result<Vec<Column>, Misfit> {
@@ -70,22 +105,6 @@ impl Difference {
             };
             if columns.insert(&added.key, column).is_some() {
                 return Err(Misfit::Doubled(added.key.clone()));
-            }
-        }
-        for (key, aim) in &self.aims {
-            columns.get_mut(key).ok_or_else(|| Misfit::Missing(key.clone()))?.aim = *aim;
-        }
-        for (key, lower, upper) in &self.column_bounds {
-            let column = columns.get_mut(key).ok_or_else(|| Misfit::Missing(key.clone()))?;
-            (column.lower, column.upper) = (*lower, *upper);
-        }
-        for (key, row, value) in &self.entries {
-            let row = position(row)?;
-            let entries = &mut columns.get_mut(key).ok_or_else(|| Misfit::Missing(key.clone()))?.entries;
-            match (entries.binary_search_by_key(&row, |entry| entry.0), *value) {
-                (Ok(at), 0.0) => drop(entries.remove(at)),
-                (Ok(at), value) => entries[at].1 = value,
-                (Err(at), value) => entries.insert(at, (row, value)),
             }
         }
         Ok(columns.into_values().collect())

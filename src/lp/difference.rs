@@ -81,12 +81,20 @@ impl Difference {
         *self == Self::default()
     }
 
+    /// Whether rows stand at the same positions in both programs, so that equal entries need no second look.
+    fn same_rows(&self) -> bool {
+        self.added_rows.is_empty() && self.removed_rows.is_empty()
+    }
+
     fn column(&mut self, old: &Column, from: &Program, new: &Column, to: &Program) {
         if differ(old.aim, new.aim) {
             self.aims.push((new.key.clone(), new.aim));
         }
         if differ(old.lower, new.lower) || differ(old.upper, new.upper) {
             self.column_bounds.push((new.key.clone(), new.lower, new.upper));
+        }
+        if self.same_rows() && old.entries == new.entries {
+            return;
         }
         let olds: Vec<_> = old.entries.iter().map(|&(row, value)| (&from.rows[row.0].key, value)).collect();
         let news: Vec<_> = new.entries.iter().map(|&(row, value)| (&to.rows[row.0].key, value)).collect();

@@ -3,6 +3,7 @@
 use serde::Serialize;
 
 use super::make::NIL;
+use super::number::rounded;
 use super::types::{Plan, PlannedActivity, PlannedResource, Standing, State};
 use crate::model::{Name, Value};
 
@@ -135,16 +136,19 @@ pub fn events(before: Option<&Plan>, after: &Plan, share: f64) -> Vec<Event> {
     events.extend(told.entered.iter().map(|name| Event::Entered { name: name.to_string() }));
     events.extend(told.left.iter().map(|name| Event::Left { name: name.to_string() }));
     events.extend(told.would_enter.iter().filter_map(|name| would_enter_event(after, name)));
-    events.extend(told.binds.iter().map(|name| Event::Binds {
-        name: name.to_string(),
-        worth_of_more: find(&after.resources, name, |planned| &planned.name).and_then(|planned| planned.worth_of_more),
-    }));
+    events.extend(
+        told.binds.iter().map(|name| Event::Binds {
+            name: name.to_string(),
+            worth_of_more: find(&after.resources, name, |planned| &planned.name)
+                .and_then(|planned| planned.worth_of_more.map(rounded)),
+        }),
+    );
     events.extend(told.eases.iter().map(|name| Event::Eases { name: name.to_string() }));
     if let Some((before, after)) = told.aim
         && moved(before, after)
         && (after - before).abs() > share * before.abs()
     {
-        events.push(Event::Moved { before, after });
+        events.push(Event::Moved { before: rounded(before), after: rounded(after) });
     }
     events
 }
@@ -206,7 +210,8 @@ fn differ(before: Option<&Value>, after: Option<&Value>) -> bool {
 fn would_enter_event(plan: &Plan, name: &Name) -> Option<Event> {
     let planned = find(&plan.activities, name, |planned| &planned.name)?;
     let offered = offered(planned, plan.minimise)?;
-    Some(Event::WouldEnter { name: name.to_string(), offered, break_even: planned.break_even? })
+    let (offered, break_even) = (rounded(offered), rounded(planned.break_even?));
+    Some(Event::WouldEnter { name: name.to_string(), offered, break_even })
 }
 
 pub(super) fn find<'a, T>(list: &'a [T], name: &Name, name_of: impl Fn(&T) -> &Name) -> Option<&'a T> {

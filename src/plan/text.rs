@@ -22,6 +22,12 @@ pub fn is_ours(bytes: &[u8]) -> bool {
     line == HEADER.as_bytes() || (line.starts_with(NOTE_HEADER.as_bytes()) && line.ends_with(b"-->"))
 }
 
+/// Whether a plan's text says that it may be worked to.
+#[must_use]
+pub fn is_current(text: &str) -> bool {
+    head(text).find_map(|line| value_of(line, "standing")) == Some("\"current\"")
+}
+
 /// The seal that a plan's text carries, whether or not it is right.
 #[must_use]
 pub fn seal(text: &str) -> Option<&str> {

@@ -60,6 +60,18 @@ impl Basis {
 }
 
 impl NamedBasis {
+    /// The same basis where some keys have become others.
+    #[must_use]
+    pub fn renamed(&self, rename: impl Fn(&Key) -> Option<Key>) -> Self {
+        let list = |entries: &[(Key, Position)]| {
+            let mut list: Vec<_> =
+                entries.iter().map(|(key, position)| (rename(key).unwrap_or_else(|| key.clone()), *position)).collect();
+            list.sort_by(|a, b| a.0.cmp(&b.0));
+            list
+        };
+        Self { columns: list(&self.columns), rows: list(&self.rows) }
+    }
+
     /// The position of a column, if the basis knows it.
     #[must_use]
     pub fn column(&self, key: &Key) -> Option<Position> {

@@ -2,8 +2,9 @@
 
 use std::collections::BTreeMap;
 
+use super::batch::Batch;
 use super::instance::Instance;
-use super::live::{Batch, Refusal};
+use super::live::Refusal;
 use crate::lp::{Difference, Key, Program};
 
 /// Turns `from`, which `instance` holds, into `to`, as `difference` says.

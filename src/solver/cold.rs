@@ -4,10 +4,11 @@ use std::time::Duration;
 
 use super::certificate;
 use super::instance::Instance;
-use super::live::{Ending, Refusal, Stop};
+use super::live::{Ending, Refusal};
 use super::look::Look;
 use super::message::{Conflict, Growth, Outcome};
 use super::proof::TOLERANCE;
+use super::stop::Stop;
 use crate::lp::Program;
 
 /// How a solve from nothing is set up.
@@ -45,6 +46,7 @@ pub enum End {
 }
 
 /// Solves `program` from nothing.
+#[must_use]
 pub fn solve(program: &Program, limit: Duration, stop: &Stop) -> Cold {
     let mut detours = Vec::new();
     let mut unproven: Option<Outcome> = None;

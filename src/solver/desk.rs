@@ -3,8 +3,8 @@
 use std::collections::BTreeMap;
 use std::time::Duration;
 
-use super::live::Stop;
 use super::message::{Answer, Last, ModelKey, Outcome, Request, Task};
+use super::stop::Stop;
 use super::worker::Solver;
 use crate::lp::{Difference, Program};
 
@@ -21,10 +21,9 @@ impl<S: Solver> Desk<S> {
         Self { solver, asked: BTreeMap::new(), time_limit }
     }
 
-    /// Whether the solver has been asked about a model before, so that it starts from what it knows.
-    #[must_use]
-    pub fn knows(&self, model: &ModelKey) -> bool {
-        self.asked.contains_key(model)
+    /// Forgets a model, so that its next program is told whole: another solver has gone on with it.
+    pub fn forget(&mut self, model: &ModelKey) {
+        self.asked.remove(model);
     }
 
     /// The optimum of a model's program. `last` is asked for only where the solver knows nothing of the model: a program solved

@@ -7,8 +7,6 @@
 
 use std::ffi::{CStr, c_char, c_int, c_void};
 use std::ptr;
-use std::sync::Arc;
-use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
 
 use highs::{ColProblem, HighsModelStatus, HighsOptionValue, Model};
 use highs_sys::{
@@ -22,6 +20,8 @@ use highs_sys::{
 };
 
 use super::basis::{Basis, Position};
+use super::batch::{Batch, int};
+use super::stop::Stop;
 use crate::lp::{Program, Sense};
 
 /// The solver refused a call that is sound by its own documentation.
@@ -31,32 +31,6 @@ pub struct Refusal(
     /// What it refused.
     pub &'static str,
 );
-
-/// Asked now and then by a running solve whether to go on; counts what it has done.
-#[derive(Clone, Debug, Default)]
-pub struct Stop {
-    stop: Arc<AtomicBool>,
-    pivots: Arc<AtomicUsize>,
-}
-
-impl Stop {
-    /// Asks the solve to end as soon as it looks.
-    pub fn stop(&self) {
-        self.stop.store(true, Ordering::Relaxed);
-    }
-
-    /// Whether it has been asked to end.
-    #[must_use]
-    pub fn is_stopped(&self) -> bool {
-        self.stop.load(Ordering::Relaxed)
-    }
-
-    /// Simplex iterations of the run under way, as of its last look.
-    #[must_use]
-    pub fn pivots(&self) -> usize {
-        self.pivots.load(Ordering::Relaxed)
-    }
-}
 
 /// How a run ended.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -95,37 +69,6 @@ pub struct Point {
     pub rows: Vec<f64>,
     /// Derivative of the aim by each row's bound.
     pub row_duals: Vec<f64>,
-}
-
-/// Sparse columns or rows to add, one after another.
-#[derive(Clone, Debug, Default)]
-pub struct Batch {
-    costs: Vec<f64>,
-    lower: Vec<f64>,
-    upper: Vec<f64>,
-    starts: Vec<HighsInt>,
-    indices: Vec<HighsInt>,
-    values: Vec<f64>,
-}
-
-impl Batch {
-    /// Adds one column (`cost` counts) or row (it does not).
-    pub fn push(&mut self, cost: f64, lower: f64, upper: f64, entries: impl IntoIterator<Item = (usize, f64)>) {
-        self.starts.push(int(self.indices.len()));
-        self.costs.push(cost);
-        self.lower.push(lower);
-        self.upper.push(upper);
-        for (index, value) in entries {
-            self.indices.push(int(index));
-            self.values.push(value);
-        }
-    }
-
-    /// Whether nothing was added.
-    #[must_use]
-    pub fn is_empty(&self) -> bool {
-        self.lower.is_empty()
-    }
 }
 
 /// A live solver instance holding one program.
@@ -384,7 +327,7 @@ impl Live {
     /// Runs the solver; `stop` is looked at while it runs.
     pub fn run(&mut self, stop: &Stop) -> Ending {
         *self.stop = stop.clone();
-        stop.pivots.store(0, Ordering::Relaxed);
+        stop.count(0);
         let instance = self.instance();
         // SAFETY: plain calls on a live instance; the callback's data is the boxed `Stop` of this instance.
         let (code, status) = unsafe {
@@ -548,7 +491,7 @@ unsafe extern "C" fn on_look(
     let Some(stop) = (unsafe { data.cast::<Stop>().as_ref() }) else { return };
     // SAFETY: the solver passes a valid state or NULL.
     if let Some(state) = unsafe { state.as_ref() } {
-        stop.pivots.store(usize::try_from(state.simplex_iteration_count).unwrap_or(0), Ordering::Relaxed);
+        stop.count(usize::try_from(state.simplex_iteration_count).unwrap_or(0));
     }
     // SAFETY: the solver passes a valid place for the answer or NULL.
     if let Some(answer) = unsafe { answer.as_mut() } {
@@ -565,11 +508,6 @@ fn sense(sense: Sense) -> HighsInt {
         Sense::Minimise => OBJECTIVE_SENSE_MINIMIZE,
         Sense::Maximise => OBJECTIVE_SENSE_MAXIMIZE,
     }
-}
-
-/// Counts and positions are far below 2³¹: the caps on a model's size see to that.
-fn int(number: usize) -> HighsInt {
-    HighsInt::try_from(number).unwrap_or(HighsInt::MAX)
 }
 
 fn status_of(position: Position) -> HighsInt {

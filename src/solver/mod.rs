@@ -3,6 +3,7 @@
 //! Knows programs, but no files. Spoken to by the plain messages of [`message`].
 
 pub mod basis;
+pub mod batch;
 pub mod certificate;
 pub mod change;
 pub mod cold;
@@ -17,6 +18,7 @@ pub mod proof;
 pub mod ranging;
 pub mod session;
 pub mod soft;
+pub mod stop;
 pub mod sum;
 pub mod swap;
 pub mod ties;

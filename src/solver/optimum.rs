@@ -12,7 +12,7 @@ pub const RANGED: usize = 4_000_000;
 /// The optimum of `program` at the proven basis of `look`.
 pub fn of(instance: &mut Instance, program: &Program, look: &Look) -> Outcome {
     let worths_unique = ties::worths_unique(program, look);
-    let levels_unique = match ties::levels_unique(program, look, worths_unique) {
+    let levels_unique = match ties::levels_unique(instance, program, look) {
         Ok(unique) => unique,
         Err(refusal) => return Outcome::Undecided(refusal.to_string()),
     };

@@ -143,6 +143,7 @@ fn worse(a: f64, b: f64) -> f64 {
 }
 
 #[cfg(test)]
+#[expect(clippy::float_cmp, reason = "these sums are exact")]
 mod tests {
     use super::*;
     use crate::lp::{Column, Key, Row, RowIndex, Sense};

@@ -1,15 +1,17 @@
 //! One model's solver session: the last optimal basis, kept from edit to edit, and the solve from it.
 
+use std::sync::Arc;
 use std::time::{Duration, Instant};
 
 use super::basis::{Basis, NamedBasis, Position};
 use super::change::change;
 use super::cold::{self, Cold, End};
 use super::instance::{Instance, Member};
-use super::live::{Ending, Refusal, Stop};
+use super::live::{Ending, Refusal};
 use super::look::Look;
 use super::message::{Account, Answer, Outcome, Start};
 use super::soft::on_the_way;
+use super::stop::Stop;
 use super::swap::{self, Entrant};
 use super::vertex::{Vertex, bound_at};
 use super::{opened, optimum};
@@ -26,7 +28,7 @@ const MOST_SWAPS: usize = 16;
 
 /// What the next solve starts from: a program, a basis of it, and its vertex.
 struct Anchor {
-    program: Program,
+    program: Arc<Program>,
     basis: Basis,
     vertex: Vertex,
     instance: Option<Box<Instance>>,
@@ -36,7 +38,7 @@ struct Anchor {
 #[derive(Default)]
 pub struct Session {
     anchor: Option<Anchor>,
-    asked: Option<Program>,
+    asked: Option<Arc<Program>>,
     cold_pivots: Option<usize>,
 }
 
@@ -48,6 +50,7 @@ impl Session {
             columns: program.columns.iter().map(|c| basis.column(&c.key).unwrap_or(Position::AtLower)).collect(),
             rows: program.rows.iter().map(|r| basis.row(&r.key).unwrap_or(Position::Basic)).collect(),
         };
+        let program = Arc::new(program);
         let asked = Some(program.clone());
         let fits = basis.fits(&program);
         let anchor = fits.then(|| Anchor { program, basis, vertex: Vertex::default(), instance: None });
@@ -57,7 +60,7 @@ impl Session {
     /// The program asked last: what a difference is taken from.
     #[must_use]
     pub fn asked(&self) -> Option<&Program> {
-        self.asked.as_ref()
+        self.asked.as_deref()
     }
 
     /// Iterations of the last solve from nothing.
@@ -81,8 +84,9 @@ impl Session {
     }
 
     /// Solves `program`, from the last basis where there is one that helps.
-    pub fn solve(&mut self, program: Program, limit: Duration, stop: &Stop) -> Answer {
+    pub fn solve(&mut self, program: impl Into<Arc<Program>>, limit: Duration, stop: &Stop) -> Answer {
         let begun = Instant::now();
+        let program = program.into();
         self.asked = Some(program.clone());
         let mut account = Account::default();
         let outcome = self.outcome(program, limit, stop, &mut account);
@@ -91,7 +95,7 @@ impl Session {
         Answer { outcome, account }
     }
 
-    fn outcome(&mut self, program: Program, limit: Duration, stop: &Stop, account: &mut Account) -> Outcome {
+    fn outcome(&mut self, program: Arc<Program>, limit: Duration, stop: &Stop, account: &mut Account) -> Outcome {
         if let Some(mut anchor) = self.anchor.take() {
             if worth_keeping(&anchor.program, &program) {
                 let run = Run { limit, stop, cap: self.cap() };
@@ -135,7 +139,7 @@ impl Session {
         self.cold_pivots.map_or(usize::MAX, share)
     }
 
-    fn arrive(&mut self, program: Program, mut instance: Box<Instance>, look: Look) -> Outcome {
+    fn arrive(&mut self, program: Arc<Program>, mut instance: Box<Instance>, look: Look) -> Outcome {
         let outcome = optimum::of(&mut instance, &program, &look);
         self.anchor = Some(Anchor { program, basis: look.basis, vertex: look.vertex, instance: Some(instance) });
         outcome
@@ -164,38 +168,73 @@ enum Warm {
 }
 
 /// Solves `program` from `anchor`. An error is the reason why that led nowhere, as a short phrase.
-fn warm(anchor: &mut Anchor, program: &Program, run: &Run<'_>, account: &mut Account) -> Result<Warm, &'static str> {
+fn warm(
+    anchor: &mut Anchor,
+    program: &Arc<Program>,
+    run: &Run<'_>,
+    account: &mut Account,
+) -> Result<Warm, &'static str> {
     if super::certificate::plain_contradiction(program).is_some() {
         return Err("bounds that contradict each other");
     }
     let mut instance = live(anchor).map_err(|_| "the last basis could not be brought back")?;
-    let way = on_the_way(&anchor.program, &anchor.basis, &anchor.vertex, program);
-    let first = step(&mut instance, &anchor.program, &way).map_err(|_| "the last basis did not survive the edit")?;
-    account.start = first.start();
-    account.primal_infeasible = Some(first.primal);
-    account.dual_infeasible = Some(first.dual);
-    let look = match settle(&mut instance, &way, first, run, account)? {
+    let lost = |_| "the last basis did not survive the edit";
+    let difference = Difference::between(&anchor.program, program);
+    let Some(way) = on_the_way(&anchor.program, &anchor.basis, &anchor.vertex, program, &difference) else {
+        change(&mut instance, &anchor.program, program, &difference).map_err(lost)?;
+        opened::stay(&mut instance, &anchor.program, program, &difference).map_err(lost)?;
+        return finish(anchor, instance, program, run, account);
+    };
+    let way = Arc::new(way);
+    let first = step(&mut instance, &anchor.program, &way).map_err(lost)?;
+    let look = match begin(anchor, &mut instance, &way, first, run, account)? {
         Settled::Optimal(look) => look,
-        Settled::Other(Outcome::Interrupted) => {
-            // What was reached is a better start than what was left.
-            if let Ok(basis) = instance.basis() {
-                *anchor = Anchor { program: way, basis, vertex: Vertex::default(), instance: None };
-            }
-            return Ok(Warm::Other(Outcome::Interrupted));
-        }
         // The way is narrower than the program: that it leads nowhere says nothing of the program.
-        Settled::Other(Outcome::Infeasible(_)) if way != *program => return Err("a contradiction on the way"),
+        Settled::Other(Outcome::Infeasible(_)) => return Err("a contradiction on the way"),
         Settled::Other(outcome) => return Ok(Warm::Other(outcome)),
     };
-    let difference = Difference::between(&way, program);
-    if difference.is_empty() {
-        return Ok(Warm::Optimal(instance, look));
-    }
     let look = let_go(&mut instance, &way, *look, program).map_err(|_| "what was withdrawn could not be let go")?;
     match settle(&mut instance, program, look, run, account)? {
         Settled::Optimal(look) => Ok(Warm::Optimal(instance, look)),
         Settled::Other(outcome) => Ok(Warm::Other(outcome)),
     }
+}
+
+/// The rest of a warm solve where nothing needs to be withdrawn softly: the instance holds `program` already.
+fn finish(
+    anchor: &mut Anchor,
+    mut instance: Box<Instance>,
+    program: &Arc<Program>,
+    run: &Run<'_>,
+    account: &mut Account,
+) -> Result<Warm, &'static str> {
+    let first = Look::at(&mut instance, program).map_err(|_| "the last basis did not survive the edit")?;
+    match begin(anchor, &mut instance, program, first, run, account)? {
+        Settled::Optimal(look) => Ok(Warm::Optimal(instance, look)),
+        Settled::Other(outcome) => Ok(Warm::Other(outcome)),
+    }
+}
+
+/// Records what the first look found, and runs what it calls for. An interrupted run leaves what it reached as the anchor: a
+/// better start than what was left.
+fn begin(
+    anchor: &mut Anchor,
+    instance: &mut Instance,
+    program: &Arc<Program>,
+    first: Look,
+    run: &Run<'_>,
+    account: &mut Account,
+) -> Result<Settled, &'static str> {
+    account.start = first.start();
+    account.primal_infeasible = Some(first.primal);
+    account.dual_infeasible = Some(first.dual);
+    let settled = settle(instance, program, first, run, account)?;
+    if let Settled::Other(Outcome::Interrupted) = settled
+        && let Ok(basis) = instance.basis()
+    {
+        *anchor = Anchor { program: program.clone(), basis, vertex: Vertex::default(), instance: None };
+    }
+    Ok(settled)
 }
 
 /// The anchor's live instance, made again from its basis where it is gone.

@@ -6,12 +6,49 @@
 
 use super::basis::{Basis, Position};
 use super::vertex::{Vertex, bound_at};
-use crate::lp::{Column, Key, Program, Row, RowIndex};
+use crate::lp::{Column, Difference, Key, Program, Row, RowIndex};
 
-/// The program on the way from `old`, whose last basis and vertex are given, to `new`. It is `new` itself where nothing is
-/// withdrawn that the basis leans on.
+/// The program on the way from `old`, whose last basis and vertex are given, to `new`; `None` where it would be `new` itself, as
+/// nothing is withdrawn that the basis leans on. `difference` is what differs between the two.
 #[must_use]
-pub fn on_the_way(old: &Program, basis: &Basis, vertex: &Vertex, new: &Program) -> Program {
+pub fn on_the_way(
+    old: &Program,
+    basis: &Basis,
+    vertex: &Vertex,
+    new: &Program,
+    difference: &Difference,
+) -> Option<Program> {
+    leans(old, basis, difference).then(|| way(old, basis, vertex, new))
+}
+
+/// Whether the basis leans on anything that goes: a column that is not idle, a row that binds, a bound that something stands at.
+fn leans(old: &Program, basis: &Basis, difference: &Difference) -> bool {
+    let column = |key: &Key| old.column(key).map(|at| at.0);
+    let row = |key: &Key| old.row(key).map(|at| at.0);
+    let loses = |position: Position, old_bounds: (f64, f64), lower: f64, upper: f64| match position {
+        Position::Basic | Position::AtZero => false,
+        _ if old_bounds.0 >= old_bounds.1 => lower.is_infinite() || upper.is_infinite(),
+        Position::AtLower => lower.is_infinite(),
+        Position::AtUpper => upper.is_infinite(),
+    };
+    difference.removed_columns.iter().filter_map(column).any(|at| !is_idle(old, basis, at))
+        || difference.removed_rows.iter().filter_map(row).any(|at| basis.rows[at] != Position::Basic)
+        || difference.column_bounds.iter().any(|(key, lower, upper)| {
+            column(key).is_some_and(|at| {
+                loses(basis.columns[at], (old.columns[at].lower, old.columns[at].upper), *lower, *upper)
+            })
+        })
+        || difference.row_bounds.iter().any(|(key, lower, upper)| {
+            row(key).is_some_and(|at| loses(basis.rows[at], (old.rows[at].lower, old.rows[at].upper), *lower, *upper))
+        })
+}
+
+fn is_idle(program: &Program, basis: &Basis, at: usize) -> bool {
+    let column = &program.columns[at];
+    bound_at(basis.columns[at], column.lower, column.upper) == Some(0.0)
+}
+
+fn way(old: &Program, basis: &Basis, vertex: &Vertex, new: &Program) -> Program {
     let rows = rows_on_the_way(old, basis, vertex, new);
     let place = |key: &Key| rows.binary_search_by(|row| row.key.cmp(key)).ok().map(RowIndex);
     let from_new: Vec<Option<RowIndex>> = new.rows.iter().map(|row| place(&row.key)).collect();
@@ -34,8 +71,7 @@ pub fn on_the_way(old: &Program, basis: &Basis, vertex: &Vertex, new: &Program) 
         })
         .collect();
     for (at, column) in old.columns.iter().enumerate() {
-        let idle = bound_at(basis.columns[at], column.lower, column.upper) == Some(0.0);
-        if !idle && new.column(&column.key).is_none() {
+        if !is_idle(old, basis, at) && new.column(&column.key).is_none() {
             columns.push(Column {
                 lower: 0.0,
                 upper: 0.0,

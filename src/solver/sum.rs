@@ -33,6 +33,7 @@ impl Sum {
 }
 
 #[cfg(test)]
+#[expect(clippy::float_cmp, reason = "what is tested is that nothing is lost")]
 mod tests {
     use super::Sum;
 

@@ -38,39 +38,72 @@ pub fn enter(
     look: &Look,
     entrant: Entrant,
 ) -> Result<Option<Basis>, Refusal> {
-    instance.factorise()?;
-    let basics = instance.basics()?;
-    // How the basic ones move when the member rises by one: B z = −a for a column, B z = e for a row.
-    let mut right = vec![0.0; program.rows.len()];
-    match entrant.member {
-        Member::Column(column) => {
-            for &(row, value) in &program.columns[column.0].entries {
-                right[row.0] = -value;
-            }
-        }
-        Member::Row(row) => right[row.0] = 1.0,
-    }
-    let rates = instance.solve(&right)?;
-    let blocks = |rising: bool| {
-        let sign = if rising { 1.0 } else { -1.0 };
-        let basic = basics.iter().zip(&rates).filter_map(|(&basic, &rate)| {
-            // The factorisation keeps a row's logical as minus its sum.
-            let (value, lower, upper, rate) = match basic {
-                Member::Column(c) => {
-                    (look.vertex.levels[c.0], program.columns[c.0].lower, program.columns[c.0].upper, rate)
-                }
-                Member::Row(r) => (look.checked.sums[r.0], program.rows[r.0].lower, program.rows[r.0].upper, -rate),
-            };
-            (rate.abs() >= PIVOT).then(|| Block::of(basic, value, lower, upper, sign * rate))
-        });
-        let own = Block::of(entrant.member, entrant.value, entrant.lower, entrant.upper, sign);
-        basic.chain([own]).filter(|block| block.step.is_finite()).min_by(|a, b| a.step.total_cmp(&b.step))
-    };
-    let Some(block) = blocks(entrant.rises).or_else(|| blocks(!entrant.rises)) else { return Ok(None) };
+    let edge = Edge::of(instance, program, entrant)?;
+    let block = edge.block(program, look, entrant.rises).or_else(|| edge.block(program, look, !entrant.rises));
+    let Some(block) = block else { return Ok(None) };
     let mut basis = look.basis.clone();
     put(&mut basis, entrant.member, Position::Basic);
     put(&mut basis, block.member, block.position);
     Ok(Some(basis))
+}
+
+/// How far one member can move, in the direction it would rather go, before something stops it; infinite where nothing does.
+///
+/// # Errors
+/// When the solver has no factorisation.
+pub fn reach(instance: &mut Instance, program: &Program, look: &Look, entrant: Entrant) -> Result<f64, Refusal> {
+    let edge = Edge::of(instance, program, entrant)?;
+    Ok(edge.block(program, look, entrant.rises).map_or(f64::INFINITY, |block| block.step))
+}
+
+/// The edge along which a member moves while the rest of the basis follows.
+struct Edge {
+    entrant: Entrant,
+    basics: Vec<Member>,
+    /// How each basic one moves when the member rises by one.
+    rates: Vec<f64>,
+}
+
+impl Edge {
+    fn of(instance: &mut Instance, program: &Program, entrant: Entrant) -> Result<Self, Refusal> {
+        instance.factorise()?;
+        let basics = instance.basics()?;
+        // B z = −a for a column, B z = e for a row.
+        let mut right = vec![0.0; program.rows.len()];
+        match entrant.member {
+            Member::Column(column) => {
+                for &(row, value) in &program.columns[column.0].entries {
+                    right[row.0] = -value;
+                }
+            }
+            Member::Row(row) => right[row.0] = 1.0,
+        }
+        let mut rates = instance.solve(&right)?;
+        for (basic, rate) in basics.iter().zip(&mut rates) {
+            // The factorisation keeps a row's logical as minus its sum.
+            if let Member::Row(_) = basic {
+                *rate = -*rate;
+            }
+        }
+        Ok(Self { entrant, basics, rates })
+    }
+
+    /// What stops the member first, going up or down.
+    fn block(&self, program: &Program, look: &Look, rising: bool) -> Option<Block> {
+        let sign = if rising { 1.0 } else { -1.0 };
+        let basic =
+            self.basics.iter().zip(&self.rates).filter(|(_, rate)| rate.abs() >= PIVOT).map(|(&basic, &rate)| {
+                let (value, lower, upper) = match basic {
+                    Member::Column(c) => {
+                        (look.vertex.levels[c.0], program.columns[c.0].lower, program.columns[c.0].upper)
+                    }
+                    Member::Row(r) => (look.checked.sums[r.0], program.rows[r.0].lower, program.rows[r.0].upper),
+                };
+                Block::of(basic, value, lower, upper, sign * rate)
+            });
+        let own = Block::of(self.entrant.member, self.entrant.value, self.entrant.lower, self.entrant.upper, sign);
+        basic.chain([own]).filter(|block| block.step.is_finite()).min_by(|a, b| a.step.total_cmp(&b.step))
+    }
 }
 
 /// What stops a move, after which step, and where it then stands.

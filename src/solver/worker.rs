@@ -1,10 +1,11 @@
 //! The far side of the boundary: answers requests with one session per model, within a memory limit.
 
 use std::collections::BTreeMap;
+use std::sync::Arc;
 
-use super::live::Stop;
 use super::message::{Account, Answer, ModelKey, Outcome, Request, Task};
 use super::session::Session;
+use super::stop::Stop;
 use crate::lp::Program;
 
 /// Memory a live instance takes per entry, column or row, in bytes: measured between 350 and 560 per entry.
@@ -35,18 +36,18 @@ impl Worker {
         Self { sessions: BTreeMap::new(), memory_limit, asked: 0 }
     }
 
-    fn program(&mut self, model: &ModelKey, task: Task) -> Option<Program> {
+    fn program(&mut self, model: &ModelKey, task: Task) -> Option<Arc<Program>> {
         match task {
             Task::Whole(program, last) => {
                 if let Some(last) = last {
                     let session = Session::remembered(last.program, &last.basis, last.cold_pivots);
                     self.sessions.insert(model.clone(), Held { session, last_asked: 0 });
                 }
-                Some(*program)
+                Some(Arc::from(program))
             }
             Task::Change(difference) => {
                 let asked = self.sessions.get(model)?.session.asked()?;
-                difference.apply(asked).ok()
+                difference.apply(asked).ok().map(Arc::new)
             }
         }
     }

@@ -1,6 +1,6 @@
 //! Strings that would steer a reader, a terminal or a page.
 
-use millreeve::edits::{Edit, Kind};
+use millreeve::edits::{Edit, Kind, Subject};
 use millreeve::model::escape::is_unsafe;
 use millreeve::plan::note::{EditTold, Report, Verdict, write};
 use millreeve::plan::{Plan, Standing, text};
@@ -61,6 +61,7 @@ proptest! {
             before.activities[0].level = 7.0.into();
             let edit = Edit {
                 address: format!("activities.{}", strings[5]),
+                subject: Subject::Model,
                 old: Some(strings[6].clone()),
                 new: None,
                 kind: Kind::Wording,

@@ -2,7 +2,7 @@
 
 use std::path::PathBuf;
 
-use millreeve::edits::{Edit, Kind};
+use millreeve::edits::{Edit, Kind, Subject};
 use millreeve::lp::Key;
 use millreeve::model::fault::{Excerpt, Place};
 use millreeve::model::{Fault, Faults, Model};
@@ -16,7 +16,7 @@ const SEAL: &str = "5ea1";
 
 fn edit(address: &str, old: &str, new: &str, kind: Kind) -> Edit {
     let told = |text: &str| (!text.is_empty()).then(|| text.to_owned());
-    Edit { address: address.to_owned(), old: told(old), new: told(new), kind }
+    Edit { address: address.to_owned(), subject: Subject::Model, old: told(old), new: told(new), kind }
 }
 
 fn reckoning(kind: Kind, taken: Start, broken: usize, open: usize, pivots: usize) -> Reckoning {

@@ -3,9 +3,9 @@
 use std::time::Duration;
 
 use millreeve::lp::Program;
-use millreeve::solver::live::Stop;
 use millreeve::solver::message::{Answer, Optimum, Outcome};
 use millreeve::solver::session::Session;
+use millreeve::solver::stop::Stop;
 
 /// Relative difference of aims that passes for none.
 pub(crate) const TOLERANCE: f64 = 1e-9;

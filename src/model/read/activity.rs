@@ -37,10 +37,11 @@ pub(super) fn read(fields: &mut Fields<'_, '_>, aim: Aim, resources: &Known<'_, 
 }
 
 fn check_bounds(fields: &mut Fields<'_, '_>, least: Option<&Given>, most: Option<&Given>, prospect: bool) {
+    let left_out = fields.key_span("at_least").is_none();
     let findings = fields.findings();
     match (least, most) {
         (Some(least), Some(most)) => bounds::ordered(("at_least", least), ("at_most", most), findings),
-        (None, Some(most)) if below_nothing(&most.value) => {
+        (None, Some(most)) if left_out && below_nothing(&most.value) => {
             let message = "`at_most` is below 0, but a level is at least 0 where `at_least` is left out".to_owned();
             let help = "raise it, or give an `at_least` below it (-inf for none)";
             findings.add(&most.span, "bounds-crossed", message, help);

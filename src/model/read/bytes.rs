@@ -13,7 +13,7 @@ use crate::model::fault::Fault;
 pub(super) fn text<'a>(path: &'a Path, bytes: &'a [u8]) -> Result<Source<'a>, Box<Fault>> {
     let whole = |code, message: String, help: &str| Box::new(Source { path, text: "" }.whole(code, message, help));
     if bytes.len() > caps::MOST_BYTES {
-        let message = format!("the file has more than {} bytes", caps::MOST_BYTES);
+        let message = format!("the file is larger than {} MiB", caps::MOST_BYTES >> 20);
         return Err(whole("too-long", message, "split the model"));
     }
     if looks_like_utf16(bytes) {

@@ -9,7 +9,7 @@ use crate::model::types::{Model, Term};
 pub const MOST_BYTES: usize = 16 * 1024 * 1024;
 /// The most lines in a file.
 pub const MOST_LINES: usize = 500_000;
-/// The most words and signs in a file: what a parser takes memory for.
+/// The most words and signs in a file: what the parser takes memory for, some 100 bytes each.
 pub const MOST_TOKENS: usize = 6_000_000;
 /// The most activities in a model.
 pub const MOST_ACTIVITIES: usize = 25_000;

@@ -73,8 +73,10 @@ impl<'a, 'i> Fields<'a, 'i> {
     /// True or false; false where it is left out.
     pub(super) fn flag(&mut self, key: &str) -> bool {
         let Some(node) = self.table.get(key) else { return false };
-        node.get_ref().as_bool().or_else(|| self.wrong(key, node, "true or false", "write true, without quotes"))
-            == Some(true)
+        match node.get_ref().as_bool() {
+            Some(flag) => flag,
+            None => self.wrong(key, node, "true or false", "write true, without quotes").unwrap_or(false),
+        }
     }
 
     /// A number, in a role.

@@ -76,9 +76,13 @@ pub fn file(path: &Path) -> Result<Vec<u8>, FileProblem> {
     if size > MOST_BYTES {
         return Err(FileProblem::TooLarge(path.to_owned()));
     }
+    whole(path, file, size)
+}
+
+/// All that a reader yields, where that is at most [`MOST_BYTES`]; the file may have grown since it told its size.
+fn whole(path: &Path, reader: impl io::Read, size: usize) -> Result<Vec<u8>, FileProblem> {
     let mut bytes = Vec::with_capacity(size + 1);
-    let most = MOST_BYTES as u64 + 1;
-    file.take(most).read_to_end(&mut bytes).map_err(|error| refused(path, error))?;
+    reader.take(MOST_BYTES as u64 + 1).read_to_end(&mut bytes).map_err(|error| refused(path, error))?;
     if bytes.len() > MOST_BYTES {
         return Err(FileProblem::TooLarge(path.to_owned()));
     }
@@ -108,5 +112,19 @@ fn other_than_file(kind: FileType) -> Option<&'static str> {
         FileType::Socket => Some("a socket"),
         FileType::CharacterDevice | FileType::BlockDevice => Some("a device"),
         FileType::Symlink | FileType::Unknown => Some("something else"),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_file_that_grows_without_end_is_given_up_at_the_cap() {
+        let path = Path::new("works.model.toml");
+        let read = whole(path, io::repeat(b'#'), 100);
+        assert!(matches!(read, Err(FileProblem::TooLarge(_))));
+        let read = whole(path, io::repeat(b'#').take(MOST_BYTES as u64), 100);
+        assert_eq!(read.map(|bytes| bytes.len()).ok(), Some(MOST_BYTES));
     }
 }

@@ -6,7 +6,7 @@ use super::keys::Keys;
 use super::near;
 use super::source::Source;
 use crate::model::fault::{Fault, Faults, MOST_REPORTED};
-use crate::model::name::Name;
+use crate::model::name::{LONGEST, Name, NameError};
 use crate::model::types::Model;
 
 /// A place in the text, as byte offsets.
@@ -74,6 +74,11 @@ impl Findings {
         }
     }
 
+    /// Counts faults that come after those that are reported.
+    pub(super) fn pass_over(&mut self, count: usize) {
+        self.dropped += count;
+    }
+
     /// Whether nothing was found.
     pub(super) fn is_empty(&self) -> bool {
         self.kept.is_empty()
@@ -118,6 +123,8 @@ fn nearest(wrong: &str, among: Among, model: &Model) -> String {
 fn declare(section: &str, name: &str) -> String {
     match Name::new(name) {
         Ok(_) => format!("add a table `[{section}.{}]`, or take it out here", quoted(name)),
+        // The name may have been cut, so its own length would mislead.
+        Err(NameError::TooLong(_)) => format!("a name has at most {LONGEST} characters"),
         Err(error) => error.to_string(),
     }
 }

@@ -10,6 +10,8 @@ pub(super) struct Keys {
     whose: &'static str,
     known: &'static [&'static str],
     later: &'static [(&'static str, Later)],
+    /// What to add to a list of the keys.
+    note: &'static str,
 }
 
 /// Why a part of the format is not read yet.
@@ -88,7 +90,7 @@ impl Keys {
 
     /// The keys that are read, for a message.
     pub(super) fn list(&self) -> String {
-        format!("{} may have {}", self.whose, self.known.join(", "))
+        format!("{} may have {}{}", self.whose, self.known.join(", "), self.note)
     }
 }
 
@@ -104,6 +106,7 @@ pub(super) static MODEL: Keys = Keys {
         ("steady", Later::Steady),
         ("guard", Later::Guard),
     ],
+    note: "; tables begin with [resources.NAME], [activities.NAME] or [limits.NAME]",
 };
 
 /// A resource.
@@ -111,6 +114,7 @@ pub(super) static RESOURCE: Keys = Keys {
     whose: "a resource",
     known: &["label", "unit", "capacity", "at_least", "cost"],
     later: &[("surge", Later::Surge)],
+    note: "",
 };
 
 /// An activity.
@@ -126,8 +130,13 @@ pub(super) static ACTIVITY: Keys = Keys {
         ("none_or_at_least", Later::Whole),
         ("setup", Later::Whole),
     ],
+    note: "",
 };
 
 /// A limit.
-pub(super) static LIMIT: Keys =
-    Keys { whose: "a limit", known: &["label", "terms", "per", "at_most", "at_least", "equals", "over"], later: &[] };
+pub(super) static LIMIT: Keys = Keys {
+    whose: "a limit",
+    known: &["label", "terms", "per", "at_most", "at_least", "equals", "over"],
+    later: &[],
+    note: "",
+};

@@ -10,7 +10,7 @@ use super::findings::shown;
 use super::keys::Later;
 use super::number::{self, Role};
 use super::term;
-use super::toml_types::Table;
+use super::toml_types::{Key, Table};
 use crate::model::name::Name;
 use crate::model::types::{Activity, Bound, Limit, Term};
 use crate::model::value::Value;
@@ -124,16 +124,17 @@ fn sum(
         fields.findings().add(&span, "no-terms", message, "name what the bounds are per, or take `per` out");
     }
     let mut sum = BTreeMap::new();
-    let mut spelt: BTreeMap<Term, &str> = BTreeMap::new();
+    let mut spelt: BTreeMap<Term, &Key<'_>> = BTreeMap::new();
     for (word, node) in table {
         if term::refuse_dotted(word, node, fields.findings()) {
             continue;
         }
         let value = number::value(word.get_ref(), node, Role::Rate, fields.findings());
         let Some(term) = term::read(word, activities, tags, fields.findings()) else { continue };
-        if let Some(first) = spelt.insert(term.clone(), word.get_ref()) {
-            let message = format!("`{first}` and `{}` are the same term", shown(word.get_ref()));
-            fields.findings().add(&word.span(), "duplicate-term", message, "keep one, with the sum of the two numbers");
+        if let Some(other) = spelt.insert(term.clone(), word) {
+            let (first, second) = if other.span().start < word.span().start { (other, word) } else { (word, other) };
+            let message = format!("`{}` and `{}` are the same term", shown(first.get_ref()), shown(second.get_ref()));
+            fields.findings().add(&second.span(), "duplicate-term", message, "keep one, with the sum of their numbers");
         }
         sum.insert(term, value.unwrap_or(Value::Every(0.0)));
     }

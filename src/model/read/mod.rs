@@ -7,6 +7,7 @@ mod activity;
 mod bounds;
 mod bytes;
 mod caps;
+mod complaints;
 mod document;
 mod duplicate;
 mod fields;

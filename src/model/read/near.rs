@@ -25,7 +25,7 @@ fn nearest<'a>(wrong: &str, names: impl Iterator<Item = &'a str>) -> Option<&'a 
     if length > name::LONGEST {
         return None;
     }
-    let far = (length / 3).max(1);
+    let far = (length / 4).max(1);
     let wrong = plain(wrong);
     let distance = |name: &'a str| {
         let hopeless = name.len().abs_diff(wrong.len()) > 4 * far;

@@ -3,15 +3,18 @@
 use toml::Spanned;
 use toml::de::{DeTable, Error};
 
-use super::duplicate;
 use super::findings::{Findings, Span, shown};
 use super::source::Source;
 use super::toml_types::Table;
-use crate::model::fault::Faults;
+use super::{complaints, duplicate};
+use crate::model::fault::{Faults, MOST_REPORTED};
+use crate::model::name::Name;
 use crate::model::types::Model;
 
 /// The largest text in which the parser looks for more than one fault: recovering takes it many times the memory.
 const MOST_RECOVERED: usize = 1024 * 1024;
+/// The parser's words for a key given twice.
+const DUPLICATE: &str = "duplicate key";
 /// The deepest nesting that the parser follows.
 const DEEPEST: usize = 80;
 
@@ -32,20 +35,58 @@ fn faults(source: Source<'_>, first: Error) -> Faults {
     }
     let errors =
         if source.text.len() <= MOST_RECOVERED { DeTable::parse_recoverable(source.text).1 } else { vec![first] };
-    let mut placed: Vec<(Span, &Error)> = errors.iter().map(|error| (span(source, error), error)).collect();
+    let mut placed: Vec<(Span, &str)> = errors.iter().map(|error| (span(source, error), error.message())).collect();
     placed.sort_by_key(|(span, _)| span.start);
+    let mut echo = Echo::default();
+    placed.retain(|(span, told)| !echo.is_one(source, span, told));
     let mut findings = Findings::default();
-    let mut line_end = 0;
-    for (span, error) in placed {
-        // What follows on the same line is mostly the first fault again.
-        if span.start < line_end {
-            continue;
-        }
-        let (start, line) = source.line_at(span.start);
-        line_end = start + line.len() + 1;
-        tell(source, &span, error.message(), &mut findings);
+    findings.pass_over(placed.len().saturating_sub(MOST_REPORTED));
+    for (span, told) in placed.into_iter().take(MOST_REPORTED) {
+        tell(source, &span, told, &mut findings);
     }
     findings.finish(source, &Model::default())
+}
+
+/// Knows complaints that are only echoes of an earlier one.
+#[derive(Default)]
+struct Echo {
+    /// Where the line of the last complaint ends.
+    line_end: usize,
+    /// Whether a complaint other than a key given twice has been seen: tables may have run together from there.
+    garbled: bool,
+    /// Whether something was left open: all that follows is guesswork.
+    open: bool,
+    /// Where the table given twice ends: its keys are all given twice.
+    table_end: usize,
+}
+
+impl Echo {
+    fn is_one(&mut self, source: Source<'_>, span: &Span, told: &str) -> bool {
+        let twice = told == DUPLICATE;
+        if self.open || span.start < self.line_end || (twice && (self.garbled || span.start < self.table_end)) {
+            return true;
+        }
+        let (start, line) = source.line_at(span.start);
+        self.line_end = start + line.len() + 1;
+        self.garbled |= !twice;
+        self.open = left_open(source, span, told);
+        if twice && line.trim_start().starts_with('[') {
+            let from = start + line.len();
+            let rest = source.text.get(from..).unwrap_or_default();
+            self.table_end = from + rest.find("\n[").unwrap_or(rest.len());
+        }
+        false
+    }
+}
+
+/// Whether the parser, still inside a list or a table, stumbled over a line that reads as one of its own.
+fn left_open(source: Source<'_>, span: &Span, told: &str) -> bool {
+    let inside =
+        ["missing comma", "missing assignment", "missing key for inline", "invalid inline", "unexpected `=` in"];
+    let (start, line) = source.line_at(span.start);
+    let first = line.len() - line.trim_start().len() + start == span.start;
+    let key = line.split_once('=').is_some_and(|(key, _)| Name::new(key.trim()).is_ok());
+    first && (key || line.trim_start().starts_with('[')) && inside.iter().any(|start| told.starts_with(start))
 }
 
 /// The fault that two versions were merged and not reconciled.
@@ -80,15 +121,48 @@ fn span(source: Source<'_>, error: &Error) -> Span {
 }
 
 fn tell(source: Source<'_>, span: &Span, told: &str, findings: &mut Findings) {
-    if told == "duplicate key" {
+    if told == DUPLICATE {
         return duplicate::tell(source, span, findings);
+    }
+    if left_open(source, span, told) {
+        let end = source.text[..span.start].trim_end().len();
+        let message = "a comma, or a closing `]` or `}`, is missing at the end of this line".to_owned();
+        return findings.add(&(end..end), "syntax", message, "close what was opened in this line or above it");
+    }
+    if told.starts_with("invalid multi-line") && span.start >= source.text.len() {
+        let quotes = source.text.rfind("\"\"\"").max(source.text.rfind("'''")).unwrap_or(span.start);
+        let message = "a text in triple quotes is not closed".to_owned();
+        return findings.add(&(quotes..quotes + 3), "syntax", message, "close it with the same three quotes");
     }
     if decimal_comma(source.text, span) {
         let message = "a number is written with a decimal point, not a comma".to_owned();
         return findings.add(span, "syntax", message, "write 0.02, not 0,02");
     }
-    let (code, message, help) = plain(told);
-    findings.add(span, code, message.unwrap_or_else(|| shown(told)), help);
+    let here = source.text.get(span.clone()).unwrap_or_default();
+    let next = source.text.get(span.start..).and_then(|rest| rest.chars().next());
+    if told.starts_with("string values must be quoted") {
+        let (message, help) = not_a_value(here);
+        return findings.add(span, "syntax", message, help);
+    }
+    if next == Some(':') {
+        return findings.add(span, "syntax", "`:` stands where `=` is meant".to_owned(), "write KEY = VALUE");
+    }
+    let (code, message, help) = complaints::plain(told);
+    findings.add(span, code, message.map_or_else(|| shown(told), str::to_owned), help);
+}
+
+/// What to say of words that stand where a value is meant.
+fn not_a_value(words: &str) -> (String, String) {
+    let words = words.trim();
+    if words.is_empty() {
+        let message = "nothing stands behind `=`".to_owned();
+        return (message, "write a value there, or take the line out".to_owned());
+    }
+    let message = format!("`{}` is neither a number nor a text", shown(words));
+    if words.starts_with(|first: char| first.is_ascii_digit()) {
+        return (message, "a number stands without its unit, and a comma between any two entries".to_owned());
+    }
+    (message, format!("put a text in double quotes: \"{}\"", shown(words)))
 }
 
 /// Whether a comma between two digits is what the parser stumbled over, just before the span or in it.
@@ -98,66 +172,4 @@ fn decimal_comma(text: &str, span: &Span) -> bool {
     let comma = |at: usize| bytes.get(at) == Some(&b',') && digit(at.checked_sub(1)) && digit(Some(at + 1));
     let before = bytes[..span.start.min(bytes.len())].iter().rev().take_while(|byte| byte.is_ascii_digit()).count();
     comma(span.start) || span.start.checked_sub(before + 1).is_some_and(comma)
-}
-
-/// The parser's complaint in plain words, with its code and cure.
-fn plain(told: &str) -> (&'static str, Option<String>, &'static str) {
-    let words = |code, message: &str, help| (code, Some(message.to_owned()), help);
-    let begins = |start: &str| told.starts_with(start);
-    if begins("cannot recurse further") || begins("recursion limit") {
-        return words("too-deep", "tables or keys are nested too deeply", "a model nests at most a few levels");
-    }
-    if begins("string values must be quoted") {
-        return words("syntax", "a text must stand in double quotes", "numbers and true or false stand without");
-    }
-    if begins("key with no value") {
-        return words("syntax", "a key without `=`", "write KEY = VALUE, or begin a comment with #");
-    }
-    if begins("missing value") {
-        return words("syntax", "nothing stands behind `=`", "write a value there, or take the line out");
-    }
-    if begins("unexpected key or value") {
-        return words(
-            "syntax",
-            "something follows the value on the same line",
-            "begin a new line, or a comment with #",
-        );
-    }
-    if begins("unclosed table") || begins("unclosed array table") {
-        return words("syntax", "a table's name is not closed", "close it with `]`");
-    }
-    if begins("unclosed array") {
-        return words("syntax", "a list is not closed", "close it with `]`");
-    }
-    if begins("unclosed inline table") {
-        return words("syntax", "a table is not closed", "close it with `}`");
-    }
-    if begins("missing comma") {
-        return words("syntax", "a comma is missing", "put a comma between any two entries");
-    }
-    if begins("extra comma") {
-        return words("syntax", "a comma too many", "take it out");
-    }
-    if begins("extra `=`") {
-        return words("syntax", "`=` stands twice", "take one out");
-    }
-    if begins("missing assignment") || begins("missing key for inline table") || begins("invalid inline table") {
-        return words("syntax", "an entry of a table must be KEY = VALUE", "write for example { kiln = 0.02 }");
-    }
-    if begins("invalid unquoted key") {
-        return words("syntax", "a sign that a key holds only in quotes", "put the key in double quotes");
-    }
-    if told.contains("string") {
-        return words("syntax", "a text is not closed, or holds a sign it cannot", "close it with a double quote");
-    }
-    if begins("unexpected leading zero") {
-        return words("syntax", "a number does not begin with 0", "take the leading 0 out");
-    }
-    if begins("cannot extend value") {
-        return words("syntax", "this name already stands for a value, not a table", "rename one of the two");
-    }
-    if told.contains("float") || told.contains("integer") || told.contains("digit") {
-        return words("syntax", "this is not a number", "write for example 168, 0.02 or 1e6");
-    }
-    ("syntax", None, "")
 }

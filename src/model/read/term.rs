@@ -71,10 +71,10 @@ fn plain(
 /// An address without quotes, which TOML takes for tables within tables.
 pub(super) fn refuse_dotted(key: &Key<'_>, node: &Node<'_>, findings: &mut Findings) -> bool {
     let dotted = matches!(key.get_ref().as_ref(), "activities" | "resources" | "materials");
-    if !dotted || !node.get_ref().is_table() {
-        return false;
-    }
-    let message = format!("an address such as `{}.…` needs quotes here", key.get_ref());
-    findings.add(&key.span(), "bad-term", message, "put the whole address in double quotes: \"activities.floor_tile\"");
+    let Some(within) = node.get_ref().as_table().filter(|_| dotted) else { return false };
+    let rest = within.keys().next().map_or("NAME", |word| word.get_ref());
+    let message = format!("an address such as `{}.{}` needs quotes here", key.get_ref(), shown(rest));
+    let help = format!("put the whole address in double quotes: \"{}.{}\"", key.get_ref(), shown(rest));
+    findings.add(&key.span(), "bad-term", message, help);
     true
 }

@@ -1,3 +1,5 @@
+//! Plans made of models solved by hand and of published examples.
+
 use super::*;
 use crate::model::{Bound, Limit, Resource, Term};
 use crate::solver::basis::Basis;

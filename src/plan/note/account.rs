@@ -57,6 +57,8 @@ fn start(reckoning: &Reckoning) -> String {
         || reckoning.expected.split(|c: char| !c.is_alphabetic()).filter(|word| *word != "or" && !word.is_empty());
     if words().next().is_none() {
         taken.to_owned()
+    } else if reckoning.expected == "look" {
+        format!("{taken}, chosen by what was found")
     } else if words().any(|word| word == reckoning.taken.word()) {
         format!("{taken}, as expected")
     } else {

@@ -1,3 +1,5 @@
+//! Plan text there and back: round trips, seals, marks.
+
 use proptest::collection::{btree_map, vec};
 use proptest::option;
 use proptest::prelude::*;

@@ -1,0 +1,103 @@
+//! Which models a path on the command line means.
+
+use std::collections::BTreeSet;
+use std::fs;
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+use super::exit::{Error, shown};
+use crate::keep::path::is_model;
+use crate::keep::scan::{Scan, scan};
+use crate::keep::{Ignore, ModelPath};
+
+/// How the name of a model file ends.
+pub(crate) const MODEL: &str = ".model.toml";
+/// How the name of a plan file ends.
+pub(crate) const PLAN: &str = ".plan.toml";
+/// How the name of a note ends.
+pub(crate) const NOTE: &str = ".note.md";
+
+/// What a path on the command line means.
+#[derive(Debug, Default, PartialEq, Eq)]
+pub(crate) struct Found {
+    /// The models, also those that are named like one and are no plain file.
+    pub(crate) models: BTreeSet<PathBuf>,
+    /// Folders that could not be read.
+    pub(crate) unread: Vec<PathBuf>,
+}
+
+/// All models that `path` means: the file itself, or every model in the folder and those below it that `ignore` does not cover.
+pub(crate) fn under(path: &Path, ignore: &Ignore) -> Result<Found, Error> {
+    let about = fs::symlink_metadata(path).map_err(|error| Error::reading(path, &error))?;
+    if path.is_dir() && (about.is_dir() || !names_model(path)) {
+        let root = Arc::from(path);
+        let Scan { sights, odd, unread, .. } = scan(&root, ignore).map_err(|error| Error::reading(path, &error))?;
+        // A plan without a model is no model.
+        let models = sights.into_iter().filter(|(_, sight)| sight.model.is_some()).map(|(model, _)| model);
+        let models = models.chain(odd).map(|model: ModelPath| model.full()).collect();
+        return Ok(Found { models, unread: unread.into_iter().map(|folder| root.join(folder)).collect() });
+    }
+    if !names_model(path) {
+        let help = format!("the name of a model ends in {MODEL}");
+        return Err(Error::usage(format_args!("{} is not a model", shown(path)), help));
+    }
+    Ok(Found { models: BTreeSet::from([path.to_owned()]), unread: Vec::new() })
+}
+
+/// Whether a path is that of a model, by its name.
+pub(crate) fn names_model(path: &Path) -> bool {
+    path.file_name().is_some_and(is_model)
+}
+
+/// `path` with another ending: the model, the plan and the note of one name.
+pub(crate) fn with_ending(stem: &Path, ending: &str) -> PathBuf {
+    let mut path = stem.as_os_str().to_owned();
+    path.push(ending);
+    PathBuf::from(path)
+}
+
+/// `path` without the ending of a model, plan or note, if it has one: `works/tileworks`.
+pub(crate) fn stem(path: &Path) -> PathBuf {
+    let name = path.file_name().unwrap_or_default().to_string_lossy();
+    let stem = [MODEL, PLAN, NOTE].iter().find_map(|ending| name.strip_suffix(ending)).filter(|stem| !stem.is_empty());
+    match stem {
+        // Endings are ASCII, so cutting them off works on names that are not Unicode too.
+        Some(stem) if path.file_name().is_some_and(|name| name.to_str().is_some()) => path.with_file_name(stem),
+        _ => path.to_owned(),
+    }
+}
+
+#[cfg(test)]
+#[expect(clippy::disallowed_methods, reason = "tests lay out files as other programs would")]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_folder_means_the_models_in_it_and_below() {
+        let folder = tempfile::tempdir().unwrap();
+        let at = |name: &str| folder.path().join(name);
+        fs::create_dir_all(at("deep/er")).unwrap();
+        fs::create_dir_all(at(".git")).unwrap();
+        for name in
+            ["b.model.toml", "deep/er/a.model.toml", "old.model.toml", "b.plan.toml", ".x.model.toml", ".model.toml"]
+        {
+            fs::write(at(name), "").unwrap();
+        }
+        fs::write(at(".git/c.model.toml"), "").unwrap();
+        let ignore = Ignore::new(&["old*".to_owned()]).unwrap();
+        let found = under(folder.path(), &ignore).unwrap();
+        assert_eq!(found.models.into_iter().collect::<Vec<_>>(), [at("b.model.toml"), at("deep/er/a.model.toml")]);
+        let alone = under(&at("old.model.toml"), &ignore).unwrap();
+        assert_eq!(alone.models.into_iter().collect::<Vec<_>>(), [at("old.model.toml")]);
+        assert_eq!(under(&at("b.plan.toml"), &ignore).unwrap_err().status(), 2);
+        assert_eq!(under(&at("nothing"), &ignore).unwrap_err().status(), 2);
+    }
+
+    #[test]
+    fn every_file_of_a_model_leads_to_its_name() {
+        for path in ["w/tiles.model.toml", "w/tiles.plan.toml", "w/tiles.note.md", "w/tiles"] {
+            assert_eq!(stem(Path::new(path)), Path::new("w/tiles"));
+        }
+        assert_eq!(stem(Path::new(".model.toml")), Path::new(".model.toml"));
+    }
+}

@@ -1,0 +1,95 @@
+//! The plan as one JSON object, with the keys of the plan's file.
+
+use serde_json::{Map, Value as Json, json};
+
+use super::super::exit::text;
+use super::{Shown, Standing};
+use crate::model::Value;
+
+/// The object. A number that has no limit is the text `"inf"` or `"-inf"`; what the plan does not say is left out.
+pub(super) fn of(shown: &Shown) -> Json {
+    let plan = &shown.plan;
+    let mut object = Map::new();
+    object.insert("model".into(), json!(shown.name));
+    object.insert("path".into(), json!(text(&shown.model_path)));
+    object.insert("plan".into(), json!(text(&shown.plan_path)));
+    object.insert("standing".into(), json!(shown.standing.key()));
+    if let Standing::Held(reason) = &shown.standing {
+        object.insert("held".into(), json!(reason));
+    }
+    object.insert("answers".into(), json!(plan.answers.to_string()));
+    object.insert("aim".into(), number(plan.aim));
+    object.insert("minimise".into(), json!(plan.minimise));
+    put(&mut object, "currency", plan.currency.as_ref().map(|currency| json!(currency)));
+    object.insert("exact".into(), json!(plan.exact));
+    object.insert("ties".into(), json!(plan.ties));
+    object.insert("complete".into(), json!(plan.complete));
+    object.insert("activities".into(), activities(shown));
+    object.insert("resources".into(), resources(shown));
+    object.insert("limits".into(), limits(shown));
+    Json::Object(object)
+}
+
+fn activities(shown: &Shown) -> Json {
+    let of = shown.plan.activities.iter().map(|activity| {
+        let mut object = Map::new();
+        object.insert("name".into(), json!(activity.name.as_str()));
+        object.insert("level".into(), value(&activity.level));
+        object.insert("state".into(), json!(activity.state.words()));
+        put(&mut object, "price_range", activity.price_range.map(range));
+        put(&mut object, "break_even", activity.break_even.map(number));
+        put(&mut object, "loses", activity.loses.map(number));
+        Json::Object(object)
+    });
+    of.collect()
+}
+
+fn resources(shown: &Shown) -> Json {
+    let of = shown.plan.resources.iter().map(|resource| {
+        let mut object = Map::new();
+        object.insert("name".into(), json!(resource.name.as_str()));
+        object.insert("used".into(), value(&resource.used));
+        put(&mut object, "spare", resource.spare.as_ref().map(value));
+        put(&mut object, "worth_of_more", resource.worth_of_more.map(number));
+        put(&mut object, "loss_of_less", resource.loss_of_less.map(number));
+        put(&mut object, "holds_between", resource.holds_between.map(range));
+        Json::Object(object)
+    });
+    of.collect()
+}
+
+fn limits(shown: &Shown) -> Json {
+    let of = shown.plan.limits.iter().map(|limit| {
+        let mut object = Map::new();
+        object.insert("name".into(), json!(limit.name.as_str()));
+        put(&mut object, "value", limit.value.as_ref().map(value));
+        put(&mut object, "spare", limit.spare.as_ref().map(value));
+        put(&mut object, "worth_of_more", limit.worth_of_more.map(number));
+        put(&mut object, "loss_of_less", limit.loss_of_less.map(number));
+        put(&mut object, "holds_between", limit.holds_between.map(range));
+        Json::Object(object)
+    });
+    of.collect()
+}
+
+fn put(object: &mut Map<String, Json>, key: &str, value: Option<Json>) {
+    if let Some(value) = value {
+        object.insert(key.into(), value);
+    }
+}
+
+/// JSON has no word for "no limit", so a text stands for it.
+pub(super) fn number(number: f64) -> Json {
+    if number.is_finite() { json!(number) } else { json!(if number > 0.0 { "inf" } else { "-inf" }) }
+}
+
+fn value(value: &Value) -> Json {
+    match value {
+        Value::Every(one) => number(*one),
+        Value::Listed(list) => list.iter().copied().map(number).collect(),
+    }
+}
+
+fn range((least, most): (f64, f64)) -> Json {
+    Json::Array(vec![number(least), number(most)])
+}

@@ -1,0 +1,352 @@
+//! The dispatcher: the one owner of the daemon's state. An event in, a list of actions out; time is passed in.
+
+use std::collections::{BTreeMap, BTreeSet};
+use std::path::Path;
+use std::sync::Arc;
+use std::time::{Duration, Instant};
+
+use super::event::{Action, Event, Scanned, Weight};
+use super::path::ModelPath;
+use super::pool::{Job, Replanned, What, Word, Worker};
+use super::queue::Queue;
+use super::scan::{FolderId, Scan, Sight, Stamp};
+use super::settings::Settings;
+use super::settle::{Settling, Touch};
+use super::watch::Hint;
+use crate::model::escape::Plain;
+
+/// A scan takes at most this share of the time: one part in so many.
+const SCAN_SHARE: u32 = 20;
+/// The same for scans that a hint asked for.
+const HINTED_SCAN_SHARE: u32 = 5;
+/// The least time between two scans.
+const LEAST_GAP: Duration = Duration::from_millis(20);
+/// The pause before the first new try after a failure; each further one is twice as long.
+const FIRST_PAUSE: Duration = Duration::from_secs(1);
+/// The longest pause between tries.
+const LONGEST_PAUSE: Duration = Duration::from_secs(60);
+/// How long workers have to give up when the daemon ends.
+const END_WITHIN: Duration = Duration::from_millis(1500);
+
+/// A model that could not be planned for a reason outside it.
+#[derive(Debug)]
+struct Trouble {
+    message: String,
+    pause: Duration,
+    again: Option<Instant>,
+}
+
+/// The daemon's state.
+#[derive(Debug)]
+pub struct Dispatcher {
+    state: Arc<Path>,
+    root: Arc<Path>,
+    scan_every: Duration,
+    settle: Duration,
+    settling: Settling,
+    queue: Queue,
+    /// How each model looked when it was last dealt with.
+    planned: BTreeMap<ModelPath, Sight>,
+    /// Stamps of the models in hand, as they were before reading.
+    begun: BTreeMap<ModelPath, Option<Stamp>>,
+    troubles: BTreeMap<ModelPath, Trouble>,
+    /// What was said once and need not be said again.
+    said: BTreeSet<String>,
+    claimed: Option<FolderId>,
+    /// The time of the start by the clock of the file system; taken by the first scan.
+    started: Option<i128>,
+    scanned_once: bool,
+    scanning: bool,
+    next_scan: Instant,
+    /// Before this no scan starts, whoever asks.
+    scan_floor: Instant,
+    ending: Option<Instant>,
+}
+
+impl Dispatcher {
+    /// A daemon for `root` that knows nothing yet. `started` is the time by the clock of the file system, in nanoseconds since 1970: models
+    /// that had been at rest then are read at once.
+    #[must_use]
+    pub fn new(now: Instant, root: Arc<Path>, state: Arc<Path>, settings: &Settings, started: Option<i128>) -> Self {
+        Self {
+            state,
+            root,
+            scan_every: settings.scan_every,
+            settle: settings.pace.settle,
+            settling: Settling::new(settings.pace),
+            queue: Queue::new(settings.workers.max(1)),
+            planned: BTreeMap::new(),
+            begun: BTreeMap::new(),
+            troubles: BTreeMap::new(),
+            said: BTreeSet::new(),
+            claimed: None,
+            started,
+            scanned_once: false,
+            scanning: false,
+            next_scan: now,
+            scan_floor: now,
+            ending: None,
+        }
+    }
+
+    /// Takes an event and says what is to be done, in this order.
+    pub fn handle(&mut self, now: Instant, event: Event) -> Vec<Action> {
+        let mut actions = Vec::new();
+        match event {
+            Event::Hint(hint) => self.hint(now, hint, &mut actions),
+            Event::Scanned(scanned) => self.scanned(now, scanned, &mut actions),
+            Event::Claimed(folder) => {
+                self.claimed = Some(folder);
+                self.next_scan = now;
+            }
+            Event::Unclaimed(why) => self.say_once(why, &mut actions),
+            Event::Word(Word::Began { model, stamp }) => {
+                self.begun.insert(model, stamp);
+            }
+            Event::Word(Word::Ended { worker, model, sight, outcome }) => {
+                self.ended(now, worker, model, sight, outcome, &mut actions);
+            }
+            Event::Tick => self.tick(now, &mut actions),
+            Event::Stop => {
+                self.ending = Some(now + END_WITHIN);
+                actions.extend(self.queue.close().into_iter().map(Action::Interrupt));
+            }
+        }
+        self.proceed(now, &mut actions);
+        actions
+    }
+
+    /// When [`Event::Tick`] is due.
+    #[must_use]
+    pub fn wake(&self) -> Option<Instant> {
+        let scan = (!self.scanning).then(|| self.scan_at());
+        let retry = self.troubles.values().filter_map(|trouble| trouble.again).min();
+        match self.ending {
+            Some(end) => Some(end),
+            None => [scan, retry, self.settling.next_quiet()].into_iter().flatten().min(),
+        }
+    }
+
+    fn scan_at(&self) -> Instant {
+        let asked = self.settling.next_look().map_or(self.next_scan, |look| look.min(self.next_scan));
+        asked.max(self.scan_floor)
+    }
+
+    /// Starts what can be started, or ends.
+    fn proceed(&mut self, now: Instant, actions: &mut Vec<Action>) {
+        if let Some(end) = self.ending {
+            if self.queue.is_empty() || now >= end {
+                actions.push(Action::End);
+            }
+            return;
+        }
+        while let Some((worker, path, what)) = self.queue.take() {
+            actions.push(Action::Run(worker, Job { path, what, state: self.state.clone() }));
+        }
+    }
+
+    fn push(&mut self, model: &ModelPath, what: What, actions: &mut Vec<Action>) {
+        if self.ending.is_none() {
+            actions.extend(self.queue.push(model, what).map(Action::Interrupt));
+        }
+    }
+
+    fn say_once(&mut self, text: String, actions: &mut Vec<Action>) {
+        if self.said.insert(text.clone()) {
+            actions.push(Action::Say(Weight::Warning, text));
+        }
+    }
+
+    fn hint(&mut self, now: Instant, hint: Hint, actions: &mut Vec<Action>) {
+        let (path, touch) = match hint {
+            Hint::Closed(path) | Hint::Arrived(path) => (path, Touch::Finished),
+            Hint::Writing(path) => (path, Touch::Writing),
+            Hint::Gone(path) => (path, Touch::Gone),
+            Hint::Folder(_) => {
+                self.next_scan = now;
+                return;
+            }
+            Hint::Rescan => {
+                self.settling.clear();
+                self.next_scan = now;
+                return;
+            }
+            Hint::Trouble(why) => {
+                self.say_once(format!("{why}; meanwhile edits are found by scanning"), actions);
+                return;
+            }
+        };
+        if let Some(model) = ModelPath::under(&self.root, &path)
+            && self.settling.touch(now, &model, touch)
+        {
+            self.push(&model, What::Replan, actions);
+        }
+    }
+
+    fn tick(&mut self, now: Instant, actions: &mut Vec<Action>) {
+        for open in self.settling.quiet(now) {
+            let text = format!(
+                "{}: still open for writing after {} s, though nothing has been written for a while; it is read as it is",
+                open.model,
+                open.age.as_secs()
+            );
+            actions.push(Action::Say(Weight::Warning, text));
+            self.push(&open.model, What::Replan, actions);
+        }
+        let due = |trouble: &Trouble| trouble.again.is_some_and(|again| again <= now);
+        let again: Vec<_> =
+            self.troubles.iter().filter(|(_, trouble)| due(trouble)).map(|(model, _)| model.clone()).collect();
+        for model in again {
+            if let Some(trouble) = self.troubles.get_mut(&model) {
+                trouble.again = None;
+            }
+            self.push(&model, What::Replan, actions);
+        }
+        if !self.scanning && self.ending.is_none() && now >= self.scan_at() {
+            self.scanning = true;
+            actions.push(Action::Scan);
+        }
+    }
+
+    fn scanned(&mut self, now: Instant, scanned: Scanned, actions: &mut Vec<Action>) {
+        let took = now.saturating_duration_since(scanned.began);
+        self.scanning = false;
+        self.next_scan = now + self.scan_every.max(took * SCAN_SHARE);
+        self.scan_floor = now + LEAST_GAP.max(took * HINTED_SCAN_SHARE);
+        let gone = format!(
+            "{} cannot be read; its plans are left as they are until it can",
+            Plain(&self.root.to_string_lossy())
+        );
+        let scan = match scanned.found {
+            Ok(scan) => scan,
+            Err(why) => {
+                self.settling.clear();
+                if self.said.insert(gone.clone()) {
+                    actions.push(Action::Say(Weight::Warning, format!("{gone}: {why}")));
+                }
+                return;
+            }
+        };
+        if self.said.remove(&gone) {
+            actions.push(Action::Say(Weight::Info, "the folder is back".to_owned()));
+        }
+        if !scanned.locked || self.claimed != Some(scan.root) {
+            self.settling.clear();
+            actions.push(Action::Claim);
+            return;
+        }
+        let hollow =
+            "neither models nor plans are left in the folder; in case it was unmounted, nothing is taken for removed";
+        if scan.is_hollow() && !self.planned.is_empty() {
+            self.settling.clear();
+            self.say_once(hollow.to_owned(), actions);
+            return;
+        }
+        self.said.remove(hollow);
+        self.compare(now, scanned.began, &scan, actions);
+        self.mention(&scan, actions);
+        if !self.scanned_once {
+            self.scanned_once = true;
+            actions.push(Action::Sweep(scan.temps));
+        }
+    }
+
+    /// Compares what a scan saw with what was dealt with.
+    fn compare(&mut self, now: Instant, began: Instant, scan: &Scan, actions: &mut Vec<Action>) {
+        let rested = self.started.take().map(|started| started - self.settle.as_nanos().cast_signed());
+        for (model, sight) in &scan.sights {
+            let in_hand = match self.begun.get(model) {
+                Some(&stamp) => stamp == sight.model,
+                None => self.queue.is_running(model),
+            };
+            // What waits will be read as it is then.
+            if in_hand || self.queue.is_waiting(model) || self.planned.get(model) == Some(sight) {
+                self.settling.rest(model);
+                continue;
+            }
+            let at_rest = rested.zip(sight.model).is_some_and(|(rested, stamp)| stamp.changed() < rested);
+            let what = if at_rest { Some(What::Replan) } else { self.settling.look(began, now, model, *sight) };
+            if let Some(what) = what {
+                self.push(model, what, actions);
+            }
+        }
+        self.settling.forget_unseen(|model| scan.sights.contains_key(model));
+        let queue = &mut self.queue;
+        let kept = |model: &ModelPath| scan.sights.contains_key(model) || scan.may_hide(model);
+        self.planned.retain(|model, _| {
+            let keep = kept(model);
+            if !keep {
+                queue.forget(model);
+            }
+            keep
+        });
+        self.troubles.retain(|model, _| kept(model));
+    }
+
+    /// Mentions, once each, what is in the way of models being planned.
+    fn mention(&mut self, scan: &Scan, actions: &mut Vec<Action>) {
+        for model in &scan.odd {
+            let text = format!(
+                "{model} is a link, a pipe or a folder, not a plain file: it is left alone; put the model itself there"
+            );
+            self.say_once(text, actions);
+        }
+        for folder in &scan.unread {
+            let text = format!(
+                "the folder {} cannot be read; let the daemon's user enter it",
+                Plain(&folder.to_string_lossy())
+            );
+            self.say_once(text, actions);
+        }
+    }
+
+    fn ended(
+        &mut self,
+        now: Instant,
+        worker: Worker,
+        model: ModelPath,
+        sight: Sight,
+        outcome: Replanned,
+        actions: &mut Vec<Action>,
+    ) {
+        self.begun.remove(&model);
+        self.queue.done(worker, &model, outcome == Replanned::Interrupted);
+        match &outcome {
+            Replanned::Done(report) => {
+                let weight = if report.standing == "current" { Weight::Info } else { Weight::Warning };
+                actions.push(Action::Say(weight, report.to_string()));
+            }
+            Replanned::Unchanged(_) => {}
+            Replanned::Interrupted => {
+                if !self.queue.is_waiting(&model) {
+                    self.push(&model, What::Replan, actions);
+                }
+                return;
+            }
+            Replanned::Vanished => {
+                self.planned.remove(&model);
+                return;
+            }
+            Replanned::Failed { message, retry } => self.failed(now, &model, message, *retry, actions),
+        }
+        if !matches!(outcome, Replanned::Failed { .. }) {
+            self.troubles.remove(&model);
+        }
+        self.planned.insert(model.clone(), sight);
+        actions.push(Action::Tell(model, outcome));
+    }
+
+    fn failed(&mut self, now: Instant, model: &ModelPath, message: &str, retry: bool, actions: &mut Vec<Action>) {
+        let before = self.troubles.remove(model);
+        if before.as_ref().is_none_or(|trouble| trouble.message != message) {
+            actions.push(Action::Say(Weight::Warning, format!("{model}: {message}")));
+        }
+        let pause = before.map_or(FIRST_PAUSE, |trouble| (trouble.pause * 2).min(LONGEST_PAUSE));
+        let again = retry.then(|| now + pause);
+        self.troubles.insert(model.clone(), Trouble { message: message.to_owned(), pause, again });
+    }
+}
+
+#[cfg(test)]
+#[path = "daemon_tests.rs"]
+mod tests;

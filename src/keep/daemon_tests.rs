@@ -1,0 +1,385 @@
+//! The dispatcher under made-up time: what it does about each event.
+
+use std::path::PathBuf;
+
+use super::*;
+use crate::keep::report::Report;
+
+const SECOND: Duration = Duration::from_secs(1);
+const MILLISECOND: Duration = Duration::from_millis(1);
+
+/// A dispatcher with a clock of its own, over a real folder whose files are laid out by the test.
+struct Bench {
+    dispatcher: Dispatcher,
+    now: Instant,
+    folder: tempfile::TempDir,
+    root: Arc<Path>,
+    /// Jobs handed out and not ended.
+    jobs: Vec<(Worker, Job)>,
+    interrupted: Vec<Worker>,
+    said: Vec<String>,
+    claims: usize,
+    swept: Vec<PathBuf>,
+    ended: bool,
+}
+
+impl Bench {
+    fn new(workers: usize) -> Self {
+        let folder = tempfile::tempdir().unwrap();
+        let root: Arc<Path> = Arc::from(folder.path());
+        let now = Instant::now();
+        let settings = Settings { workers, ..Settings::default() };
+        let dispatcher = Dispatcher::new(now, root.clone(), Arc::from(Path::new("/state")), &settings, None);
+        let mut bench = Self {
+            dispatcher,
+            now,
+            folder,
+            root,
+            jobs: Vec::new(),
+            interrupted: Vec::new(),
+            said: Vec::new(),
+            claims: 0,
+            swept: Vec::new(),
+            ended: false,
+        };
+        let claimed = Event::Claimed(FolderId::of(&bench.root).unwrap());
+        bench.event(claimed);
+        bench
+    }
+
+    fn model(&self, name: &str) -> ModelPath {
+        ModelPath::new(&self.root, Path::new(&format!("{name}.model.toml"))).unwrap()
+    }
+
+    fn write(&self, file: &str, text: &str) {
+        use std::io::Write as _;
+        std::fs::File::create(self.folder.path().join(file)).unwrap().write_all(text.as_bytes()).unwrap();
+    }
+
+    fn remove(&self, file: &str) {
+        std::fs::remove_file(self.folder.path().join(file)).unwrap();
+    }
+
+    fn event(&mut self, event: Event) {
+        for action in self.dispatcher.handle(self.now, event) {
+            match action {
+                Action::Scan => {
+                    let found = crate::keep::scan::scan(&self.root, &crate::keep::Ignore::new(&[]).unwrap());
+                    let found = found.map_err(|error| error.to_string());
+                    self.event(Event::Scanned(Scanned { began: self.now, found, locked: true }));
+                }
+                Action::Run(worker, job) => {
+                    let (model, stamp) = (job.path.clone(), Stamp::of(&job.path.full()));
+                    self.jobs.push((worker, job));
+                    self.event(Event::Word(Word::Began { model, stamp }));
+                }
+                Action::Interrupt(worker) => self.interrupted.push(worker),
+                Action::Say(_, text) => self.said.push(text),
+                Action::Claim => self.claims += 1,
+                Action::Sweep(temps) => self.swept.extend(temps),
+                Action::Tell(..) => {}
+                Action::End => self.ended = true,
+            }
+        }
+    }
+
+    /// Lets time pass, with a tick whenever one is due.
+    fn pass(&mut self, time: Duration) {
+        let end = self.now + time;
+        while let Some(wake) = self.dispatcher.wake().filter(|&wake| wake <= end) {
+            self.now = self.now.max(wake);
+            self.event(Event::Tick);
+        }
+        self.now = end;
+    }
+
+    fn hint(&mut self, hint: impl Fn(PathBuf) -> Hint, name: &str) {
+        let path = self.model(name).full();
+        self.event(Event::Hint(hint(path)));
+    }
+
+    /// The names and orders of the jobs in hand.
+    fn in_hand(&self) -> Vec<(String, What)> {
+        self.jobs.iter().map(|(_, job)| (job.path.name(), job.what)).collect()
+    }
+
+    /// Ends the oldest job in hand.
+    fn end(&mut self, outcome: Replanned) {
+        let (worker, job) = self.jobs.remove(0);
+        let model = job.path;
+        let sight = Sight::of(&model);
+        self.event(Event::Word(Word::Ended { worker, model, sight, outcome }));
+    }
+}
+
+fn done() -> Replanned {
+    Replanned::Done(Box::new(Report { standing: "current".into(), ..Report::default() }))
+}
+
+fn replan(name: &str) -> (String, What) {
+    (name.to_owned(), What::Replan)
+}
+
+#[test]
+fn a_closed_model_is_read_at_once_and_not_again_until_it_changes() {
+    let mut bench = Bench::new(2);
+    bench.write("a.model.toml", "1");
+    bench.hint(Hint::Closed, "a");
+    assert_eq!(bench.in_hand(), [replan("a")]);
+    bench.end(done());
+    bench.pass(60 * SECOND);
+    assert_eq!(bench.in_hand(), []);
+    bench.write("a.model.toml", "22");
+    bench.pass(5 * SECOND);
+    assert_eq!(bench.in_hand(), [replan("a")]);
+}
+
+#[test]
+fn a_half_written_model_is_not_read() {
+    let mut bench = Bench::new(2);
+    bench.write("a.model.toml", "1");
+    bench.hint(Hint::Writing, "a");
+    bench.pass(9 * SECOND);
+    assert_eq!(bench.in_hand(), []);
+    bench.hint(Hint::Closed, "a");
+    assert_eq!(bench.in_hand(), [replan("a")]);
+    bench.end(done());
+    bench.hint(Hint::Writing, "a");
+    bench.pass(11 * SECOND);
+    assert!(
+        bench.said.iter().any(|text| text.contains("a.model.toml: still open for writing after 10 s")),
+        "{:?}",
+        bench.said
+    );
+    assert_eq!(bench.in_hand(), [replan("a")]);
+}
+
+#[test]
+fn without_events_the_scan_finds_every_edit() {
+    let mut bench = Bench::new(2);
+    bench.write("a.model.toml", "1");
+    bench.pass(SECOND);
+    assert_eq!(bench.in_hand(), []);
+    bench.pass(5 * SECOND);
+    assert_eq!(bench.in_hand(), [replan("a")]);
+    // The same edit interrupts nothing, a further one does.
+    bench.pass(20 * SECOND);
+    assert_eq!(bench.interrupted, []);
+    bench.write("a.model.toml", "22");
+    bench.pass(5 * SECOND);
+    assert_eq!(bench.interrupted, [Worker(0)]);
+    bench.end(Replanned::Interrupted);
+    assert_eq!(bench.in_hand(), [replan("a")]);
+}
+
+#[test]
+fn a_removed_plan_brings_its_model_back_into_hand() {
+    let mut bench = Bench::new(2);
+    bench.write("a.model.toml", "1");
+    bench.write("a.plan.toml", "plan");
+    bench.hint(Hint::Closed, "a");
+    bench.end(done());
+    bench.pass(10 * SECOND);
+    assert_eq!(bench.in_hand(), []);
+    bench.remove("a.plan.toml");
+    bench.pass(5 * SECOND);
+    assert_eq!(bench.in_hand(), [replan("a")]);
+}
+
+#[test]
+fn a_removed_model_is_retired_after_its_grace_and_once() {
+    let mut bench = Bench::new(2);
+    for file in ["a.model.toml", "a.plan.toml", "b.model.toml"] {
+        bench.write(file, "1");
+    }
+    for name in ["a", "b"] {
+        bench.hint(Hint::Closed, name);
+        bench.end(done());
+    }
+    bench.remove("a.model.toml");
+    bench.hint(Hint::Gone, "a");
+    bench.pass(1900 * MILLISECOND);
+    assert_eq!(bench.in_hand(), []);
+    bench.pass(SECOND);
+    assert_eq!(bench.in_hand(), [("a".to_owned(), What::Retire)]);
+    bench.end(done());
+    bench.pass(30 * SECOND);
+    assert_eq!(bench.in_hand(), []);
+}
+
+#[test]
+fn an_editors_dance_retires_nothing() {
+    let mut bench = Bench::new(2);
+    bench.write("a.model.toml", "1");
+    bench.write("a.plan.toml", "plan");
+    bench.hint(Hint::Closed, "a");
+    bench.end(done());
+    bench.remove("a.model.toml");
+    bench.hint(Hint::Gone, "a");
+    bench.pass(MILLISECOND);
+    bench.write("a.model.toml", "22");
+    bench.hint(Hint::Writing, "a");
+    bench.hint(Hint::Closed, "a");
+    assert_eq!(bench.in_hand(), [replan("a")]);
+    bench.end(done());
+    bench.pass(30 * SECOND);
+    assert_eq!(bench.in_hand(), []);
+}
+
+#[test]
+fn an_emptied_folder_is_not_a_deletion_of_every_model() {
+    let mut bench = Bench::new(2);
+    for name in ["a", "b"] {
+        bench.write(&format!("{name}.model.toml"), "1");
+        bench.write(&format!("{name}.plan.toml"), "plan");
+        bench.hint(Hint::Closed, name);
+    }
+    bench.end(done());
+    bench.end(done());
+    let aside = tempfile::tempdir().unwrap();
+    let files = ["a.model.toml", "a.plan.toml", "b.model.toml", "b.plan.toml"];
+    let swap =
+        |from: &Path, to: &Path| files.iter().for_each(|file| std::fs::rename(from.join(file), to.join(file)).unwrap());
+    swap(bench.folder.path(), aside.path());
+    bench.pass(60 * SECOND);
+    assert_eq!(bench.in_hand(), []);
+    assert_eq!(bench.said.iter().filter(|text| text.contains("unmounted")).count(), 1);
+    swap(aside.path(), bench.folder.path());
+    bench.pass(60 * SECOND);
+    // A rename moves the change time, so each is looked at; none was retired.
+    assert_eq!(bench.in_hand(), [replan("a"), replan("b")]);
+}
+
+#[test]
+fn a_vanished_folder_is_held_and_claimed_again_when_another_takes_its_place() {
+    let mut bench = Bench::new(2);
+    let root = bench.folder.path().to_owned();
+    let away = root.with_extension("away");
+    bench.pass(SECOND);
+    std::fs::rename(&root, &away).unwrap();
+    bench.pass(10 * SECOND);
+    assert_eq!((bench.claims, bench.said.len()), (0, 1), "{:?}", bench.said);
+    std::fs::create_dir(&root).unwrap();
+    bench.pass(3 * SECOND);
+    assert!(bench.claims > 0);
+    let claimed = Event::Claimed(FolderId::of(&root).unwrap());
+    bench.event(claimed);
+    let claims = bench.claims;
+    bench.write("a.model.toml", "1");
+    bench.pass(10 * SECOND);
+    assert_eq!((bench.claims, bench.in_hand()), (claims, vec![replan("a")]));
+    std::fs::remove_dir_all(away).unwrap();
+}
+
+#[test]
+fn lost_events_make_everything_be_looked_at_again() {
+    let mut bench = Bench::new(2);
+    bench.write("a.model.toml", "1");
+    bench.hint(Hint::Writing, "a");
+    // Its close was among what was lost.
+    bench.event(Event::Hint(Hint::Rescan));
+    bench.pass(5 * SECOND);
+    assert_eq!(bench.in_hand(), [replan("a")]);
+}
+
+#[test]
+fn saves_in_a_burst_make_one_run_and_one_waiting() {
+    let mut bench = Bench::new(2);
+    for save in 0..30 {
+        bench.write("a.model.toml", &save.to_string());
+        bench.hint(Hint::Closed, "a");
+    }
+    assert_eq!((bench.in_hand(), bench.interrupted.len()), (vec![replan("a")], 1));
+    bench.end(Replanned::Interrupted);
+    assert_eq!(bench.in_hand(), [replan("a")]);
+    bench.end(done());
+    bench.pass(30 * SECOND);
+    assert_eq!(bench.in_hand(), []);
+}
+
+#[test]
+fn a_full_disk_is_tried_again_with_growing_pauses_and_told_once() {
+    let mut bench = Bench::new(2);
+    bench.write("a.model.toml", "1");
+    bench.hint(Hint::Closed, "a");
+    let full = || Replanned::Failed { message: "the disk is full".into(), retry: true };
+    for pause in [1, 2, 4, 8] {
+        bench.end(full());
+        bench.pass(pause * SECOND - MILLISECOND);
+        assert_eq!(bench.in_hand(), [], "before {pause} s");
+        bench.pass(MILLISECOND);
+        assert_eq!(bench.in_hand(), [replan("a")], "after {pause} s");
+    }
+    assert_eq!(bench.said, ["a.model.toml: the disk is full"]);
+    bench.end(done());
+    bench.pass(100 * SECOND);
+    assert_eq!(bench.in_hand(), []);
+}
+
+#[test]
+fn what_can_only_be_mended_by_an_edit_waits_for_one() {
+    let mut bench = Bench::new(2);
+    bench.write("a.model.toml", "1");
+    bench.hint(Hint::Closed, "a");
+    bench.end(Replanned::Failed { message: "it panicked".into(), retry: false });
+    bench.pass(200 * SECOND);
+    assert_eq!(bench.in_hand(), []);
+    bench.write("a.model.toml", "22");
+    bench.hint(Hint::Closed, "a");
+    assert_eq!(bench.in_hand(), [replan("a")]);
+}
+
+#[test]
+fn the_end_interrupts_what_runs_and_waits_for_it_two_seconds_at_most() {
+    let mut bench = Bench::new(1);
+    bench.write("a.model.toml", "1");
+    bench.write("b.model.toml", "1");
+    bench.hint(Hint::Closed, "a");
+    bench.hint(Hint::Closed, "b");
+    bench.event(Event::Stop);
+    assert_eq!((&bench.interrupted[..], bench.ended), (&[Worker(0)][..], false));
+    bench.end(Replanned::Interrupted);
+    assert!(bench.ended && bench.jobs.is_empty());
+
+    let mut stuck = Bench::new(1);
+    stuck.write("a.model.toml", "1");
+    stuck.hint(Hint::Closed, "a");
+    stuck.event(Event::Stop);
+    stuck.pass(SECOND);
+    assert!(!stuck.ended);
+    stuck.now += SECOND;
+    stuck.event(Event::Tick);
+    assert!(stuck.ended);
+}
+
+#[test]
+fn scans_give_way_to_work_while_much_is_waiting() {
+    let mut bench = Bench::new(1);
+    for number in 0..50 {
+        bench.write(&format!("m{number}.model.toml"), "1");
+    }
+    bench.pass(5 * SECOND);
+    assert_eq!(bench.in_hand().len(), 1);
+    // 49 wait. The next look is a whole interval away, not at once.
+    assert!(bench.dispatcher.wake().unwrap() > bench.now);
+    let wakes = std::iter::from_fn(|| {
+        bench.now = bench.dispatcher.wake().unwrap();
+        bench.event(Event::Tick);
+        Some(bench.now)
+    });
+    let wakes: Vec<_> = wakes.take(5).collect();
+    assert!(wakes.windows(2).all(|pair| pair[1] - pair[0] >= 2 * SECOND), "{wakes:?}");
+}
+
+#[test]
+fn odd_files_are_mentioned_once_and_never_read() {
+    let mut bench = Bench::new(1);
+    std::os::unix::fs::symlink("/etc/hostname", bench.folder.path().join("l.model.toml")).unwrap();
+    std::fs::create_dir(bench.folder.path().join("d.model.toml")).unwrap();
+    bench.write("l.plan.toml", "plan");
+    bench.write(".millreeve-aB3dEf7h.tmp", "half");
+    bench.pass(60 * SECOND);
+    assert_eq!(bench.in_hand(), []);
+    assert_eq!(bench.said.len(), 2, "{:?}", bench.said);
+    assert_eq!(bench.swept.len(), 1);
+}

@@ -1,0 +1,25 @@
+//! The daemon: watching, settling, one queue per model and the pool of workers.
+//!
+//! An event is a hint to look; what is planned is what the files say when they are read. A scan of the folder is what correctness
+//! rests on, events only cut the delay.
+
+pub mod daemon;
+pub mod event;
+pub mod once;
+pub mod path;
+pub mod pool;
+pub mod queue;
+pub mod replan;
+pub mod report;
+pub mod run;
+pub mod scan;
+pub mod settings;
+pub mod settle;
+pub mod watch;
+
+pub use once::{OnceError, once};
+pub use path::{Ignore, IgnoreError, ModelPath};
+pub use pool::{Factory, Job, Planner, Replanned, Stop, What};
+pub use report::{FaultLine, Milliseconds, Report};
+pub use run::{KeepError, keep, keep_until};
+pub use settings::{By, Pace, Settings};

@@ -1,0 +1,118 @@
+//! One pass without watching: brings the named models up to date.
+
+use std::collections::BTreeMap;
+use std::fs;
+use std::io;
+use std::path::{Path, PathBuf};
+use std::sync::{Arc, mpsc};
+
+use super::path::{Ignore, IgnoreError, ModelPath};
+use super::pool::{Factory, Job, Pool, Replanned, Stop, What, Word};
+use super::queue::Queue;
+use super::scan::scan;
+use super::settings::Settings;
+use crate::store::error::{Step, reason, shown};
+use crate::store::{Folder, Lock, LockError, StoreError, atomic};
+
+/// Why a pass was not made, or not to its end.
+#[derive(Debug, thiserror::Error)]
+pub enum OnceError {
+    /// A path that was named is no model.
+    #[error("{} is no model: the name of one ends in `.model.toml`", shown(.0))]
+    NotAModel(PathBuf),
+    /// A folder cannot be used.
+    #[error(transparent)]
+    Store(#[from] StoreError),
+    /// A daemon keeps the folder, or its lock cannot be used.
+    #[error(transparent)]
+    Lock(#[from] LockError),
+    /// A glob in the settings cannot be read.
+    #[error(transparent)]
+    Ignore(#[from] IgnoreError),
+    /// The system denies threads.
+    #[error("cannot start: {}", reason(.0))]
+    System(#[from] io::Error),
+}
+
+/// Brings every model named, and every model in the folders named, up to date once. Models that are not there end as [`Replanned::Vanished`].
+///
+/// State and lock are those of the watched folder that a path lies in; where there is none, of the path's own folder.
+///
+/// # Errors
+/// Nothing is planned in a folder that cannot be used or locked; folders before it are done.
+pub fn once(
+    paths: &[PathBuf],
+    settings: &Settings,
+    factory: &Factory,
+    mut on_report: impl FnMut(&ModelPath, &Replanned),
+) -> Result<(), OnceError> {
+    let ignore = Ignore::new(&settings.ignore)?;
+    let mut roots: BTreeMap<PathBuf, Vec<&Path>> = BTreeMap::new();
+    for path in paths {
+        roots.entry(Folder::root_of(path)?).or_default().push(path);
+    }
+    for (root, paths) in roots {
+        let folder = Folder::open(&root, settings.state_dir.as_deref())?;
+        let _lock = Lock::take(&folder)?;
+        let work = gather(&Arc::from(folder.root()), &paths, &ignore)?;
+        run(work, settings.workers.max(1), &Arc::from(folder.state()), factory, &mut on_report)?;
+    }
+    Ok(())
+}
+
+/// The models that paths under one root name.
+fn gather(root: &Arc<Path>, paths: &[&Path], ignore: &Ignore) -> Result<BTreeMap<ModelPath, What>, OnceError> {
+    let mut work = BTreeMap::new();
+    for &path in paths {
+        let failed = || StoreError::failed(Step::Look, path);
+        if fs::symlink_metadata(path).map_err(failed())?.is_dir() {
+            let within = path.canonicalize().map_err(failed())?;
+            let found = scan(root, ignore).map_err(failed())?;
+            atomic::sweep(&found.temps);
+            let named = found.sights.into_iter().filter(|(model, _)| model.full().starts_with(&within));
+            work.extend(
+                named.map(|(model, sight)| (model, if sight.model.is_some() { What::Replan } else { What::Retire })),
+            );
+        } else {
+            let whole = std::path::absolute(path).map_err(failed())?;
+            let folder = whole.parent().unwrap_or(&whole).canonicalize().map_err(failed())?;
+            let model = ModelPath::under(root, &folder.join(whole.file_name().unwrap_or_default()));
+            work.insert(model.ok_or_else(|| OnceError::NotAModel(path.to_owned()))?, What::Replan);
+        }
+    }
+    Ok(work)
+}
+
+fn run(
+    work: BTreeMap<ModelPath, What>,
+    workers: usize,
+    state: &Arc<Path>,
+    factory: &Factory,
+    on_report: &mut impl FnMut(&ModelPath, &Replanned),
+) -> Result<(), OnceError> {
+    let workers = workers.min(work.len()).max(1);
+    let (words, inbox) = mpsc::channel();
+    let pool = Pool::start(workers, factory, move |word| {
+        let _ = words.send(word);
+    })?;
+    let mut queue = Queue::new(workers);
+    for (model, what) in work {
+        queue.push(&model, what);
+    }
+    loop {
+        while let Some((worker, path, what)) = queue.take() {
+            pool.run(worker, Job { path, what, state: state.clone() }, Stop::new());
+        }
+        if queue.is_empty() {
+            return Ok(());
+        }
+        match inbox.recv() {
+            Ok(Word::Began { .. }) => {}
+            Ok(Word::Ended { worker, model, outcome, .. }) => {
+                queue.done(worker, &model, false);
+                on_report(&model, &outcome);
+            }
+            Err(error) => return Err(io::Error::other(error).into()),
+        }
+    }
+}

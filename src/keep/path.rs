@@ -1,0 +1,241 @@
+//! Which files are models, and where their plans and notes lie.
+//!
+//! Names are bytes: they need not be UTF-8 and may hold anything but `/`. Nothing inside a model ever forms a path.
+
+use std::ffi::{OsStr, OsString};
+use std::fmt;
+use std::os::unix::ffi::{OsStrExt, OsStringExt};
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+use globset::{GlobBuilder, GlobSet, GlobSetBuilder};
+
+use crate::model::escape::Plain;
+use crate::store::folder::OWN;
+
+const MODEL: &[u8] = b".model.toml";
+const PLAN: &[u8] = b".plan.toml";
+const NOTE: &[u8] = b".note.md";
+
+/// A model file of a watched folder, by its path.
+#[derive(Clone, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub struct ModelPath {
+    root: Arc<Path>,
+    relative: Arc<Path>,
+}
+
+impl ModelPath {
+    /// The model at `relative` under `root`; `None` where no model can be: by its name, or because the path leads elsewhere.
+    #[must_use]
+    pub fn new(root: &Arc<Path>, relative: &Path) -> Option<Self> {
+        let inside = relative.components().all(|part| matches!(part, std::path::Component::Normal(_)));
+        let entered = relative.parent().is_none_or(|folder| folder.iter().all(is_entered));
+        let named = relative.file_name().is_some_and(is_model);
+        (inside && entered && named).then(|| Self { root: root.clone(), relative: relative.into() })
+    }
+
+    /// The model that an absolute path leads to, if it lies under `root`.
+    #[must_use]
+    pub fn under(root: &Arc<Path>, path: &Path) -> Option<Self> {
+        Self::new(root, path.strip_prefix(root).ok()?)
+    }
+
+    /// The watched folder.
+    #[must_use]
+    pub fn root(&self) -> &Path {
+        &self.root
+    }
+
+    /// The path below the watched folder.
+    #[must_use]
+    pub fn relative(&self) -> &Path {
+        &self.relative
+    }
+
+    /// The whole path.
+    #[must_use]
+    pub fn full(&self) -> PathBuf {
+        self.root.join(&self.relative)
+    }
+
+    /// Where its plan lies.
+    #[must_use]
+    pub fn plan(&self) -> PathBuf {
+        self.beside(PLAN)
+    }
+
+    /// Where its note lies.
+    #[must_use]
+    pub fn note(&self) -> PathBuf {
+        self.beside(NOTE)
+    }
+
+    /// The model's name, `NAME` of `NAME.model.toml`, as text. Not escaped.
+    #[must_use]
+    pub fn name(&self) -> String {
+        String::from_utf8_lossy(self.stem()).into_owned()
+    }
+
+    fn stem(&self) -> &[u8] {
+        let name = self.relative.file_name().unwrap_or_default().as_bytes();
+        name.strip_suffix(MODEL).unwrap_or(name)
+    }
+
+    fn beside(&self, suffix: &[u8]) -> PathBuf {
+        self.full().with_file_name(OsString::from_vec([self.stem(), suffix].concat()))
+    }
+}
+
+impl fmt::Display for ModelPath {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        write!(f, "{}", Plain(&self.relative.to_string_lossy()))
+    }
+}
+
+impl fmt::Debug for ModelPath {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        write!(f, "{:?}", self.relative)
+    }
+}
+
+/// Whether a file of this name is a model. Editors' and tools' leavings (`.x`, `#x#`, `x~`, `x.swp`, `x.bak` …) are none.
+#[must_use]
+pub fn is_model(name: &OsStr) -> bool {
+    stem(name, MODEL).is_some()
+}
+
+/// Whether a file of this name is a plan or a note.
+#[must_use]
+pub fn is_output(name: &OsStr) -> bool {
+    stem(name, PLAN).is_some() || stem(name, NOTE).is_some()
+}
+
+/// The name of the model that a plan of this name belongs to.
+#[must_use]
+pub fn model_of_plan(name: &OsStr) -> Option<OsString> {
+    stem(name, PLAN).map(|stem| OsString::from_vec([stem, MODEL].concat()))
+}
+
+/// Whether a folder of this name is looked into.
+#[must_use]
+pub fn is_entered(name: &OsStr) -> bool {
+    name != OWN && name != ".git"
+}
+
+fn stem<'a>(name: &'a OsStr, suffix: &[u8]) -> Option<&'a [u8]> {
+    let stem = name.as_bytes().strip_suffix(suffix)?;
+    (!stem.is_empty() && !stem.starts_with(b".") && !stem.starts_with(b"#")).then_some(stem)
+}
+
+/// Paths that are left out, by glob.
+#[derive(Clone, Debug)]
+pub struct Ignore(GlobSet);
+
+/// A glob that cannot be read.
+#[derive(Debug, thiserror::Error)]
+#[error("cannot read the glob `{}` in `ignore`: {}", Plain(.glob), Plain(.message))]
+pub struct IgnoreError {
+    glob: String,
+    message: String,
+}
+
+impl Ignore {
+    /// Reads globs; `*` stays within a folder, `**` does not.
+    ///
+    /// # Errors
+    /// Names the glob that cannot be read.
+    pub fn new(globs: &[String]) -> Result<Self, IgnoreError> {
+        let error =
+            |glob: &str, error: globset::Error| IgnoreError { glob: glob.to_owned(), message: error.to_string() };
+        let mut set = GlobSetBuilder::new();
+        for glob in globs {
+            set.add(GlobBuilder::new(glob).literal_separator(true).build().map_err(|e| error(glob, e))?);
+        }
+        set.build().map(Self).map_err(|e| error("", e))
+    }
+
+    /// Whether a path relative to the watched folder is left out.
+    #[must_use]
+    pub fn covers(&self, relative: &Path) -> bool {
+        self.0.is_match(relative)
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn root() -> Arc<Path> {
+        Arc::from(Path::new("/works"))
+    }
+
+    #[test]
+    fn models_are_told_from_what_editors_leave() {
+        for good in [
+            "a.model.toml",
+            "a b (copy).model.toml",
+            "-x.model.toml",
+            "a.model.toml.model.toml",
+            "a\n\u{1b}.model.toml",
+        ] {
+            assert!(is_model(OsStr::new(good)), "{good:?}");
+        }
+        assert!(is_model(OsStr::from_bytes(b"\xff\xfe.model.toml")));
+        let bad = [
+            ".model.toml",
+            ".a.model.toml",
+            "#a.model.toml",
+            "#a.model.toml#",
+            ".#a.model.toml",
+            "a.model.toml~",
+            "a.model.toml.swp",
+            "a.model.toml.bak",
+            "a.model.toml.orig",
+            "a.plan.toml",
+            "a.toml",
+            "model.toml",
+            "a.model.TOML",
+            "",
+        ];
+        for bad in bad {
+            assert!(!is_model(OsStr::new(bad)), "{bad:?}");
+        }
+    }
+
+    #[test]
+    fn plans_and_notes_lie_beside_their_model() {
+        let model = ModelPath::new(&root(), Path::new("north/tile.x.model.toml")).unwrap();
+        assert_eq!(model.plan(), Path::new("/works/north/tile.x.plan.toml"));
+        assert_eq!(model.note(), Path::new("/works/north/tile.x.note.md"));
+        assert_eq!(model.name(), "tile.x");
+        assert_eq!(model_of_plan(OsStr::new("tile.x.plan.toml")).unwrap(), "tile.x.model.toml");
+        let odd = ModelPath::new(&root(), Path::new(OsStr::from_bytes(b"a\n\xff.model.toml"))).unwrap();
+        assert_eq!(odd.plan().as_os_str().as_bytes(), b"/works/a\n\xff.plan.toml");
+        assert_eq!(odd.to_string(), "a\\u{a}\u{fffd}.model.toml");
+    }
+
+    #[test]
+    fn no_path_leads_out_of_the_folder_or_into_what_is_not_entered() {
+        for bad in [
+            "../a.model.toml",
+            "/a.model.toml",
+            ".git/a.model.toml",
+            "x/.millreeve/a.model.toml",
+            "x/../../a.model.toml",
+        ] {
+            assert_eq!(ModelPath::new(&root(), Path::new(bad)), None, "{bad}");
+        }
+        assert_eq!(ModelPath::under(&root(), Path::new("/elsewhere/a.model.toml")), None);
+        assert!(ModelPath::under(&root(), Path::new("/works/.hidden/a.model.toml")).is_some());
+    }
+
+    #[test]
+    fn globs_leave_paths_out() {
+        let ignore = Ignore::new(&["old/**".to_owned(), "*.sync-conflict-*".to_owned()]).unwrap();
+        assert!(
+            ignore.covers(Path::new("old/a.model.toml")) && ignore.covers(Path::new("a.sync-conflict-7.model.toml"))
+        );
+        assert!(!ignore.covers(Path::new("x/a.sync-conflict-7.model.toml")));
+        assert!(Ignore::new(&["[".to_owned()]).unwrap_err().to_string().contains("`[`"));
+    }
+}

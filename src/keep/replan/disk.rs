@@ -1,0 +1,88 @@
+//! The plan and the note as they lie on disk.
+
+use std::fs;
+use std::path::PathBuf;
+
+use crate::keep::path::ModelPath;
+use crate::plan::text::{self, is_ours};
+use crate::plan::{Plan, Standing};
+use crate::store::publish::publish;
+use crate::store::{Durability, Output, Outputs, Record, Records, StoreError, Written, atomic};
+
+/// Where the plan and the note of a model lie.
+pub(super) struct Disk {
+    plan: PathBuf,
+    note: PathBuf,
+}
+
+/// What lies where the plan should.
+pub(super) enum OnDisk {
+    /// A whole plan of ours, unharmed.
+    Good(Box<Found>),
+    /// Nothing, or nothing that can be gone by: edited, damaged, of a newer version, not ours.
+    Nothing,
+}
+
+/// A plan on disk.
+pub(super) struct Found {
+    pub(super) plan: Plan,
+    pub(super) text: String,
+}
+
+impl OnDisk {
+    pub(super) fn plan(&self) -> Option<&Plan> {
+        match self {
+            Self::Good(found) => Some(&found.plan),
+            Self::Nothing => None,
+        }
+    }
+
+    pub(super) fn standing(&self) -> Option<Standing> {
+        self.plan().map(|plan| plan.standing.clone())
+    }
+}
+
+impl Disk {
+    pub(super) fn of(path: &ModelPath) -> Self {
+        Self { plan: path.plan(), note: path.note() }
+    }
+
+    fn outputs(&self) -> Outputs<'_> {
+        Outputs { plan: Output { path: &self.plan, ours: is_ours }, note: Output { path: &self.note, ours: is_ours } }
+    }
+
+    /// The plan on disk, if it can be gone by. What cannot be read counts as nothing; writing will say why.
+    pub(super) fn plan(&self) -> OnDisk {
+        let text = fs::read_to_string(&self.plan).ok();
+        let written = text.as_deref().and_then(|text| text::read(text).ok()).filter(|written| written.sealed);
+        match (text, written) {
+            (Some(text), Some(written)) => OnDisk::Good(Box::new(Found { plan: written.plan, text })),
+            _ => OnDisk::Nothing,
+        }
+    }
+
+    /// The note on disk, if it is ours.
+    pub(super) fn note(&self) -> Option<String> {
+        fs::read_to_string(&self.note).ok().filter(|text| is_ours(text.as_bytes()))
+    }
+
+    /// Whether plan and note are just what a record says.
+    pub(super) fn stands(&self, record: &Record) -> bool {
+        let holds = |path: &PathBuf, text: &str| fs::read(path).is_ok_and(|bytes| bytes == text.as_bytes());
+        !record.plan.is_empty() && holds(&self.plan, &record.plan) && holds(&self.note, &record.note)
+    }
+
+    /// Records and publishes plan and note. Answers whether anything was written.
+    pub(super) fn publish(&self, records: &Records, record: &Record) -> Result<bool, StoreError> {
+        let published = publish(records, record, &self.outputs())?;
+        Ok(published.plan != Written::Same || published.note != Written::Same)
+    }
+
+    pub(super) fn write_plan(&self, text: &str) -> Result<Written, StoreError> {
+        atomic::write(&self.plan, text.as_bytes(), is_ours, Durability::Synced)
+    }
+
+    pub(super) fn write_note(&self, text: &str) -> Result<Written, StoreError> {
+        atomic::write(&self.note, text.as_bytes(), is_ours, Durability::Synced)
+    }
+}

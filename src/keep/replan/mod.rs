@@ -1,0 +1,366 @@
+//! One replan: from the bytes of a model to its plan and note on disk.
+//!
+//! What is decided here: whether the plan on disk answers the model already; where the solve starts from; what is written when there is
+//! no plan. Everything it needs to know of the past is in [`memory`], which all workers share.
+
+mod disk;
+mod memory;
+mod telling;
+mod worths;
+
+use std::sync::Arc;
+use std::time::{Duration, Instant};
+
+use self::disk::{Disk, OnDisk};
+use self::memory::{Known, Memory};
+use self::telling::Telling;
+use super::pool::{Factory, Job, Planner, Replanned, Stop, What};
+use super::report::Report;
+use super::settings::Settings;
+use crate::edits::{Edit, Renames, compare};
+use crate::lp::{Program, build};
+use crate::model::meaning::Meaning;
+use crate::model::read::{self, FileProblem};
+use crate::model::{Faults, Model};
+use crate::plan::note::{Reckoning, Trouble, Verdict};
+use crate::plan::text::{self, marked};
+use crate::plan::{self, Plan, Standing};
+use crate::solver::desk::Desk;
+use crate::solver::message::{Account, Answer, ModelKey, Optimum, Outcome};
+use crate::solver::stop;
+use crate::solver::worker::Worker;
+use crate::store::{Record, StoreError, Written};
+
+/// Memory for live instances where the settings name no limit, in bytes.
+const MEMORY: u64 = 2 << 30;
+
+/// Makes planners that replan for real, all with one memory.
+#[must_use]
+pub fn factory(settings: &Settings) -> Factory {
+    let memory = Arc::new(Memory::default());
+    let limit = usize::try_from(settings.memory_limit.unwrap_or(MEMORY)).unwrap_or(usize::MAX);
+    let share = limit / settings.workers.max(1);
+    let time_limit = settings.time_limit;
+    Arc::new(move || Box::new(Replanner::new(memory.clone(), share, time_limit)))
+}
+
+/// Replans models, with live solvers of its own.
+struct Replanner {
+    memory: Arc<Memory>,
+    desk: Desk<Worker>,
+    time_limit: Duration,
+    /// Tells this planner's solver from those of other workers.
+    number: usize,
+}
+
+/// Why a job came to nothing.
+enum Stopped {
+    Interrupted,
+    Failed(StoreError),
+    Trouble(String),
+}
+
+impl From<StoreError> for Stopped {
+    fn from(error: StoreError) -> Self {
+        Self::Failed(error)
+    }
+}
+
+/// A model that was read, on its way to a plan.
+struct Read {
+    bytes: Vec<u8>,
+    model: Model,
+    meaning: Meaning,
+}
+
+impl Planner for Replanner {
+    fn replan(&mut self, job: &Job, stop: &Stop) -> Replanned {
+        let begun = Instant::now();
+        let done = match job.what {
+            What::Retire => self.retire(job),
+            What::Replan => match read::file(&job.path.full()) {
+                Ok(bytes) => self.bring_up_to_date(job, bytes, stop, begun),
+                Err(FileProblem::Missing(_) | FileProblem::Link(_) | FileProblem::NotAFile { .. }) => {
+                    return Replanned::Vanished;
+                }
+                Err(problem @ FileProblem::TooLarge(_)) => {
+                    self.hold(job, None, Trouble::Undecided(&problem.to_string()), None)
+                }
+                Err(problem) => return Replanned::Failed { message: problem.to_string(), retry: true },
+            },
+        };
+        match done {
+            Ok(Told { mut report, changed }) => {
+                report.milliseconds.all = milliseconds(begun.elapsed());
+                if changed { Replanned::Done(report) } else { Replanned::Unchanged(report) }
+            }
+            Err(Stopped::Interrupted) => Replanned::Interrupted,
+            Err(Stopped::Failed(error)) => Replanned::Failed { message: error.to_string(), retry: error.may_pass() },
+            Err(Stopped::Trouble(message)) => Replanned::Failed { message, retry: false },
+        }
+    }
+}
+
+/// What is told of a job, and whether anything was written.
+struct Told {
+    report: Box<Report>,
+    changed: bool,
+}
+
+impl Replanner {
+    fn new(memory: Arc<Memory>, memory_limit: usize, time_limit: Duration) -> Self {
+        let number = memory.number();
+        Self { memory, desk: Desk::new(Worker::new(memory_limit), time_limit), time_limit, number }
+    }
+
+    fn bring_up_to_date(&mut self, job: &Job, bytes: Vec<u8>, stop: &Stop, begun: Instant) -> Result<Told, Stopped> {
+        let disk = Disk::of(&job.path);
+        let records = self.memory.records(&job.state)?;
+        let record = records.load(job.path.relative()).ok();
+        // The bytes of the last plan: nothing needs to be parsed to know that it stands.
+        if let Some(record) = &record
+            && record.source == bytes
+            && text::is_current(&record.plan)
+            && disk.stands(record)
+        {
+            return Ok(Told { report: Telling::of(job).standing(&record.plan), changed: false });
+        }
+        let model = match read::text(job.path.relative(), &bytes) {
+            Ok(reading) => reading.model,
+            Err(faults) => return self.hold_for(job, &faults),
+        };
+        let meaning = Meaning::of(&model);
+        let read = Read { bytes, model, meaning };
+        let known = self.memory.known(&job.path, record.as_ref());
+        let on_disk = disk.plan();
+        if let Some(told) = self.keep_standing(job, &read, known.as_deref(), record.as_ref(), &on_disk)? {
+            return Ok(told);
+        }
+        let read_in = begun.elapsed();
+        let mut told = self.solve(job, read, known, stop)?;
+        told.report.milliseconds.read = milliseconds(read_in);
+        Ok(told)
+    }
+
+    /// Where a plan that answers this model exists already, on disk or in the record, nothing is solved.
+    fn keep_standing(
+        &mut self,
+        job: &Job,
+        read: &Read,
+        known: Option<&Known>,
+        record: Option<&Record>,
+        on_disk: &OnDisk,
+    ) -> Result<Option<Told>, Stopped> {
+        let answers = read.meaning.to_string();
+        let plan_text = match on_disk {
+            OnDisk::Good(found) if found.plan.answers == read.meaning => found.text.clone(),
+            _ => match record {
+                Some(record) if record.answers == answers && !record.plan.is_empty() => record.plan.clone(),
+                _ => return Ok(None),
+            },
+        };
+        let was = text::read(&plan_text).ok();
+        let Ok(plan_text) = marked(&plan_text, &Standing::Current) else { return Ok(None) };
+        let Ok(now) = text::read(&plan_text) else { return Ok(None) };
+        let edits = known.map(|known| compare(&known.model, &read.model)).unwrap_or_default();
+        let before = on_disk.plan().or_else(|| was.as_ref().map(|written| &written.plan));
+        let mended = before.is_some_and(|plan| plan.standing != Standing::Current);
+        let telling = Telling::of(job).edited(&edits, &[]).model(Some(&read.model));
+        // The note on disk still holds unless there is something new to tell.
+        let disk = Disk::of(&job.path);
+        let note = match disk.note() {
+            Some(note) if edits.is_empty() && !mended && plan::note::speaks_of(&note) == Some(now.seal.as_str()) => {
+                note
+            }
+            _ => telling.note(before, Verdict::Planned(&now.plan), Some(&now.seal), None),
+        };
+        let record = Record {
+            model: job.path.relative().to_owned(),
+            answers,
+            source: read.bytes.clone(),
+            basis: record
+                .filter(|record| record.answers == now.plan.answers.to_string())
+                .and_then(|record| record.basis.clone()),
+            plan: plan_text,
+            note,
+            cold_pivots: record.and_then(|record| record.cold_pivots),
+        };
+        let written = disk.publish(&self.memory.records(&job.state)?, &record)?;
+        self.memory.forget(&job.path);
+        let report = telling.planned(before, &now.plan, None);
+        Ok(Some(Told { report, changed: written }))
+    }
+
+    fn solve(&mut self, job: &Job, read: Read, known: Option<Arc<Known>>, stop: &Stop) -> Result<Told, Stopped> {
+        let program = build(&read.model);
+        let edits = known.as_ref().map(|known| compare(&known.model, &read.model)).unwrap_or_default();
+        let renames = known.as_ref().map(|known| Renames::between(&known.model, &read.model)).unwrap_or_default();
+        let known = if renames.is_empty() { known } else { known.map(|known| Arc::new(known.renamed(&renames))) };
+        let key = ModelKey(job.path.relative().to_string_lossy().into_owned());
+        let solver_stop = stop::Stop::watching(stop.flag());
+        if !renames.is_empty() || !self.memory.solved_last(&job.path, self.number) {
+            self.desk.forget(&key);
+        }
+        let answer = self.desk.solve(&key, &program, || known.as_ref().and_then(|known| known.last()), &solver_stop);
+        self.memory.solves(&job.path, self.number);
+        let Answer { outcome, account } = answer;
+        let reckoning = |optimum: Option<&Optimum>| reckoning(known.as_deref(), &edits, &account, optimum);
+        match outcome {
+            Outcome::Optimal(optimum) => {
+                let worths =
+                    worths::of_each(known.as_deref(), &read.model, &edits, optimum.aim, self.time_limit, &solver_stop);
+                let reckoning = reckoning(Some(&optimum));
+                self.publish(job, read, program, *optimum, Solved { known, edits, worths, reckoning, account })
+            }
+            Outcome::Infeasible(conflict) => self.hold(
+                job,
+                Some((&read, &edits)),
+                Trouble::Infeasible(&conflict),
+                Some((&reckoning(None), &account)),
+            ),
+            Outcome::Unbounded(growth) => {
+                self.hold(job, Some((&read, &edits)), Trouble::Unbounded(&growth), Some((&reckoning(None), &account)))
+            }
+            Outcome::Undecided(why) => {
+                self.hold(job, Some((&read, &edits)), Trouble::Undecided(&why), Some((&reckoning(None), &account)))
+            }
+            Outcome::Interrupted => Err(Stopped::Interrupted),
+            Outcome::Forgotten => {
+                Err(Stopped::Trouble("the solver forgot the model twice; the last plan stays".to_owned()))
+            }
+        }
+    }
+
+    fn publish(
+        &mut self,
+        job: &Job,
+        read: Read,
+        program: Program,
+        optimum: Optimum,
+        solved: Solved,
+    ) -> Result<Told, Stopped> {
+        let plan = plan::make(&read.model, read.meaning, &program, &optimum)
+            .map_err(|error| Stopped::Trouble(format!("{error}; the last plan stays")))?;
+        let plan_text = text::write(&plan);
+        let seal = text::seal(&plan_text).map(str::to_owned);
+        let disk = Disk::of(&job.path);
+        let on_disk = disk.plan();
+        let before = solved.known.as_ref().map(|known| &known.plan).or_else(|| on_disk.plan());
+        let before =
+            before.map(|plan| Plan { standing: on_disk.standing().unwrap_or(plan.standing.clone()), ..plan.clone() });
+        let telling = Telling::of(job).edited(&solved.edits, &solved.worths).model(Some(&read.model));
+        let note = telling.note(before.as_ref(), Verdict::Planned(&plan), seal.as_deref(), Some(&solved.reckoning));
+        let record = Record {
+            model: job.path.relative().to_owned(),
+            answers: plan.answers.to_string(),
+            source: read.bytes,
+            basis: Some(optimum.basis.named(&program)),
+            plan: plan_text,
+            note,
+            cold_pivots: solved.account.cold_pivots,
+        };
+        let begun = Instant::now();
+        let changed = disk.publish(&self.memory.records(&job.state)?, &record)?;
+        let mut report = telling.planned(before.as_ref(), &plan, Some((&solved.reckoning, &solved.account)));
+        report.milliseconds.write = milliseconds(begun.elapsed());
+        self.memory.keep(
+            &job.path,
+            Known { model: read.model, program, plan, basis: record.basis, cold_pivots: record.cold_pivots },
+        );
+        Ok(Told { report, changed })
+    }
+
+    fn hold_for(&mut self, job: &Job, faults: &Faults) -> Result<Told, Stopped> {
+        let mut told = self.hold(job, None, Trouble::Faults(faults), None)?;
+        told.report.faults = faults.reported.iter().map(Into::into).collect();
+        Ok(told)
+    }
+
+    /// There is no plan for the model as it is: the last good one stays, marked as held, and the note says why.
+    fn hold(
+        &mut self,
+        job: &Job,
+        read: Option<(&Read, &[Edit])>,
+        trouble: Trouble<'_>,
+        solved: Option<(&Reckoning, &Account)>,
+    ) -> Result<Told, Stopped> {
+        let model = read.map(|(read, _)| &read.model);
+        let reason = plan::note::reason(trouble, model);
+        let disk = Disk::of(&job.path);
+        let on_disk = disk.plan();
+        let records = self.memory.records(&job.state)?;
+        let record = records.load(job.path.relative()).ok();
+        // A plan that lies there unharmed stays; one that was edited or lost comes back from the record.
+        let last_good = match &on_disk {
+            OnDisk::Good(found) => Some(found.text.clone()),
+            _ => record.as_ref().map(|record| record.plan.clone()).filter(|plan| !plan.is_empty()),
+        };
+        let held = last_good.and_then(|text| marked(&text, &Standing::Held(reason.clone())).ok());
+        let plan = held.as_deref().and_then(|text| text::read(text).ok());
+        let telling = Telling::of(job).edited(read.map_or(&[], |(_, edits)| edits), &[]).model(model);
+        let seal = plan.as_ref().map(|written| written.seal.as_str());
+        let before = on_disk.plan().or_else(|| plan.as_ref().map(|written| &written.plan));
+        let note = telling.note(before, Verdict::Trouble(trouble), seal, solved.map(|(reckoning, _)| reckoning));
+        let changed = match held {
+            Some(held) => {
+                let record =
+                    record.unwrap_or_else(|| Record { model: job.path.relative().to_owned(), ..Record::default() });
+                disk.publish(&records, &Record { plan: held, note, ..record })?
+            }
+            None => disk.write_note(&note)? != Written::Same,
+        };
+        let report = telling.held(before, plan.as_ref().map(|written| &written.plan), reason, solved);
+        Ok(Told { report, changed })
+    }
+
+    /// The model is gone: its plan stays, marked as retired.
+    fn retire(&mut self, job: &Job) -> Result<Told, Stopped> {
+        let disk = Disk::of(&job.path);
+        let telling = Telling::of(job);
+        let mut changed = false;
+        if let OnDisk::Good(found) = disk.plan()
+            && let Ok(retired) = marked(&found.text, &Standing::Retired)
+        {
+            let seal = text::seal(&retired).map(str::to_owned);
+            let note = telling.note(Some(&found.plan), Verdict::Retired, seal.as_deref(), None);
+            changed |= disk.write_plan(&retired)? != Written::Same;
+            changed |= disk.write_note(&note)? != Written::Same;
+        }
+        self.memory.forget(&job.path);
+        Ok(Told { report: telling.retired(), changed })
+    }
+}
+
+/// What a solve was about and how it went.
+struct Solved {
+    known: Option<Arc<Known>>,
+    edits: Vec<Edit>,
+    worths: Vec<Option<f64>>,
+    reckoning: Reckoning,
+    account: Account,
+}
+
+fn reckoning(known: Option<&Known>, edits: &[Edit], account: &Account, optimum: Option<&Optimum>) -> Reckoning {
+    let mut kinds: Vec<_> = edits.iter().map(|edit| edit.kind).collect();
+    kinds.sort();
+    kinds.dedup();
+    let expected = match known {
+        Some(known) if known.basis.is_some() => known.last_plan().kept(edits).expected(),
+        _ => "cold",
+    };
+    Reckoning {
+        kinds,
+        expected: expected.to_owned(),
+        taken: account.start,
+        primal_infeasible: account.primal_infeasible,
+        dual_infeasible: account.dual_infeasible,
+        pivots: account.pivots,
+        detours: account.detours.clone(),
+        worst: optimum.map_or(0.0, |optimum| optimum.proof.worst()),
+    }
+}
+
+fn milliseconds(time: Duration) -> f64 {
+    // Microseconds are as fine as anyone reads.
+    (time.as_secs_f64() * 1e6).round() / 1e3
+}

@@ -1,0 +1,262 @@
+//! Looking at the whole folder: what correctness rests on.
+
+use std::collections::{BTreeMap, BTreeSet};
+use std::ffi::OsString;
+use std::fs::{self, Metadata};
+use std::io;
+use std::os::unix::fs::MetadataExt;
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+use super::path::{Ignore, ModelPath, is_entered, is_model, model_of_plan};
+use crate::store::atomic::is_temp;
+
+/// What tells one state of a file from another without reading it. Compared by `!=` only: times may go backwards.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Stamp {
+    device: u64,
+    inode: u64,
+    size: u64,
+    /// Seconds since 1970, and nanoseconds.
+    modified: (i64, i64),
+    /// The same; moves with every write and cannot be set back.
+    changed: (i64, i64),
+}
+
+impl Stamp {
+    /// The stamp of a plain file; `None` where there is none. Links are not followed.
+    #[must_use]
+    pub fn of(path: &Path) -> Option<Self> {
+        fs::symlink_metadata(path).ok().filter(Metadata::is_file).map(|metadata| Self::from(&metadata))
+    }
+
+    /// When the file last changed by the clock of its file system, in nanoseconds since 1970.
+    #[must_use]
+    pub fn changed(&self) -> i128 {
+        i128::from(self.changed.0) * 1_000_000_000 + i128::from(self.changed.1)
+    }
+}
+
+impl From<&Metadata> for Stamp {
+    fn from(metadata: &Metadata) -> Self {
+        Self {
+            device: metadata.dev(),
+            inode: metadata.ino(),
+            size: metadata.size(),
+            modified: (metadata.mtime(), metadata.mtime_nsec()),
+            changed: (metadata.ctime(), metadata.ctime_nsec()),
+        }
+    }
+}
+
+/// The stamps of a model and of what was written for it.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct Sight {
+    /// The model; `None` where a plan lies there without one.
+    pub model: Option<Stamp>,
+    /// The plan.
+    pub plan: Option<Stamp>,
+    /// The note.
+    pub note: Option<Stamp>,
+}
+
+impl Sight {
+    /// Looks at one model now.
+    #[must_use]
+    pub fn of(model: &ModelPath) -> Self {
+        Self { model: Stamp::of(&model.full()), ..Self::default() }.with_outputs(model)
+    }
+
+    /// The same with plan and note as they are now.
+    #[must_use]
+    pub fn with_outputs(self, model: &ModelPath) -> Self {
+        Self { plan: Stamp::of(&model.plan()), note: Stamp::of(&model.note()), ..self }
+    }
+}
+
+/// Tells one folder from another that takes its place: device and inode.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct FolderId(u64, u64);
+
+impl FolderId {
+    /// The folder at `path`.
+    ///
+    /// # Errors
+    /// It cannot be looked at, or is no folder.
+    pub fn of(path: &Path) -> io::Result<Self> {
+        let metadata = fs::metadata(path)?;
+        if metadata.is_dir() {
+            Ok(Self(metadata.dev(), metadata.ino()))
+        } else {
+            Err(io::ErrorKind::NotADirectory.into())
+        }
+    }
+}
+
+/// What a scan found.
+#[derive(Clone, Debug)]
+pub struct Scan {
+    /// Which folder stood at the root's path.
+    pub root: FolderId,
+    /// Every model, and every plan without a model.
+    pub sights: BTreeMap<ModelPath, Sight>,
+    /// What is named as a model and is no plain file: links, pipes, folders.
+    pub odd: BTreeSet<ModelPath>,
+    /// Temporary files of ours.
+    pub temps: Vec<PathBuf>,
+    /// Folders, relative to the root, that could not be read. Nothing is known about what is in them.
+    pub unread: Vec<PathBuf>,
+}
+
+impl Scan {
+    /// Whether nothing was found at all: neither a model nor a plan.
+    #[must_use]
+    pub fn is_hollow(&self) -> bool {
+        self.sights.is_empty() && self.odd.is_empty()
+    }
+
+    /// Whether a model that was not found may be there nevertheless.
+    #[must_use]
+    pub fn may_hide(&self, model: &ModelPath) -> bool {
+        self.odd.contains(model) || self.unread.iter().any(|folder| model.relative().starts_with(folder))
+    }
+}
+
+/// Scans the folder `root`. Linked folders are not entered.
+///
+/// # Errors
+/// The root itself cannot be read; what is wrong further down is in the result.
+pub fn scan(root: &Arc<Path>, ignore: &Ignore) -> io::Result<Scan> {
+    let id = FolderId::of(root)?;
+    let mut scan =
+        Scan { root: id, sights: BTreeMap::new(), odd: BTreeSet::new(), temps: Vec::new(), unread: Vec::new() };
+    let mut folders = vec![PathBuf::new()];
+    while let Some(folder) = folders.pop() {
+        match look_into(root, &folder, ignore, &mut scan) {
+            Ok(inner) => folders.extend(inner),
+            Err(error) if folder.as_os_str().is_empty() => return Err(error),
+            // Removed since its parent was read.
+            Err(error) if error.kind() == io::ErrorKind::NotFound => {}
+            Err(_) => scan.unread.push(folder),
+        }
+    }
+    Ok(scan)
+}
+
+/// Looks into one folder, and returns the folders in it.
+fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) -> io::Result<Vec<PathBuf>> {
+    let mut inner = Vec::new();
+    let mut models: BTreeSet<OsString> = BTreeSet::new();
+    for entry in fs::read_dir(root.join(folder))? {
+        let entry = entry?;
+        let name = entry.file_name();
+        let is_folder = entry.file_type().is_ok_and(|kind| kind.is_dir());
+        if is_model(&name) {
+            models.insert(name);
+        } else if let Some(model) = model_of_plan(&name) {
+            models.insert(model);
+        } else if is_temp(&name) {
+            scan.temps.push(entry.path());
+        } else if is_folder && is_entered(&name) && !ignore.covers(&folder.join(&name)) {
+            inner.push(folder.join(&name));
+        }
+    }
+    for name in models {
+        let relative = folder.join(name);
+        if let Some(model) = ModelPath::new(root, &relative).filter(|_| !ignore.covers(&relative)) {
+            look_at(model, scan);
+        }
+    }
+    Ok(inner)
+}
+
+fn look_at(model: ModelPath, scan: &mut Scan) {
+    let sight = match fs::symlink_metadata(model.full()) {
+        Ok(metadata) if metadata.is_file() => Sight { model: Some(Stamp::from(&metadata)), ..Sight::default() },
+        Err(error) if error.kind() == io::ErrorKind::NotFound => Sight::default(),
+        _ => {
+            scan.odd.insert(model);
+            return;
+        }
+    };
+    let sight = sight.with_outputs(&model);
+    if sight.model.is_some() || sight.plan.is_some() {
+        scan.sights.insert(model, sight);
+    }
+}
+
+#[cfg(test)]
+#[expect(clippy::disallowed_methods, reason = "tests lay out files as other programs would")]
+mod tests {
+    use std::os::unix::fs::symlink;
+
+    use super::*;
+
+    fn found(root: &Path, globs: &[&str]) -> Scan {
+        let globs: Vec<_> = globs.iter().map(|&glob| glob.to_owned()).collect();
+        scan(&Arc::from(root), &Ignore::new(&globs).unwrap()).unwrap()
+    }
+
+    fn names<'a>(models: impl IntoIterator<Item = &'a ModelPath>) -> Vec<String> {
+        models.into_iter().map(ToString::to_string).collect()
+    }
+
+    #[test]
+    fn models_and_orphaned_plans_are_found_and_nothing_else_is_looked_at() {
+        let root = tempfile::tempdir().unwrap();
+        let outside = tempfile::tempdir().unwrap();
+        fs::write(outside.path().join("far.model.toml"), "").unwrap();
+        for folder in ["a/b", ".git", ".millreeve", "old", "d.model.toml"] {
+            fs::create_dir_all(root.path().join(folder)).unwrap();
+        }
+        let files = [
+            "m.model.toml",
+            "m.plan.toml",
+            "a/b/n.model.toml",
+            "gone.plan.toml",
+            "lone.note.md",
+            ".git/g.model.toml",
+            ".millreeve/s.model.toml",
+            "old/o.model.toml",
+            "x.txt",
+            ".millreeve-aB3dEf7h.tmp",
+        ];
+        for file in files {
+            fs::write(root.path().join(file), "").unwrap();
+        }
+        symlink(outside.path(), root.path().join("linked")).unwrap();
+        symlink(outside.path().join("far.model.toml"), root.path().join("l.model.toml")).unwrap();
+        let scan = found(root.path(), &["old"]);
+        assert_eq!(names(scan.sights.keys()), ["a/b/n.model.toml", "gone.model.toml", "m.model.toml"]);
+        let shape: Vec<_> =
+            scan.sights.values().map(|s| (s.model.is_some(), s.plan.is_some(), s.note.is_some())).collect();
+        assert_eq!(shape, [(true, false, false), (false, true, false), (true, true, false)]);
+        assert_eq!(names(&scan.odd), ["d.model.toml", "l.model.toml"]);
+        assert_eq!(scan.temps, [root.path().join(".millreeve-aB3dEf7h.tmp")]);
+        assert!(scan.unread.is_empty() && !scan.is_hollow());
+    }
+
+    #[test]
+    fn any_change_changes_the_stamp_even_one_that_sets_the_time_back() {
+        let root = tempfile::tempdir().unwrap();
+        let path = root.path().join("m.model.toml");
+        fs::write(&path, "one").unwrap();
+        let first = Stamp::of(&path).unwrap();
+        let file = fs::File::options().write(true).open(&path).unwrap();
+        let time = file.metadata().unwrap().modified().unwrap();
+        file.set_modified(time - std::time::Duration::from_secs(1_000_000)).unwrap();
+        let second = Stamp::of(&path).unwrap();
+        assert_ne!(first, second);
+        fs::rename(&path, root.path().join("kept")).unwrap();
+        fs::write(&path, "one").unwrap();
+        assert_ne!(second, Stamp::of(&path).unwrap());
+    }
+
+    #[test]
+    fn a_missing_root_is_an_error_and_not_an_empty_folder() {
+        let root = tempfile::tempdir().unwrap();
+        let none = root.path().join("none");
+        assert!(scan(&Arc::from(none.as_path()), &Ignore::new(&[]).unwrap()).is_err());
+        assert!(found(root.path(), &[]).is_hollow());
+    }
+}

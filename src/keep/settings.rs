@@ -1,0 +1,68 @@
+//! What can be set about keeping a folder.
+
+use std::path::PathBuf;
+use std::time::Duration;
+
+/// How edits are noticed.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub enum By {
+    /// By the system's events, with a scan behind them.
+    #[default]
+    Events,
+    /// By scanning alone: for file systems whose events do not arrive.
+    Poll,
+}
+
+/// Settings of the daemon and of a single pass.
+#[derive(Clone, Debug)]
+pub struct Settings {
+    /// How edits are noticed.
+    pub by: By,
+    /// The least time from one scan to the next; it is longer where scanning is slow.
+    pub scan_every: Duration,
+    /// Globs of paths, relative to the watched folder, that are left out.
+    pub ignore: Vec<String>,
+    /// How many models are planned at a time; at least 1.
+    pub workers: usize,
+    /// How long one solve may take.
+    pub time_limit: Duration,
+    /// Memory for live models, in bytes; `None` for no limit.
+    pub memory_limit: Option<u64>,
+    /// Where the daemon's state lies; `None` for `.millreeve/` in the watched folder.
+    pub state_dir: Option<PathBuf>,
+    /// How long things must be still before they count.
+    pub pace: Pace,
+}
+
+impl Default for Settings {
+    fn default() -> Self {
+        Self {
+            by: By::Events,
+            scan_every: Duration::from_secs(2),
+            ignore: Vec::new(),
+            workers: std::thread::available_parallelism().map_or(2, |cores| cores.get().max(2)),
+            time_limit: Duration::from_secs(60),
+            memory_limit: None,
+            state_dir: None,
+            pace: Pace::default(),
+        }
+    }
+}
+
+/// How long things must be still before they count.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Pace {
+    /// A file known only from scans is read once two looks this far apart agree. Two seconds are the coarsest time stamp in use, so
+    /// that a write after the reading cannot hide in the stamp of the one before it.
+    pub settle: Duration,
+    /// A file that is open for writing is read anyway when nothing was written for so long.
+    pub quiet: Duration,
+    /// A model must be gone for so long before its plan is retired: editors and git move files away and back.
+    pub grace: Duration,
+}
+
+impl Default for Pace {
+    fn default() -> Self {
+        Self { settle: Duration::from_secs(2), quiet: Duration::from_secs(10), grace: Duration::from_secs(2) }
+    }
+}

@@ -1,0 +1,324 @@
+//! Writing a file whole or not at all: beside, synced, renamed over, folder synced.
+
+use std::fs::{self, File, OpenOptions, Permissions};
+use std::io::{self, Read, Write};
+use std::os::unix::fs::{MetadataExt, OpenOptionsExt, PermissionsExt};
+use std::path::{Path, PathBuf};
+
+use rustix::fs::OFlags;
+use tempfile::NamedTempFile;
+
+use super::error::{Step, StoreError};
+
+const TEMP_PREFIX: &str = ".millreeve-";
+const TEMP_SUFFIX: &str = ".tmp";
+const TEMP_RANDOM: usize = 8;
+
+/// How much of the file that stands there is shown to the caller's `ours`, in bytes.
+pub const HEAD: usize = 1024;
+
+/// The mode of a new file, before the process's umask.
+const NEW_MODE: u32 = 0o644;
+
+/// What a write came to.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Written {
+    /// There was nothing; the file is new.
+    New,
+    /// The file replaced an older one.
+    Replaced,
+    /// The same bytes stood there already; nothing was touched.
+    Same,
+}
+
+/// Whether a write must outlive a power cut.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Durability {
+    /// File and folder are synced before the call returns.
+    Synced,
+    /// Whole after a crash of the process; a power cut may lose it. For what can be made again.
+    Cached,
+}
+
+/// Puts `bytes` at `path`, whole or not at all.
+///
+/// A reader sees the old file or the new one at every instant. The temporary file is created exclusively beside the target, so a
+/// link planted in its place is never followed. A file that stands at `path` is replaced only if it is a plain file whose first
+/// [`HEAD`] bytes `ours` recognises; its mode, and where possible its group, are kept. Equal bytes are not written again.
+///
+/// # Errors
+/// Says which call failed on what, or what stands in the way; see [`StoreError`] for what is then on disk.
+pub fn write(
+    path: &Path,
+    bytes: &[u8],
+    ours: fn(&[u8]) -> bool,
+    durability: Durability,
+) -> Result<Written, StoreError> {
+    write_checked(path, bytes, ours, durability, &mut |_| Ok(()))
+}
+
+/// As [`write`], asking `permit` before each step; tests let steps fail there.
+fn write_checked(
+    path: &Path,
+    bytes: &[u8],
+    ours: fn(&[u8]) -> bool,
+    durability: Durability,
+    permit: &mut dyn FnMut(Step) -> io::Result<()>,
+) -> Result<Written, StoreError> {
+    let failed = |step| StoreError::failed(step, path);
+    permit(Step::Look).map_err(failed(Step::Look))?;
+    let old = look(path, bytes, ours)?;
+    if let Some(Old { same: true, .. }) = old {
+        return Ok(Written::Same);
+    }
+    let folder = folder_of(path);
+    let mut temp = permit(Step::Create).and_then(|()| create(folder)).map_err(failed(Step::Create))?;
+    permit(Step::Write).and_then(|()| temp.write_all(bytes)).map_err(failed(Step::Write))?;
+    if let Some(old) = &old {
+        permit(Step::Mode).and_then(|()| old.dress(temp.as_file())).map_err(failed(Step::Mode))?;
+    }
+    if durability == Durability::Synced {
+        // A failed sync leaves the fate of the pages unknown: the file is dropped, never synced a second time.
+        permit(Step::Sync).and_then(|()| temp.as_file().sync_all()).map_err(failed(Step::Sync))?;
+    }
+    permit(Step::Rename)
+        .and_then(|()| temp.persist(path).map_err(|error| error.error))
+        .map_err(failed(Step::Rename))?;
+    if durability == Durability::Synced {
+        permit(Step::SyncFolder).and_then(|()| File::open(folder)?.sync_all()).map_err(failed(Step::SyncFolder))?;
+    }
+    Ok(if old.is_some() { Written::Replaced } else { Written::New })
+}
+
+/// The file that a write is about to replace.
+struct Old {
+    mode: u32,
+    group: u32,
+    same: bool,
+}
+
+impl Old {
+    /// Gives a new file the mode of the old one, and its group where that is allowed.
+    fn dress(&self, file: &File) -> io::Result<()> {
+        if file.metadata()?.gid() != self.group {
+            // Only members of a group may give files to it; a plan in the writer's own group is still a good plan.
+            let _ = rustix::fs::fchown(file, None, Some(rustix::fs::Gid::from_raw(self.group)));
+        }
+        file.set_permissions(Permissions::from_mode(self.mode))
+    }
+}
+
+/// Looks at what stands at `path`: `None` where nothing does.
+fn look(path: &Path, bytes: &[u8], ours: fn(&[u8]) -> bool) -> Result<Option<Old>, StoreError> {
+    let failed = || StoreError::failed(Step::Look, path);
+    match fs::symlink_metadata(path) {
+        Ok(metadata) if metadata.is_file() => {}
+        Ok(metadata) => {
+            return Err(StoreError::InTheWay { path: path.to_owned(), what: kind(metadata.file_type()) });
+        }
+        Err(error) if error.kind() == io::ErrorKind::NotFound && folder_of(path).is_dir() => return Ok(None),
+        Err(error) => return Err(failed()(error)),
+    }
+    let file = open_plain(path).map_err(failed())?;
+    let metadata = file.metadata().map_err(failed())?;
+    let mut there = Vec::new();
+    let most = u64::try_from(bytes.len().max(HEAD)).unwrap_or(u64::MAX).saturating_add(1);
+    file.take(most).read_to_end(&mut there).map_err(failed())?;
+    if !ours(&there[..there.len().min(HEAD)]) {
+        return Err(StoreError::NotOurs { path: path.to_owned() });
+    }
+    Ok(Some(Old { mode: metadata.mode() & 0o7777, group: metadata.gid(), same: there == bytes }))
+}
+
+/// Opens a plain file for reading. Neither follows a link nor waits for the other end of a pipe.
+///
+/// # Errors
+/// What the system says; [`io::ErrorKind::InvalidInput`] where `path` is something other than a plain file.
+pub fn open_plain(path: &Path) -> io::Result<File> {
+    let flags = OFlags::NOFOLLOW | OFlags::NONBLOCK | OFlags::CLOEXEC;
+    let file = OpenOptions::new().read(true).custom_flags(flags.bits().cast_signed()).open(path)?;
+    if file.metadata()?.is_file() {
+        Ok(file)
+    } else {
+        Err(io::Error::new(io::ErrorKind::InvalidInput, "not a plain file"))
+    }
+}
+
+/// The words for what is not a plain file.
+pub(crate) fn kind(kind: fs::FileType) -> &'static str {
+    if kind.is_dir() {
+        "a folder"
+    } else if kind.is_symlink() {
+        "a symbolic link"
+    } else {
+        "not a plain file"
+    }
+}
+
+/// Creates a temporary file in `folder`, locked so that no sweep takes it for an orphan.
+fn create(folder: &Path) -> io::Result<NamedTempFile> {
+    let temp = tempfile::Builder::new()
+        .prefix(TEMP_PREFIX)
+        .suffix(TEMP_SUFFIX)
+        .rand_bytes(TEMP_RANDOM)
+        .permissions(Permissions::from_mode(NEW_MODE))
+        .tempfile_in(folder)?;
+    // Where the file system knows no locks the name alone protects it.
+    let _ = temp.as_file().try_lock();
+    Ok(temp)
+}
+
+fn folder_of(path: &Path) -> &Path {
+    match path.parent() {
+        Some(folder) if !folder.as_os_str().is_empty() => folder,
+        _ => Path::new("."),
+    }
+}
+
+/// Whether a file's name is that of a temporary file of ours.
+#[must_use]
+pub fn is_temp(name: &std::ffi::OsStr) -> bool {
+    let name = name.as_encoded_bytes();
+    name.len() == TEMP_PREFIX.len() + TEMP_RANDOM + TEMP_SUFFIX.len()
+        && name.starts_with(TEMP_PREFIX.as_bytes())
+        && name.ends_with(TEMP_SUFFIX.as_bytes())
+        && name[TEMP_PREFIX.len()..][..TEMP_RANDOM].iter().all(u8::is_ascii_alphanumeric)
+}
+
+/// Removes temporary files that a killed process left behind, and says how many.
+///
+/// What is not named as ours, is not a plain file, or is locked by a process that is still writing stays.
+pub fn sweep<'a>(candidates: impl IntoIterator<Item = &'a PathBuf>) -> usize {
+    let orphan = |path: &&PathBuf| {
+        path.file_name().is_some_and(is_temp)
+            && open_plain(path).is_ok_and(|file| !matches!(file.try_lock(), Err(fs::TryLockError::WouldBlock)))
+    };
+    candidates.into_iter().filter(orphan).filter(|path| fs::remove_file(path).is_ok()).count()
+}
+
+#[cfg(test)]
+#[expect(clippy::disallowed_methods, reason = "tests lay out files as other programs would")]
+mod tests {
+    use std::os::unix::fs::symlink;
+
+    use super::*;
+
+    fn ours(head: &[u8]) -> bool {
+        head.starts_with(b"ours")
+    }
+
+    fn put(path: &Path, text: &str) -> Result<Written, StoreError> {
+        write(path, text.as_bytes(), ours, Durability::Synced)
+    }
+
+    fn names(folder: &Path) -> Vec<String> {
+        let mut names: Vec<_> =
+            fs::read_dir(folder).unwrap().map(|entry| entry.unwrap().file_name().into_string().unwrap()).collect();
+        names.sort();
+        names
+    }
+
+    #[test]
+    fn equal_bytes_leave_the_file_untouched() {
+        let folder = tempfile::tempdir().unwrap();
+        let path = folder.path().join("p");
+        assert_eq!(put(&path, "ours 1").unwrap(), Written::New);
+        let before = fs::metadata(&path).unwrap();
+        assert_eq!(put(&path, "ours 1").unwrap(), Written::Same);
+        let after = fs::metadata(&path).unwrap();
+        assert_eq!((before.ino(), before.mtime_nsec()), (after.ino(), after.mtime_nsec()));
+        assert_eq!(put(&path, "ours 2").unwrap(), Written::Replaced);
+        assert_eq!(fs::read_to_string(&path).unwrap(), "ours 2");
+        assert_eq!(names(folder.path()), ["p"]);
+    }
+
+    #[test]
+    fn a_shorter_text_replaces_a_longer_one_that_begins_with_it() {
+        let folder = tempfile::tempdir().unwrap();
+        let path = folder.path().join("p");
+        put(&path, &format!("ours{}", "x".repeat(5000))).unwrap();
+        assert_eq!(put(&path, "ours").unwrap(), Written::Replaced);
+        assert_eq!(fs::read_to_string(&path).unwrap(), "ours");
+    }
+
+    #[test]
+    fn the_mode_of_the_old_file_is_kept_even_when_it_is_read_only() {
+        let folder = tempfile::tempdir().unwrap();
+        let path = folder.path().join("p");
+        put(&path, "ours 1").unwrap();
+        for mode in [0o440, 0o664] {
+            fs::set_permissions(&path, Permissions::from_mode(mode)).unwrap();
+            put(&path, &format!("ours {mode}")).unwrap();
+            assert_eq!(fs::metadata(&path).unwrap().mode() & 0o7777, mode);
+        }
+    }
+
+    #[test]
+    fn what_is_not_ours_is_left_alone() {
+        let folder = tempfile::tempdir().unwrap();
+        let outside = folder.path().join("outside");
+        fs::write(&outside, "ours, but elsewhere").unwrap();
+        let [foreign, link, dangling, directory] =
+            ["foreign", "link", "dangling", "directory"].map(|name| folder.path().join(name));
+        fs::write(&foreign, "somebody's").unwrap();
+        symlink(&outside, &link).unwrap();
+        symlink("nowhere", &dangling).unwrap();
+        fs::create_dir(&directory).unwrap();
+        assert!(matches!(put(&foreign, "ours"), Err(StoreError::NotOurs { .. })));
+        for path in [&link, &dangling, &directory] {
+            assert!(matches!(put(path, "ours"), Err(StoreError::InTheWay { .. })), "{path:?}");
+        }
+        assert_eq!(fs::read_to_string(&foreign).unwrap(), "somebody's");
+        assert_eq!(fs::read_to_string(&outside).unwrap(), "ours, but elsewhere");
+        assert_eq!(names(folder.path()), ["dangling", "directory", "foreign", "link", "outside"]);
+    }
+
+    #[test]
+    fn a_failure_at_any_step_leaves_the_old_file_or_the_new_one_and_no_temporary_file() {
+        let steps = [Step::Look, Step::Create, Step::Write, Step::Mode, Step::Sync, Step::Rename, Step::SyncFolder];
+        for broken in steps {
+            let folder = tempfile::tempdir().unwrap();
+            let path = folder.path().join("p");
+            put(&path, "ours, old").unwrap();
+            let mut permit =
+                |step| if step == broken { Err(io::Error::from(io::ErrorKind::StorageFull)) } else { Ok(()) };
+            let error = write_checked(&path, b"ours, new", ours, Durability::Synced, &mut permit).unwrap_err();
+            assert!(matches!(&error, StoreError::Failed { step, .. } if *step == broken), "{error}");
+            assert!(error.may_pass() && error.to_string().contains("the disk is full"), "{error}");
+            let expected = if broken == Step::SyncFolder { "ours, new" } else { "ours, old" };
+            assert_eq!(fs::read_to_string(&path).unwrap(), expected, "{broken:?}");
+            assert_eq!(names(folder.path()), ["p"], "{broken:?}");
+            put(&path, "ours, new").unwrap();
+            assert_eq!(fs::read_to_string(&path).unwrap(), "ours, new");
+        }
+    }
+
+    #[test]
+    fn a_name_that_does_not_fit_is_told_and_not_retried() {
+        let folder = tempfile::tempdir().unwrap();
+        let error = put(&folder.path().join("n".repeat(300)), "ours").unwrap_err();
+        assert!(!error.may_pass() && error.to_string().contains("too long"), "{error}");
+        // The temporary name is short, so the longest name a file system takes can be written.
+        assert_eq!(put(&folder.path().join("n".repeat(255)), "ours").unwrap(), Written::New);
+    }
+
+    #[test]
+    fn a_missing_folder_is_an_error_and_not_a_new_file() {
+        let folder = tempfile::tempdir().unwrap();
+        let error = put(&folder.path().join("gone/p"), "ours").unwrap_err();
+        assert!(error.to_string().contains("gone"), "{error}");
+    }
+
+    #[test]
+    fn a_sweep_takes_orphans_only() {
+        let folder = tempfile::tempdir().unwrap();
+        let orphan = folder.path().join(".millreeve-aB3dEf7h.tmp");
+        let other = folder.path().join(".millreeve-notes.tmp");
+        fs::write(&orphan, "half").unwrap();
+        fs::write(&other, "somebody's").unwrap();
+        let live = create(folder.path()).unwrap();
+        let all: Vec<_> = fs::read_dir(folder.path()).unwrap().map(|entry| entry.unwrap().path()).collect();
+        assert_eq!(sweep(&all), 1);
+        assert!(!orphan.exists() && other.exists() && live.path().exists());
+    }
+}

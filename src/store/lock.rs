@@ -1,0 +1,134 @@
+//! One daemon per folder: a lock file held for life, which the system frees however the daemon ends.
+
+use std::fs::{File, OpenOptions, TryLockError};
+use std::io::{self, Read, Write};
+use std::os::unix::fs::{MetadataExt, OpenOptionsExt};
+use std::path::{Path, PathBuf};
+
+use rustix::fs::OFlags;
+
+use super::error::{reason, shown};
+use super::folder::Folder;
+use crate::model::escape::Plain;
+
+const NAME: &str = "lock";
+
+/// The longest lock file that is read for a message, in bytes.
+const LONGEST: u64 = 512;
+
+/// The lock on a watched folder. Freed when dropped, and by the system when the process ends.
+#[derive(Debug)]
+pub struct Lock {
+    file: File,
+    path: PathBuf,
+}
+
+/// Why the lock was not taken.
+#[derive(Debug, thiserror::Error)]
+pub enum LockError {
+    /// Another process has it.
+    #[error("{} is already kept by {holder}; stop that first, or let it do the work", shown(.root))]
+    Held {
+        /// The watched folder.
+        root: PathBuf,
+        /// Who has it, as that process wrote: "process 4711 on host mill". Escaped.
+        holder: String,
+    },
+    /// The lock file cannot be opened or locked.
+    #[error("cannot lock {}: {}", shown(.path), reason(.source))]
+    Failed {
+        /// The lock file.
+        path: PathBuf,
+        /// What the system said.
+        source: io::Error,
+    },
+}
+
+impl Lock {
+    /// Takes the lock on a watched folder, without waiting.
+    ///
+    /// # Errors
+    /// Another process has it, or the lock file cannot be used.
+    pub fn take(folder: &Folder) -> Result<Self, LockError> {
+        let path = folder.own().join(NAME);
+        let failed = |source| LockError::Failed { path: path.clone(), source };
+        let flags = OFlags::NOFOLLOW | OFlags::NONBLOCK | OFlags::CLOEXEC;
+        let mut file = OpenOptions::new()
+            .read(true)
+            .write(true)
+            .create(true)
+            .truncate(false)
+            .custom_flags(flags.bits().cast_signed())
+            .open(&path)
+            .map_err(failed)?;
+        match file.try_lock() {
+            Ok(()) => {}
+            Err(TryLockError::WouldBlock) => {
+                return Err(LockError::Held { root: folder.root().to_owned(), holder: holder(&file) });
+            }
+            Err(TryLockError::Error(source)) => return Err(failed(source)),
+        }
+        // For the message only: a full disk must not keep the daemon from its work.
+        let _ = file.set_len(0).and_then(|()| writeln!(file, "process {} on host {}", std::process::id(), host()));
+        Ok(Self { file, path })
+    }
+
+    /// Whether the lock file is still the one that is held: false once somebody has removed it or the folder, so that a second daemon could start.
+    #[must_use]
+    pub fn stands(&self) -> bool {
+        let held = self.file.metadata().map(|metadata| (metadata.dev(), metadata.ino()));
+        let there = std::fs::symlink_metadata(&self.path).map(|metadata| (metadata.dev(), metadata.ino()));
+        matches!((held, there), (Ok(held), Ok(there)) if held == there)
+    }
+
+    /// When the lock was taken by the clock of the file system, in nanoseconds since 1970: what the stamps of files there compare with.
+    #[must_use]
+    pub fn taken(&self) -> Option<i128> {
+        let metadata = self.file.metadata().ok()?;
+        Some(i128::from(metadata.mtime()) * 1_000_000_000 + i128::from(metadata.mtime_nsec()))
+    }
+}
+
+/// Who holds the lock, as that process wrote into it.
+fn holder(file: &File) -> String {
+    let mut text = String::new();
+    match file.take(LONGEST).read_to_string(&mut text) {
+        Ok(_) if !text.trim().is_empty() => Plain(text.trim()).to_string(),
+        _ => "another process".to_owned(),
+    }
+}
+
+/// The name of this host, for messages.
+fn host() -> String {
+    let known = ["/proc/sys/kernel/hostname", "/etc/hostname"];
+    let name = known.iter().find_map(|path| std::fs::read_to_string(Path::new(path)).ok());
+    name.map_or_else(|| "unknown".to_owned(), |name| name.trim().to_owned())
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_second_taker_is_told_who_holds_it_and_gets_it_afterwards() {
+        let root = tempfile::tempdir().unwrap();
+        let folder = Folder::open(root.path(), None).unwrap();
+        let first = Lock::take(&folder).unwrap();
+        assert!(first.stands() && first.taken().is_some());
+        let told = Lock::take(&folder).unwrap_err().to_string();
+        assert!(told.contains(&format!("process {} on host ", std::process::id())), "{told}");
+        drop(first);
+        assert!(Lock::take(&folder).is_ok());
+    }
+
+    #[test]
+    fn a_removed_lock_file_is_noticed() {
+        let root = tempfile::tempdir().unwrap();
+        let folder = Folder::open(root.path(), None).unwrap();
+        let lock = Lock::take(&folder).unwrap();
+        std::fs::remove_file(folder.own().join(NAME)).unwrap();
+        assert!(!lock.stands());
+        let second = Lock::take(&folder).unwrap();
+        assert!(second.stands() && !lock.stands());
+    }
+}

@@ -1,0 +1,17 @@
+//! What lies on disk and how it gets there: whole files, the record of each model, the folder and its lock.
+//!
+//! Knows plans and bases as values, but neither watches nor plans.
+
+pub mod atomic;
+pub mod error;
+pub mod folder;
+pub mod lock;
+pub mod publish;
+pub mod state;
+
+pub use atomic::{Durability, Written};
+pub use error::{Step, StoreError};
+pub use folder::Folder;
+pub use lock::{Lock, LockError};
+pub use publish::{Finished, Output, Outputs, Published};
+pub use state::{Lost, Record, Records};
