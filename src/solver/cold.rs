@@ -3,8 +3,9 @@
 use std::time::Duration;
 
 use super::certificate;
+use super::findings::Ending;
 use super::instance::Instance;
-use super::live::{Ending, Refusal};
+use super::live::Refusal;
 use super::look::Look;
 use super::message::{Conflict, Growth, Outcome};
 use super::proof::TOLERANCE;

@@ -1,7 +1,8 @@
 //! A live instance that knows which of its columns and rows stand for which of a program's.
 
 use super::basis::{Basis, Position};
-use super::live::{Basic, Ending, Live, Refusal};
+use super::findings::{Basic, Ending};
+use super::live::{Live, Refusal};
 use super::stop::Stop;
 use crate::lp::{ColumnIndex, Program, RowIndex};
 

@@ -14,13 +14,14 @@ use highs_sys::{
     Highs_changeObjectiveOffset, Highs_changeObjectiveSense, Highs_changeRowBounds, Highs_clearSolver,
     Highs_deleteColsBySet, Highs_deleteRowsBySet, Highs_getBasicVariables, Highs_getBasis, Highs_getBasisSolve,
     Highs_getBasisTransposeSolve, Highs_getDualRay, Highs_getIntInfoValue, Highs_getModelStatus, Highs_getPrimalRay,
-    Highs_getReducedRow, Highs_getSolution, Highs_passLp, Highs_run, Highs_setBasis, Highs_setCallback,
-    Highs_startCallback, Highs_zeroAllClocks, HighsCallbackDataIn, HighsCallbackDataOut, HighsInt,
-    MATRIX_FORMAT_COLUMN_WISE, OBJECTIVE_SENSE_MAXIMIZE, OBJECTIVE_SENSE_MINIMIZE,
+    Highs_getSolution, Highs_passLp, Highs_run, Highs_setBasis, Highs_setCallback, Highs_startCallback,
+    Highs_zeroAllClocks, HighsCallbackDataIn, HighsCallbackDataOut, HighsInt, MATRIX_FORMAT_COLUMN_WISE,
+    OBJECTIVE_SENSE_MAXIMIZE, OBJECTIVE_SENSE_MINIMIZE,
 };
 
 use super::basis::{Basis, Position};
 use super::batch::{Batch, int};
+use super::findings::{Basic, Ending, Point};
 use super::stop::Stop;
 use crate::lp::{Program, Sense};
 
@@ -31,45 +32,6 @@ pub struct Refusal(
     /// What it refused.
     pub &'static str,
 );
-
-/// How a run ended.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Ending {
-    /// Optimal, says the solver.
-    Optimal,
-    /// No point keeps all rows and bounds, says the solver.
-    Infeasible,
-    /// The aim has no limit, says the solver.
-    Unbounded,
-    /// Its iterations were used up.
-    OutOfPivots,
-    /// Its time was used up.
-    OutOfTime,
-    /// It was asked to stop.
-    Stopped,
-    /// Anything else: numerical trouble, mostly.
-    Trouble,
-}
-
-/// A basic variable of the instance.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Basic {
-    /// A column.
-    Column(usize),
-    /// A row's logical.
-    Row(usize),
-}
-
-/// A point and its multipliers as the solver reports them, in the instance's order.
-#[derive(Clone, Debug, Default)]
-pub struct Point {
-    /// Value of each column.
-    pub columns: Vec<f64>,
-    /// Sum of each row.
-    pub rows: Vec<f64>,
-    /// Derivative of the aim by each row's bound.
-    pub row_duals: Vec<f64>,
-}
 
 /// A live solver instance holding one program.
 pub struct Live {
@@ -355,18 +317,6 @@ impl Live {
         usize::try_from(self.info(c"simplex_iteration_count")).unwrap_or(0)
     }
 
-    /// How many bounds the point of the last run breaks, by the solver's own count; negative where it does not know.
-    #[must_use]
-    pub fn primal_infeasible(&mut self) -> i64 {
-        i64::from(self.info(c"num_primal_infeasibilities"))
-    }
-
-    /// How many reduced costs of the last run have the wrong sign, by the solver's own count; negative where it does not know.
-    #[must_use]
-    pub fn dual_infeasible(&mut self) -> i64 {
-        i64::from(self.info(c"num_dual_infeasibilities"))
-    }
-
     fn info(&mut self, name: &'static CStr) -> HighsInt {
         let mut value: HighsInt = -1;
         // SAFETY: `name` ends in NUL and `value` has room for the integer that an info of this name is.
@@ -438,20 +388,6 @@ impl Live {
             unsafe { call(self.instance(), right.as_ptr(), result.as_mut_ptr(), ptr::null_mut(), ptr::null_mut()) };
         accepted(code, "a solve with its basis")?;
         Ok(result)
-    }
-
-    /// Row `basic` of `B⁻¹ · A`: one number per column.
-    ///
-    /// # Errors
-    /// When there is no factorisation.
-    pub fn tableau_row(&mut self, basic: usize) -> Result<Vec<f64>, Refusal> {
-        let mut row = vec![0.0; self.columns];
-        // SAFETY: the array has one element per column; NULL says that the nonzeros and the row of B⁻¹ are not given.
-        let code = unsafe {
-            Highs_getReducedRow(self.instance(), int(basic), row.as_mut_ptr(), ptr::null_mut(), ptr::null_mut())
-        };
-        accepted(code, "a row of its tableau")?;
-        Ok(row)
     }
 
     /// Multipliers, one per row, whose combination of rows no point within the bounds can keep; `None` where it has none.

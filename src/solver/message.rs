@@ -147,6 +147,8 @@ pub struct Account {
     pub primal_infeasible: Option<usize>,
     /// The last basis under the new data: how many would still improve the aim; `None` where there was none.
     pub dual_infeasible: Option<usize>,
+    /// Whether a warm run was given up for taking more iterations than a fresh solve is worth.
+    pub capped: bool,
     /// Iterations of the last solve from nothing.
     pub cold_pivots: Option<usize>,
     /// Steps down the ladder: what was tried and given up, as short phrases.

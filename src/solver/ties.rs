@@ -2,8 +2,9 @@
 
 use super::basis::Position;
 use super::cold;
+use super::findings::Ending;
 use super::instance::{Instance, Member};
-use super::live::{Ending, Refusal};
+use super::live::Refusal;
 use super::look::Look;
 use super::proof::TOLERANCE;
 use super::stop::Stop;

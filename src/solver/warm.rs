@@ -1,0 +1,198 @@
+//! One solve from the last basis: carry it over the edit, look, run the variant that the look calls for, prove.
+
+use std::sync::Arc;
+use std::time::Duration;
+
+use super::basis::Basis;
+use super::change::change;
+use super::findings::Ending;
+use super::instance::Instance;
+use super::let_go::let_go;
+use super::live::Refusal;
+use super::look::Look;
+use super::message::{Account, Outcome, Start};
+use super::soft::on_the_way;
+use super::stop::Stop;
+use super::vertex::Vertex;
+use super::{certificate, cold, opened};
+use crate::lp::{Difference, Program};
+
+/// What the next solve starts from: a program, a basis of it, and its vertex.
+pub(super) struct Anchor {
+    pub(super) program: Arc<Program>,
+    pub(super) basis: Basis,
+    pub(super) vertex: Vertex,
+    pub(super) instance: Option<Box<Instance>>,
+}
+
+/// The limits of one warm solve.
+pub(super) struct Run<'a> {
+    pub(super) limit: Duration,
+    pub(super) stop: &'a Stop,
+    /// Iterations it may take.
+    pub(super) cap: usize,
+    /// The variant to take whatever the look says.
+    pub(super) insisted: Option<Start>,
+}
+
+/// What a warm solve came to.
+pub(super) enum Warm {
+    Optimal(Box<Instance>, Box<Look>),
+    Other(Outcome),
+}
+
+/// Solves `program` from `anchor`. An error is the reason why that led nowhere, as a short phrase.
+pub(super) fn warm(
+    anchor: &mut Anchor,
+    program: &Arc<Program>,
+    run: &Run<'_>,
+    account: &mut Account,
+) -> Result<Warm, &'static str> {
+    if certificate::plain_contradiction(program).is_some() {
+        return Err("bounds that contradict each other");
+    }
+    let mut instance = live(anchor).map_err(|_| "the last basis could not be brought back")?;
+    let lost = |_| "the last basis did not survive the edit";
+    let difference = Difference::between(&anchor.program, program);
+    let Some(way) = on_the_way(&anchor.program, &anchor.basis, &anchor.vertex, program, &difference) else {
+        change(&mut instance, &anchor.program, program, &difference).map_err(lost)?;
+        opened::stay(&mut instance, &anchor.program, program, &difference).map_err(lost)?;
+        return finish(anchor, instance, program, run, account);
+    };
+    let way = Arc::new(way);
+    let first = step(&mut instance, &anchor.program, &way).map_err(lost)?;
+    let look = match begin(anchor, &mut instance, &way, first, run, account)? {
+        Settled::Optimal(look) => look,
+        // The way is narrower than the program: that it leads nowhere says nothing of the program.
+        Settled::Other(Outcome::Infeasible(_)) => return Err("a contradiction on the way"),
+        Settled::Other(outcome) => return Ok(Warm::Other(outcome)),
+    };
+    let look = let_go(&mut instance, &way, *look, program).map_err(|_| "what was withdrawn could not be let go")?;
+    match settle(&mut instance, program, look, run, account)? {
+        Settled::Optimal(look) => Ok(Warm::Optimal(instance, look)),
+        Settled::Other(outcome) => Ok(Warm::Other(outcome)),
+    }
+}
+
+/// The rest of a warm solve where nothing needs to be withdrawn softly: the instance holds `program` already.
+fn finish(
+    anchor: &mut Anchor,
+    mut instance: Box<Instance>,
+    program: &Arc<Program>,
+    run: &Run<'_>,
+    account: &mut Account,
+) -> Result<Warm, &'static str> {
+    let first = Look::at(&mut instance, program).map_err(|_| "the last basis did not survive the edit")?;
+    match begin(anchor, &mut instance, program, first, run, account)? {
+        Settled::Optimal(look) => Ok(Warm::Optimal(instance, look)),
+        Settled::Other(outcome) => Ok(Warm::Other(outcome)),
+    }
+}
+
+/// Records what the first look found, and runs what it calls for. An interrupted run leaves what it reached as the anchor: a
+/// better start than what was left.
+fn begin(
+    anchor: &mut Anchor,
+    instance: &mut Instance,
+    program: &Arc<Program>,
+    first: Look,
+    run: &Run<'_>,
+    account: &mut Account,
+) -> Result<Settled, &'static str> {
+    account.start = first.start();
+    account.primal_infeasible = Some(first.primal);
+    account.dual_infeasible = Some(first.dual);
+    let settled = settle(instance, program, first, run, account)?;
+    if let Settled::Other(Outcome::Interrupted) = settled
+        && let Ok(basis) = instance.basis()
+    {
+        *anchor = Anchor { program: program.clone(), basis, vertex: Vertex::default(), instance: None };
+    }
+    Ok(settled)
+}
+
+/// The anchor's live instance, made again from its basis where it is gone.
+fn live(anchor: &mut Anchor) -> Result<Box<Instance>, Refusal> {
+    if let Some(instance) = anchor.instance.take() {
+        return Ok(instance);
+    }
+    let mut instance = Box::new(cold::ready(&anchor.program)?);
+    instance.set_basis(&anchor.basis)?;
+    instance.factorise()?;
+    anchor.basis = instance.basis()?;
+    anchor.vertex = Vertex::of(&mut instance, &anchor.program, &anchor.basis)?;
+    Ok(instance)
+}
+
+/// Turns what `instance` holds into `to`, and looks at its basis there.
+pub(super) fn step(instance: &mut Instance, from: &Program, to: &Program) -> Result<Look, Refusal> {
+    let difference = Difference::between(from, to);
+    change(instance, from, to, &difference)?;
+    opened::stay(instance, from, to, &difference)?;
+    Look::at(instance, to)
+}
+
+enum Settled {
+    Optimal(Box<Look>),
+    Other(Outcome),
+}
+
+/// Runs the simplex variant that the look calls for; where that leads nowhere, the other one.
+fn settle(
+    instance: &mut Instance,
+    program: &Program,
+    look: Look,
+    run: &Run<'_>,
+    account: &mut Account,
+) -> Result<Settled, &'static str> {
+    if look.is_optimal() {
+        return Ok(Settled::Optimal(Box::new(look)));
+    }
+    let chosen = run.insisted.unwrap_or(look.start());
+    let other = if chosen == Start::Primal { Start::Dual } else { Start::Primal };
+    for variant in [chosen, other] {
+        let ending = simplex(instance, variant, run, account).map_err(|_| "the solver refused its options")?;
+        match ending {
+            Ending::Optimal => {
+                let look = Look::at(instance, program).map_err(|_| "the basis reached could not be factorised")?;
+                if look.is_optimal() {
+                    return Ok(Settled::Optimal(Box::new(look)));
+                }
+                account.detours.push("an answer that was not proven");
+            }
+            Ending::Stopped => return Ok(Settled::Other(Outcome::Interrupted)),
+            Ending::OutOfPivots => {
+                account.capped = true;
+                return Err("more pivots than a fresh solve is worth");
+            }
+            Ending::OutOfTime => return Err("the time limit"),
+            Ending::Infeasible => {
+                let conflict = cold::explain_infeasible(program, instance);
+                if conflict.proven {
+                    return Ok(Settled::Other(Outcome::Infeasible(conflict)));
+                }
+                return Err("a contradiction that was not proven");
+            }
+            Ending::Unbounded => {
+                let growth = cold::explain_unbounded(program, instance);
+                if growth.proven {
+                    return Ok(Settled::Other(Outcome::Unbounded(growth)));
+                }
+                return Err("a growth that was not proven");
+            }
+            Ending::Trouble => account.detours.push("numerical trouble"),
+        }
+    }
+    Err("neither simplex variant got there")
+}
+
+fn simplex(instance: &mut Instance, variant: Start, run: &Run<'_>, account: &mut Account) -> Result<Ending, Refusal> {
+    let left = run.cap.saturating_sub(account.pivots);
+    instance.live.set("simplex_strategy", if variant == Start::Primal { 4 } else { 1 })?;
+    instance.live.set("simplex_iteration_limit", i32::try_from(left).unwrap_or(i32::MAX))?;
+    instance.live.set("time_limit", run.limit.as_secs_f64())?;
+    let ending = instance.live.run(run.stop);
+    account.pivots += instance.live.pivots();
+    instance.live.set("simplex_iteration_limit", i32::MAX)?;
+    Ok(ending)
+}
