@@ -9,8 +9,10 @@ mod program_edit;
 #[path = "support/rng.rs"]
 mod rng;
 
+use std::collections::BTreeMap;
 use std::fs;
 use std::path::Path;
+use std::process::Command;
 use std::time::Duration;
 
 use instances::netlib;
@@ -100,6 +102,38 @@ fn optima_are_those_published() {
         let optimum = optimum(name, cold(direct));
         assert!(!far_apart(optimum.aim, published), "{name}: {} instead of {published}", optimum.aim);
         assert!(optimum.proof.holds(), "{name}: {:?}", optimum.proof);
+    }
+}
+
+/// All of them through the commands that a planner would use: `convert` each, `once` for the folder.
+#[test]
+fn converted_files_are_planned_in_one_pass() {
+    let folder = tempfile::tempdir().unwrap();
+    let millreeve = || Command::new(env!("CARGO_BIN_EXE_millreeve"));
+    let published: BTreeMap<&str, f64> = OPTIMA.into_iter().collect();
+    for name in published.keys().copied().chain(INFEASIBLE).chain([UNBOUNDED]) {
+        let to = folder.path().join(name).with_extension("model.toml");
+        let output = millreeve().arg("convert").arg(netlib(name)).arg(&to).output().unwrap();
+        assert!(output.status.success(), "{name}: {}", String::from_utf8_lossy(&output.stderr));
+    }
+    let output = millreeve().args(["--json", "once"]).arg(folder.path()).output().unwrap();
+    assert_eq!(output.status.code(), Some(1), "some have no plan: {}", String::from_utf8_lossy(&output.stderr));
+    let mut told = BTreeMap::new();
+    for line in String::from_utf8(output.stdout).unwrap().lines() {
+        let object: serde_json::Value = serde_json::from_str(line).unwrap();
+        told.insert(object["model"].as_str().unwrap().to_owned(), object);
+    }
+    assert_eq!(told.len(), published.len() + INFEASIBLE.len() + 1);
+    for (name, published) in published {
+        let aim = told[name]["aim"].as_f64().unwrap();
+        assert!(!far_apart(aim, published), "{name}: {aim} instead of {published}");
+        assert_eq!(told[name]["standing"], "current", "{name}");
+    }
+    for (names, reason) in [(&INFEASIBLE[..], "cannot all be kept"), (&[UNBOUNDED][..], "nothing limits")] {
+        for &name in names {
+            assert_eq!(told[name]["standing"], "held", "{name}");
+            assert!(told[name]["held"].as_str().unwrap().contains(reason), "{name}: {}", told[name]["held"]);
+        }
     }
 }
 
