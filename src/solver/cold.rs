@@ -31,15 +31,15 @@ const LADDER: [Rung; 4] = [
 /// What a solve from nothing came to.
 pub struct Cold {
     /// How it ended.
-    pub end: End,
+    pub end: Reached,
     /// Simplex iterations of the run that gave the answer.
     pub pivots: usize,
     /// Rungs tried in vain.
     pub detours: Vec<&'static str>,
 }
 
-/// How a solve from nothing ended.
-pub enum End {
+/// Where a solve arrived.
+pub enum Reached {
     /// A proven basis, in an instance ready for warm starts.
     Optimal(Box<Instance>, Box<Look>),
     /// No plan, or no end, or no answer.
@@ -53,26 +53,26 @@ pub fn solve(program: &Program, limit: Duration, stop: &Stop) -> Cold {
     let mut unproven: Option<Outcome> = None;
     let mut pivots = 0;
     if let Some(conflict) = certificate::plain_contradiction(program) {
-        return Cold { end: End::Other(Outcome::Infeasible(conflict)), pivots, detours };
+        return Cold { end: Reached::Other(Outcome::Infeasible(conflict)), pivots, detours };
     }
     for rung in &LADDER {
         match climb(program, rung, limit, stop, &mut pivots) {
-            Ok(End::Other(Outcome::Infeasible(Conflict { proven: false, rules }))) => {
+            Ok(Reached::Other(Outcome::Infeasible(Conflict { proven: false, rules }))) => {
                 unproven.get_or_insert(Outcome::Infeasible(Conflict { proven: false, rules }));
             }
-            Ok(End::Other(Outcome::Unbounded(Growth { proven: false, rates }))) => {
+            Ok(Reached::Other(Outcome::Unbounded(Growth { proven: false, rates }))) => {
                 unproven.get_or_insert(Outcome::Unbounded(Growth { proven: false, rates }));
             }
-            Ok(End::Other(Outcome::Undecided(_))) | Err(_) => {}
+            Ok(Reached::Other(Outcome::Undecided(_))) | Err(_) => {}
             Ok(end) => return Cold { end, pivots, detours },
         }
         detours.push(rung.name);
     }
     let reason = "every setting of the solver ended in numerical trouble; the coefficients may be spread too widely";
-    Cold { end: End::Other(unproven.unwrap_or_else(|| Outcome::Undecided(reason.to_owned()))), pivots, detours }
+    Cold { end: Reached::Other(unproven.unwrap_or_else(|| Outcome::Undecided(reason.to_owned()))), pivots, detours }
 }
 
-fn climb(program: &Program, rung: &Rung, limit: Duration, stop: &Stop, pivots: &mut usize) -> Result<End, Refusal> {
+fn climb(program: &Program, rung: &Rung, limit: Duration, stop: &Stop, pivots: &mut usize) -> Result<Reached, Refusal> {
     let mut scratch = Instance::new(program)?;
     scratch.live.set("simplex_dual_edge_weight_strategy", -1)?;
     scratch.live.set("presolve", rung.presolve)?;
@@ -94,23 +94,23 @@ fn climb(program: &Program, rung: &Rung, limit: Duration, stop: &Stop, pivots: &
                 let polished = instance.live.run(stop);
                 *pivots += instance.live.pivots();
                 if polished == Ending::Stopped {
-                    return Ok(End::Other(Outcome::Interrupted));
+                    return Ok(Reached::Other(Outcome::Interrupted));
                 }
                 look = Look::at(&mut instance, program)?;
             }
             if look.is_optimal() {
-                End::Optimal(Box::new(instance), Box::new(look))
+                Reached::Optimal(Box::new(instance), Box::new(look))
             } else {
-                End::Other(Outcome::Undecided(String::new()))
+                Reached::Other(Outcome::Undecided(String::new()))
             }
         }
-        Ending::Infeasible => End::Other(Outcome::Infeasible(explain_infeasible(program, &mut scratch))),
-        Ending::Unbounded => End::Other(Outcome::Unbounded(explain_unbounded(program, &mut scratch))),
+        Ending::Infeasible => Reached::Other(Outcome::Infeasible(explain_infeasible(program, &mut scratch))),
+        Ending::Unbounded => Reached::Other(Outcome::Unbounded(explain_unbounded(program, &mut scratch))),
         Ending::OutOfTime => {
-            End::Other(Outcome::Undecided(format!("the time limit of {} s was reached", limit.as_secs_f64())))
+            Reached::Other(Outcome::Undecided(format!("the time limit of {} s was reached", limit.as_secs_f64())))
         }
-        Ending::Stopped => End::Other(Outcome::Interrupted),
-        Ending::OutOfPivots | Ending::Trouble => End::Other(Outcome::Undecided(String::new())),
+        Ending::Stopped => Reached::Other(Outcome::Interrupted),
+        Ending::OutOfPivots | Ending::Trouble => Reached::Other(Outcome::Undecided(String::new())),
     })
 }
 

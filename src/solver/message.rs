@@ -153,8 +153,10 @@ pub struct Account {
     pub cold_pivots: Option<usize>,
     /// Steps down the ladder: what was tried and given up, as short phrases.
     pub detours: Vec<&'static str>,
-    /// Time in the solver.
+    /// Time to the proven answer.
     pub time: Duration,
+    /// Time spent on reading ties and ranges off it.
+    pub reading: Duration,
 }
 
 /// Where a solve starts from.

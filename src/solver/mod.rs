@@ -9,6 +9,7 @@ pub mod change;
 pub mod cold;
 pub mod desk;
 pub mod findings;
+mod inherit;
 pub mod instance;
 mod let_go;
 pub mod live;

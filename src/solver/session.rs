@@ -4,14 +4,13 @@ use std::sync::Arc;
 use std::time::{Duration, Instant};
 
 use super::basis::{Basis, NamedBasis, Position};
-use super::cold::{self, Cold, End};
-use super::instance::Instance;
+use super::cold::{self, Cold, Reached};
 use super::look::Look;
-use super::message::{Account, Answer, Outcome, Start};
+use super::message::{Account, Answer, Start};
 use super::optimum;
 use super::stop::Stop;
 use super::vertex::Vertex;
-use super::warm::{Anchor, Run, Warm, warm};
+use super::warm::{Anchor, Run, warm};
 use crate::lp::Program;
 
 /// A warm run may take this share of the last cold run's iterations; past it, starting afresh is the better bet.
@@ -81,22 +80,33 @@ impl Session {
         let program = program.into();
         self.asked = Some(program.clone());
         let mut account = Account::default();
-        let outcome = self.outcome(program, limit, stop, &mut account);
+        let reached = self.reach(&program, limit, stop, &mut account);
         account.time = begun.elapsed();
+        let outcome = match reached {
+            Reached::Optimal(mut instance, look) => {
+                let outcome = optimum::of(&mut instance, &program, &look);
+                let Look { basis, vertex, .. } = *look;
+                self.anchor = Some(Anchor { program, basis, vertex, instance: Some(instance) });
+                outcome
+            }
+            Reached::Other(outcome) => outcome,
+        };
+        account.reading = begun.elapsed() - account.time;
         account.cold_pivots = self.cold_pivots;
         Answer { outcome, account }
     }
 
-    fn outcome(&mut self, program: Arc<Program>, limit: Duration, stop: &Stop, account: &mut Account) -> Outcome {
+    /// The proven basis of `program`, or what else comes of it.
+    fn reach(&mut self, program: &Arc<Program>, limit: Duration, stop: &Stop, account: &mut Account) -> Reached {
         if let Some(mut anchor) = self.anchor.take() {
-            if self.insisted != Some(Start::Cold) && worth_keeping(&anchor.program, &program) {
+            if self.insisted != Some(Start::Cold) {
                 let run = Run { limit, stop, cap: self.cap(), insisted: self.insisted };
-                match warm(&mut anchor, &program, &run, account) {
-                    Ok(Warm::Optimal(instance, look)) => return self.arrive(program, instance, *look),
-                    Ok(Warm::Other(outcome)) => {
+                match warm(&mut anchor, program, &run, account) {
+                    Ok(Reached::Optimal(instance, look)) => return Reached::Optimal(instance, look),
+                    Ok(Reached::Other(outcome)) => {
                         anchor.instance = None;
                         self.anchor = Some(anchor);
-                        return outcome;
+                        return Reached::Other(outcome);
                     }
                     Err(detour) => account.detours.push(detour),
                 }
@@ -105,16 +115,13 @@ impl Session {
             self.anchor = Some(anchor);
         }
         account.start = Start::Cold;
-        let Cold { end, pivots, detours } = cold::solve(&program, limit, stop);
+        let Cold { end, pivots, detours } = cold::solve(program, limit, stop);
         account.pivots += pivots;
         account.detours.extend(detours);
-        match end {
-            End::Optimal(instance, look) => {
-                self.cold_pivots = Some(pivots);
-                self.arrive(program, instance, *look)
-            }
-            End::Other(outcome) => outcome,
+        if let Reached::Optimal(..) = end {
+            self.cold_pivots = Some(pivots);
         }
+        end
     }
 
     fn cap(&self) -> usize {
@@ -130,18 +137,4 @@ impl Session {
         };
         self.cold_pivots.map_or(usize::MAX, share)
     }
-
-    fn arrive(&mut self, program: Arc<Program>, mut instance: Box<Instance>, look: Look) -> Outcome {
-        let outcome = optimum::of(&mut instance, &program, &look);
-        self.anchor = Some(Anchor { program, basis: look.basis, vertex: look.vertex, instance: Some(instance) });
-        outcome
-    }
-}
-
-/// Whether enough of the last program is in the new one for its basis to help.
-fn worth_keeping(last: &Program, program: &Program) -> bool {
-    let kept = program.columns.iter().filter(|column| last.column(&column.key).is_some()).count()
-        + program.rows.iter().filter(|row| last.row(&row.key).is_some()).count();
-    let all = (program.columns.len() + program.rows.len()).max(last.columns.len() + last.rows.len());
-    2 * kept >= all && !program.columns.is_empty()
 }

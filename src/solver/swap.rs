@@ -38,7 +38,9 @@ pub fn enter(
     look: &Look,
     entrant: Entrant,
 ) -> Result<Option<Basis>, Refusal> {
-    let edge = Edge::of(instance, program, entrant)?;
+    instance.factorise()?;
+    let basics = instance.basics()?;
+    let edge = Edge::of(instance, program, &basics, entrant)?;
     let block = edge.block(program, look, entrant.rises).or_else(|| edge.block(program, look, !entrant.rises));
     let Some(block) = block else { return Ok(None) };
     let mut basis = look.basis.clone();
@@ -51,23 +53,27 @@ pub fn enter(
 ///
 /// # Errors
 /// When the solver has no factorisation.
-pub fn reach(instance: &mut Instance, program: &Program, look: &Look, entrant: Entrant) -> Result<f64, Refusal> {
-    let edge = Edge::of(instance, program, entrant)?;
+pub fn reach(
+    instance: &mut Instance,
+    program: &Program,
+    look: &Look,
+    basics: &[Member],
+    entrant: Entrant,
+) -> Result<f64, Refusal> {
+    let edge = Edge::of(instance, program, basics, entrant)?;
     Ok(edge.block(program, look, entrant.rises).map_or(f64::INFINITY, |block| block.step))
 }
 
 /// The edge along which a member moves while the rest of the basis follows.
-struct Edge {
+struct Edge<'b> {
     entrant: Entrant,
-    basics: Vec<Member>,
+    basics: &'b [Member],
     /// How each basic one moves when the member rises by one.
     rates: Vec<f64>,
 }
 
-impl Edge {
-    fn of(instance: &mut Instance, program: &Program, entrant: Entrant) -> Result<Self, Refusal> {
-        instance.factorise()?;
-        let basics = instance.basics()?;
+impl<'b> Edge<'b> {
+    fn of(instance: &mut Instance, program: &Program, basics: &'b [Member], entrant: Entrant) -> Result<Self, Refusal> {
         // B z = −a for a column, B z = e for a row.
         let mut right = vec![0.0; program.rows.len()];
         match entrant.member {

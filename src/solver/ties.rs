@@ -49,13 +49,18 @@ fn at_bound(position: Position, value: f64, scale: f64, lower: f64, upper: f64) 
 /// When the solver refuses.
 pub fn levels_unique(instance: &mut Instance, program: &Program, look: &Look) -> Result<bool, Refusal> {
     let movers = movers(program, look);
+    if movers.is_empty() {
+        return Ok(true);
+    }
+    instance.factorise()?;
+    let basics = instance.basics()?;
     for &entrant in movers.iter().take(PROBES) {
         let size = entrant.value.abs().max(1.0);
-        if swap::reach(instance, program, look, entrant)? > MOVES * size {
+        if swap::reach(instance, program, look, &basics, entrant)? > MOVES * size {
             return Ok(false);
         }
     }
-    if movers.is_empty() { Ok(true) } else { stuck(program, look, &movers) }
+    stuck(program, look, &movers)
 }
 
 /// What is out of the basis and could move at no loss, as far as its gain or worth tells.

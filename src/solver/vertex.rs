@@ -13,6 +13,9 @@ use crate::lp::Program;
 /// The most steps of refinement; each gains some ten digits where the factorisation is good.
 const STEPS: usize = 4;
 
+/// A residual of this share of what is summed is rounding.
+const END_OF_DIGITS: f64 = 4.0 * f64::EPSILON;
+
 /// A basic solution and its multipliers, in the program's order.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct Vertex {
@@ -53,12 +56,13 @@ impl Vertex {
             .zip(&basis.rows)
             .map(|(row, &position)| bound_at(position, row.lower, row.upper))
             .collect();
+        let scale = targets.iter().flatten().fold(0.0, |scale: f64, target| scale.max(target.abs()));
         let mut last = f64::INFINITY;
         for _ in 0..STEPS {
             let residuals = self.row_residuals(program, &targets);
             let size = largest(&residuals);
             // Refinement that no longer halves its residual has reached the end of the digits.
-            if size == 0.0 || size > last / 2.0 {
+            if size <= END_OF_DIGITS * scale || size > last / 2.0 {
                 break;
             }
             last = size;
@@ -95,6 +99,10 @@ impl Vertex {
                 self.worths[row.0] = 0.0;
             }
         }
+        let scale = basics.iter().fold(0.0, |scale: f64, member| match member {
+            Member::Column(column) => scale.max(program.columns[column.0].aim.abs()),
+            Member::Row(_) => scale,
+        });
         let mut last = f64::INFINITY;
         for _ in 0..STEPS {
             let residuals: Vec<f64> = basics
@@ -105,7 +113,7 @@ impl Vertex {
                 })
                 .collect();
             let size = largest(&residuals);
-            if size == 0.0 || size > last / 2.0 {
+            if size <= END_OF_DIGITS * scale || size > last / 2.0 {
                 break;
             }
             last = size;

@@ -5,6 +5,7 @@ use std::time::Duration;
 
 use super::basis::Basis;
 use super::change::change;
+use super::cold::{self, Reached};
 use super::findings::Ending;
 use super::instance::Instance;
 use super::let_go::let_go;
@@ -14,7 +15,7 @@ use super::message::{Account, Outcome, Start};
 use super::soft::on_the_way;
 use super::stop::Stop;
 use super::vertex::Vertex;
-use super::{certificate, cold, opened};
+use super::{certificate, inherit, opened};
 use crate::lp::{Difference, Program};
 
 /// What the next solve starts from: a program, a basis of it, and its vertex.
@@ -35,29 +36,26 @@ pub(super) struct Run<'a> {
     pub(super) insisted: Option<Start>,
 }
 
-/// What a warm solve came to.
-pub(super) enum Warm {
-    Optimal(Box<Instance>, Box<Look>),
-    Other(Outcome),
-}
-
 /// Solves `program` from `anchor`. An error is the reason why that led nowhere, as a short phrase.
 pub(super) fn warm(
     anchor: &mut Anchor,
     program: &Arc<Program>,
     run: &Run<'_>,
     account: &mut Account,
-) -> Result<Warm, &'static str> {
+) -> Result<Reached, &'static str> {
     if certificate::plain_contradiction(program).is_some() {
         return Err("bounds that contradict each other");
     }
+    let difference = Difference::between(&anchor.program, program);
+    if !worth_keeping(&anchor.program, program, &difference) {
+        return Err("little was left of the last program");
+    }
     let mut instance = live(anchor).map_err(|_| "the last basis could not be brought back")?;
     let lost = |_| "the last basis did not survive the edit";
-    let difference = Difference::between(&anchor.program, program);
     let Some(way) = on_the_way(&anchor.program, &anchor.basis, &anchor.vertex, program, &difference) else {
         change(&mut instance, &anchor.program, program, &difference).map_err(lost)?;
         opened::stay(&mut instance, &anchor.program, program, &difference).map_err(lost)?;
-        return finish(anchor, instance, program, run, account);
+        return finish(anchor, instance, program, &difference, run, account);
     };
     let way = Arc::new(way);
     let first = step(&mut instance, &anchor.program, &way).map_err(lost)?;
@@ -65,13 +63,20 @@ pub(super) fn warm(
         Settled::Optimal(look) => look,
         // The way is narrower than the program: that it leads nowhere says nothing of the program.
         Settled::Other(Outcome::Infeasible(_)) => return Err("a contradiction on the way"),
-        Settled::Other(outcome) => return Ok(Warm::Other(outcome)),
+        Settled::Other(outcome) => return Ok(Reached::Other(outcome)),
     };
     let look = let_go(&mut instance, &way, *look, program).map_err(|_| "what was withdrawn could not be let go")?;
     match settle(&mut instance, program, look, run, account)? {
-        Settled::Optimal(look) => Ok(Warm::Optimal(instance, look)),
-        Settled::Other(outcome) => Ok(Warm::Other(outcome)),
+        Settled::Optimal(look) => Ok(Reached::Optimal(instance, look)),
+        Settled::Other(outcome) => Ok(Reached::Other(outcome)),
     }
+}
+
+/// Whether enough of the last program is in the new one for its basis to help.
+fn worth_keeping(last: &Program, program: &Program, difference: &Difference) -> bool {
+    let size = |program: &Program| program.columns.len() + program.rows.len();
+    let kept = size(last) - difference.removed_columns.len() - difference.removed_rows.len();
+    2 * kept >= size(last).max(size(program)) && !program.columns.is_empty()
 }
 
 /// The rest of a warm solve where nothing needs to be withdrawn softly: the instance holds `program` already.
@@ -79,13 +84,18 @@ fn finish(
     anchor: &mut Anchor,
     mut instance: Box<Instance>,
     program: &Arc<Program>,
+    difference: &Difference,
     run: &Run<'_>,
     account: &mut Account,
-) -> Result<Warm, &'static str> {
-    let first = Look::at(&mut instance, program).map_err(|_| "the last basis did not survive the edit")?;
+) -> Result<Reached, &'static str> {
+    let lost = |_| "the last basis did not survive the edit";
+    let first = match inherit::vertex(&anchor.program, &anchor.basis, &anchor.vertex, program, difference) {
+        Some(vertex) => Look::of(program, instance.basis().map_err(lost)?, vertex),
+        None => Look::at(&mut instance, program).map_err(lost)?,
+    };
     match begin(anchor, &mut instance, program, first, run, account)? {
-        Settled::Optimal(look) => Ok(Warm::Optimal(instance, look)),
-        Settled::Other(outcome) => Ok(Warm::Other(outcome)),
+        Settled::Optimal(look) => Ok(Reached::Optimal(instance, look)),
+        Settled::Other(outcome) => Ok(Reached::Other(outcome)),
     }
 }
 

@@ -136,7 +136,7 @@ fn worked_out(report: &mut Report, solved: Option<(&Reckoning, &Account)>) {
         Some(solved.map_or(Start::None.word().to_owned(), |(reckoning, _)| reckoning.expected.clone()));
     if let Some((_, account)) = solved {
         report.pivots = account.pivots;
-        report.milliseconds.solve = super::milliseconds(account.time);
+        report.milliseconds.solve = super::milliseconds(account.time + account.reading);
     }
 }
 
