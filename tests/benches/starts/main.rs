@@ -1,6 +1,7 @@
 //! What the choice of start is worth: a table of ratios, each of two times of one run of this program.
 //!
-//! `cargo bench --bench starts` prints it; `cargo bench --bench starts -- 3` with three edits of each kind instead of ten.
+//! `cargo bench --bench starts` prints it; `cargo bench --bench starts -- 3 mix` with three edits of each kind instead of ten, and for
+//! one of the programs.
 
 #![expect(clippy::unwrap_used, clippy::print_stdout, reason = "a measurement that prints its table or fails")]
 
@@ -42,13 +43,18 @@ struct Times {
 }
 
 fn main() {
-    let count = std::env::args().skip(1).find_map(|word| word.parse().ok()).unwrap_or(10);
+    let words: Vec<String> = std::env::args().skip(1).filter(|word| !word.starts_with('-')).collect();
+    let count = words.iter().find_map(|word| word.parse().ok()).unwrap_or(10);
+    let names: Vec<&String> = words.iter().filter(|word| word.parse::<u64>().is_err()).collect();
     let mut all: BTreeMap<&str, Vec<Times>> = BTreeMap::new();
     println!(
         "{:10} {:22} {:>5} {:>8} {:>10} {:>12} {:>12} {:>12}",
         "program", "edit", "broke", "taken ms", "cold/taken", "default/taken", "pivots", "cold pivots"
     );
     for (name, program) in programs::programs() {
+        if !names.is_empty() && !names.iter().any(|wanted| *wanted == name) {
+            continue;
+        }
         let optimum = optimum(&program);
         for (kind, edit, _) in KINDS {
             let measured = measure(&program, &optimum, edit, count);
@@ -60,11 +66,13 @@ fn main() {
             let pivots = mean(accounts.iter().map(|pivots| pivots.0 as f64 + 1.0)) - 1.0;
             let cold_pivots = mean(accounts.iter().map(|pivots| pivots.1 as f64 + 1.0)) - 1.0;
             println!(
-                "{name:10} {kind:22} {:5} {:8.2} {:10.1} {:12.1} {pivots:12.1} {cold_pivots:12.1}",
+                "{name:10} {kind:22} {:5} {:8.2} {:10.1} {:12.1} {:12.1} {:12.1} {pivots:13.1} {cold_pivots:10.1}",
                 times.len(),
                 1e3 * mean(times.iter().map(|t| t.taken)),
                 mean(times.iter().map(|t| t.cold / t.taken)),
                 mean(times.iter().map(|t| t.default / t.taken)),
+                mean(times.iter().map(|t| t.primal / t.taken)),
+                mean(times.iter().map(|t| t.dual / t.taken)),
             );
             all.entry(kind).or_default().extend(times);
         }
