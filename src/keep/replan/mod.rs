@@ -29,6 +29,7 @@ use crate::solver::desk::Desk;
 use crate::solver::message::{Account, Answer, ModelKey, Optimum, Outcome};
 use crate::solver::stop;
 use crate::solver::worker::Worker;
+use crate::store::publish::Finished;
 use crate::store::{Record, StoreError, Written};
 
 /// Memory for live instances where the settings name no limit, in bytes.
@@ -82,9 +83,7 @@ impl Planner for Replanner {
                 Err(FileProblem::Missing(_) | FileProblem::Link(_) | FileProblem::NotAFile { .. }) => {
                     return Replanned::Vanished;
                 }
-                Err(problem @ FileProblem::TooLarge(_)) => {
-                    self.hold(job, None, Trouble::Undecided(&problem.to_string()), None)
-                }
+                Err(FileProblem::TooLarge(_)) => self.hold_for(job, &read::too_large(job.path.relative())),
                 Err(problem) => return Replanned::Failed { message: problem.to_string(), retry: true },
             },
         };
@@ -120,9 +119,12 @@ impl Replanner {
         if let Some(record) = &record
             && record.source == bytes
             && text::is_current(&record.plan)
-            && disk.stands(record)
         {
-            return Ok(Told { report: Telling::of(job).standing(&record.plan), changed: false });
+            let finished = disk.finish(record)?;
+            if finished != Finished::AnotherPlan {
+                let report = Telling::of(job).standing(&record.plan);
+                return Ok(Told { report, changed: finished == Finished::NoteWritten });
+            }
         }
         let model = match read::text(job.path.relative(), &bytes) {
             Ok(reading) => reading.model,
