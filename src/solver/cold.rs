@@ -46,6 +46,7 @@ pub enum End {
 }
 
 /// Solves `program` from nothing.
+#[must_use]
 pub fn solve(program: &Program, limit: Duration, stop: &Stop) -> Cold {
     let mut detours = Vec::new();
     let mut unproven: Option<Outcome> = None;
@@ -135,8 +136,12 @@ pub fn explain_infeasible(program: &Program, instance: &mut Instance) -> Conflic
 /// The growth behind an unbounded run: from the instance's ray, which voids its point.
 pub fn explain_unbounded(program: &Program, instance: &mut Instance) -> Growth {
     let ray = instance.live.primal_ray();
-    ray.map_or_else(Growth::default, |ray| {
-        let own: Vec<f64> = instance.columns.iter().map(|&at| ray[at]).collect();
-        certificate::growth(program, &own)
-    })
+    // Without rows that lean on each other the solver has no ray to give.
+    ray.map_or_else(
+        || certificate::plain_growth(program).unwrap_or_default(),
+        |ray| {
+            let own: Vec<f64> = instance.columns.iter().map(|&at| ray[at]).collect();
+            certificate::growth(program, &own)
+        },
+    )
 }
