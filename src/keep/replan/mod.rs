@@ -167,12 +167,17 @@ impl Replanner {
         let before = on_disk.plan().or_else(|| was.as_ref().map(|written| &written.plan));
         let mended = before.is_some_and(|plan| plan.standing != Standing::Current);
         let telling = Telling::of(job).edited(&edits, &[]).model(Some(&read.model));
+        let recorded = record.filter(|record| record.plan == plan_text && record.source == read.bytes);
         // The note on disk still holds unless there is something new to tell.
         let disk = Disk::of(&job.path);
-        let note = match disk.note() {
-            Some(note) if edits.is_empty() && !mended && plan::note::speaks_of(&note) == Some(now.seal.as_str()) => {
+        let note = match (disk.note(), recorded) {
+            (Some(note), _)
+                if edits.is_empty() && !mended && plan::note::speaks_of(&note) == Some(now.seal.as_str()) =>
+            {
                 note
             }
+            // A crash or a full disk kept it from its place when the plan was made.
+            (_, Some(recorded)) if !mended => recorded.note.clone(),
             _ => telling.note(before, Verdict::Planned(&now.plan), Some(&now.seal), None),
         };
         let record = Record {
