@@ -81,9 +81,8 @@ fn i1_to_i12_through_keep() {
     }
     works.save("m", &tiles(2));
     daemon.wait_current("m", aim(2));
-    while hostile.iter().any(|(name, _)| daemon.told(name).is_empty()) {
-        daemon.wait("the hostile models", |_| true);
-    }
+    let names: Vec<_> = hostile.iter().map(|(name, _)| *name).collect();
+    daemon.wait_told(&names);
     for (name, _) in &hostile {
         let told = daemon.told(name);
         assert_eq!((told.len(), &told[0]["standing"]), (1, &"held".into()), "{told:#?}");

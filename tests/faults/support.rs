@@ -311,6 +311,17 @@ impl Daemon {
         self.wait(&format!("{model} {standing}"), |object| object["model"] == model && object["standing"] == standing)
     }
 
+    /// Waits until each of these models has been told of, now or before.
+    pub(crate) fn wait_told(&mut self, models: &[&str]) {
+        let until = Instant::now() + DEADLINE;
+        let what = format!("a word of each of {models:?}");
+        while models.iter().any(|model| self.told(model).is_empty()) {
+            if !self.take(until, &what) {
+                self.fail(&what);
+            }
+        }
+    }
+
     /// Waits until the daemon has come past all events up to now: a model saved after them is planned. Gives its name and capacity.
     pub(crate) fn wait_events(&mut self, works: &Works) -> (String, u32) {
         let mark = works.marks.get() + 1;

@@ -279,7 +279,8 @@ fn a_start_over_current_plans_solves_nothing() {
     let before = files();
     let start = || {
         let mut daemon = works.keep();
-        daemon.wait_scan(&works);
+        daemon.wait_told(&["a", "b"]);
+        daemon.wait_events(&works);
         assert_eq!((daemon.solves("a"), daemon.solves("b")), (0, 0), "{:#?}", daemon.objects);
         assert_eq!((daemon.told("a").len(), daemon.told("b").len()), (1, 1), "{:#?}", daemon.objects);
         assert_eq!(files(), before);

@@ -87,6 +87,8 @@ fn reader(works: &Works, stop: &Arc<AtomicBool>) -> std::thread::JoinHandle<usiz
                 assert!(millreeve::plan::note::speaks_of(&found).is_some(), "{found}");
                 assert!(found.ends_with('\n'), "{found}");
             }
+            // The daemon, too, needs a processor.
+            pause(1);
         }
         read
     })
@@ -162,7 +164,7 @@ fn a13_byte_order_marks_line_ends_and_what_is_no_text() {
         write(&works.model(name), bytes);
     }
     let mut daemon = works.keep();
-    daemon.wait_scan(&works);
+    daemon.wait_told(&["plain", "windows", "lone-cr", "utf16", "nul", "invalid"]);
     let answers = |name| text::read(&works.plan_text(name)).unwrap().plan.answers;
     assert_eq!(answers("plain"), answers("windows"));
     for (name, _, word) in &bad {
@@ -185,6 +187,7 @@ fn a14_what_is_no_file_or_has_no_end() {
     fs::create_dir(works.model("folder")).unwrap();
     File::create(works.model("vast")).unwrap().set_len(5 << 30).unwrap();
     let mut daemon = works.keep();
+    daemon.wait_told(&["m", "vast"]);
     daemon.wait_scan(&works);
     assert_eq!(daemon.aims("m"), [aim(1)]);
     let vast = daemon.told("vast");
