@@ -84,7 +84,7 @@ fn commit(works: &Works, message: &str) {
 
 #[test]
 fn c2_a_merge_conflict() {
-    let works = Works::new(&[("m", &tiles(1))]);
+    let (works, mut daemon) = Works::kept(&[("m", 1)]);
     assert!(git(works.root(), &["init", "-q"]));
     commit(&works, "one");
     assert!(git(works.root(), &["checkout", "-qb", "other"]));
@@ -93,7 +93,6 @@ fn c2_a_merge_conflict() {
     assert!(git(works.root(), &["checkout", "-q", "main"]));
     works.save("m", &tiles(3));
     commit(&works, "three");
-    let mut daemon = works.keep();
     daemon.wait_current("m", aim(3));
     let plan = works.plan_text("m");
     assert!(!git(works.root(), &["merge", "-q", "other"]));

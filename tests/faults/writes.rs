@@ -29,6 +29,7 @@ fn a1_a_save_that_empties_the_file_first() {
     drop(file);
     daemon.wait_current("m", aim(2));
     daemon.wait_scan(&works);
+    daemon.stop();
     assert_eq!(daemon.told("m").len(), 2, "{:#?}", daemon.objects);
     assert!(daemon.log.iter().all(|line| !line.contains("WARN")), "{:#?}", daemon.log);
     works.check();
@@ -189,6 +190,7 @@ fn a14_what_is_no_file_or_has_no_end() {
     let mut daemon = works.keep();
     daemon.wait_told(&["m", "vast"]);
     daemon.wait_scan(&works);
+    daemon.stop();
     assert_eq!(daemon.aims("m"), [aim(1)]);
     let vast = daemon.told("vast");
     assert_eq!((vast.len(), &vast[0]["standing"]), (1, &"held".into()), "{vast:#?}");
