@@ -176,10 +176,12 @@ impl Dispatcher {
                 return;
             }
         };
-        if let Some(model) = ModelPath::under(&self.root, &path)
-            && self.settling.touch(now, &model, touch)
-        {
+        let Some(model) = ModelPath::under(&self.root, &path) else { return };
+        if self.settling.touch(now, &model, touch) {
             self.push(&model, What::Replan, actions);
+        } else if touch == Touch::Writing {
+            // An earlier save is about to be read, and would be found half overwritten by this one.
+            actions.extend(self.queue.withhold(&model).map(Action::Interrupt));
         }
     }
 
@@ -322,7 +324,7 @@ impl Dispatcher {
             }
             Replanned::Unchanged(_) => {}
             Replanned::Interrupted => {
-                if !self.queue.is_waiting(&model) {
+                if !self.queue.is_waiting(&model) && !self.settling.is_being_written(&model) {
                     self.push(&model, What::Replan, actions);
                 }
                 return;

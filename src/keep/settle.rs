@@ -105,6 +105,12 @@ impl Settling {
         }
     }
 
+    /// Whether somebody writes to a model and has not closed it.
+    #[must_use]
+    pub fn is_being_written(&self, model: &ModelPath) -> bool {
+        matches!(self.phases.get(model), Some(Phase::Writing { .. }))
+    }
+
     /// Forgets looks at models that the last scan did not see any more.
     pub fn forget_unseen(&mut self, seen: impl Fn(&ModelPath) -> bool) {
         self.phases.retain(|model, phase| matches!(phase, Phase::Writing { .. }) || seen(model));

@@ -16,6 +16,7 @@ use self::memory::{Known, Memory};
 use self::telling::Telling;
 use super::pool::{Factory, Job, Planner, Replanned, Stop, What};
 use super::report::Report;
+use super::scan::Stamp;
 use super::settings::Settings;
 use crate::edits::{Edit, compare};
 use crate::lp::{Program, build};
@@ -76,10 +77,11 @@ struct Read {
 impl Planner for Replanner {
     fn replan(&mut self, job: &Job, stop: &Stop) -> Replanned {
         let begun = Instant::now();
+        let stamp = Stamp::of(&job.path.full());
         let done = match job.what {
             What::Retire => self.retire(job),
             What::Replan => match read::file(&job.path.full()) {
-                Ok(bytes) => self.bring_up_to_date(job, bytes, stop, begun),
+                Ok(bytes) => self.bring_up_to_date(job, (bytes, stamp), stop, begun),
                 Err(FileProblem::Missing(_) | FileProblem::Link(_) | FileProblem::NotAFile { .. }) => {
                     return Replanned::Vanished;
                 }
@@ -111,7 +113,13 @@ impl Replanner {
         Self { memory, desk: Desk::new(Worker::new(memory_limit), time_limit), number }
     }
 
-    fn bring_up_to_date(&mut self, job: &Job, bytes: Vec<u8>, stop: &Stop, begun: Instant) -> Result<Told, Stopped> {
+    fn bring_up_to_date(
+        &mut self,
+        job: &Job,
+        (bytes, stamp): (Vec<u8>, Option<Stamp>),
+        stop: &Stop,
+        begun: Instant,
+    ) -> Result<Told, Stopped> {
         let disk = Disk::of(&job.path);
         let records = self.memory.records(&job.state)?;
         let record = records.load(job.path.relative()).ok();
@@ -128,10 +136,18 @@ impl Replanner {
         }
         let model = match read::text(job.path.relative(), &bytes) {
             Ok(reading) => reading.model,
-            Err(faults) => return self.hold_for(job, &faults),
+            Err(faults) => {
+                // What was read may be half of a save that has begun since: then there is no fault, but another look to be had.
+                if Stamp::of(&job.path.full()) != stamp {
+                    return Err(Stopped::Interrupted);
+                }
+                heed(stop)?;
+                return self.hold_for(job, &faults);
+            }
         };
         let meaning = Meaning::of(&model);
         let read = Read { bytes, model, meaning };
+        heed(stop)?;
         let known = self.memory.known(&job.path, record.as_ref());
         let on_disk = disk.plan();
         if let Some(told) = self.keep_standing(job, &read, known.as_deref(), record.as_ref(), &on_disk)? {
@@ -207,6 +223,7 @@ impl Replanner {
         }
         let answer = self.desk.solve(&key, &program, || known.as_ref().and_then(|known| known.last()), &solver_stop);
         self.memory.solves(&job.path, self.number);
+        heed(stop)?;
         let Answer { outcome, account } = answer;
         let reckoning = |optimum: Option<&Optimum>| reckoning(known.as_deref(), &edits, &account, optimum);
         match outcome {
@@ -332,6 +349,11 @@ impl Replanner {
         self.memory.forget(&job.path);
         Ok(Told { report: telling.retired(), changed })
     }
+}
+
+/// Gives up where that was asked for. Nothing has been written up to here.
+fn heed(stop: &Stop) -> Result<(), Stopped> {
+    if stop.is_raised() { Err(Stopped::Interrupted) } else { Ok(()) }
 }
 
 /// What a solve was about and how it went.
