@@ -20,12 +20,16 @@ use std::path::Path;
 use std::process::ExitCode;
 
 use clap::Parser as _;
+use rustix::process::Signal;
+use tokio::signal::unix::SignalKind;
 use tracing::level_filters::LevelFilter;
 
 use args::{Cli, Command, Common};
 use exit::{Error, Outcome};
 use screen::Screen;
 use settings::{Settings, Wrong};
+
+use crate::store::error::reason;
 
 /// Runs the command line of this process.
 #[must_use]
@@ -44,6 +48,7 @@ pub fn main() -> ExitCode {
 }
 
 fn run(screen: &mut Screen, common: &Common, command: Command) -> Result<Outcome, Error> {
+    outlive_file_size_limit().map_err(|error| Error::failure(format_args!("cannot start: {}", reason(&error)), ""))?;
     let setting = Setting { common };
     match command {
         Command::Check { paths } => {
@@ -60,6 +65,14 @@ fn run(screen: &mut Screen, common: &Common, command: Command) -> Result<Outcome
             once::run(screen, &setting, &paths)
         }
     }
+}
+
+/// Lets a write past the limit on file sizes fail, instead of killing the process with half a file on disk.
+fn outlive_file_size_limit() -> std::io::Result<()> {
+    // The handler is the process's, and stays when the runtime that it takes to set one is gone.
+    let runtime = tokio::runtime::Builder::new_current_thread().enable_all().build()?;
+    let _inside = runtime.enter();
+    tokio::signal::unix::signal(SignalKind::from_raw(Signal::XFSZ.as_raw())).map(drop)
 }
 
 /// Where the settings of this run come from.

@@ -11,7 +11,7 @@ use super::pool::{Job, Replanned, What, Word, Worker};
 use super::queue::Queue;
 use super::scan::{FolderId, Scan, Sight, Stamp};
 use super::settings::Settings;
-use super::settle::{Settling, Touch};
+use super::settle::{Settling, StillOpen, Touch};
 use super::watch::Hint;
 use crate::model::escape::Plain;
 
@@ -176,22 +176,28 @@ impl Dispatcher {
                 return;
             }
         };
-        if let Some(model) = ModelPath::under(&self.root, &path)
-            && self.settling.touch(now, &model, touch)
-        {
+        let Some(model) = ModelPath::under(&self.root, &path) else { return };
+        if self.settling.touch(now, &model, touch) {
             self.push(&model, What::Replan, actions);
+        } else if touch == Touch::Writing {
+            // An earlier save is about to be read, and would be found half overwritten by this one.
+            actions.extend(self.queue.withhold(&model).map(Action::Interrupt));
         }
     }
 
     fn tick(&mut self, now: Instant, actions: &mut Vec<Action>) {
-        for open in self.settling.quiet(now) {
-            let text = format!(
-                "{}: still open for writing after {} s, though nothing has been written for a while; it is read as it is",
-                open.model,
-                open.age.as_secs()
-            );
+        for StillOpen { model, age, given_up } in self.settling.quiet(now) {
+            let seconds = age.as_secs();
+            let what_follows = if given_up {
+                "nothing was written for long, so it is read as it is"
+            } else {
+                "its last plan stays until whatever writes to it closes it"
+            };
+            let text = format!("{model}: still open for writing, since {seconds} s ago; {what_follows}");
             actions.push(Action::Say(Weight::Warning, text));
-            self.push(&open.model, What::Replan, actions);
+            if given_up {
+                self.push(&model, What::Replan, actions);
+            }
         }
         let due = |trouble: &Trouble| trouble.again.is_some_and(|again| again <= now);
         let again: Vec<_> =
@@ -318,7 +324,7 @@ impl Dispatcher {
             }
             Replanned::Unchanged(_) => {}
             Replanned::Interrupted => {
-                if !self.queue.is_waiting(&model) {
+                if !self.queue.is_waiting(&model) && !self.settling.is_being_written(&model) {
                     self.push(&model, What::Replan, actions);
                 }
                 return;

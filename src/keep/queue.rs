@@ -53,6 +53,21 @@ impl Queue {
         Some(running.worker)
     }
 
+    /// Somebody writes to a model: what waits is dropped, for it would be read half written. Returns the worker to interrupt, if one
+    /// may be reading it now.
+    pub fn withhold(&mut self, model: &ModelPath) -> Option<Worker> {
+        let places = self.models.get_mut(model)?;
+        if places.waiting.take().is_some() {
+            self.order.retain(|waiting| waiting != model);
+        }
+        let running = places.running.as_mut()?;
+        if running.interrupted || places.interruptions >= MOST_INTERRUPTIONS {
+            return None;
+        }
+        running.interrupted = true;
+        Some(running.worker)
+    }
+
     /// The next job to start, and the worker to give it to: the model's own if that is free. `None` while none can start.
     pub fn take(&mut self) -> Option<(Worker, ModelPath, What)> {
         let any = Worker(self.idle.iter().position(|&idle| idle)?);
@@ -175,6 +190,18 @@ mod tests {
         // c's home is taken: it goes where there is room.
         queue.push(&model("c"), What::Replan);
         assert_eq!(started(&mut queue), Some((0, "c".into())));
+    }
+
+    #[test]
+    fn a_model_that_is_being_written_is_not_started() {
+        let mut queue = Queue::new(1);
+        queue.push(&model("a"), What::Replan);
+        assert_eq!(queue.withhold(&model("a")), None);
+        assert!(queue.take().is_none() && queue.is_empty());
+        queue.push(&model("a"), What::Replan);
+        queue.take().unwrap();
+        assert_eq!(queue.withhold(&model("a")), Some(Worker(0)));
+        assert_eq!(queue.withhold(&model("a")), None);
     }
 
     #[test]

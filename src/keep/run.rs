@@ -221,18 +221,12 @@ impl<'a, R: FnMut(&ModelPath, &Replanned)> Keeper<'a, R> {
 struct Signals {
     terminate: tokio::signal::unix::Signal,
     interrupt: tokio::signal::unix::Signal,
-    #[expect(dead_code, reason = "held so that a write past the file size limit fails instead of killing the process")]
-    file_size: tokio::signal::unix::Signal,
 }
 
 impl Signals {
     fn listen() -> std::io::Result<Self> {
         use tokio::signal::unix::{SignalKind, signal};
-        Ok(Self {
-            terminate: signal(SignalKind::terminate())?,
-            interrupt: signal(SignalKind::interrupt())?,
-            file_size: signal(SignalKind::from_raw(rustix::process::Signal::XFSZ.as_raw()))?,
-        })
+        Ok(Self { terminate: signal(SignalKind::terminate())?, interrupt: signal(SignalKind::interrupt())? })
     }
 
     async fn wait(mut self) {

@@ -55,14 +55,21 @@ pub struct Pace {
     /// A file known only from scans is read once two looks this far apart agree. Two seconds are the coarsest time stamp in use, so
     /// that a write after the reading cannot hide in the stamp of the one before it.
     pub settle: Duration,
-    /// A file that is open for writing is read anyway when nothing was written for so long.
+    /// A file that stays open for writing is reported when nothing was written for so long. Its last plan stays.
     pub quiet: Duration,
+    /// A file that stays open for writing is read as it is when nothing was written for so long.
+    pub patience: Duration,
     /// A model must be gone for so long before its plan is retired: editors and git move files away and back.
     pub grace: Duration,
 }
 
 impl Default for Pace {
     fn default() -> Self {
-        Self { settle: Duration::from_secs(2), quiet: Duration::from_secs(10), grace: Duration::from_secs(2) }
+        Self {
+            settle: Duration::from_secs(2),
+            quiet: Duration::from_secs(10),
+            patience: Duration::from_secs(600),
+            grace: Duration::from_secs(2),
+        }
     }
 }

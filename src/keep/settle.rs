@@ -22,21 +22,23 @@ pub enum Touch {
 /// What is known of a model that is not at rest.
 #[derive(Clone, Copy, Debug)]
 enum Phase {
-    /// Somebody writes to it and has not closed it.
-    Writing { since: Instant, last: Instant },
+    /// Somebody writes to it and has not closed it; `told` once that has been reported.
+    Writing { since: Instant, last: Instant, told: bool },
     /// A scan saw it so, without any event.
     Seen { sight: Sight, since: Instant },
     /// It is not there.
     Missing { since: Instant },
 }
 
-/// A model that is still open but was read all the same, because nobody wrote to it for long.
+/// A model that is still open for writing, though nobody has written to it for long.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct StillOpen {
     /// The model.
     pub model: ModelPath,
     /// How long ago the writing began.
     pub age: Duration,
+    /// Whether its writer is waited for no longer: the model is to be read as it is.
+    pub given_up: bool,
 }
 
 /// The models that are not at rest.
@@ -61,8 +63,8 @@ impl Settling {
                 return true;
             }
             Touch::Writing => match self.phases.get(model) {
-                Some(&Phase::Writing { since, .. }) => Phase::Writing { since, last: now },
-                _ => Phase::Writing { since: now, last: now },
+                Some(&Phase::Writing { since, told, .. }) => Phase::Writing { since, last: now, told },
+                _ => Phase::Writing { since: now, last: now, told: false },
             },
             Touch::Gone => Phase::Missing { since: now },
         };
@@ -103,6 +105,12 @@ impl Settling {
         }
     }
 
+    /// Whether somebody writes to a model and has not closed it.
+    #[must_use]
+    pub fn is_being_written(&self, model: &ModelPath) -> bool {
+        matches!(self.phases.get(model), Some(Phase::Writing { .. }))
+    }
+
     /// Forgets looks at models that the last scan did not see any more.
     pub fn forget_unseen(&mut self, seen: impl Fn(&ModelPath) -> bool) {
         self.phases.retain(|model, phase| matches!(phase, Phase::Writing { .. }) || seen(model));
@@ -113,21 +121,21 @@ impl Settling {
         self.phases.clear();
     }
 
-    /// The models whose writers have been quiet for too long. They are to be read as they are.
+    /// The models whose writers have been quiet for too long, told of twice: when that is to be reported, and when they are given up.
     pub fn quiet(&mut self, now: Instant) -> Vec<StillOpen> {
-        let quiet = self.pace.quiet;
-        let due = |phase: &Phase| match *phase {
-            Phase::Writing { since, last } if now.saturating_duration_since(last) >= quiet => {
-                Some(now.saturating_duration_since(since))
+        let pace = self.pace;
+        let mut open = Vec::new();
+        for (model, phase) in &mut self.phases {
+            let Phase::Writing { since, last, told } = phase else { continue };
+            let still = now.saturating_duration_since(*last);
+            let given_up = still >= pace.patience;
+            if given_up || (still >= pace.quiet && !*told) {
+                *told = true;
+                let age = now.saturating_duration_since(*since);
+                open.push(StillOpen { model: model.clone(), age, given_up });
             }
-            _ => None,
-        };
-        let open: Vec<_> = self
-            .phases
-            .iter()
-            .filter_map(|(model, phase)| Some(StillOpen { model: model.clone(), age: due(phase)? }))
-            .collect();
-        for still in &open {
+        }
+        for still in open.iter().filter(|still| still.given_up) {
             self.phases.remove(&still.model);
         }
         open
@@ -137,7 +145,8 @@ impl Settling {
     #[must_use]
     pub fn next_quiet(&self) -> Option<Instant> {
         let time = |phase: &Phase| match *phase {
-            Phase::Writing { last, .. } => Some(last + self.pace.quiet),
+            Phase::Writing { last, told: false, .. } => Some(last + self.pace.quiet.min(self.pace.patience)),
+            Phase::Writing { last, told: true, .. } => Some(last + self.pace.patience),
             _ => None,
         };
         self.phases.values().filter_map(time).min()
@@ -192,14 +201,29 @@ mod tests {
     }
 
     #[test]
-    fn a_writer_that_never_closes_is_reported_after_the_quiet_limit_and_once() {
+    fn a_writer_that_never_closes_is_reported_once_and_given_up_much_later() {
         let (mut settling, start) = (Settling::new(Pace::default()), Instant::now());
         settling.touch(start, &model(), Touch::Writing);
         settling.touch(start + 4 * SECOND, &model(), Touch::Writing);
         assert_eq!(settling.next_quiet(), Some(start + 14 * SECOND));
         assert!(settling.quiet(start + 13 * SECOND).is_empty());
-        assert_eq!(settling.quiet(start + 14 * SECOND), [StillOpen { model: model(), age: 14 * SECOND }]);
-        assert!(settling.quiet(start + 30 * SECOND).is_empty());
+        let still = |age, given_up| StillOpen { model: model(), age: age * SECOND, given_up };
+        assert_eq!(settling.quiet(start + 14 * SECOND), [still(14, false)]);
+        assert_eq!(settling.next_quiet(), Some(start + 604 * SECOND));
+        assert!(settling.quiet(start + 603 * SECOND).is_empty());
+        assert_eq!(settling.quiet(start + 604 * SECOND), [still(604, true)]);
+        assert_eq!(settling.next_quiet(), None);
+    }
+
+    #[test]
+    fn a_writer_that_goes_on_after_a_report_is_waited_for_anew() {
+        let (mut settling, start) = (Settling::new(Pace::default()), Instant::now());
+        settling.touch(start, &model(), Touch::Writing);
+        assert_eq!(settling.quiet(start + 10 * SECOND).len(), 1);
+        settling.touch(start + 500 * SECOND, &model(), Touch::Writing);
+        assert!(settling.quiet(start + 1099 * SECOND).is_empty());
+        assert!(settling.touch(start + 1099 * SECOND, &model(), Touch::Finished));
+        assert_eq!(settling.next_quiet(), None);
     }
 
     #[test]

@@ -8,18 +8,35 @@ pub use mark::marked;
 pub use read::{PlanError, Written, read};
 pub use write::write;
 
+use super::types::{FORMAT, RULES};
+
 /// The first line of every plan file.
 pub const HEADER: &str = "# Written by millreeve. Do not edit: the next plan replaces it.";
 
 /// What the first line of every note begins with.
 pub const NOTE_HEADER: &str = "<!-- Written by millreeve. Do not edit: the next note replaces it.";
 
-/// Whether a file that begins with `bytes` is a plan or note of ours, and may be replaced.
+/// Whether a file that begins with `bytes` is a plan or note of ours, and may be replaced. A plan of a newer version may not: what
+/// it holds beyond what this version knows would be lost.
 #[must_use]
 pub fn is_ours(bytes: &[u8]) -> bool {
     let line = bytes.split(|&byte| byte == b'\n').next().unwrap_or_default();
     let line = line.strip_suffix(b"\r").unwrap_or(line);
-    line == HEADER.as_bytes() || (line.starts_with(NOTE_HEADER.as_bytes()) && line.ends_with(b"-->"))
+    let is_note = line.starts_with(NOTE_HEADER.as_bytes()) && line.ends_with(b"-->");
+    is_note || (line == HEADER.as_bytes() && !is_newer(&String::from_utf8_lossy(bytes)))
+}
+
+/// Whether a plan that begins with `text` is of a version that this one does not know.
+fn is_newer(text: &str) -> bool {
+    VERSIONS.iter().any(|&(what, known)| version(text, what).is_some_and(|found| found > known))
+}
+
+/// The versions that a plan states, with the highest that is known of each.
+const VERSIONS: [(&str, u32); 2] = [("format", FORMAT), ("rules", RULES)];
+
+/// The version of `what` that a plan states.
+fn version(text: &str, what: &str) -> Option<u32> {
+    head(text).find_map(|line| value_of(line, what)).and_then(|value| value.parse().ok())
 }
 
 /// Whether a plan's text says that it may be worked to.

@@ -5,7 +5,7 @@
 
 use super::message::{Conflict, Growth, Rule};
 use super::sum::Sum;
-use crate::lp::{Column, Key, Program, Row};
+use crate::lp::{Column, Key, Program, Row, RowIndex};
 
 /// Multipliers smaller than this share of the largest are noise.
 const NOISE: f64 = 1e-9;
@@ -35,20 +35,6 @@ pub fn plain_contradiction(program: &Program) -> Option<Conflict> {
     let broken =
         program.rows.iter().zip(touched).find(|(row, touched)| !touched && (row.lower > 0.0 || row.upper < 0.0));
     broken.map(|(row, _)| Conflict { rules: vec![row_rule(row, row.upper < 0.0)], proven: true })
-}
-
-/// A column in no row that improves the aim without limit. The solver finds no ray where no row has entries at all.
-#[must_use]
-pub fn plain_growth(program: &Program) -> Option<Growth> {
-    let improves = |column: &Column| {
-        let cost = program.sense.sign() * column.aim;
-        column.entries.is_empty()
-            && ((cost < 0.0 && column.upper.is_infinite()) || (cost > 0.0 && column.lower.is_infinite()))
-    };
-    let at = program.columns.iter().position(improves)?;
-    let mut ray = vec![0.0; program.columns.len()];
-    ray[at] = -program.sense.sign() * program.columns[at].aim.signum();
-    Some(growth(program, &ray))
 }
 
 /// The growth that `ray`, one rate per column, shows in `program`.
@@ -82,6 +68,27 @@ pub fn growth(program: &Program, ray: &[f64]) -> Growth {
         rates: named.map(|(column, &rate)| (column.key.clone(), rate)).collect(),
         proven: largest > 0.0 && columns_go && rows_go && gain.value() < -NOISE,
     }
+}
+
+/// A single column that neither a bound nor a row keeps from improving the aim for ever.
+#[must_use]
+pub fn plain_growth(program: &Program) -> Option<Growth> {
+    let limit = |rate: f64, lower: f64, upper: f64| if rate > 0.0 { upper } else { lower };
+    let rate = |column: &Column| (-program.sense.sign() * column.aim).signum();
+    let grows = |column: &Column| {
+        let rate = rate(column);
+        let row_goes = |&(row, value): &(RowIndex, f64)| {
+            let row = &program.rows[row.0];
+            value == 0.0 || limit(rate * value, row.lower, row.upper).is_infinite()
+        };
+        column.aim != 0.0
+            && limit(rate, column.lower, column.upper).is_infinite()
+            && column.entries.iter().all(row_goes)
+    };
+    let at = program.columns.iter().position(grows)?;
+    let mut ray = vec![0.0; program.columns.len()];
+    ray[at] = rate(&program.columns[at]);
+    Some(growth(program, &ray))
 }
 
 /// What rows combined by `ray` must at least come to, and what the columns' bounds allow at most.

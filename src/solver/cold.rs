@@ -137,6 +137,7 @@ pub fn explain_infeasible(program: &Program, instance: &mut Instance) -> Conflic
 /// The growth behind an unbounded run: from the instance's ray, which voids its point.
 pub fn explain_unbounded(program: &Program, instance: &mut Instance) -> Growth {
     let ray = instance.live.primal_ray();
+    // Without rows that lean on each other the solver has no ray to give.
     let shown = ray.map(|ray| {
         let own: Vec<f64> = instance.columns.iter().map(|&at| ray[at]).collect();
         certificate::growth(program, &own)

@@ -61,7 +61,7 @@ impl Instance {
     /// # Errors
     /// When even that does not.
     pub fn factorise(&mut self) -> Result<(), Refusal> {
-        if self.live.rows() == 0 || self.live.basics().is_ok() {
+        if self.live.rows() == 0 || self.live.columns() == 0 || self.live.basics().is_ok() {
             return Ok(());
         }
         self.live.set("simplex_iteration_limit", 0)?;

@@ -258,6 +258,9 @@ impl Live {
         if basis.columns.len() != self.columns || basis.rows.len() != self.rows || basic != self.rows {
             return Err(Refusal("a basis of another shape"));
         }
+        if self.columns == 0 {
+            return Ok(());
+        }
         let columns: Vec<HighsInt> = basis.columns.iter().map(|&position| status_of(position)).collect();
         let rows: Vec<HighsInt> = basis.rows.iter().map(|&position| status_of(position)).collect();
         // SAFETY: the arrays have as many elements as the instance has columns and rows, checked above.
@@ -269,6 +272,10 @@ impl Live {
     /// # Errors
     /// When it holds none that is valid.
     pub fn basis(&mut self) -> Result<Basis, Refusal> {
+        if self.columns == 0 {
+            // The solver calls it invalid, but there is just the one.
+            return Ok(Basis { columns: Vec::new(), rows: vec![Position::Basic; self.rows] });
+        }
         let mut columns = vec![0; self.columns];
         let mut rows = vec![0; self.rows];
         // SAFETY: the arrays have room for as many elements as the instance has columns and rows.

@@ -35,6 +35,10 @@ impl Vertex {
         if program.rows.is_empty() {
             return Ok(Self { levels, worths });
         }
+        if program.columns.is_empty() {
+            // All rows stand at 0, and there is no factorisation to be had.
+            return Ok(Self { levels, worths: vec![0.0; program.rows.len()] });
+        }
         instance.factorise()?;
         let basics = instance.basics()?;
         let mut vertex = Self { levels, worths };

@@ -157,15 +157,20 @@ pub(crate) fn kind(kind: fs::FileType) -> &'static str {
 
 /// Creates a temporary file in `folder`, locked so that no sweep takes it for an orphan.
 fn create(folder: &Path) -> io::Result<NamedTempFile> {
-    let temp = tempfile::Builder::new()
-        .prefix(TEMP_PREFIX)
-        .suffix(TEMP_SUFFIX)
-        .rand_bytes(TEMP_RANDOM)
-        .permissions(Permissions::from_mode(NEW_MODE))
-        .tempfile_in(folder)?;
-    // Where the file system knows no locks the name alone protects it.
-    let _ = temp.as_file().try_lock();
-    Ok(temp)
+    loop {
+        let temp = tempfile::Builder::new()
+            .prefix(TEMP_PREFIX)
+            .suffix(TEMP_SUFFIX)
+            .rand_bytes(TEMP_RANDOM)
+            .permissions(Permissions::from_mode(NEW_MODE))
+            .tempfile_in(folder)?;
+        // Where the file system knows no locks the name alone protects it.
+        let _ = temp.as_file().lock();
+        // A sweep may have come upon it before the lock; it holds the lock itself until the file is gone.
+        if temp.as_file().metadata()?.nlink() > 0 {
+            return Ok(temp);
+        }
+    }
 }
 
 fn folder_of(path: &Path) -> &Path {
@@ -189,11 +194,14 @@ pub fn is_temp(name: &std::ffi::OsStr) -> bool {
 ///
 /// What is not named as ours, is not a plain file, or is locked by a process that is still writing stays.
 pub fn sweep<'a>(candidates: impl IntoIterator<Item = &'a PathBuf>) -> usize {
-    let orphan = |path: &&PathBuf| {
-        path.file_name().is_some_and(is_temp)
-            && open_plain(path).is_ok_and(|file| !matches!(file.try_lock(), Err(fs::TryLockError::WouldBlock)))
-    };
-    candidates.into_iter().filter(orphan).filter(|path| fs::remove_file(path).is_ok()).count()
+    candidates.into_iter().filter(|path| path.file_name().is_some_and(is_temp) && remove_orphan(path)).count()
+}
+
+/// Removes a file unless its writer still has it locked. The lock is held over the removal, so that a writer that comes just then
+/// finds out.
+fn remove_orphan(path: &Path) -> bool {
+    let Ok(file) = open_plain(path) else { return false };
+    !matches!(file.try_lock(), Err(fs::TryLockError::WouldBlock)) && fs::remove_file(path).is_ok()
 }
 
 #[cfg(test)]
@@ -320,5 +328,23 @@ mod tests {
         let all: Vec<_> = fs::read_dir(folder.path()).unwrap().map(|entry| entry.unwrap().path()).collect();
         assert_eq!(sweep(&all), 1);
         assert!(!orphan.exists() && other.exists() && live.path().exists());
+    }
+
+    #[test]
+    fn a_writer_loses_nothing_to_a_sweep_that_comes_in_between() {
+        let folder = tempfile::tempdir().unwrap();
+        let done = std::sync::atomic::AtomicBool::new(false);
+        std::thread::scope(|scope| {
+            scope.spawn(|| {
+                while !done.load(std::sync::atomic::Ordering::Relaxed) {
+                    let entries = fs::read_dir(folder.path()).unwrap();
+                    sweep(&entries.map(|entry| entry.unwrap().path()).collect::<Vec<_>>());
+                }
+            });
+            let written = (0..2000).map(|number| put(&folder.path().join("p"), &format!("ours {number}")));
+            let lost: Vec<_> = written.filter_map(Result::err).map(|error| error.to_string()).collect();
+            done.store(true, std::sync::atomic::Ordering::Relaxed);
+            assert!(lost.is_empty(), "{lost:?}");
+        });
     }
 }

@@ -70,8 +70,8 @@ pub enum StoreError {
         /// What is there: "a folder", "a symbolic link", …
         what: &'static str,
     },
-    /// A file that somebody else wrote is there.
-    #[error("{} was not written by millreeve: it is left alone; move it away, or rename the model", shown(.path))]
+    /// A file that somebody else wrote, or a newer version, is there.
+    #[error("{} was not written by millreeve, or by a newer version of it: it is left alone; move it away, or rename the model", shown(.path))]
     NotOurs {
         /// The file that was to be written.
         path: PathBuf,

@@ -1,10 +1,10 @@
 //! Putting a plan and its note in place so that they always agree: record, then plan, then note.
 
-use std::io::{ErrorKind, Read};
+use std::io::Read;
 use std::path::Path;
 
 use super::atomic::{self, Durability, Written};
-use super::error::{Step, StoreError};
+use super::error::StoreError;
 use super::state::{Record, Records};
 
 /// A file that Millreeve writes, and how it knows its own.
@@ -63,9 +63,9 @@ pub fn publish(records: &Records, record: &Record, outputs: &Outputs<'_>) -> Res
 /// Completes a publication that was interrupted between plan and note.
 ///
 /// # Errors
-/// The plan cannot be read, or the note cannot be written.
+/// The note cannot be written.
 pub fn finish(record: &Record, outputs: &Outputs<'_>) -> Result<Finished, StoreError> {
-    if !holds(&outputs.plan, &record.plan)? {
+    if !holds(&outputs.plan, &record.plan) {
         return Ok(Finished::AnotherPlan);
     }
     let note = outputs.note;
@@ -75,15 +75,12 @@ pub fn finish(record: &Record, outputs: &Outputs<'_>) -> Result<Finished, StoreE
     }
 }
 
-/// Whether a file holds exactly this text.
-fn holds(output: &Output<'_>, text: &str) -> Result<bool, StoreError> {
+/// Whether a file holds exactly this text. One that cannot be read does not; whoever then writes there is told why.
+fn holds(output: &Output<'_>, text: &str) -> bool {
     let mut there = Vec::new();
     let most = u64::try_from(text.len()).unwrap_or(u64::MAX).saturating_add(1);
-    match atomic::open_plain(output.path).and_then(|file| file.take(most).read_to_end(&mut there)) {
-        Ok(_) => Ok(there == text.as_bytes()),
-        Err(error) if error.kind() == ErrorKind::NotFound => Ok(false),
-        Err(error) => Err(StoreError::failed(Step::Look, output.path)(error)),
-    }
+    let read = atomic::open_plain(output.path).and_then(|file| file.take(most).read_to_end(&mut there));
+    read.is_ok() && there == text.as_bytes()
 }
 
 #[cfg(test)]

@@ -15,8 +15,12 @@ const DEADLINE: Duration = Duration::from_secs(60);
 
 /// Settings that settle fast, with an everyday limit for writers.
 pub(crate) fn settings() -> Settings {
-    let pace =
-        Pace { settle: Duration::from_millis(100), quiet: Duration::from_secs(30), grace: Duration::from_millis(600) };
+    let pace = Pace {
+        settle: Duration::from_millis(100),
+        quiet: Duration::from_secs(30),
+        patience: Duration::from_secs(30),
+        grace: Duration::from_millis(600),
+    };
     Settings { scan_every: Duration::from_millis(150), workers: 2, pace, ..Settings::default() }
 }
 

@@ -1,13 +1,16 @@
 //! The plan and the note as they lie on disk.
 
-use std::fs;
-use std::path::PathBuf;
+use std::io::Read as _;
+use std::path::{Path, PathBuf};
 
 use crate::keep::path::ModelPath;
 use crate::plan::text::{self, is_ours};
 use crate::plan::{Plan, Standing};
-use crate::store::publish::publish;
+use crate::store::publish::{self, Finished};
 use crate::store::{Durability, Output, Outputs, Record, Records, StoreError, Written, atomic};
+
+/// The largest plan or note that is read, in bytes; far above what the largest model gets.
+const LARGEST: u64 = 64 << 20;
 
 /// Where the plan and the note of a model lie.
 pub(super) struct Disk {
@@ -53,7 +56,7 @@ impl Disk {
 
     /// The plan on disk, if it can be gone by. What cannot be read counts as nothing; writing will say why.
     pub(super) fn plan(&self) -> OnDisk {
-        let text = fs::read_to_string(&self.plan).ok();
+        let text = text_of(&self.plan);
         let written = text.as_deref().and_then(|text| text::read(text).ok()).filter(|written| written.sealed);
         match (text, written) {
             (Some(text), Some(written)) => OnDisk::Good(Box::new(Found { plan: written.plan, text })),
@@ -63,18 +66,17 @@ impl Disk {
 
     /// The note on disk, if it is ours.
     pub(super) fn note(&self) -> Option<String> {
-        fs::read_to_string(&self.note).ok().filter(|text| is_ours(text.as_bytes()))
+        text_of(&self.note).filter(|text| is_ours(text.as_bytes()))
     }
 
-    /// Whether plan and note are just what a record says.
-    pub(super) fn stands(&self, record: &Record) -> bool {
-        let holds = |path: &PathBuf, text: &str| fs::read(path).is_ok_and(|bytes| bytes == text.as_bytes());
-        !record.plan.is_empty() && holds(&self.plan, &record.plan) && holds(&self.note, &record.note)
+    /// Whether the plan is just what a record says; if so, the note is made what the record says too.
+    pub(super) fn finish(&self, record: &Record) -> Result<Finished, StoreError> {
+        publish::finish(record, &self.outputs())
     }
 
     /// Records and publishes plan and note. Answers whether anything was written.
     pub(super) fn publish(&self, records: &Records, record: &Record) -> Result<bool, StoreError> {
-        let published = publish(records, record, &self.outputs())?;
+        let published = publish::publish(records, record, &self.outputs())?;
         Ok(published.plan != Written::Same || published.note != Written::Same)
     }
 
@@ -85,4 +87,12 @@ impl Disk {
     pub(super) fn write_note(&self, text: &str) -> Result<Written, StoreError> {
         atomic::write(&self.note, text.as_bytes(), is_ours, Durability::Synced)
     }
+}
+
+/// The text of a plain file of at most [`LARGEST`] bytes. A link is not followed and a pipe is not waited for: whatever lies where
+/// plan or note should must not keep the worker.
+fn text_of(path: &Path) -> Option<String> {
+    let mut text = String::new();
+    atomic::open_plain(path).ok()?.take(LARGEST + 1).read_to_string(&mut text).ok()?;
+    (text.len() as u64 <= LARGEST).then_some(text)
 }

@@ -16,6 +16,7 @@ use self::memory::{Known, Memory};
 use self::telling::Telling;
 use super::pool::{Factory, Job, Planner, Replanned, Stop, What};
 use super::report::Report;
+use super::scan::Stamp;
 use super::settings::Settings;
 use crate::edits::{Edit, Renames, compare};
 use crate::lp::{Program, build};
@@ -29,6 +30,7 @@ use crate::solver::desk::Desk;
 use crate::solver::message::{Account, Answer, ModelKey, Optimum, Outcome};
 use crate::solver::stop;
 use crate::solver::worker::Worker;
+use crate::store::publish::Finished;
 use crate::store::{Record, StoreError, Written};
 
 /// Memory for live instances where the settings name no limit, in bytes.
@@ -76,16 +78,15 @@ struct Read {
 impl Planner for Replanner {
     fn replan(&mut self, job: &Job, stop: &Stop) -> Replanned {
         let begun = Instant::now();
+        let stamp = Stamp::of(&job.path.full());
         let done = match job.what {
             What::Retire => self.retire(job),
             What::Replan => match read::file(&job.path.full()) {
-                Ok(bytes) => self.bring_up_to_date(job, bytes, stop, begun),
+                Ok(bytes) => self.bring_up_to_date(job, (bytes, stamp), stop, begun),
                 Err(FileProblem::Missing(_) | FileProblem::Link(_) | FileProblem::NotAFile { .. }) => {
                     return Replanned::Vanished;
                 }
-                Err(problem @ FileProblem::TooLarge(_)) => {
-                    self.hold(job, None, Trouble::Undecided(&problem.to_string()), None)
-                }
+                Err(FileProblem::TooLarge(_)) => self.hold_for(job, &read::too_large(job.path.relative())),
                 Err(problem) => return Replanned::Failed { message: problem.to_string(), retry: true },
             },
         };
@@ -113,7 +114,13 @@ impl Replanner {
         Self { memory, desk: Desk::new(Worker::new(memory_limit), time_limit), time_limit, number }
     }
 
-    fn bring_up_to_date(&mut self, job: &Job, bytes: Vec<u8>, stop: &Stop, begun: Instant) -> Result<Told, Stopped> {
+    fn bring_up_to_date(
+        &mut self,
+        job: &Job,
+        (bytes, stamp): (Vec<u8>, Option<Stamp>),
+        stop: &Stop,
+        begun: Instant,
+    ) -> Result<Told, Stopped> {
         let disk = Disk::of(&job.path);
         let records = self.memory.records(&job.state)?;
         let record = records.load(job.path.relative()).ok();
@@ -121,16 +128,27 @@ impl Replanner {
         if let Some(record) = &record
             && record.source == bytes
             && text::is_current(&record.plan)
-            && disk.stands(record)
         {
-            return Ok(Told { report: Telling::of(job).standing(&record.plan), changed: false });
+            let finished = disk.finish(record)?;
+            if finished != Finished::AnotherPlan {
+                let report = Telling::of(job).standing(&record.plan);
+                return Ok(Told { report, changed: finished == Finished::NoteWritten });
+            }
         }
         let model = match read::text(job.path.relative(), &bytes) {
             Ok(reading) => reading.model,
-            Err(faults) => return self.hold_for(job, &faults),
+            Err(faults) => {
+                // What was read may be half of a save that has begun since: then there is no fault, but another look to be had.
+                if Stamp::of(&job.path.full()) != stamp {
+                    return Err(Stopped::Interrupted);
+                }
+                heed(stop)?;
+                return self.hold_for(job, &faults);
+            }
         };
         let meaning = Meaning::of(&model);
         let read = Read { bytes, model, meaning };
+        heed(stop)?;
         let known = self.memory.known(&job.path, record.as_ref());
         let on_disk = disk.plan();
         if let Some(told) = self.keep_standing(job, &read, known.as_deref(), record.as_ref(), &on_disk)? {
@@ -166,12 +184,17 @@ impl Replanner {
         let before = on_disk.plan().or_else(|| was.as_ref().map(|written| &written.plan));
         let mended = before.is_some_and(|plan| plan.standing != Standing::Current);
         let telling = Telling::of(job).edited(&edits, &[]).model(Some(&read.model));
+        let recorded = record.filter(|record| record.plan == plan_text && record.source == read.bytes);
         // The note on disk still holds unless there is something new to tell.
         let disk = Disk::of(&job.path);
-        let note = match disk.note() {
-            Some(note) if edits.is_empty() && !mended && plan::note::speaks_of(&note) == Some(now.seal.as_str()) => {
+        let note = match (disk.note(), recorded) {
+            (Some(note), _)
+                if edits.is_empty() && !mended && plan::note::speaks_of(&note) == Some(now.seal.as_str()) =>
+            {
                 note
             }
+            // A crash or a full disk kept it from its place when the plan was made.
+            (_, Some(recorded)) if !mended => recorded.note.clone(),
             _ => telling.note(before, Verdict::Planned(&now.plan), Some(&now.seal), None),
         };
         let record = Record {
@@ -203,6 +226,7 @@ impl Replanner {
         }
         let answer = self.desk.solve(&key, &program, || known.as_ref().and_then(|known| known.last()), &solver_stop);
         self.memory.solves(&job.path, self.number);
+        heed(stop)?;
         let Answer { outcome, account } = answer;
         let reckoning = |optimum: Option<&Optimum>| reckoning(known.as_deref(), &edits, &account, optimum);
         match outcome {
@@ -329,6 +353,11 @@ impl Replanner {
         self.memory.forget(&job.path);
         Ok(Told { report: telling.retired(), changed })
     }
+}
+
+/// Gives up where that was asked for. Nothing has been written up to here.
+fn heed(stop: &Stop) -> Result<(), Stopped> {
+    if stop.is_raised() { Err(Stopped::Interrupted) } else { Ok(()) }
 }
 
 /// What a solve was about and how it went.

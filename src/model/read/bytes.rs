@@ -13,8 +13,7 @@ use crate::model::fault::Fault;
 pub(super) fn text<'a>(path: &'a Path, bytes: &'a [u8]) -> Result<Source<'a>, Box<Fault>> {
     let whole = |code, message: String, help: &str| Box::new(Source { path, text: "" }.whole(code, message, help));
     if bytes.len() > caps::MOST_BYTES {
-        let message = format!("the file is larger than {} MiB", caps::MOST_BYTES >> 20);
-        return Err(whole("too-long", message, "split the model"));
+        return Err(Box::new(too_large(path)));
     }
     if looks_like_utf16(bytes) {
         return Err(whole("not-utf8", "the file looks like UTF-16".to_owned(), "save it as UTF-8"));
@@ -36,6 +35,12 @@ pub(super) fn text<'a>(path: &'a Path, bytes: &'a [u8]) -> Result<Source<'a>, Bo
         return Err(whole("empty-file", "the file is empty".to_owned(), "a model begins with `format = 1`"));
     }
     count(source).map_or(Ok(source), Err)
+}
+
+/// The fault of a file of more bytes than are read.
+pub(super) fn too_large(path: &Path) -> Fault {
+    let message = format!("the file is larger than {} MiB", caps::MOST_BYTES >> 20);
+    Source { path, text: "" }.whole("too-long", message, "split the model")
 }
 
 /// A fault where the text has more lines, or more words and signs, than is read.

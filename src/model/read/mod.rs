@@ -43,6 +43,12 @@ pub struct Reading {
     pub warnings: Vec<Fault>,
 }
 
+/// What is wrong with a file that [`file`] finds too large to be read: the fault that [`text`] would report.
+#[must_use]
+pub fn too_large(path: &Path) -> Faults {
+    Faults { reported: vec![bytes::too_large(path)], more: 0 }
+}
+
 /// The model that the bytes of a file spell. Pure: `path` is only repeated in faults.
 ///
 /// # Errors

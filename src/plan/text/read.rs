@@ -2,11 +2,11 @@
 
 use serde::Deserialize;
 
-use super::{HEADER, head, seal, seal_for, value_of};
+use super::{HEADER, VERSIONS, seal, seal_for, version};
 use crate::model::escape::Plain;
 use crate::model::meaning::Meaning;
 use crate::model::{Name, Value};
-use crate::plan::types::{FORMAT, Plan, PlannedActivity, PlannedLimit, PlannedResource, RULES, Standing, State};
+use crate::plan::types::{Plan, PlannedActivity, PlannedLimit, PlannedResource, Standing, State};
 
 /// A plan that was read from a file.
 #[derive(Clone, Debug, PartialEq)]
@@ -54,8 +54,7 @@ pub fn read(text: &str) -> Result<Written, PlanError> {
     if lines.next() != Some(HEADER) {
         return Err(PlanError::NotOurs);
     }
-    refuse_newer(text, "format", FORMAT)?;
-    refuse_newer(text, "rules", RULES)?;
+    VERSIONS.iter().try_for_each(|&(what, known)| refuse_newer(text, what, known))?;
     let file: File = toml::from_str(text).map_err(|error| broken(text, &error))?;
     let plan = file.plan()?;
     let seal = seal(text).unwrap_or_default().to_owned();
@@ -64,8 +63,7 @@ pub fn read(text: &str) -> Result<Written, PlanError> {
 }
 
 fn refuse_newer(text: &str, what: &'static str, known: u32) -> Result<(), PlanError> {
-    let found = head(text).find_map(|line| value_of(line, what)).and_then(|value| value.parse().ok());
-    match found {
+    match version(text, what) {
         Some(found) if found > known => Err(PlanError::Newer { what, found, known }),
         Some(_) => Ok(()),
         None => Err(PlanError::Broken(format!("it does not say its `{what}`"))),
