@@ -56,13 +56,11 @@ fn is_slack(from: &Program, basis: &Basis, key: &Key) -> bool {
 }
 
 /// Out of the basis and at 0, so that its entries move no row.
-#[expect(clippy::float_cmp, reason = "what is out of the basis stands exactly at its bound")]
 fn is_idle(from: &Program, basis: &Basis, vertex: &Vertex, key: &Key) -> bool {
     from.column(key).is_some_and(|at| basis.columns[at.0] != Position::Basic && vertex.levels[at.0] == 0.0)
 }
 
 /// Whether a new column comes in at 0: its lower bound, its only one, or what is free.
-#[expect(clippy::float_cmp, reason = "bounds are read, not computed")]
 fn rests_at_0(lower: f64, upper: f64) -> bool {
     match (lower.is_finite(), upper.is_finite()) {
         (true, _) => lower == 0.0 && upper >= 0.0,

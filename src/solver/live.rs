@@ -55,7 +55,6 @@ impl Live {
         let mut live = Self { model, columns: 0, rows: 0, stop: Box::default() };
         live.set("threads", 1)?;
         live.set("allow_unbounded_or_infeasible", false)?;
-        live.set("simplex_dual_edge_weight_strategy", 1)?;
         live.watch()?;
         live.load(program)?;
         Ok(live)
