@@ -22,8 +22,9 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path) -> Res
     logging::start(settings.log_format, settings.level(LevelFilter::TRACE, setting.common.verbose));
     tracing::info!("keeping {}", shown(dir));
     let kept = keep::keep(dir, &settings.keep, replan::factory(&settings.keep), |model, replanned| {
-        // One object per replan: a look that changed nothing is none, and what was given up or has vanished is looked at again.
-        if screen.json() && matches!(replanned, Replanned::Done(_) | Replanned::Failed { .. }) {
+        // A look that found all as it was is told too, without a start, so that a reader knows from the beginning where each model
+        // stands. What was given up or has vanished is looked at again, and told then.
+        if screen.json() && !matches!(replanned, Replanned::Interrupted | Replanned::Vanished) {
             told::object(screen, model, replanned);
         }
     });
