@@ -4,6 +4,7 @@
 //! no plan. Everything it needs to know of the past is in [`memory`], which all workers share.
 
 mod disk;
+mod hold;
 mod memory;
 mod telling;
 mod worths;
@@ -20,9 +21,9 @@ use super::scan::Stamp;
 use super::settings::Settings;
 use crate::edits::{Edit, Renames, compare};
 use crate::lp::{Program, build};
+use crate::model::Model;
 use crate::model::meaning::Meaning;
 use crate::model::read::{self, FileProblem};
-use crate::model::{Faults, Model};
 use crate::plan::note::{Reckoning, Trouble, Verdict};
 use crate::plan::text::{self, marked};
 use crate::plan::{self, Plan, Standing};
@@ -31,7 +32,7 @@ use crate::solver::message::{Account, Answer, ModelKey, Optimum, Outcome};
 use crate::solver::stop;
 use crate::solver::worker::Worker;
 use crate::store::publish::Finished;
-use crate::store::{Record, StoreError, Written};
+use crate::store::{Record, StoreError};
 
 /// Memory for live instances where the settings name no limit, in bytes.
 const MEMORY: u64 = 2 << 30;
@@ -293,71 +294,6 @@ impl Replanner {
         );
         Ok(Told { report, changed })
     }
-
-    fn hold_for(&mut self, job: &Job, faults: &Faults) -> Result<Told, Stopped> {
-        let mut told = self.hold(job, None, Trouble::Faults(faults), None)?;
-        told.report.faults = faults.reported.iter().map(Into::into).collect();
-        Ok(told)
-    }
-
-    /// There is no plan for the model as it is: the last good one stays, marked as held, and the note says why.
-    fn hold(
-        &mut self,
-        job: &Job,
-        read: Option<(&Read, &[Edit])>,
-        trouble: Trouble<'_>,
-        solved: Option<(&Reckoning, &Account)>,
-    ) -> Result<Told, Stopped> {
-        let model = read.map(|(read, _)| &read.model);
-        let reason = plan::note::reason(trouble, model);
-        let disk = Disk::of(&job.path);
-        let on_disk = disk.plan();
-        let records = self.memory.records(&job.state)?;
-        let record = records.load(job.path.relative()).ok();
-        // A plan that lies there unharmed stays; one that was edited or lost comes back from the record.
-        let last_good = match &on_disk {
-            OnDisk::Good(found) => Some(found.text.clone()),
-            _ => record.as_ref().map(|record| record.plan.clone()).filter(|plan| !plan.is_empty()),
-        };
-        let held = last_good.and_then(|text| marked(&text, &Standing::Held(reason.clone())).ok());
-        let plan = held.as_deref().and_then(|text| text::read(text).ok());
-        let telling = Telling::of(job).edited(read.map_or(&[], |(_, edits)| edits), &[]).model(model);
-        let seal = plan.as_ref().map(|written| written.seal.as_str());
-        let before = on_disk.plan().or_else(|| plan.as_ref().map(|written| &written.plan));
-        let note = telling.note(before, Verdict::Trouble(trouble), seal, solved.map(|(reckoning, _)| reckoning));
-        let changed = match held {
-            Some(held) => {
-                let record =
-                    record.unwrap_or_else(|| Record { model: job.path.relative().to_owned(), ..Record::default() });
-                disk.publish(&records, &Record { plan: held, note, ..record })?
-            }
-            None => disk.write_note(&note)? != Written::Same,
-        };
-        let report = telling.held(before, plan.as_ref().map(|written| &written.plan), reason, solved);
-        Ok(Told { report, changed })
-    }
-
-    /// The model is gone: its plan stays, marked as retired.
-    fn retire(&mut self, job: &Job) -> Result<Told, Stopped> {
-        let disk = Disk::of(&job.path);
-        let telling = Telling::of(job);
-        let mut changed = false;
-        if let OnDisk::Good(found) = disk.plan()
-            && let Ok(retired) = marked(&found.text, &Standing::Retired)
-        {
-            let seal = text::seal(&retired).map(str::to_owned);
-            let note = telling.note(Some(&found.plan), Verdict::Retired, seal.as_deref(), None);
-            changed |= disk.write_plan(&retired)? != Written::Same;
-            changed |= disk.write_note(&note)? != Written::Same;
-        }
-        self.memory.forget(&job.path);
-        Ok(Told { report: telling.retired(), changed })
-    }
-}
-
-/// Gives up where that was asked for. Nothing has been written up to here.
-fn heed(stop: &Stop) -> Result<(), Stopped> {
-    if stop.is_raised() { Err(Stopped::Interrupted) } else { Ok(()) }
 }
 
 /// What a solve was about and how it went.
@@ -392,4 +328,9 @@ fn reckoning(known: Option<&Known>, edits: &[Edit], account: &Account, optimum: 
 fn milliseconds(time: Duration) -> f64 {
     // Microseconds are as fine as anyone reads.
     (time.as_secs_f64() * 1e6).round() / 1e3
+}
+
+/// Gives up where that was asked for. Nothing has been written up to here.
+fn heed(stop: &Stop) -> Result<(), Stopped> {
+    if stop.is_raised() { Err(Stopped::Interrupted) } else { Ok(()) }
 }

@@ -17,6 +17,7 @@ const SHARE: f64 = 0.01;
 pub(super) struct Telling<'a> {
     job: &'a Job,
     file: String,
+    title: Option<&'a str>,
     model: Option<&'a Model>,
     edits: Vec<EditTold<'a>>,
 }
@@ -24,11 +25,18 @@ pub(super) struct Telling<'a> {
 impl<'a> Telling<'a> {
     pub(super) fn of(job: &'a Job) -> Self {
         let file = job.path.relative().file_name().unwrap_or_default().to_string_lossy().into_owned();
-        Self { job, file, model: None, edits: Vec::new() }
+        Self { job, file, title: None, model: None, edits: Vec::new() }
     }
 
     pub(super) fn model(mut self, model: Option<&'a Model>) -> Self {
         self.model = model;
+        self.title = model.and_then(|model| model.title.as_deref()).or(self.title);
+        self
+    }
+
+    /// Under the title the model had when it could last be read.
+    pub(super) fn titled(mut self, last: Option<&'a Model>) -> Self {
+        self.title = self.title.or(last.and_then(|model| model.title.as_deref()));
         self
     }
 
@@ -47,7 +55,7 @@ impl<'a> Telling<'a> {
         reckoning: Option<&Reckoning>,
     ) -> String {
         note::write(&note::Report {
-            title: self.model.and_then(|model| model.title.as_deref()),
+            title: self.title,
             file: &self.file,
             model: self.model,
             before,

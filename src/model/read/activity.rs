@@ -5,7 +5,7 @@ use std::collections::BTreeMap;
 use super::bounds;
 use super::fields::{Fields, Given};
 use super::findings::{Among, Cure, shown};
-use super::limit::Known;
+use super::known::Known;
 use super::number::{self, Role};
 use crate::model::name::Name;
 use crate::model::types::{Activity, Aim, Resource};

@@ -1,7 +1,7 @@
 //! How large a model may be. Each cap is far above what planning is meant for, and keeps a hostile file from taking the machine.
 
 use super::findings::{Findings, Span};
-use super::limit::Tags;
+use super::known::Tags;
 use super::toml_types::Table;
 use crate::model::types::{Model, Term};
 

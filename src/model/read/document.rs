@@ -7,7 +7,7 @@ use toml::de::DeValue;
 use super::fields::{Fields, name};
 use super::findings::{Findings, shown};
 use super::keys::{self, Keys};
-use super::limit::Known;
+use super::known::{self, Known};
 use super::number::Role;
 use super::toml_types::{Table, kind};
 use super::{activity, caps, limit, near, resource};
@@ -32,7 +32,7 @@ pub(super) fn model(root: &Table<'_>, findings: &mut Findings) -> Model {
     model.activities =
         section(root, "activities", &keys::ACTIVITY, findings, |fields| activity::read(fields, model.aim, &known));
     let known = Known { table: table(root, "activities"), names: &model.activities };
-    let tags = limit::tags(&model.activities);
+    let tags = known::tags(&model.activities);
     model.limits = section(root, "limits", &keys::LIMIT, findings, |fields| limit::read(fields, &known, &tags));
     caps::check(root, &model, &tags, findings);
     model

@@ -2,7 +2,6 @@
 
 use std::ops::Range;
 
-use super::keys::Keys;
 use super::near;
 use super::source::Source;
 use crate::model::fault::{Fault, Faults, MOST_REPORTED};
@@ -46,10 +45,10 @@ impl From<String> for Cure {
 }
 
 /// The names among which a misspelt one is looked for.
-#[derive(Clone, Copy, Debug)]
+#[derive(Clone, Debug)]
 pub(super) enum Among {
-    /// The keys of a table.
-    Keys(&'static Keys),
+    /// These words; what to say where none is near.
+    Words(Vec<&'static str>, String),
     /// The model's resources.
     Resources,
     /// The model's activities.
@@ -108,7 +107,7 @@ fn tell(finding: Finding, source: Source<'_>, model: &Model) -> Fault {
 
 fn nearest(wrong: &str, among: Among, model: &Model) -> String {
     match among {
-        Among::Keys(keys) => near::help(wrong, keys.all(), || keys.list()),
+        Among::Words(words, otherwise) => near::help(wrong, words.into_iter(), || otherwise),
         Among::Resources => near::help(wrong, model.resources.keys().map(Name::as_str), || declare("resources", wrong)),
         Among::Activities => {
             near::help(wrong, model.activities.keys().map(Name::as_str), || declare("activities", wrong))

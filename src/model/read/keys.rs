@@ -77,19 +77,19 @@ impl Keys {
             Some((_, later)) => later.refuse(&format!("`{word}`"), &key.span(), findings),
             None => {
                 let message = format!("unknown key `{}` in {}", shown(word), self.whose);
-                let cure = Cure::Nearest(shown(word), Among::Keys(self));
+                let cure = Cure::Nearest(shown(word), Among::Words(self.all().collect(), self.list()));
                 findings.add(&key.span(), "unknown-key", message, cure);
             }
         }
     }
 
     /// Every key that can be meant.
-    pub(super) fn all(&self) -> impl Iterator<Item = &'static str> {
+    fn all(&self) -> impl Iterator<Item = &'static str> {
         self.known.iter().copied().chain(self.later.iter().map(|(word, _)| *word))
     }
 
     /// The keys that are read, for a message.
-    pub(super) fn list(&self) -> String {
+    fn list(&self) -> String {
         format!("{} may have {}{}", self.whose, self.known.join(", "), self.note)
     }
 }

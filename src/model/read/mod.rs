@@ -14,6 +14,7 @@ mod fields;
 mod file;
 mod findings;
 mod keys;
+mod known;
 mod limit;
 mod near;
 mod number;

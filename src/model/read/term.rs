@@ -2,7 +2,7 @@
 
 use super::findings::{Among, Cure, Findings, shown};
 use super::keys::Later;
-use super::limit::{Known, Tags};
+use super::known::{Known, Tags};
 use super::toml_types::{Key, Node};
 use crate::model::types::{Activity, Term};
 
