@@ -1,7 +1,7 @@
 //! One replan: from the bytes of a model to its plan and note on disk.
 //!
 //! What is decided here: whether the plan on disk answers the model already; where the solve starts from; what is written when there is
-//! no plan. Everything it needs to know of the past is in [`memory`], which all workers share.
+//! no plan. Everything it needs to know of the past is in its memory, which all workers share.
 
 mod disk;
 mod hold;

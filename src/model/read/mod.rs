@@ -44,7 +44,7 @@ pub struct Reading {
     pub warnings: Vec<Fault>,
 }
 
-/// What is wrong with a file that [`file`] finds too large to be read: the fault that [`text`] would report.
+/// What is wrong with a file that [`file()`] finds too large to be read: the fault that [`text`] would report.
 #[must_use]
 pub fn too_large(path: &Path) -> Faults {
     Faults { reported: vec![bytes::too_large(path)], more: 0 }
