@@ -147,6 +147,22 @@ fn what_has_no_plan_is_proven_to_have_none() {
     }
 }
 
+/// A minimal contradiction of each, found by deletion with the solver and confirmed by it; the program of woodinfe has one only.
+#[test]
+fn contradictions_are_as_small_as_can_be() {
+    let told = |name: &str| match cold(program(name)).outcome {
+        Outcome::Infeasible(conflict) => conflict,
+        other => panic!("{name}: {other:?}"),
+    };
+    let woodinfe = told("woodinfe");
+    let sides: Vec<_> = woodinfe.rules.iter().map(|rule| (rule.key.as_str(), rule.upper)).collect();
+    assert_eq!(sides, [("limits.DMOSE", false), ("activities.DMOSE1", false)]);
+    for (name, most) in [("woodinfe", 2), ("gams10am", 21), ("galenet", 8)] {
+        let conflict = told(name);
+        assert!(conflict.minimal && conflict.rules.len() <= most, "{name}: {} rules", conflict.rules.len());
+    }
+}
+
 #[test]
 fn what_has_no_end_is_proven_to_have_none() {
     match cold(program(UNBOUNDED)).outcome {

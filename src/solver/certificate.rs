@@ -26,7 +26,7 @@ pub fn plain_contradiction(program: &Program) -> Option<Conflict> {
     let rows = program.rows.iter().filter(|r| r.lower > r.upper).flat_map(|r| crossed(&r.key, true, r.lower, r.upper));
     let rules: Vec<Rule> = columns.chain(rows).take(2).collect();
     if !rules.is_empty() {
-        return Some(Conflict { rules, proven: true });
+        return Some(Conflict { rules, proven: true, minimal: true });
     }
     let mut touched = vec![false; program.rows.len()];
     for &(row, _) in program.columns.iter().flat_map(|column| &column.entries) {
@@ -34,7 +34,7 @@ pub fn plain_contradiction(program: &Program) -> Option<Conflict> {
     }
     let broken =
         program.rows.iter().zip(touched).find(|(row, touched)| !touched && (row.lower > 0.0 || row.upper < 0.0));
-    broken.map(|(row, _)| Conflict { rules: vec![row_rule(row, row.upper < 0.0)], proven: true })
+    broken.map(|(row, _)| Conflict { rules: vec![row_rule(row, row.upper < 0.0)], proven: true, minimal: true })
 }
 
 /// The growth that `ray`, one rate per column, shows in `program`.
@@ -119,7 +119,7 @@ fn combine(program: &Program, ray: &[f64]) -> Conflict {
             rules.push(Rule { key: column.key.clone(), is_row: false, upper, bound });
         }
     }
-    Conflict { rules, proven: !endless && excess.value() > NOISE * scale }
+    Conflict { rules, proven: !endless && excess.value() > NOISE * scale, minimal: false }
 }
 
 /// What the combination of rows weighs a column with; 0 where it is all rounding.

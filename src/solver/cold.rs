@@ -66,8 +66,8 @@ pub fn solve(program: &Program, limit: Duration, stop: &Stop) -> Cold {
     }
     for rung in &LADDER {
         match climb(program, rung, limit, stop, &mut pivots) {
-            Ok(Reached::Other(Outcome::Infeasible(Conflict { proven: false, rules }))) => {
-                unproven.get_or_insert(Outcome::Infeasible(Conflict { proven: false, rules }));
+            Ok(Reached::Other(Outcome::Infeasible(conflict @ Conflict { proven: false, .. }))) => {
+                unproven.get_or_insert(Outcome::Infeasible(conflict));
             }
             Ok(Reached::Other(Outcome::Unbounded(Growth { proven: false, rates }))) => {
                 unproven.get_or_insert(Outcome::Unbounded(Growth { proven: false, rates }));

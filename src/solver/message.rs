@@ -112,6 +112,8 @@ pub struct Conflict {
     pub rules: Vec<Rule>,
     /// Whether our own arithmetic has confirmed the contradiction.
     pub proven: bool,
+    /// Whether each of the rules was found to be needed for it.
+    pub minimal: bool,
 }
 
 /// One side of a row or column that takes part in a contradiction.

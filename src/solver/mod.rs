@@ -15,6 +15,7 @@ mod let_go;
 pub mod live;
 pub mod look;
 pub mod message;
+pub mod minimal;
 pub mod opened;
 pub mod optimum;
 pub mod proof;

@@ -6,15 +6,15 @@ use std::time::{Duration, Instant};
 use super::basis::{Basis, NamedBasis, Position};
 use super::cold::{self, Cold, Reached};
 use super::look::Look;
-use super::message::{Account, Answer, Start};
-use super::optimum;
+use super::message::{Account, Answer, Outcome, Start};
 use super::stop::Stop;
 use super::vertex::Vertex;
 use super::warm::{Anchor, Run, warm};
+use super::{minimal, optimum};
 use crate::lp::Program;
 
 /// A warm run may take this share of the last cold run's iterations; past it, starting afresh is the better bet.
-const SHARE_OF_COLD: f64 = 0.3;
+const SHARE_OF_COLD: f64 = 0.2;
 
 /// A warm run may always take so many iterations.
 const PIVOTS_ALLOWED: usize = 200;
@@ -88,6 +88,9 @@ impl Session {
                 let Look { basis, vertex, .. } = *look;
                 self.anchor = Some(Anchor { program, basis, vertex, instance: Some(instance) });
                 outcome
+            }
+            Reached::Other(Outcome::Infeasible(conflict)) => {
+                Outcome::Infeasible(minimal::shrink(&program, conflict, limit, stop))
             }
             Reached::Other(outcome) => outcome,
         };

@@ -196,8 +196,11 @@ fn of_a_contradiction() {
             rule("activities.floor_tile", false, false, 5000.0),
             rule("limits.glazed_share.at_most", true, true, 0.0),
             rule("resources.kiln", true, true, 84.0),
+            // Goes without saying, and is not said.
+            rule("activities.wall_tile", false, false, 0.0),
         ],
         proven: true,
+        minimal: true,
     };
     let trouble = Trouble::Infeasible(&conflict);
     assert_eq!(

@@ -23,8 +23,9 @@ pub fn reason(trouble: Trouble<'_>, model: Option<&Model>) -> String {
         }
         Trouble::Infeasible(conflict) if conflict.rules.is_empty() => "the rules contradict each other".to_owned(),
         Trouble::Infeasible(conflict) => {
-            let rules: Vec<String> = conflict.rules.iter().take(ROWS).map(|rule| rule_told(rule, model)).collect();
-            let more = conflict.rules.len().saturating_sub(ROWS);
+            let stated = stated(conflict, model);
+            let rules: Vec<String> = stated.iter().take(ROWS).map(|rule| rule_told(rule, model)).collect();
+            let more = stated.len().saturating_sub(ROWS);
             let more = if more > 0 { format!(" and {more} more") } else { String::new() };
             format!("these cannot all be kept: {}{more}", rules.join(", "))
         }
@@ -94,17 +95,33 @@ fn conflict_told(conflict: &Conflict, model: Option<&Model>) -> String {
         return "\nWhich rules they are could not be told.\n".to_owned();
     }
     let mut out = "\n## These cannot all be kept\n\n".to_owned();
-    for rule in conflict.rules.iter().take(ROWS) {
+    let stated = stated(conflict, model);
+    for rule in stated.iter().take(ROWS) {
         out.push_str(&format!("- {}\n", Markdown(&rule_told(rule, model))));
     }
-    if conflict.rules.len() > ROWS {
-        out.push_str(&format!("- … and {} more\n", conflict.rules.len() - ROWS));
+    if stated.len() > ROWS {
+        out.push_str(&format!("- … and {} more\n", stated.len() - ROWS));
     }
-    out.push_str("\nGive way in one of them, and look again.\n");
+    out.push_str(if conflict.minimal {
+        "\nEach of them is needed for the contradiction: give way in any one, and look again.\n"
+    } else {
+        "\nGive way in one of them, and look again.\n"
+    });
     if !conflict.proven {
         out.push_str("This comes from the solver alone and has not been confirmed.\n");
     }
     out
+}
+
+/// The rules that people have stated: not that a level is at least 0, or that a prospect is not made, as long as there are others.
+fn stated<'c>(conflict: &'c Conflict, model: Option<&Model>) -> Vec<&'c Rule> {
+    let goes_without_saying = |rule: &&Rule| {
+        let is_prospect =
+            || model.and_then(|model| Some(model.activities.get(parts(&rule.key).1)?.prospect)) == Some(true);
+        !rule.is_row && rule.bound.abs() <= 0.0 && (!rule.upper || is_prospect())
+    };
+    let (silent, stated): (Vec<&Rule>, Vec<&Rule>) = conflict.rules.iter().partition(goes_without_saying);
+    if stated.is_empty() { silent } else { stated }
 }
 
 fn growth_told(growth: &Growth, model: Option<&Model>) -> String {

@@ -55,9 +55,10 @@ fn main() {
         if !names.is_empty() && !names.iter().any(|wanted| *wanted == name) {
             continue;
         }
-        let optimum = optimum(&program);
+        let (optimum, cold_pivots) = optimum(&program);
+        let base = Base { program, optimum, cold_pivots };
         for (kind, edit, _) in KINDS {
-            let measured = measure(&program, &optimum, edit, count);
+            let measured = measure(&base, edit, count);
             let (times, accounts): (Vec<Times>, Vec<(usize, usize)>) = measured.into_iter().unzip();
             if times.is_empty() {
                 println!("{name:10} {kind:22} {:5}", 0);
@@ -103,25 +104,32 @@ fn summary(all: &BTreeMap<&str, Vec<Times>>) {
     }
 }
 
-fn optimum(program: &Program) -> Optimum {
-    match Session::default().solve(program.clone(), LIMIT, &Stop::default()).outcome {
-        Outcome::Optimal(optimum) => *optimum,
+/// What is edited: a program and its optimum, found by a cold solve of so many iterations.
+struct Base {
+    program: Program,
+    optimum: Optimum,
+    cold_pivots: usize,
+}
+
+fn optimum(program: &Program) -> (Optimum, usize) {
+    let answer = Session::default().solve(program.clone(), LIMIT, &Stop::default());
+    match answer.outcome {
+        Outcome::Optimal(optimum) => (*optimum, answer.account.pivots),
         other => unreachable!("the programs have plans: {other:?}"),
     }
 }
 
 /// The times of edits that broke the optimum and left a plan, and the pivots of the start taken and of the cold one.
-fn measure(program: &Program, optimum: &Optimum, edit: edits::Edit, count: u64) -> Vec<(Times, (usize, usize))> {
+fn measure(base: &Base, edit: edits::Edit, count: u64) -> Vec<(Times, (usize, usize))> {
     let mut measured = Vec::new();
     for seed in 0..count {
-        let Some(edited) = edit(&mut Rng::new(seed + 1), program, optimum) else { continue };
-        let Some((taken, account)) = solve(program, optimum, &edited, None) else { continue };
+        let Some(edited) = edit(&mut Rng::new(seed + 1), &base.program, &base.optimum) else { continue };
+        let Some((taken, account)) = solve(base, &edited, None) else { continue };
         if account.primal_infeasible == Some(0) && account.dual_infeasible == Some(0) {
             continue;
         }
         let forced = |start| {
-            solve(program, optimum, &edited, Some(start))
-                .map_or((f64::INFINITY, 0), |(time, account)| (time, account.pivots))
+            solve(base, &edited, Some(start)).map_or((f64::INFINITY, 0), |(time, account)| (time, account.pivots))
         };
         let (cold, cold_pivots) = forced(Start::Cold);
         let times = Times {
@@ -129,7 +137,7 @@ fn measure(program: &Program, optimum: &Optimum, edit: edits::Edit, count: u64) 
             primal: forced(Start::Primal).0,
             dual: forced(Start::Dual).0,
             cold,
-            default: by_default(program, optimum, &edited),
+            default: by_default(base, &edited),
         };
         measured.push((times, (account.pivots, cold_pivots)));
     }
@@ -137,10 +145,11 @@ fn measure(program: &Program, optimum: &Optimum, edit: edits::Edit, count: u64) 
 }
 
 /// The least time of a solve of `edited` from the live optimum of `program`, with its account; `None` where it has no plan.
-fn solve(program: &Program, optimum: &Optimum, edited: &Program, insisted: Option<Start>) -> Option<(f64, Account)> {
+fn solve(base: &Base, edited: &Program, insisted: Option<Start>) -> Option<(f64, Account)> {
+    let Base { program, optimum, cold_pivots } = base;
     let mut least: Option<(f64, Account)> = None;
     for _ in 0..REPEATS {
-        let mut session = Session::remembered(program.clone(), &optimum.basis.named(program), Some(COLD_PIVOTS));
+        let mut session = Session::remembered(program.clone(), &optimum.basis.named(program), Some(*cold_pivots));
         // Live, as after a first replan.
         session.solve(program.clone(), LIMIT, &Stop::default());
         session.insist(insisted);
@@ -154,11 +163,9 @@ fn solve(program: &Program, optimum: &Optimum, edited: &Program, insisted: Optio
     least
 }
 
-/// What the last cold solve is said to have taken, for the cap on warm ones: about what these programs take.
-const COLD_PIVOTS: usize = 2_000;
-
 /// The least time of the solver's own warm start, with its default settings, from the same basis.
-fn by_default(program: &Program, optimum: &Optimum, edited: &Program) -> f64 {
+fn by_default(base: &Base, edited: &Program) -> f64 {
+    let Base { program, optimum, .. } = base;
     let difference = Difference::between(program, edited);
     let times = (0..REPEATS).map(|_| {
         let mut instance = Instance::new(program).unwrap();
