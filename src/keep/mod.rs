@@ -20,6 +20,6 @@ pub mod watch;
 pub use once::{OnceError, once};
 pub use path::{Ignore, IgnoreError, ModelPath};
 pub use pool::{Factory, Job, Planner, Replanned, Stop, What};
-pub use report::{FaultLine, Milliseconds, Report};
+pub use report::{FaultLine, Infeasible, Milliseconds, Report};
 pub use run::{KeepError, keep, keep_until};
 pub use settings::{By, Pace, Settings};

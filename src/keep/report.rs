@@ -31,8 +31,12 @@ pub struct Report {
     pub start: Option<&'static str>,
     /// The start that the kinds of edit foretold.
     pub expected_start: Option<String>,
+    /// What the last basis broke under the new data; none where there was no basis to look at.
+    pub infeasible: Option<Infeasible>,
     /// Simplex iterations.
     pub pivots: usize,
+    /// Whether a warm run was given up for taking more iterations than a fresh solve is worth.
+    pub capped: bool,
     /// Where the time went.
     pub milliseconds: Milliseconds,
     /// Activities that entered the mix.
@@ -45,6 +49,15 @@ pub struct Report {
     pub events: Vec<Event>,
     /// What is wrong with the model.
     pub faults: Vec<FaultLine>,
+}
+
+/// How far the last basis was from feasible, by our own count.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize)]
+pub struct Infeasible {
+    /// Bounds broken.
+    pub primal: usize,
+    /// Levels that could still improve the aim.
+    pub dual: usize,
 }
 
 /// Where the time of a replan went, in milliseconds.
@@ -187,7 +200,9 @@ mod tests {
             "edit",
             "start",
             "expected_start",
+            "infeasible",
             "pivots",
+            "capped",
             "milliseconds",
             "entered",
             "left",

@@ -2,7 +2,7 @@
 
 use crate::edits::Edit;
 use crate::keep::pool::Job;
-use crate::keep::report::Report;
+use crate::keep::report::{Infeasible, Report};
 use crate::model::Model;
 use crate::plan::compare::{Event, events, standing_event};
 use crate::plan::note::{self, EditTold, Reckoning, Verdict};
@@ -144,6 +144,9 @@ fn worked_out(report: &mut Report, solved: Option<(&Reckoning, &Account)>) {
         Some(solved.map_or(Start::None.word().to_owned(), |(reckoning, _)| reckoning.expected.clone()));
     if let Some((_, account)) = solved {
         report.pivots = account.pivots;
+        report.capped = account.capped;
+        report.infeasible =
+            account.primal_infeasible.zip(account.dual_infeasible).map(|(primal, dual)| Infeasible { primal, dual });
         report.milliseconds.solve = super::milliseconds(account.time + account.reading);
     }
 }
