@@ -1,7 +1,7 @@
 #!/bin/sh
 # Installs what building Millreeve needs and this machine lacks: a C++ compiler, make, cmake and libclang for the solver, and
 # Rust. On Debian and Ubuntu by apt-get (with sudo, unless run as root); elsewhere it names what is missing. Where nothing is
-# missing it says and does nothing.
+# missing it says and does nothing. Arguments name further programs, each a package of the same name: `git`, for the tests.
 set -eu
 cd "$(dirname "$0")/.."
 PATH=$PATH:${CARGO_HOME:-$HOME/.cargo}/bin
@@ -34,6 +34,9 @@ need() { # need PACKAGE WORDS
     missing="$missing
   - $2"
 }
+for program in "$@"; do
+    have "$program" || need "$program" "$program"
+done
 have c++ || need g++ "a C++ compiler (c++)"
 have make || need make "make"
 have cmake || need cmake "cmake"
