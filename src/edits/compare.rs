@@ -39,12 +39,13 @@ fn compared(old: &Model, new: &Model) -> Edits {
 /// What was there and what is.
 type Pair<'a, T> = (Option<&'a T>, Option<&'a T>);
 
-fn pairs<'a, T>(
+/// What differs between two maps, by name.
+fn pairs<'a, T: PartialEq>(
     old: &'a BTreeMap<Name, T>,
     new: &'a BTreeMap<Name, T>,
 ) -> impl Iterator<Item = (&'a Name, Pair<'a, T>)> {
     let names: BTreeSet<&Name> = old.keys().chain(new.keys()).collect();
-    names.into_iter().map(move |name| (name, (old.get(name), new.get(name))))
+    names.into_iter().map(move |name| (name, (old.get(name), new.get(name)))).filter(|(_, (was, is))| was != is)
 }
 
 /// The tags that limits ask for, before or after.

@@ -5,7 +5,7 @@ mod read;
 mod write;
 
 pub use mark::marked;
-pub use read::{PlanError, Written, read};
+pub use read::{Head, PlanError, Written, read, read_head};
 pub use write::write;
 
 use super::types::{FORMAT, RULES};

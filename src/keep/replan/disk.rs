@@ -1,10 +1,11 @@
 //! The plan and the note as they lie on disk.
 
+use std::cell::OnceCell;
 use std::io::Read as _;
 use std::path::{Path, PathBuf};
 
 use crate::keep::path::ModelPath;
-use crate::plan::text::{self, is_ours};
+use crate::plan::text::{self, Head, is_ours};
 use crate::plan::{Plan, Standing};
 use crate::store::publish::{self, Finished};
 use crate::store::{Durability, Output, Outputs, Record, Records, StoreError, Written, atomic};
@@ -26,22 +27,33 @@ pub(super) enum OnDisk {
     Nothing,
 }
 
-/// A plan on disk.
+/// A plan on disk. Its tables are read only if somebody asks for them.
 pub(super) struct Found {
-    pub(super) plan: Plan,
+    pub(super) head: Head,
     pub(super) text: String,
+    plan: OnceCell<Option<Plan>>,
+}
+
+impl Found {
+    /// The plan it says.
+    pub(super) fn plan(&self) -> Option<&Plan> {
+        self.plan.get_or_init(|| text::read(&self.text).ok().map(|written| written.plan)).as_ref()
+    }
 }
 
 impl OnDisk {
     pub(super) fn plan(&self) -> Option<&Plan> {
         match self {
-            Self::Good(found) => Some(&found.plan),
+            Self::Good(found) => found.plan(),
             Self::Nothing => None,
         }
     }
 
     pub(super) fn standing(&self) -> Option<Standing> {
-        self.plan().map(|plan| plan.standing.clone())
+        match self {
+            Self::Good(found) => Some(found.head.standing.clone()),
+            Self::Nothing => None,
+        }
     }
 }
 
@@ -57,9 +69,9 @@ impl Disk {
     /// The plan on disk, if it can be gone by. What cannot be read counts as nothing; writing will say why.
     pub(super) fn plan(&self) -> OnDisk {
         let text = text_of(&self.plan);
-        let written = text.as_deref().and_then(|text| text::read(text).ok()).filter(|written| written.sealed);
-        match (text, written) {
-            (Some(text), Some(written)) => OnDisk::Good(Box::new(Found { plan: written.plan, text })),
+        let head = text.as_deref().and_then(|text| text::read_head(text).ok()).filter(|head| head.sealed);
+        match (text, head) {
+            (Some(text), Some(head)) => OnDisk::Good(Box::new(Found { head, text, plan: OnceCell::new() })),
             _ => OnDisk::Nothing,
         }
     }

@@ -69,7 +69,7 @@ impl Replanner {
             && let Ok(retired) = marked(&found.text, &Standing::Retired)
         {
             let seal = text::seal(&retired).map(str::to_owned);
-            let note = telling.note(Some(&found.plan), Verdict::Retired, seal.as_deref(), None);
+            let note = telling.note(found.plan(), Verdict::Retired, seal.as_deref(), None);
             changed |= disk.write_plan(&retired)? != Written::Same;
             changed |= disk.write_note(&note)? != Written::Same;
         }

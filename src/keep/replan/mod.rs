@@ -172,7 +172,7 @@ impl Replanner {
     ) -> Result<Option<Told>, Stopped> {
         let answers = read.meaning.to_string();
         let plan_text = match on_disk {
-            OnDisk::Good(found) if found.plan.answers == read.meaning => found.text.clone(),
+            OnDisk::Good(found) if found.head.answers == read.meaning => found.text.clone(),
             _ => match record {
                 Some(record) if record.answers == answers && !record.plan.is_empty() => record.plan.clone(),
                 _ => return Ok(None),

@@ -43,6 +43,32 @@ pub enum PlanError {
     Edited,
 }
 
+/// What the first lines of a plan say: enough to decide whether it answers a model, without reading the rest.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Head {
+    /// Hash of the meaning of the model that it answers.
+    pub answers: Meaning,
+    /// Whether it may be worked to.
+    pub standing: Standing,
+    /// The seal the file carries.
+    pub seal: String,
+    /// Whether the seal is right: what follows is what was written.
+    pub sealed: bool,
+}
+
+/// The head of the plan that `text` says.
+///
+/// # Errors
+/// As [`read`], for the lines before the first table.
+pub fn read_head(text: &str) -> Result<Head, PlanError> {
+    ours_and_known(text)?;
+    let end = text.find("\n[").map_or(text.len(), |at| at + 1);
+    let lines: HeadLines = toml::from_str(&text[..end]).map_err(|error| broken(text, &error))?;
+    let (answers, standing) = (meaning_of(&lines.answers)?, standing_of(&lines.standing, lines.held)?);
+    let sealed = lines.seal == seal_for(text);
+    Ok(Head { answers, standing, seal: lines.seal, sealed })
+}
+
 /// The plan that `text` says.
 ///
 /// A plan whose seal does not fit is still read; [`Written::sealed`] tells.
@@ -50,16 +76,32 @@ pub enum PlanError {
 /// # Errors
 /// Says that the text is not ours, comes from a newer version, or is no whole plan.
 pub fn read(text: &str) -> Result<Written, PlanError> {
-    let mut lines = text.lines();
-    if lines.next() != Some(HEADER) {
-        return Err(PlanError::NotOurs);
-    }
-    VERSIONS.iter().try_for_each(|&(what, known)| refuse_newer(text, what, known))?;
+    ours_and_known(text)?;
     let file: File = toml::from_str(text).map_err(|error| broken(text, &error))?;
     let plan = file.plan()?;
     let seal = seal(text).unwrap_or_default().to_owned();
     let sealed = seal == seal_for(text);
     Ok(Written { plan, seal, sealed })
+}
+
+fn ours_and_known(text: &str) -> Result<(), PlanError> {
+    if text.lines().next() != Some(HEADER) {
+        return Err(PlanError::NotOurs);
+    }
+    VERSIONS.iter().try_for_each(|&(what, known)| refuse_newer(text, what, known))
+}
+
+fn meaning_of(text: &str) -> Result<Meaning, PlanError> {
+    Meaning::parse(text).ok_or_else(|| PlanError::Broken("its `answers` is no hash of a meaning".to_owned()))
+}
+
+fn standing_of(word: &str, held: Option<String>) -> Result<Standing, PlanError> {
+    match (word, held) {
+        ("current", None) => Ok(Standing::Current),
+        ("retired", None) => Ok(Standing::Retired),
+        ("held", Some(reason)) => Ok(Standing::Held(reason)),
+        _ => Err(PlanError::Broken("its `standing` and `held` do not fit together".to_owned())),
+    }
 }
 
 fn refuse_newer(text: &str, what: &'static str, known: u32) -> Result<(), PlanError> {
@@ -75,6 +117,14 @@ fn broken(text: &str, error: &toml::de::Error) -> PlanError {
     let line = error.span().map_or(1, |span| 1 + text.bytes().take(span.start).filter(|&byte| byte == b'\n').count());
     let message: String = error.message().chars().take(200).collect();
     PlanError::Broken(format!("line {line}: {}", Plain(&message)))
+}
+
+#[derive(Deserialize)]
+struct HeadLines {
+    answers: String,
+    seal: String,
+    standing: String,
+    held: Option<String>,
 }
 
 #[derive(Deserialize)]
@@ -156,14 +206,7 @@ impl From<Numbers> for Value {
 
 impl File {
     fn plan(self) -> Result<Plan, PlanError> {
-        let standing = match (self.standing.as_str(), self.held) {
-            ("current", None) => Standing::Current,
-            ("retired", None) => Standing::Retired,
-            ("held", Some(reason)) => Standing::Held(reason),
-            _ => return Err(PlanError::Broken("its `standing` and `held` do not fit together".to_owned())),
-        };
-        let answers = Meaning::parse(&self.answers)
-            .ok_or_else(|| PlanError::Broken("its `answers` is no hash of a meaning".to_owned()))?;
+        let (standing, answers) = (standing_of(&self.standing, self.held)?, meaning_of(&self.answers)?);
         let activities = self.activities.into_iter().map(ActivityEntry::planned).collect::<Result<Vec<_>, _>>()?;
         let resources = self.resources.into_iter().map(ResourceEntry::planned).collect::<Result<Vec<_>, _>>()?;
         let limits = self.limits.into_iter().map(LimitEntry::planned).collect::<Result<Vec<_>, _>>()?;
