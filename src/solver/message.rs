@@ -112,7 +112,7 @@ pub struct Conflict {
     pub rules: Vec<Rule>,
     /// Whether our own arithmetic has confirmed the contradiction.
     pub proven: bool,
-    /// Whether each of the rules was found to be needed for it.
+    /// Whether each of the rules was found to be needed for it, those aside that a level is at least 0.
     pub minimal: bool,
 }
 
