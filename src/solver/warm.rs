@@ -159,6 +159,10 @@ fn settle(
         return Ok(Settled::Optimal(Box::new(look)));
     }
     let chosen = run.insisted.unwrap_or(look.start());
+    if account.start == Start::None {
+        // The last basis was optimal on the way, and what was let go gives it something to gain after all.
+        account.start = chosen;
+    }
     let other = if chosen == Start::Primal { Start::Dual } else { Start::Primal };
     for variant in [chosen, other] {
         let ending = simplex(instance, variant, run, account).map_err(|_| "the solver refused its options")?;

@@ -60,8 +60,8 @@ pub(crate) fn write(path: &Path, bytes: impl AsRef<[u8]>) {
     fs::File::create(path).unwrap().write_all(bytes.as_ref()).unwrap();
 }
 
-/// Waits within a writer: part of the scenario, never a wait for the daemon.
-#[expect(clippy::disallowed_methods, reason = "a slow writer is what is tested")]
+/// Waits within a writer, as part of the scenario, or between two looks of a bounded loop; never in the hope that something has happened.
+#[expect(clippy::disallowed_methods, reason = "a slow writer is what is tested, and looks are spaced")]
 pub(crate) fn pause(milliseconds: u64) {
     std::thread::sleep(Duration::from_millis(milliseconds));
 }

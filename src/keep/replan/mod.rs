@@ -19,7 +19,7 @@ use super::pool::{Factory, Job, Planner, Replanned, Stop, What};
 use super::report::Report;
 use super::scan::Stamp;
 use super::settings::Settings;
-use crate::edits::{Edit, Renames, compare};
+use crate::edits::{Edit, Kept, Renames, compare};
 use crate::lp::{Program, build};
 use crate::model::Model;
 use crate::model::meaning::Meaning;
@@ -28,7 +28,7 @@ use crate::plan::note::{Reckoning, Trouble, Verdict};
 use crate::plan::text::{self, marked};
 use crate::plan::{self, Plan, Standing};
 use crate::solver::desk::Desk;
-use crate::solver::message::{Account, Answer, ModelKey, Optimum, Outcome};
+use crate::solver::message::{Account, Answer, ModelKey, Optimum, Outcome, Start};
 use crate::solver::stop;
 use crate::solver::worker::Worker;
 use crate::store::publish::Finished;
@@ -311,7 +311,9 @@ fn reckoning(known: Option<&Known>, edits: &[Edit], account: &Account, optimum: 
     kinds.dedup();
     let expected = match known {
         Some(known) if known.basis.is_some() => known.last_plan().kept(edits).expected(),
-        _ => "cold",
+        // The plan was found, not made; the solver may still know an older version of the model to start from.
+        _ if account.primal_infeasible.is_some() => Kept::Neither.expected(),
+        _ => Start::Cold.word(),
     };
     Reckoning {
         kinds,
