@@ -10,4 +10,4 @@ pub mod program;
 
 pub use build::build;
 pub use difference::Difference;
-pub use program::{Column, ColumnIndex, Key, Program, Row, RowIndex, Sense};
+pub use program::{Column, ColumnIndex, Key, Program, Row, RowIndex, Sense, places};

@@ -1,13 +1,35 @@
 //! A linear program: columns and rows known by name, with a sparse matrix.
 
+use std::cmp::Ordering;
 use std::fmt;
 use std::sync::Arc;
 
 /// The name of a column or row: the address of what it stands for, such as `activities.floor_tile` or `resources.kiln`.
 ///
 /// A basis, a difference and a plan refer to columns and rows by key, never by position, so they survive reordering.
-#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+#[derive(Clone, Debug)]
 pub struct Key(Arc<str>);
+
+impl Ord for Key {
+    /// Byte order. What an edit leaves alone is shared by the programs before and after it, and equal without a look at its bytes.
+    fn cmp(&self, other: &Self) -> Ordering {
+        if Arc::ptr_eq(&self.0, &other.0) { Ordering::Equal } else { self.0.cmp(&other.0) }
+    }
+}
+
+impl PartialOrd for Key {
+    fn partial_cmp(&self, other: &Self) -> Option<Ordering> {
+        Some(self.cmp(other))
+    }
+}
+
+impl PartialEq for Key {
+    fn eq(&self, other: &Self) -> bool {
+        Arc::ptr_eq(&self.0, &other.0) || self.0 == other.0
+    }
+}
+
+impl Eq for Key {}
 
 impl Key {
     /// The key that `text` spells.
@@ -97,6 +119,26 @@ pub struct Program {
     pub columns: Vec<Column>,
     /// The rows, in byte order of keys.
     pub rows: Vec<Row>,
+}
+
+/// Where each of `to` stands in `from`, both lists in order of their keys.
+#[must_use]
+pub fn places<T>(from: &[T], to: &[T], key: impl Fn(&T) -> &Key) -> Vec<Option<usize>> {
+    let mut next = 0;
+    let place = |item: &T| {
+        while next < from.len() {
+            match key(&from[next]).cmp(key(item)) {
+                Ordering::Less => next += 1,
+                Ordering::Equal => {
+                    next += 1;
+                    return Some(next - 1);
+                }
+                Ordering::Greater => return None,
+            }
+        }
+        None
+    };
+    to.iter().map(place).collect()
 }
 
 impl Program {

@@ -5,7 +5,7 @@ use std::collections::BTreeMap;
 use super::batch::Batch;
 use super::instance::Instance;
 use super::live::Refusal;
-use crate::lp::{Difference, Key, Program};
+use crate::lp::{Difference, Key, Program, places};
 
 /// Turns `from`, which `instance` holds, into `to`, as `difference` says.
 ///
@@ -57,22 +57,13 @@ fn close_up(map: &mut [usize], gone: &[usize]) {
 }
 
 fn carry(instance: &Instance, from: &Program, to: &Program) -> Carried {
-    let columns = to.columns.iter().scan(0, |next, column| {
-        Some(advance(&from.columns, next, &column.key, |column| &column.key).map(|at| instance.columns[at]))
-    });
-    let rows = to
-        .rows
-        .iter()
-        .scan(0, |next, row| Some(advance(&from.rows, next, &row.key, |row| &row.key).map(|at| instance.rows[at])));
-    Carried { columns: columns.collect(), rows: rows.collect() }
-}
-
-/// Finds `key` in a sorted list by going on from `next`: keys are asked for in ascending order.
-fn advance<T>(list: &[T], next: &mut usize, key: &Key, key_of: impl Fn(&T) -> &Key) -> Option<usize> {
-    while list.get(*next).is_some_and(|item| key_of(item) < key) {
-        *next += 1;
+    let lie = |places: Vec<Option<usize>>, map: &[usize]| -> Vec<Option<usize>> {
+        places.into_iter().map(|place| place.map(|at| map[at])).collect()
+    };
+    Carried {
+        columns: lie(places(&from.columns, &to.columns, |column| &column.key), &instance.columns),
+        rows: lie(places(&from.rows, &to.rows, |row| &row.key), &instance.rows),
     }
-    list.get(*next).is_some_and(|item| key_of(item) == key).then_some(*next)
 }
 
 fn numbers(instance: &mut Instance, to: &Program, carried: &Carried, difference: &Difference) -> Result<(), Refusal> {

@@ -5,7 +5,7 @@
 
 use super::basis::{Basis, Position};
 use super::vertex::Vertex;
-use crate::lp::{Difference, Key, Program};
+use crate::lp::{Difference, Key, Program, places};
 
 /// The vertex of the last basis in `to`, if it is just that of `from`; `None` where it must be recomputed.
 pub(super) fn vertex(
@@ -29,13 +29,19 @@ pub(super) fn vertex(
 fn carried(from: &Program, vertex: &Vertex, to: &Program, difference: &Difference) -> Vertex {
     let same_columns = difference.added_columns.is_empty() && difference.removed_columns.is_empty();
     let same_rows = difference.added_rows.is_empty() && difference.removed_rows.is_empty();
-    let level = |key: &Key| from.column(key).map_or(0.0, |at| vertex.levels[at.0]);
-    let worth = |key: &Key| from.row(key).map_or(0.0, |at| vertex.worths[at.0]);
-    let carried =
-        |same: bool, old: &[f64], new: &mut dyn Iterator<Item = f64>| if same { old.to_vec() } else { new.collect() };
+    let moved =
+        |old: &[f64], places: Vec<Option<usize>>| places.into_iter().map(|at| at.map_or(0.0, |at| old[at])).collect();
     Vertex {
-        levels: carried(same_columns, &vertex.levels, &mut to.columns.iter().map(|column| level(&column.key))),
-        worths: carried(same_rows, &vertex.worths, &mut to.rows.iter().map(|row| worth(&row.key))),
+        levels: if same_columns {
+            vertex.levels.clone()
+        } else {
+            moved(&vertex.levels, places(&from.columns, &to.columns, |column| &column.key))
+        },
+        worths: if same_rows {
+            vertex.worths.clone()
+        } else {
+            moved(&vertex.worths, places(&from.rows, &to.rows, |row| &row.key))
+        },
     }
 }
 
