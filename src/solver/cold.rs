@@ -6,14 +6,11 @@ use super::certificate;
 use super::findings::Ending;
 use super::instance::Instance;
 use super::live::Refusal;
-use super::look::Look;
+use super::look::{Look, is_flat};
 use super::message::{Conflict, Growth, Outcome};
 use super::proof::TOLERANCE;
 use super::stop::Stop;
 use crate::lp::Program;
-
-/// A program with so many times more columns than rows is flat.
-const FLAT: usize = 20;
 
 /// The solver's number for Devex edge weights.
 const DEVEX: i32 = 1;
@@ -130,10 +127,14 @@ pub fn ready(program: &Program) -> Result<Instance, Refusal> {
     let mut instance = Instance::new(program)?;
     instance.live.set("primal_feasibility_tolerance", TOLERANCE)?;
     instance.live.set("dual_feasibility_tolerance", TOLERANCE)?;
+    // Perturbed numbers have to be put right again at the end, which takes a run of a few pivots longer than it is; a run that stalls
+    // without them meets its cap.
+    instance.live.set("dual_simplex_cost_perturbation_multiplier", 0.0)?;
+    instance.live.set("primal_simplex_bound_perturbation_multiplier", 0.0)?;
     // Read at the first run of an instance only. Exact steepest-edge weights take a solve per row at every warm start, which Devex
     // spares; where rows are few and columns many they are cheap and save many iterations.
-    let flat = program.rows.len() * FLAT < program.columns.len();
-    instance.live.set("simplex_dual_edge_weight_strategy", if flat { CHOSEN_BY_THE_SOLVER } else { DEVEX })?;
+    let weights = if is_flat(program) { CHOSEN_BY_THE_SOLVER } else { DEVEX };
+    instance.live.set("simplex_dual_edge_weight_strategy", weights)?;
     Ok(instance)
 }
 

@@ -53,9 +53,12 @@ impl Look {
 
     /// The start that the measured infeasibilities call for; where both are nil and the proof fails all the same, primal simplex has the least to mend.
     #[must_use]
-    pub fn start(&self) -> Start {
+    pub fn start(&self, program: &Program) -> Start {
         match (self.primal, self.dual) {
             (0, 0) if self.is_optimal() => Start::None,
+            // On a flat program a price can leave more gains than there are rows. Primal simplex then wanders (measured: past a fifth of
+            // a cold solve in 3 of 16); dual simplex starts by moving what has two bounds to the other one.
+            (0, broken) if is_flat(program) && broken > program.rows.len() => Start::Dual,
             (0, _) => Start::Primal,
             // Neither is feasible: measured on changed coefficients of basic columns and on several edits at once, dual simplex,
             // which mends the gains on the way, does better than primal simplex.
@@ -77,6 +80,14 @@ impl Look {
             self.dual += usize::from(improves(self.basis.rows[at], row.lower, row.upper, cost));
         }
     }
+}
+
+/// A program with so many times more columns than rows is flat.
+const FLAT: usize = 20;
+
+/// Whether rows are few for the columns there are.
+pub(super) fn is_flat(program: &Program) -> bool {
+    program.rows.len() * FLAT < program.columns.len()
 }
 
 /// Whether a value breaks a bound by more than its rounding, as the proof measures it.

@@ -5,7 +5,7 @@ use std::time::{Duration, Instant};
 
 use super::basis::{Basis, NamedBasis, Position};
 use super::cold::{self, Cold, Reached};
-use super::look::Look;
+use super::look::{Look, is_flat};
 use super::message::{Account, Answer, Outcome, Start};
 use super::stop::Stop;
 use super::vertex::Vertex;
@@ -13,8 +13,12 @@ use super::warm::{Anchor, Run, warm};
 use super::{minimal, optimum};
 use crate::lp::Program;
 
-/// A warm run may take this share of the last cold run's iterations; past it, starting afresh is the better bet.
-const SHARE_OF_COLD: f64 = 0.2;
+/// A warm run may take this share of the last cold run's iterations; past it, starting afresh is the better bet: without presolve an
+/// iteration may cost twice what it does in a cold run.
+const SHARE_OF_COLD: f64 = 0.15;
+
+/// The same where rows are few and iterations cheap.
+const SHARE_OF_COLD_IF_FLAT: f64 = 0.2;
 
 /// A warm run may always take so many iterations.
 const PIVOTS_ALLOWED: usize = 200;
@@ -103,7 +107,7 @@ impl Session {
     fn reach(&mut self, program: &Arc<Program>, limit: Duration, stop: &Stop, account: &mut Account) -> Reached {
         if let Some(mut anchor) = self.anchor.take() {
             if self.insisted != Some(Start::Cold) {
-                let run = Run { limit, stop, cap: self.cap(), insisted: self.insisted };
+                let run = Run { limit, stop, cap: self.cap(program), insisted: self.insisted };
                 match warm(&mut anchor, program, &run, account) {
                     Ok(Reached::Optimal(instance, look)) => return Reached::Optimal(instance, look),
                     Ok(Reached::Other(outcome)) => {
@@ -127,7 +131,8 @@ impl Session {
         end
     }
 
-    fn cap(&self) -> usize {
+    fn cap(&self, program: &Program) -> usize {
+        let share_of_cold = if is_flat(program) { SHARE_OF_COLD_IF_FLAT } else { SHARE_OF_COLD };
         let share = |pivots: usize| {
             #[expect(
                 clippy::cast_precision_loss,
@@ -135,7 +140,7 @@ impl Session {
                 clippy::cast_sign_loss,
                 reason = "a rough share of a count"
             )]
-            let share = (pivots as f64 * SHARE_OF_COLD) as usize;
+            let share = (pivots as f64 * share_of_cold) as usize;
             share.max(PIVOTS_ALLOWED)
         };
         self.cold_pivots.map_or(usize::MAX, share)

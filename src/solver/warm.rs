@@ -10,13 +10,16 @@ use super::findings::Ending;
 use super::instance::Instance;
 use super::let_go::let_go;
 use super::live::Refusal;
-use super::look::Look;
+use super::look::{Look, is_flat};
 use super::message::{Account, Outcome, Start};
 use super::soft::on_the_way;
 use super::stop::Stop;
 use super::vertex::Vertex;
 use super::{certificate, inherit, opened};
 use crate::lp::{Difference, Program};
+
+/// The reason given where a run met its cap.
+const TOO_LONG: &str = "more pivots than a fresh solve is worth";
 
 /// What the next solve starts from: a program, a basis of it, and its vertex.
 pub(super) struct Anchor {
@@ -109,7 +112,7 @@ fn begin(
     run: &Run<'_>,
     account: &mut Account,
 ) -> Result<Settled, &'static str> {
-    account.start = first.start();
+    account.start = first.start(program);
     account.primal_infeasible = Some(first.primal);
     account.dual_infeasible = Some(first.dual);
     let settled = settle(instance, program, first, run, account)?;
@@ -158,14 +161,15 @@ fn settle(
     if look.is_optimal() {
         return Ok(Settled::Optimal(Box::new(look)));
     }
-    let chosen = run.insisted.unwrap_or(look.start());
+    let chosen = run.insisted.unwrap_or_else(|| look.start(program));
     if account.start == Start::None {
         // The last basis was optimal on the way, and what was let go gives it something to gain after all.
         account.start = chosen;
     }
     let other = if chosen == Start::Primal { Start::Dual } else { Start::Primal };
+    let mut cap = run.cap;
     for variant in [chosen, other] {
-        let ending = simplex(instance, variant, run, account).map_err(|_| "the solver refused its options")?;
+        let ending = simplex(instance, variant, cap, run, account).map_err(|_| "the solver refused its options")?;
         match ending {
             Ending::Optimal => {
                 let look = Look::at(instance, program).map_err(|_| "the basis reached could not be factorised")?;
@@ -177,7 +181,13 @@ fn settle(
             Ending::Stopped => return Ok(Settled::Other(Outcome::Interrupted)),
             Ending::OutOfPivots => {
                 account.capped = true;
-                return Err("more pivots than a fresh solve is worth");
+                if variant == other || !is_flat(program) {
+                    return Err(TOO_LONG);
+                }
+                // Where rows are few a pivot costs little, and either variant may wander where the other goes straight.
+                account.detours.push(TOO_LONG);
+                cap += run.cap;
+                instance.set_basis(&look.basis).map_err(|_| "the last basis could not be brought back")?;
             }
             Ending::OutOfTime => return Err("the time limit"),
             Ending::Infeasible => {
@@ -200,8 +210,14 @@ fn settle(
     Err("neither simplex variant got there")
 }
 
-fn simplex(instance: &mut Instance, variant: Start, run: &Run<'_>, account: &mut Account) -> Result<Ending, Refusal> {
-    let left = run.cap.saturating_sub(account.pivots);
+fn simplex(
+    instance: &mut Instance,
+    variant: Start,
+    cap: usize,
+    run: &Run<'_>,
+    account: &mut Account,
+) -> Result<Ending, Refusal> {
+    let left = cap.saturating_sub(account.pivots);
     instance.live.set("simplex_strategy", if variant == Start::Primal { 4 } else { 1 })?;
     instance.live.set("simplex_iteration_limit", i32::try_from(left).unwrap_or(i32::MAX))?;
     instance.live.set("time_limit", run.limit.as_secs_f64())?;
