@@ -48,8 +48,18 @@ fn main() {
     let names: Vec<&String> = words.iter().filter(|word| word.parse::<u64>().is_err()).collect();
     let mut all: BTreeMap<&str, Vec<Times>> = BTreeMap::new();
     println!(
-        "{:10} {:22} {:>5} {:>8} {:>10} {:>12} {:>12} {:>12}",
-        "program", "edit", "broke", "taken ms", "cold/taken", "default/taken", "pivots", "cold pivots"
+        "{:10} {:22} {:>5} {:>8} {:>10} {:>13} {:>12} {:>10} {:>10} {:>7} {:>11}",
+        "program",
+        "edit",
+        "broke",
+        "taken ms",
+        "cold/taken",
+        "default/taken",
+        "primal/taken",
+        "dual/taken",
+        "worst",
+        "pivots",
+        "cold pivots"
     );
     for (name, program) in programs::programs() {
         if !names.is_empty() && !names.iter().any(|wanted| *wanted == name) {
@@ -67,13 +77,14 @@ fn main() {
             let pivots = mean(accounts.iter().map(|pivots| pivots.0 as f64 + 1.0)) - 1.0;
             let cold_pivots = mean(accounts.iter().map(|pivots| pivots.1 as f64 + 1.0)) - 1.0;
             println!(
-                "{name:10} {kind:22} {:5} {:8.2} {:10.1} {:12.1} {:12.1} {:12.1} {pivots:13.1} {cold_pivots:10.1}",
+                "{name:10} {kind:22} {:5} {:8.2} {:10.1} {:13.2} {:12.1} {:10.1} {:10.2} {pivots:7.1} {cold_pivots:11.1}",
                 times.len(),
                 1e3 * mean(times.iter().map(|t| t.taken)),
                 mean(times.iter().map(|t| t.cold / t.taken)),
                 mean(times.iter().map(|t| t.default / t.taken)),
                 mean(times.iter().map(|t| t.primal / t.taken)),
                 mean(times.iter().map(|t| t.dual / t.taken)),
+                worst(&times),
             );
             all.entry(kind).or_default().extend(times);
         }
@@ -99,7 +110,7 @@ fn summary(all: &BTreeMap<&str, Vec<Times>>) {
             mean(times.iter().map(|t| t.default / t.taken)),
             mean(regrets.iter().copied()),
             regrets.get(rank).copied().unwrap_or(f64::NAN),
-            times.iter().map(|t| t.taken / t.cold).fold(0.0, f64::max),
+            worst(times),
         );
     }
 }
@@ -178,6 +189,11 @@ fn by_default(base: &Base, edited: &Program) -> f64 {
         begun.elapsed().as_secs_f64()
     });
     times.fold(f64::INFINITY, f64::min)
+}
+
+/// The longest that a start taken was, in cold solves.
+fn worst(times: &[Times]) -> f64 {
+    times.iter().map(|t| t.taken / t.cold).fold(0.0, f64::max)
 }
 
 /// Geometric mean.
