@@ -8,6 +8,7 @@ pub mod certificate;
 pub mod change;
 pub mod cold;
 pub mod desk;
+pub mod exact;
 pub mod findings;
 mod inherit;
 pub mod instance;
