@@ -86,8 +86,12 @@ pub struct Optimum {
     pub worths: Vec<f64>,
     /// The optimal basis.
     pub basis: Basis,
+    /// Whether nothing was decided by a tolerance.
+    pub exact: bool,
     /// Whether no other levels are optimal.
     pub levels_unique: bool,
+    /// Per column, where others are and it was worked out: the least and the most that its level may be.
+    pub spans: Option<Vec<(f64, f64)>>,
     /// Whether no other worths are optimal.
     pub worths_unique: bool,
     /// Ranges, where they were worked out.
@@ -155,8 +159,12 @@ pub struct Account {
     pub cold_pivots: Option<usize>,
     /// Steps down the ladder: what was tried and given up, as short phrases.
     pub detours: Vec<&'static str>,
-    /// Time to the proven answer.
+    /// Exact pivots to the one plan.
+    pub exact_pivots: usize,
+    /// Time to a proven answer.
     pub time: Duration,
+    /// Time from there to the one plan.
+    pub settling: Duration,
     /// Time spent on reading ties and ranges off it.
     pub reading: Duration,
 }

@@ -4,11 +4,13 @@
 
 pub mod basis;
 pub mod batch;
+pub mod canonical;
 pub mod certificate;
 pub mod change;
 pub mod cold;
 pub mod desk;
 pub mod exact;
+pub mod face;
 pub mod findings;
 mod inherit;
 pub mod instance;
@@ -29,4 +31,5 @@ pub mod swap;
 pub mod ties;
 pub mod vertex;
 mod warm;
+pub mod weight;
 pub mod worker;

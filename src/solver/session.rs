@@ -4,7 +4,9 @@ use std::sync::Arc;
 use std::time::{Duration, Instant};
 
 use super::basis::{Basis, NamedBasis, Position};
+use super::canonical::{self, Canonical};
 use super::cold::{self, Cold, Reached};
+use super::instance::Instance;
 use super::look::{Look, is_flat};
 use super::message::{Account, Answer, Outcome, Start};
 use super::stop::Stop;
@@ -87,20 +89,40 @@ impl Session {
         let reached = self.reach(&program, limit, stop, &mut account);
         account.time = begun.elapsed();
         let outcome = match reached {
-            Reached::Optimal(mut instance, look) => {
-                let outcome = optimum::of(&mut instance, &program, &look);
-                let Look { basis, vertex, .. } = *look;
-                self.anchor = Some(Anchor { program, basis, vertex, instance: Some(instance) });
-                outcome
-            }
+            Reached::Optimal(instance, look) => self.settled(program, (instance, *look), stop, &mut account),
             Reached::Other(Outcome::Infeasible(conflict)) => {
                 Outcome::Infeasible(minimal::shrink(&program, conflict, limit, stop))
             }
             Reached::Other(outcome) => outcome,
         };
-        account.reading = begun.elapsed() - account.time;
+        account.reading = begun.elapsed() - account.time - account.settling;
         account.cold_pivots = self.cold_pivots;
         Answer { outcome, account }
+    }
+
+    /// From a proven basis to the one plan and what is read off it.
+    fn settled(
+        &mut self,
+        program: Arc<Program>,
+        (mut instance, look): (Box<Instance>, Look),
+        stop: &Stop,
+        account: &mut Account,
+    ) -> Outcome {
+        let begun = Instant::now();
+        let plan = canonical::of(&mut instance, &program, look, stop);
+        account.settling = begun.elapsed();
+        let told = plan.and_then(|plan| {
+            account.exact_pivots = plan.pivots;
+            Ok((optimum::of(&mut instance, &program, &plan, stop)?, plan))
+        });
+        match told {
+            Err(refusal) => Outcome::Undecided(refusal.to_string()),
+            Ok((optimum, Canonical { look: Look { basis, vertex, .. }, .. })) => {
+                self.anchor = Some(Anchor { program, basis, vertex, instance: Some(instance) });
+                // What was cut short may be another plan than the one.
+                if stop.is_stopped() { Outcome::Interrupted } else { Outcome::Optimal(Box::new(optimum)) }
+            }
+        }
     }
 
     /// The proven basis of `program`, or what else comes of it.

@@ -63,7 +63,9 @@ fn molder_optimum() -> Optimum {
         gains: vec![-400.0 / 7.0, 0.0, 1e-14],
         worths: vec![0.0, 550.0 / 7.0, 20.0 / 7.0],
         basis: Basis::default(),
+        exact: true,
         levels_unique: true,
+        spans: None,
         worths_unique: true,
         ranges: Some(Ranges {
             aims: vec![(-INF, 4600.0 / 7.0), (5100.0 / 11.0, 540.0), (1250.0 / 3.0, 650.0)],
