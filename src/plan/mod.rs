@@ -7,6 +7,7 @@ pub mod last;
 pub mod make;
 pub mod note;
 pub mod number;
+pub mod release;
 pub mod text;
 pub mod types;
 
