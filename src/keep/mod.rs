@@ -7,6 +7,7 @@ pub mod daemon;
 pub mod event;
 pub mod once;
 pub mod path;
+pub mod pinned;
 pub mod pool;
 pub mod queue;
 pub mod replan;

@@ -74,6 +74,7 @@ proptest! {
                 edits: &[EditTold { edit: &edit, worth: None }],
                 verdict: Verdict::Planned(&plan),
                 seal: None,
+                release: None,
                 reckoning: None,
             })
         };
