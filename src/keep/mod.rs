@@ -3,6 +3,7 @@
 //! An event is a hint to look; what is planned is what the files say when they are read. A scan of the folder is what correctness
 //! rests on, events only cut the delay.
 
+pub mod afresh;
 pub mod daemon;
 pub mod event;
 pub mod once;
