@@ -19,6 +19,7 @@ Files:
   NAME.model.toml   a model, written by people
   NAME.plan.toml    its plan, written by millreeve next to the model
   NAME.note.md      what the last edit did to the plan, and why
+  NAME.release.toml the plan that the floor works to, pinned by `millreeve release`
   DIR/.millreeve/   the daemon's own state; it can be deleted, and is made again
   DIR/.millreeve.toml
                     settings for one folder: [watch] and [solve] only
@@ -103,6 +104,15 @@ pub(crate) enum Command {
         /// Models, or folders to look through for models
         #[arg(required = true, value_name = "PATH")]
         paths: Vec<PathBuf>,
+    },
+    /// Pin the current plan as the one that the floor works to
+    ///
+    /// Writes NAME.release.toml. From then on every note, and `show`, says what has moved since. Only a plan that is current and
+    /// unharmed is released.
+    Release {
+        /// The model: NAME.model.toml, its plan NAME.plan.toml, or NAME alone
+        #[arg(value_hint = ValueHint::FilePath)]
+        model: PathBuf,
     },
     /// Show a plan, or why one thing in it is as it is
     Show(Show),

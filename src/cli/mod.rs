@@ -11,6 +11,7 @@ mod keep;
 mod logging;
 mod models;
 mod once;
+mod release;
 mod screen;
 mod settings;
 mod show;
@@ -55,6 +56,7 @@ fn run(screen: &mut Screen, common: &Common, command: Command) -> Result<Outcome
             setting.log(LevelFilter::WARN)?;
             check::run(screen, &setting, &paths)
         }
+        Command::Release { model } => release::run(screen, &model),
         Command::Show(asked) => show::run(screen, &asked),
         Command::Convert { from, to, force } => convert::run(screen, &from, &to, force),
         Command::Demo { dir } => demo::run(screen, &dir),
