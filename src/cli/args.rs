@@ -12,6 +12,7 @@ Examples:
   millreeve check works           read its models and point at every fault
   millreeve keep works            keep its plans optimal while people edit the models
   millreeve show works/tileworks  look at the plan
+  millreeve verify works          is each plan what its model gives? work it out afresh and compare
   millreeve show works/tileworks --why terrace_slab
                                   the sum behind one figure, line by line
 
@@ -102,6 +103,15 @@ pub(crate) enum Command {
     /// Read models and point at every fault; solve and write nothing
     Check {
         /// Models, or folders to look through for models
+        #[arg(required = true, value_name = "PATH")]
+        paths: Vec<PathBuf>,
+    },
+    /// Work plans out afresh and compare them with their files, byte by byte; write nothing
+    ///
+    /// For a check before a commit, or in continuous integration: nothing but the models is gone by, no record and no earlier
+    /// plan. Says of each plan whether it is what its model gives, what differs if not, and what to do about it.
+    Verify {
+        /// Models or their plans, or folders to look through for both
         #[arg(required = true, value_name = "PATH")]
         paths: Vec<PathBuf>,
     },

@@ -16,6 +16,7 @@ mod screen;
 mod settings;
 mod show;
 mod told;
+mod verify;
 
 use std::path::Path;
 use std::process::ExitCode;
@@ -55,6 +56,10 @@ fn run(screen: &mut Screen, common: &Common, command: Command) -> Result<Outcome
         Command::Check { paths } => {
             setting.log(LevelFilter::WARN)?;
             check::run(screen, &setting, &paths)
+        }
+        Command::Verify { paths } => {
+            setting.log(LevelFilter::WARN)?;
+            verify::run(screen, &setting, &paths)
         }
         Command::Release { model } => release::run(screen, &model),
         Command::Show(asked) => show::run(screen, &asked),

@@ -17,6 +17,7 @@ pub mod run;
 pub mod scan;
 pub mod settings;
 pub mod settle;
+pub mod verify;
 pub mod watch;
 
 pub use once::{OnceError, once};

@@ -3,6 +3,7 @@
 //! Knows models, programs, edits and answers, but no files and no clock.
 
 pub mod compare;
+pub mod difference;
 pub mod last;
 pub mod make;
 pub mod note;
