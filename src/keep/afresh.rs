@@ -26,7 +26,7 @@ impl Planned {
     /// The plan of `model` from the optimum of its program, and its text.
     ///
     /// # Errors
-    /// As [`plan::make`].
+    /// As [`plan::make()`].
     pub fn of(model: &Model, meaning: Meaning, program: &Program, optimum: &Optimum) -> Result<Self, MakeError> {
         let plan = plan::make(model, meaning, program, optimum)?;
         let text = text::write(&plan);

@@ -3,6 +3,7 @@
 use std::path::Path;
 
 use super::super::check::counted;
+use super::super::demo::quoted;
 use super::super::exit::shown;
 use super::super::screen::{BAD, GOOD, HINT, Screen, WARN};
 use crate::keep::verify::{Finding, Pair};
@@ -87,8 +88,8 @@ pub(super) fn sentence(pair: &Pair, finding: &Finding) -> String {
 
 /// What to do about it; empty where nothing is to be done or nothing can be said.
 pub(super) fn cure(pair: &Pair, finding: &Finding) -> String {
-    let (model, plan) = (plain(&pair.model), plain(&pair.plan));
-    let once = format!("millreeve once {model}");
+    let plan = plain(&pair.plan);
+    let once = format!("millreeve once {}", quoted(&pair.model));
     match finding {
         Finding::Stale | Finding::Overtaken { .. } | Finding::OldRules => format!("{once} brings it up to date"),
         Finding::Missing(_) => format!("{once} makes it"),
@@ -104,7 +105,7 @@ pub(super) fn cure(pair: &Pair, finding: &Finding) -> String {
         Finding::Newer { .. } => "verify it with that version, or a newer one".to_owned(),
         Finding::Orphaned => {
             let folder = pair.plan.parent().filter(|folder| !folder.as_os_str().is_empty());
-            format!("millreeve once {} marks it as retired; or delete it", plain(folder.unwrap_or(Path::new("."))))
+            format!("millreeve once {} marks it as retired; or delete it", quoted(folder.unwrap_or(Path::new("."))))
         }
         Finding::Verified(_)
         | Finding::Held { .. }

@@ -147,10 +147,10 @@ pub fn examine(pair: &Pair, time_limit: Duration) -> Option<Finding> {
 fn without_model(plan: &Path) -> Option<Finding> {
     match on_disk(plan) {
         Ok(None) | Err(Finding::Foreign) => None,
-        Ok(Some((_, Head { sealed: false, .. }))) => Some(Finding::Edited(None)),
-        Ok(Some((_, Head { standing: Standing::Retired, .. }))) => Some(Finding::Retired),
-        Ok(Some(_)) => Some(Finding::Orphaned),
-        Err(finding) => Some(finding),
+        Ok(Some((_, Head { sealed: true, standing: Standing::Retired, .. }))) => Some(Finding::Retired),
+        Err(finding @ (Finding::Unread(_) | Finding::Newer { .. })) => Some(finding),
+        // Whatever else is wrong with it matters no more.
+        Ok(Some(_)) | Err(_) => Some(Finding::Orphaned),
     }
 }
 
