@@ -1,6 +1,7 @@
 //! Each finding, brought about and told.
 
 use millreeve::plan::text;
+use millreeve::plan::types::{FORMAT, RULES};
 use serde_json::{Value, json};
 
 use crate::support::{TILES, Works};
@@ -158,17 +159,17 @@ fn where_only_bytes_differ_the_lines_are_shown() {
 #[test]
 fn a_plan_of_other_rules_or_a_newer_version_is_told_as_such() {
     let works = Works::planned();
-    forged(&works, &[("rules    = 1\n", "rules    = 0\n")]);
+    let rules = format!("rules    = {RULES}\n");
+    forged(&works, &[(&rules, &format!("rules    = {}\n", RULES - 1))]);
     // The record, too, could be of an earlier version.
     std::fs::remove_dir_all(works.path(".millreeve")).unwrap();
-    mended(&works, "old_rules", &["./tiles.model.toml: made under earlier rules; this millreeve follows rules 1"]);
-    for (from, to, told) in [
-        ("rules    = 1\n", "rules    = 9\n", "made by a newer millreeve: rules 9, this one knows up to 1"),
-        ("format   = 1\n", "format   = 2\nnew = 1\n", "made by a newer millreeve: format 2, this one knows up to 1"),
-    ] {
+    let told = format!("./tiles.model.toml: made under earlier rules; this millreeve follows rules {RULES}");
+    mended(&works, "old_rules", &[&told]);
+    for (what, key, known) in [("rules", "rules   ", RULES), ("format", "format  ", FORMAT)] {
         let works = Works::planned();
-        forged(&works, &[(from, to)]);
-        found(&works, "newer", &[&format!("./tiles.model.toml: {told}")]);
+        forged(&works, &[(&format!("{key} = {known}\n"), &format!("{key} = 90\nnew = 1\n"))]);
+        let told = format!("./tiles.model.toml: made by a newer millreeve: {what} 90, this one knows up to {known}");
+        found(&works, "newer", &[&told]);
     }
 }
 
