@@ -12,6 +12,7 @@ Examples:
   millreeve check works           read its models and point at every fault
   millreeve keep works            keep its plans optimal while people edit the models
   millreeve show works/tileworks  look at the plan
+  millreeve verify works          is each plan what its model gives? work it out afresh and compare
   millreeve show works/tileworks --why terrace_slab
                                   the sum behind one figure, line by line
 
@@ -19,6 +20,7 @@ Files:
   NAME.model.toml   a model, written by people
   NAME.plan.toml    its plan, written by millreeve next to the model
   NAME.note.md      what the last edit did to the plan, and why
+  NAME.release.toml the plan that the floor works to, pinned by `millreeve release`
   DIR/.millreeve/   the daemon's own state; it can be deleted, and is made again
   DIR/.millreeve.toml
                     settings for one folder: [watch] and [solve] only
@@ -103,6 +105,24 @@ pub(crate) enum Command {
         /// Models, or folders to look through for models
         #[arg(required = true, value_name = "PATH")]
         paths: Vec<PathBuf>,
+    },
+    /// Work plans out afresh and compare them with their files, byte by byte; write nothing
+    ///
+    /// For a check before a commit, or in continuous integration: nothing but the models is gone by, no record and no earlier
+    /// plan. Says of each plan whether it is what its model gives, what differs if not, and what to do about it.
+    Verify {
+        /// Models or their plans, or folders to look through for both
+        #[arg(required = true, value_name = "PATH")]
+        paths: Vec<PathBuf>,
+    },
+    /// Pin the current plan as the one that the floor works to
+    ///
+    /// Writes NAME.release.toml. From then on every note, and `show`, says what has moved since. Only a plan that is current and
+    /// unharmed is released.
+    Release {
+        /// The model: NAME.model.toml, its plan NAME.plan.toml, or NAME alone
+        #[arg(value_hint = ValueHint::FilePath)]
+        model: PathBuf,
     },
     /// Show a plan, or why one thing in it is as it is
     Show(Show),

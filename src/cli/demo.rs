@@ -55,7 +55,7 @@ pub(super) fn failed(error: &StoreError) -> Error {
 }
 
 /// A path as it can be pasted into a shell.
-fn quoted(path: &Path) -> String {
+pub(super) fn quoted(path: &Path) -> String {
     let text = path.to_string_lossy();
     let plain = |c: char| c.is_alphanumeric() || "/._-+,:@%".contains(c);
     if !text.is_empty() && text.chars().all(plain) && !text.starts_with('-') {

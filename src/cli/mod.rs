@@ -11,10 +11,12 @@ mod keep;
 mod logging;
 mod models;
 mod once;
+mod release;
 mod screen;
 mod settings;
 mod show;
 mod told;
+mod verify;
 
 use std::path::Path;
 use std::process::ExitCode;
@@ -55,6 +57,11 @@ fn run(screen: &mut Screen, common: &Common, command: Command) -> Result<Outcome
             setting.log(LevelFilter::WARN)?;
             check::run(screen, &setting, &paths)
         }
+        Command::Verify { paths } => {
+            setting.log(LevelFilter::WARN)?;
+            verify::run(screen, &setting, &paths)
+        }
+        Command::Release { model } => release::run(screen, &model),
         Command::Show(asked) => show::run(screen, &asked),
         Command::Convert { from, to, force } => convert::run(screen, &from, &to, force),
         Command::Demo { dir } => demo::run(screen, &dir),

@@ -14,6 +14,8 @@ use crate::keep::{Ignore, ModelPath};
 pub(crate) const MODEL: &str = ".model.toml";
 /// How the name of a plan file ends.
 pub(crate) const PLAN: &str = ".plan.toml";
+/// How the name of a release ends.
+pub(crate) const RELEASE: &str = ".release.toml";
 /// How the name of a note ends.
 pub(crate) const NOTE: &str = ".note.md";
 
@@ -22,6 +24,8 @@ pub(crate) const NOTE: &str = ".note.md";
 pub(crate) struct Found {
     /// The models, also those that are named like one and are no plain file.
     pub(crate) models: BTreeSet<PathBuf>,
+    /// Where the models of plans would be that have none.
+    pub(crate) gone: BTreeSet<PathBuf>,
     /// Folders that could not be read.
     pub(crate) unread: Vec<PathBuf>,
 }
@@ -33,15 +37,19 @@ pub(crate) fn under(path: &Path, ignore: &Ignore) -> Result<Found, Error> {
         let root = Arc::from(path);
         let Scan { sights, odd, unread, .. } = scan(&root, ignore).map_err(|error| Error::reading(path, &error))?;
         // A plan without a model is no model.
-        let models = sights.into_iter().filter(|(_, sight)| sight.model.is_some()).map(|(model, _)| model);
-        let models = models.chain(odd).map(|model: ModelPath| model.full()).collect();
-        return Ok(Found { models, unread: unread.into_iter().map(|folder| root.join(folder)).collect() });
+        let (there, gone): (Vec<_>, Vec<_>) = sights.into_iter().partition(|(_, sight)| sight.model.is_some());
+        let models = there.into_iter().map(|(model, _)| model).chain(odd);
+        return Ok(Found {
+            models: models.map(|model: ModelPath| model.full()).collect(),
+            gone: gone.into_iter().map(|(model, _)| model.full()).collect(),
+            unread: unread.into_iter().map(|folder| root.join(folder)).collect(),
+        });
     }
     if !names_model(path) {
         let help = format!("the name of a model ends in {MODEL}");
         return Err(Error::usage(format_args!("{} is not a model", shown(path)), help));
     }
-    Ok(Found { models: BTreeSet::from([path.to_owned()]), unread: Vec::new() })
+    Ok(Found { models: BTreeSet::from([path.to_owned()]), ..Found::default() })
 }
 
 /// Whether a path is that of a model, by its name.
@@ -56,10 +64,13 @@ pub(crate) fn with_ending(stem: &Path, ending: &str) -> PathBuf {
     PathBuf::from(path)
 }
 
-/// `path` without the ending of a model, plan or note, if it has one: `works/tileworks`.
+/// `path` without the ending of a model, plan, release or note, if it has one: `works/tileworks`.
 pub(crate) fn stem(path: &Path) -> PathBuf {
     let name = path.file_name().unwrap_or_default().to_string_lossy();
-    let stem = [MODEL, PLAN, NOTE].iter().find_map(|ending| name.strip_suffix(ending)).filter(|stem| !stem.is_empty());
+    let stem = [MODEL, PLAN, RELEASE, NOTE]
+        .iter()
+        .find_map(|ending| name.strip_suffix(ending))
+        .filter(|stem| !stem.is_empty());
     match stem {
         // Endings are ASCII, so cutting them off works on names that are not Unicode too.
         Some(stem) if path.file_name().is_some_and(|name| name.to_str().is_some()) => path.with_file_name(stem),
@@ -78,15 +89,22 @@ mod tests {
         let at = |name: &str| folder.path().join(name);
         fs::create_dir_all(at("deep/er")).unwrap();
         fs::create_dir_all(at(".git")).unwrap();
-        for name in
-            ["b.model.toml", "deep/er/a.model.toml", "old.model.toml", "b.plan.toml", ".x.model.toml", ".model.toml"]
-        {
+        for name in [
+            "b.model.toml",
+            "deep/er/a.model.toml",
+            "old.model.toml",
+            "b.plan.toml",
+            "gone.plan.toml",
+            ".x.model.toml",
+            ".model.toml",
+        ] {
             fs::write(at(name), "").unwrap();
         }
         fs::write(at(".git/c.model.toml"), "").unwrap();
         let ignore = Ignore::new(&["old*".to_owned()]).unwrap();
         let found = under(folder.path(), &ignore).unwrap();
         assert_eq!(found.models.into_iter().collect::<Vec<_>>(), [at("b.model.toml"), at("deep/er/a.model.toml")]);
+        assert_eq!(found.gone.into_iter().collect::<Vec<_>>(), [at("gone.model.toml")]);
         let alone = under(&at("old.model.toml"), &ignore).unwrap();
         assert_eq!(alone.models.into_iter().collect::<Vec<_>>(), [at("old.model.toml")]);
         assert_eq!(under(&at("b.plan.toml"), &ignore).unwrap_err().status(), 2);
@@ -95,7 +113,7 @@ mod tests {
 
     #[test]
     fn every_file_of_a_model_leads_to_its_name() {
-        for path in ["w/tiles.model.toml", "w/tiles.plan.toml", "w/tiles.note.md", "w/tiles"] {
+        for path in ["w/tiles.model.toml", "w/tiles.plan.toml", "w/tiles.release.toml", "w/tiles.note.md", "w/tiles"] {
             assert_eq!(stem(Path::new(path)), Path::new("w/tiles"));
         }
         assert_eq!(stem(Path::new(".model.toml")), Path::new(".model.toml"));

@@ -3,10 +3,12 @@
 //! An event is a hint to look; what is planned is what the files say when they are read. A scan of the folder is what correctness
 //! rests on, events only cut the delay.
 
+pub mod afresh;
 pub mod daemon;
 pub mod event;
 pub mod once;
 pub mod path;
+pub mod pinned;
 pub mod pool;
 pub mod queue;
 pub mod replan;
@@ -15,6 +17,7 @@ pub mod run;
 pub mod scan;
 pub mod settings;
 pub mod settle;
+pub mod verify;
 pub mod watch;
 
 pub use once::{OnceError, once};

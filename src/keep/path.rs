@@ -16,6 +16,7 @@ use crate::store::folder::OWN;
 const MODEL: &[u8] = b".model.toml";
 const PLAN: &[u8] = b".plan.toml";
 const NOTE: &[u8] = b".note.md";
+const RELEASE: &[u8] = b".release.toml";
 
 /// A model file of a watched folder, by its path.
 #[derive(Clone, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -68,6 +69,12 @@ impl ModelPath {
     #[must_use]
     pub fn note(&self) -> PathBuf {
         self.beside(NOTE)
+    }
+
+    /// Where its release lies, if people have pinned one.
+    #[must_use]
+    pub fn release(&self) -> PathBuf {
+        self.beside(RELEASE)
     }
 
     /// The model's name, `NAME` of `NAME.model.toml`, as text. Not escaped.
@@ -207,6 +214,7 @@ mod tests {
         let model = ModelPath::new(&root(), Path::new("north/tile.x.model.toml")).unwrap();
         assert_eq!(model.plan(), Path::new("/works/north/tile.x.plan.toml"));
         assert_eq!(model.note(), Path::new("/works/north/tile.x.note.md"));
+        assert_eq!(model.release(), Path::new("/works/north/tile.x.release.toml"));
         assert_eq!(model.name(), "tile.x");
         assert_eq!(model_of_plan(OsStr::new("tile.x.plan.toml")).unwrap(), "tile.x.model.toml");
         let odd = ModelPath::new(&root(), Path::new(OsStr::from_bytes(b"a\n\xff.model.toml"))).unwrap();

@@ -99,6 +99,7 @@ pub type Factory = Arc<dyn Fn() -> Box<dyn Planner> + Send + Sync>;
 
 /// What a worker tells the dispatcher.
 #[derive(Clone, Debug)]
+#[expect(clippy::large_enum_variant, reason = "there are two for each job, and none is kept")]
 pub enum Word {
     /// It is about to read a model whose stamp is this.
     Began {
@@ -113,7 +114,7 @@ pub enum Word {
         worker: Worker,
         /// The model.
         model: ModelPath,
-        /// The model before it was read, plan and note after they were written.
+        /// Model and release before they were read, plan and note after they were written.
         sight: Sight,
         /// What came of it.
         outcome: Replanned,
@@ -154,10 +155,11 @@ fn work(worker: Worker, inbox: &mpsc::Receiver<(Job, Stop)>, factory: &Factory, 
     let mut planner = None;
     while let Ok((job, stop)) = inbox.recv() {
         let model = job.path.clone();
-        let stamp = Stamp::of(&model.full());
+        let inputs = Sight::of_inputs(&model);
+        let stamp = inputs.model;
         send(Word::Began { model: model.clone(), stamp });
         let outcome = attempt(&mut planner, factory, job, stamp, &stop);
-        let sight = Sight { model: stamp, ..Sight::default() }.with_outputs(&model);
+        let sight = inputs.with_outputs(&model);
         send(Word::Ended { worker, model, sight, outcome });
     }
 }

@@ -58,13 +58,21 @@ pub struct Sight {
     pub plan: Option<Stamp>,
     /// The note.
     pub note: Option<Stamp>,
+    /// The release, which the note tells of.
+    pub release: Option<Stamp>,
 }
 
 impl Sight {
     /// Looks at one model now.
     #[must_use]
     pub fn of(model: &ModelPath) -> Self {
-        Self { model: Stamp::of(&model.full()), ..Self::default() }.with_outputs(model)
+        Self::of_inputs(model).with_outputs(model)
+    }
+
+    /// Looks at what people write for one model now.
+    #[must_use]
+    pub fn of_inputs(model: &ModelPath) -> Self {
+        Self { model: Stamp::of(&model.full()), release: Stamp::of(&model.release()), ..Self::default() }
     }
 
     /// The same with plan and note as they are now.
@@ -172,8 +180,12 @@ fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) 
 
 fn look_at(model: ModelPath, scan: &mut Scan) {
     let sight = match fs::symlink_metadata(model.full()) {
-        Ok(metadata) if metadata.is_file() => Sight { model: Some(Stamp::from(&metadata)), ..Sight::default() },
-        Err(error) if error.kind() == io::ErrorKind::NotFound => Sight::default(),
+        Ok(metadata) if metadata.is_file() => {
+            Sight { model: Some(Stamp::from(&metadata)), release: Stamp::of(&model.release()), ..Sight::default() }
+        }
+        Err(error) if error.kind() == io::ErrorKind::NotFound => {
+            Sight { release: Stamp::of(&model.release()), ..Sight::default() }
+        }
         _ => {
             scan.odd.insert(model);
             return;

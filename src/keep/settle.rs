@@ -21,6 +21,7 @@ pub enum Touch {
 
 /// What is known of a model that is not at rest.
 #[derive(Clone, Copy, Debug)]
+#[expect(clippy::large_enum_variant, reason = "only models in motion have one")]
 enum Phase {
     /// Somebody writes to it and has not closed it; `told` once that has been reported.
     Writing { since: Instant, last: Instant, told: bool },

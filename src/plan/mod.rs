@@ -3,10 +3,12 @@
 //! Knows models, programs, edits and answers, but no files and no clock.
 
 pub mod compare;
+pub mod difference;
 pub mod last;
 pub mod make;
 pub mod note;
 pub mod number;
+pub mod release;
 pub mod text;
 pub mod types;
 

@@ -2,11 +2,13 @@
 
 mod account;
 mod lead;
+mod since;
 mod tables;
 mod trouble;
 mod words;
 
 use super::compare::compare;
+use super::release::Release;
 use super::text::NOTE_HEADER;
 use super::types::{Plan, Standing};
 use crate::edits::{Edit, Kind};
@@ -32,8 +34,19 @@ pub struct Report<'a> {
     pub verdict: Verdict<'a>,
     /// The seal of the plan that now lies beside the model, if there is one.
     pub seal: Option<&'a str>,
+    /// The release, where there is one.
+    pub release: Option<ReleaseTold<'a>>,
     /// How it was worked out; `None` where nothing was.
     pub reckoning: Option<&'a Reckoning>,
+}
+
+/// The release that a plan is held against.
+#[derive(Clone, Copy, Debug)]
+pub struct ReleaseTold<'a> {
+    /// Tells this release from others: hexadecimal digits.
+    pub mark: &'a str,
+    /// What it says, or why that cannot be told, as a sentence without a full stop.
+    pub release: Result<&'a Release, &'a str>,
 }
 
 /// An edit, and what it was worth.
@@ -111,7 +124,9 @@ pub fn write(report: &Report<'_>) -> String {
         out.push_str(&tables::of_plan(report, plan, comparison.as_ref()));
         out.push_str(&reservations(plan));
     }
-    out.push_str("\nA plan is advice: safety rules, permits and labour law bind before it does.\n");
+    let plan = if let Verdict::Planned(plan) = report.verdict { Some(plan) } else { report.before };
+    out.push_str(&plan.map_or_else(String::new, |plan| since::told(report.release, plan, report.model)));
+    out.push_str(since::ADVICE);
     if let Some(reckoning) = report.reckoning {
         out.push_str(&format!("\n{}\n", account::line(reckoning, matches!(report.verdict, Verdict::Planned(_)))));
     }
@@ -124,6 +139,18 @@ pub fn speaks_of(text: &str) -> Option<&str> {
     let line = text.lines().next()?.strip_prefix(NOTE_HEADER)?;
     let seal = line.strip_prefix(" Plan: ")?.strip_suffix(" -->")?;
     is_hex(seal).then_some(seal)
+}
+
+/// The mark of the release that a note tells of; `None` where it tells of none.
+#[must_use]
+pub fn release_told(note: &str) -> Option<&str> {
+    since::mark(note)
+}
+
+/// The note with what it says of the release told afresh: of this one, about this plan. Nothing else of it changes.
+#[must_use]
+pub fn with_release(note: &str, release: Option<ReleaseTold<'_>>, plan: &Plan, model: Option<&Model>) -> String {
+    since::retold(note, &since::told(release, plan, model))
 }
 
 fn is_hex(text: &str) -> bool {

@@ -1,8 +1,8 @@
 //! The plan as the text of `NAME.plan.toml`: writing it, reading it, and telling whether it is ours and unharmed.
 
 mod mark;
-mod read;
-mod write;
+pub(super) mod read;
+pub(super) mod write;
 
 pub use mark::marked;
 pub use read::{Head, PlanError, Written, read, read_head};
@@ -20,9 +20,11 @@ pub const NOTE_HEADER: &str = "<!-- Written by millreeve. Do not edit: the next 
 /// it holds beyond what this version knows would be lost.
 #[must_use]
 pub fn is_ours(bytes: &[u8]) -> bool {
-    let line = bytes.split(|&byte| byte == b'\n').next().unwrap_or_default();
-    let line = line.strip_suffix(b"\r").unwrap_or(line);
-    let is_note = line.starts_with(NOTE_HEADER.as_bytes()) && line.ends_with(b"-->");
+    let mut lines = bytes.split(|&byte| byte == b'\n').map(|line| line.strip_suffix(b"\r").unwrap_or(line));
+    let line = lines.next().unwrap_or_default();
+    // Two notes that git could not merge differ from their first lines on.
+    let note_line = if line.starts_with(b"<<<<<<< ") { lines.next().unwrap_or_default() } else { line };
+    let is_note = note_line.starts_with(NOTE_HEADER.as_bytes()) && note_line.ends_with(b"-->");
     is_note || (line == HEADER.as_bytes() && !is_newer(&String::from_utf8_lossy(bytes)))
 }
 
@@ -35,14 +37,20 @@ fn is_newer(text: &str) -> bool {
 const VERSIONS: [(&str, u32); 2] = [("format", FORMAT), ("rules", RULES)];
 
 /// The version of `what` that a plan states.
-fn version(text: &str, what: &str) -> Option<u32> {
+pub(super) fn version(text: &str, what: &str) -> Option<u32> {
     head(text).find_map(|line| value_of(line, what)).and_then(|value| value.parse().ok())
 }
 
-/// Whether a plan's text says that it may be worked to.
+/// Whether a plan's text says that it may be worked to, and was made under the rules of this version.
 #[must_use]
 pub fn is_current(text: &str) -> bool {
-    head(text).find_map(|line| value_of(line, "standing")) == Some("\"current\"")
+    head(text).find_map(|line| value_of(line, "standing")) == Some("\"current\"") && follows_rules(text)
+}
+
+/// Whether a plan's text was made under the rules of this version: under others the same model may have got other bytes.
+#[must_use]
+pub fn follows_rules(text: &str) -> bool {
+    version(text, "rules") == Some(RULES)
 }
 
 /// The seal that a plan's text carries, whether or not it is right.

@@ -7,6 +7,7 @@ pub mod error;
 pub mod folder;
 pub mod lock;
 pub mod publish;
+pub mod reading;
 pub mod state;
 
 pub use atomic::{Durability, Written};

@@ -220,3 +220,24 @@ fn a_save_in_place_with_a_pause_in_the_middle() {
     assert_eq!(daemon.told("m").len(), 2, "{:#?}", daemon.told("m"));
     works.check();
 }
+
+#[test]
+fn a_release_that_comes_and_goes_is_told_in_the_note_and_a_model_that_goes_rests() {
+    let (works, mut daemon) = Works::kept(&[("m", 1)]);
+    let (plan, plain) = (identity(&works.plan("m")), works.note_text("m"));
+    assert_eq!(works.run(&["release", "m"]).0, Some(0));
+    daemon.wait_current("m", aim(1));
+    assert!(works.note_text("m").contains("\nAs released: nothing moves.\n"), "{}", works.note_text("m"));
+    fs::remove_file(works.path("m.release.toml")).unwrap();
+    daemon.wait_current("m", aim(1));
+    assert_eq!((works.note_text("m"), identity(&works.plan("m"))), (plain, plan));
+    // A release beside no model is no reason to look again and again.
+    assert_eq!(works.run(&["release", "m"]).0, Some(0));
+    fs::remove_file(works.model("m")).unwrap();
+    daemon.wait_standing("m", "retired");
+    let told = daemon.told("m").len();
+    daemon.wait_grace(&works);
+    daemon.wait_grace(&works);
+    assert_eq!(daemon.told("m").len(), told, "{:#?}", daemon.told("m"));
+    works.check();
+}

@@ -47,6 +47,7 @@ fn report<'a>(
         edits,
         verdict,
         seal: Some(SEAL),
+        release: None,
         reckoning: None,
     }
 }

@@ -2,7 +2,8 @@
 
 mod csv;
 mod number;
-mod object;
+pub(super) mod object;
+pub(super) mod since;
 mod standing;
 mod table;
 mod why;
@@ -14,8 +15,9 @@ use std::path::{Path, PathBuf};
 use super::args;
 use super::check::unreadable;
 use super::exit::{Error, Outcome, shown};
-use super::models::{self, MODEL, NOTE, PLAN};
+use super::models::{self, MODEL, NOTE, PLAN, RELEASE};
 use super::screen::Screen;
+use crate::keep::pinned::Pinned;
 use crate::model::meaning::Meaning;
 use crate::model::read::{self, FileProblem};
 use crate::model::{Faults, Model};
@@ -24,11 +26,11 @@ use crate::plan::text::{self as plan_text, PlanError};
 use standing::Standing;
 
 /// A plan, the model it belongs to, and how the two stand to each other.
-struct Shown {
+pub(super) struct Shown {
     /// The name of the model: that of its files without their endings. Not escaped.
-    name: String,
+    pub(super) name: String,
     /// The model file.
-    model_path: PathBuf,
+    pub(super) model_path: PathBuf,
     /// The plan file.
     plan_path: PathBuf,
     /// The note's file.
@@ -36,9 +38,13 @@ struct Shown {
     /// The model, where it can be read.
     model: Option<Model>,
     /// The plan as it stands in its file.
-    plan: Plan,
+    pub(super) plan: Plan,
+    /// The seal that the file carries.
+    pub(super) seal: String,
     /// Whether it may be worked to.
-    standing: Standing,
+    pub(super) standing: Standing,
+    /// The release, where there is one.
+    pinned: Option<Pinned>,
 }
 
 pub(super) fn run(screen: &mut Screen, asked: &args::Show) -> Result<Outcome, Error> {
@@ -60,7 +66,8 @@ pub(super) fn run(screen: &mut Screen, asked: &args::Show) -> Result<Outcome, Er
 }
 
 impl Shown {
-    fn find(given: &Path) -> Result<Self, Error> {
+    /// The plan of a model that is given by any of its files, or by its name.
+    pub(super) fn find(given: &Path) -> Result<Self, Error> {
         let stem = models::stem(given);
         let [model_path, plan_path, note_path] = [MODEL, PLAN, NOTE].map(|ending| models::with_ending(&stem, ending));
         let written = match fs::symlink_metadata(&plan_path) {
@@ -80,7 +87,9 @@ impl Shown {
                 Found::Faulty(_) | Found::Gone => None,
             },
             plan: written.plan,
+            seal: written.seal,
             standing,
+            pinned: Pinned::look(&models::with_ending(&stem, RELEASE)),
         })
     }
 }

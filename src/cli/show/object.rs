@@ -4,7 +4,11 @@ use serde_json::{Map, Value as Json, json};
 
 use super::super::exit::text;
 use super::{Shown, Standing};
-use crate::model::Value;
+use crate::keep::pinned::Pinned;
+use crate::model::{Name, Value};
+use crate::plan::Plan;
+use crate::plan::number::rounded;
+use crate::plan::release::since;
 
 /// The object. A number that has no limit is the text `"inf"` or `"-inf"`; what the plan does not say is left out.
 pub(super) fn of(shown: &Shown) -> Json {
@@ -24,10 +28,36 @@ pub(super) fn of(shown: &Shown) -> Json {
     object.insert("exact".into(), json!(plan.exact));
     object.insert("ties".into(), json!(plan.ties));
     object.insert("complete".into(), json!(plan.complete));
+    put(&mut object, "since_release", shown.pinned.as_ref().map(|pinned| since_release(pinned, plan)));
     object.insert("activities".into(), activities(shown));
     object.insert("resources".into(), resources(shown));
     object.insert("limits".into(), limits(shown));
     Json::Object(object)
+}
+
+/// What has become of aim and levels since a release; where that cannot be told, `error` says why.
+pub(in crate::cli) fn since_release(pinned: &Pinned, plan: &Plan) -> Json {
+    let release = match pinned.release() {
+        Ok(release) => release,
+        Err(why) => return json!({ "error": why }),
+    };
+    let since = since(release, plan);
+    let told = &since.comparison;
+    let names = |names: &[Name]| names.iter().map(|name| json!(name.as_str())).collect::<Json>();
+    let moved = told.moved.iter().map(|one| {
+        let side = |level: &Option<Value>| level.as_ref().map_or(Json::Null, value);
+        json!({ "name": one.name.as_str(), "released": side(&one.before), "now": side(&one.after) })
+    });
+    json!({
+        "aim": told.aim.map(|(before, after)| {
+            json!({ "released": number(before), "now": number(after), "change": number(rounded(after - before)) })
+        }),
+        "moved": moved.collect::<Json>(),
+        "entered": names(&told.entered),
+        "left": names(&told.left),
+        "new": since.new,
+        "gone": since.gone,
+    })
 }
 
 fn activities(shown: &Shown) -> Json {
@@ -79,7 +109,7 @@ fn put(object: &mut Map<String, Json>, key: &str, value: Option<Json>) {
 }
 
 /// JSON has no word for "no limit", so a text stands for it.
-pub(super) fn number(number: f64) -> Json {
+pub(in crate::cli) fn number(number: f64) -> Json {
     if number.is_finite() { json!(number) } else { json!(if number > 0.0 { "inf" } else { "-inf" }) }
 }
 

@@ -12,7 +12,7 @@ use crate::plan::text::Written;
 
 /// How a plan stands to its model as both are on disk now.
 #[derive(Clone, Debug, PartialEq, Eq)]
-pub(super) enum Standing {
+pub(in crate::cli) enum Standing {
     /// It answers the model, and nobody has touched it.
     Current,
     /// Somebody has edited the plan's file.
@@ -39,6 +39,11 @@ impl Standing {
             (plan::Standing::Current, Found::Model(_, meaning)) if *meaning == written.plan.answers => Self::Current,
             (_, Found::Model(..)) => Self::Stale,
         }
+    }
+
+    /// Whether the plan may be worked to.
+    pub(in crate::cli) fn is_current(&self) -> bool {
+        *self == Self::Current
     }
 
     /// The word for it.
@@ -71,7 +76,7 @@ impl Standing {
     }
 
     /// What is wrong.
-    pub(super) fn reason(&self, shown: &Shown) -> String {
+    pub(in crate::cli) fn reason(&self, shown: &Shown) -> String {
         match self {
             Self::Current => String::new(),
             Self::Edited => format!(
@@ -90,7 +95,7 @@ impl Standing {
     }
 
     /// What to do about it; empty where nothing can be said.
-    pub(super) fn cure(&self, shown: &Shown) -> String {
+    pub(in crate::cli) fn cure(&self, shown: &Shown) -> String {
         let model = text(&shown.model_path);
         match self {
             Self::Current | Self::Gone => String::new(),

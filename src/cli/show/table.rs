@@ -4,7 +4,7 @@ use comfy_table::{Cell, CellAlignment, ContentArrangement, Table};
 
 use super::super::screen::{GOOD, HEAD, Screen, WARN};
 use super::number::{align, range, short, value};
-use super::{Shown, Standing};
+use super::{Shown, Standing, since};
 use crate::model::escape::Plain;
 use crate::model::{Bound, Value};
 use crate::plan::State;
@@ -52,6 +52,7 @@ fn remarks(shown: &Shown) -> Vec<String> {
         remarks
             .push("Worths and ranges that depend on which of several equal answers is taken are left out.".to_owned());
     }
+    remarks.extend(shown.pinned.as_ref().map(|pinned| since::remark(pinned, plan)));
     remarks
 }
 

@@ -1,17 +1,13 @@
 //! The plan and the note as they lie on disk.
 
 use std::cell::OnceCell;
-use std::io::Read as _;
-use std::path::{Path, PathBuf};
+use std::path::PathBuf;
 
 use crate::keep::path::ModelPath;
 use crate::plan::text::{self, Head, is_ours};
 use crate::plan::{Plan, Standing};
 use crate::store::publish::{self, Finished};
-use crate::store::{Durability, Output, Outputs, Record, Records, StoreError, Written, atomic};
-
-/// The largest plan or note that is read, in bytes; far above what the largest model gets.
-const LARGEST: u64 = 64 << 20;
+use crate::store::{Durability, Output, Outputs, Record, Records, StoreError, Written, atomic, reading};
 
 /// Where the plan and the note of a model lie.
 pub(super) struct Disk {
@@ -68,7 +64,7 @@ impl Disk {
 
     /// The plan on disk, if it can be gone by. What cannot be read counts as nothing; writing will say why.
     pub(super) fn plan(&self) -> OnDisk {
-        let text = text_of(&self.plan);
+        let text = reading::text(&self.plan).ok();
         let head = text.as_deref().and_then(|text| text::read_head(text).ok()).filter(|head| head.sealed);
         match (text, head) {
             (Some(text), Some(head)) => OnDisk::Good(Box::new(Found { head, text, plan: OnceCell::new() })),
@@ -78,7 +74,7 @@ impl Disk {
 
     /// The note on disk, if it is ours.
     pub(super) fn note(&self) -> Option<String> {
-        text_of(&self.note).filter(|text| is_ours(text.as_bytes()))
+        reading::text(&self.note).ok().filter(|text| is_ours(text.as_bytes()))
     }
 
     /// Whether the plan is just what a record says; if so, the note is made what the record says too.
@@ -99,12 +95,4 @@ impl Disk {
     pub(super) fn write_note(&self, text: &str) -> Result<Written, StoreError> {
         atomic::write(&self.note, text.as_bytes(), is_ours, Durability::Synced)
     }
-}
-
-/// The text of a plain file of at most [`LARGEST`] bytes. A link is not followed and a pipe is not waited for: whatever lies where
-/// plan or note should must not keep the worker.
-fn text_of(path: &Path) -> Option<String> {
-    let mut text = String::new();
-    atomic::open_plain(path).ok()?.take(LARGEST + 1).read_to_string(&mut text).ok()?;
-    (text.len() as u64 <= LARGEST).then_some(text)
 }

@@ -6,6 +6,7 @@
 mod disk;
 mod hold;
 mod memory;
+mod pin;
 mod telling;
 mod worths;
 
@@ -15,6 +16,7 @@ use std::time::{Duration, Instant};
 use self::disk::{Disk, OnDisk};
 use self::memory::{Known, Memory};
 use self::telling::Telling;
+use super::afresh::Planned;
 use super::pool::{Factory, Job, Planner, Replanned, Stop, What};
 use super::report::Report;
 use super::scan::Stamp;
@@ -133,7 +135,8 @@ impl Replanner {
             let finished = disk.finish(record)?;
             if finished != Finished::AnotherPlan {
                 let report = Telling::of(job).standing(&record.plan);
-                return Ok(Told { report, changed: finished == Finished::NoteWritten });
+                let changed = self.heed_release(job, record)? || finished == Finished::NoteWritten;
+                return Ok(Told { report, changed });
             }
         }
         let model = match read::text(job.path.relative(), &bytes) {
@@ -178,6 +181,9 @@ impl Replanner {
                 _ => return Ok(None),
             },
         };
+        if !text::follows_rules(&plan_text) {
+            return Ok(None);
+        }
         let was = text::read(&plan_text).ok();
         let Ok(plan_text) = marked(&plan_text, &Standing::Current) else { return Ok(None) };
         let Ok(now) = text::read(&plan_text) else { return Ok(None) };
@@ -198,6 +204,7 @@ impl Replanner {
             (_, Some(recorded)) if !mended => recorded.note.clone(),
             _ => telling.note(before, Verdict::Planned(&now.plan), Some(&now.seal), None),
         };
+        let note = pin::told_anew(job, note, &now.plan, &read.model);
         let record = Record {
             model: job.path.relative().to_owned(),
             answers,
@@ -264,9 +271,8 @@ impl Replanner {
         optimum: Optimum,
         solved: Solved,
     ) -> Result<Told, Stopped> {
-        let plan = plan::make(&read.model, read.meaning, &program, &optimum)
+        let Planned { plan, text: plan_text } = Planned::of(&read.model, read.meaning, &program, &optimum)
             .map_err(|error| Stopped::Trouble(format!("{error}; the last plan stays")))?;
-        let plan_text = text::write(&plan);
         let seal = text::seal(&plan_text).map(str::to_owned);
         let disk = Disk::of(&job.path);
         let on_disk = disk.plan();

@@ -1,6 +1,7 @@
 //! What is told of a replan: the note, and the report for log and `--json`.
 
 use crate::edits::Edit;
+use crate::keep::pinned::Pinned;
 use crate::keep::pool::Job;
 use crate::keep::report::{Infeasible, Report};
 use crate::model::Model;
@@ -54,6 +55,7 @@ impl<'a> Telling<'a> {
         seal: Option<&str>,
         reckoning: Option<&Reckoning>,
     ) -> String {
+        let pinned = Pinned::look(&self.job.path.release());
         note::write(&note::Report {
             title: self.title,
             file: &self.file,
@@ -62,6 +64,7 @@ impl<'a> Telling<'a> {
             edits: &self.edits,
             verdict,
             seal,
+            release: pinned.as_ref().map(Pinned::told),
             reckoning,
         })
     }
@@ -85,6 +88,7 @@ impl<'a> Telling<'a> {
         let mut report = self.report();
         if let Ok(written) = text::read(plan) {
             stand(&mut report, &written.plan);
+            report.aim_before = report.aim;
         }
         Box::new(report)
     }

@@ -55,7 +55,7 @@ fn levels(report: &Report<'_>, plan: &Plan) -> String {
     made.sort_by(|a, b| weight_of(b).total_cmp(&weight_of(a)).then_with(|| a.name.cmp(&b.name)));
     let rows = made.into_iter().map(|planned| {
         let level = with_unit(&value(&planned.level), unit_of_activity(report.model, &planned.name));
-        vec![name_of_activity(report, &planned.name), level, planned.state.words().to_owned()]
+        vec![name_of_activity(report.model, &planned.name), level, planned.state.words().to_owned()]
     });
     section(
         "What is made",
@@ -64,8 +64,19 @@ fn levels(report: &Report<'_>, plan: &Plan) -> String {
 }
 
 fn moves(report: &Report<'_>, comparison: &Comparison) -> String {
-    let rows = by_weight(report.model, &comparison.moved).into_iter().map(|told| {
-        let unit = unit_of_activity(report.model, &told.name);
+    let mut body = move_table(report.model, &comparison.moved, "before");
+    for (names, words) in [(&comparison.entered, "Entered the mix"), (&comparison.left, "Left the mix")] {
+        if !names.is_empty() {
+            body.push_str(&format!("\n{words}: {}.\n", few(names)));
+        }
+    }
+    section("What moves", &body)
+}
+
+/// Levels that moved, those first that weigh most in the aim; `before` is the head of the column of what they were.
+pub(super) fn move_table(model: Option<&Model>, moves: &[Move], before: &str) -> String {
+    let rows = by_weight(model, moves).into_iter().map(|told| {
+        let unit = unit_of_activity(model, &told.name);
         let (before, after) = match (&told.before, &told.after) {
             (Some(before), Some(after)) => values(before, after),
             (before, after) => {
@@ -74,15 +85,9 @@ fn moves(report: &Report<'_>, comparison: &Comparison) -> String {
             }
         };
         let moved = change(total(told.before.as_ref()), total(told.after.as_ref()));
-        vec![name_of_activity(report, &told.name), before, after, with_unit(&moved, unit)]
+        vec![name_of_activity(model, &told.name), before, after, with_unit(&moved, unit)]
     });
-    let mut body = table(&["activity", "before", "now", "change"], 3, &rows.collect::<Vec<_>>(), "more levels move");
-    for (names, words) in [(&comparison.entered, "Entered the mix"), (&comparison.left, "Left the mix")] {
-        if !names.is_empty() {
-            body.push_str(&format!("\n{words}: {}.\n", few(names)));
-        }
-    }
-    section("What moves", &body)
+    table(&["activity", before, "now", "change"], 3, &rows.collect::<Vec<_>>(), "more levels move")
 }
 
 /// Moves, those first that weigh most in the aim.
@@ -194,7 +199,7 @@ fn priced_out(
     offered: f64,
     newly: bool,
 ) -> String {
-    let name = name_of_activity(report, &planned.name);
+    let name = name_of_activity(report.model, &planned.name);
     let (must, is) = amounts(planned.break_even.unwrap_or(offered), offered);
     let unit = unit_of_activity(report.model, &planned.name);
     let by = per_unit(loses.abs(), plan.currency.as_deref(), unit);
@@ -216,8 +221,8 @@ fn priced_out(
     }
 }
 
-fn name_of_activity(report: &Report<'_>, name: &Name) -> String {
-    labelled(name, report.model.and_then(|model| model.activities.get(name)?.label.as_deref()))
+fn name_of_activity(model: Option<&Model>, name: &Name) -> String {
+    labelled(name, model.and_then(|model| model.activities.get(name)?.label.as_deref()))
 }
 
 /// Names in a row, the first of them where there are many.
@@ -229,7 +234,8 @@ fn few(names: &[Name]) -> String {
     listed(&told)
 }
 
-fn section(title: &str, body: &str) -> String {
+/// A part of a note under its heading; empty without a body.
+pub(super) fn section(title: &str, body: &str) -> String {
     if body.is_empty() { String::new() } else { format!("\n## {title}\n\n{}\n", body.trim_matches('\n')) }
 }
 

@@ -149,8 +149,23 @@ pub(super) fn count(count: usize, noun: &str) -> String {
     match count {
         0 => format!("no {noun}"),
         1 => format!("1 {noun}"),
-        _ => format!("{count} {noun}s"),
+        _ => format!("{count} {}", plural(noun)),
     }
+}
+
+/// As [`count`], with small numbers as words: `two moves`.
+pub(super) fn counted(number: usize, noun: &str) -> String {
+    const WORDS: [&str; 13] =
+        ["no", "one", "two", "three", "four", "five", "six", "seven", "eight", "nine", "ten", "eleven", "twelve"];
+    match WORDS.get(number) {
+        Some(word) if number == 1 => format!("{word} {noun}"),
+        Some(word) => format!("{word} {}", plural(noun)),
+        None => count(number, noun),
+    }
+}
+
+fn plural(noun: &str) -> String {
+    noun.strip_suffix('y').map_or_else(|| format!("{noun}s"), |stem| format!("{stem}ies"))
 }
 
 /// The unit of an activity's level.

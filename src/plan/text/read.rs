@@ -91,7 +91,7 @@ fn ours_and_known(text: &str) -> Result<(), PlanError> {
     VERSIONS.iter().try_for_each(|&(what, known)| refuse_newer(text, what, known))
 }
 
-fn meaning_of(text: &str) -> Result<Meaning, PlanError> {
+pub(in crate::plan) fn meaning_of(text: &str) -> Result<Meaning, PlanError> {
     Meaning::parse(text).ok_or_else(|| PlanError::Broken("its `answers` is no hash of a meaning".to_owned()))
 }
 
@@ -112,11 +112,15 @@ fn refuse_newer(text: &str, what: &'static str, known: u32) -> Result<(), PlanEr
     }
 }
 
-/// A parser's message, without its copy of the text, cut to a readable length.
 fn broken(text: &str, error: &toml::de::Error) -> PlanError {
+    PlanError::Broken(message_of(text, error))
+}
+
+/// A parser's message, without its copy of the text, cut to a readable length.
+pub(in crate::plan) fn message_of(text: &str, error: &toml::de::Error) -> String {
     let line = error.span().map_or(1, |span| 1 + text.bytes().take(span.start).filter(|&byte| byte == b'\n').count());
     let message: String = error.message().chars().take(200).collect();
-    PlanError::Broken(format!("line {line}: {}", Plain(&message)))
+    format!("line {line}: {}", Plain(&message))
 }
 
 #[derive(Deserialize)]
@@ -154,9 +158,10 @@ struct File {
     limits: Vec<LimitEntry>,
 }
 
+/// One activity as a plan or a release has it.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-struct ActivityEntry {
+pub(in crate::plan) struct ActivityEntry {
     name: String,
     level: Numbers,
     state: String,
@@ -231,7 +236,7 @@ fn name(text: &str) -> Result<Name, PlanError> {
 }
 
 impl ActivityEntry {
-    fn planned(self) -> Result<PlannedActivity, PlanError> {
+    pub(in crate::plan) fn planned(self) -> Result<PlannedActivity, PlanError> {
         let state = State::ALL.into_iter().find(|state| state.words() == self.state);
         Ok(PlannedActivity {
             name: name(&self.name)?,

@@ -199,6 +199,8 @@ fn a_file_of_somebody_else_is_not_ours() {
     }
     assert!(!is_ours(b"\xff\xfe# Written by millreeve"));
     assert!(is_ours(format!("{NOTE_HEADER} Plan: none -->\n").as_bytes()));
+    assert!(is_ours(format!("<<<<<<< HEAD\n{NOTE_HEADER} Plan: none -->\n").as_bytes()));
+    assert!(!is_ours(format!("<<<<<<< HEAD\nminutes\n{NOTE_HEADER} Plan: none -->\n").as_bytes()));
 }
 
 #[test]

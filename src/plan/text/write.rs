@@ -48,7 +48,7 @@ pub fn write(plan: &Plan) -> String {
 }
 
 /// The line that carries a seal.
-pub(super) fn seal_line(seal: &str) -> String {
+pub(in crate::plan) fn seal_line(seal: &str) -> String {
     format!("seal     = \"{seal}\"\n")
 }
 
@@ -96,7 +96,8 @@ fn limit(out: &mut String, planned: &PlannedLimit) {
     pair(out, "holds_between", planned.holds_between);
 }
 
-fn line(out: &mut String, key: &str, value: impl FnOnce(&mut String)) {
+/// One line: `key = value`.
+pub(in crate::plan) fn line(out: &mut String, key: &str, value: impl FnOnce(&mut String)) {
     out.push_str(key);
     out.push_str(" = ");
     value(out);
@@ -115,7 +116,8 @@ fn pair(out: &mut String, key: &str, range: Option<(f64, f64)>) {
     }
 }
 
-fn value(out: &mut String, value: &Value) {
+/// A number, or a list of one per period.
+pub(in crate::plan) fn value(out: &mut String, value: &Value) {
     match value {
         Value::Every(number) => number::push(out, *number),
         Value::Listed(numbers) => list(out, numbers),
@@ -133,7 +135,8 @@ fn list(out: &mut String, numbers: &[f64]) {
     out.push(']');
 }
 
-fn quoted(out: &mut String, text: &str) {
+/// A text as a TOML string.
+pub(in crate::plan) fn quoted(out: &mut String, text: &str) {
     if text.bytes().all(|byte| byte.is_ascii_alphanumeric() || matches!(byte, b'_' | b'-' | b' ')) {
         // Most texts need no escape, and there are thousands.
         out.push('"');

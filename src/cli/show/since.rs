@@ -1,0 +1,67 @@
+//! How a plan stands to the release.
+
+use super::number::{short, signed, value};
+use crate::keep::pinned::Pinned;
+use crate::model::Value;
+use crate::model::escape::Plain;
+use crate::plan::Plan;
+use crate::plan::compare::Move;
+use crate::plan::release::{Release, since};
+
+/// The most moves that are told.
+const MOVES: usize = 6;
+
+/// The remark below the tables.
+pub(super) fn remark(pinned: &Pinned, plan: &Plan) -> String {
+    match pinned.release() {
+        Ok(release) => format!("Since the release: {}.", told(release, plan)),
+        Err(why) => format!("Nothing is compared with the release: {why}."),
+    }
+}
+
+/// What has become of the aim and the levels since a release: `+1240 EUR; floor_tile 4180 → 3900, wall_tile 1200 → 1439.2`.
+pub(in crate::cli) fn told(release: &Release, plan: &Plan) -> String {
+    let since = since(release, plan);
+    let moves = &since.comparison.moved;
+    let mut parts = Vec::new();
+    match since.comparison.aim {
+        None => parts.push("the aim cannot be compared, as it or its currency was changed".to_owned()),
+        Some((before, after))
+            if short(before) != short(after) || (moves.is_empty() && before.to_bits() != after.to_bits()) =>
+        {
+            let costs = if plan.minimise { "costs " } else { "" };
+            parts.push(format!("{costs}{}", with_currency(signed(after - before), plan)));
+        }
+        Some(_) if moves.is_empty() => parts.push("nothing moves".to_owned()),
+        Some(_) => parts.push("the same aim".to_owned()),
+    }
+    if !moves.is_empty() {
+        let mut names: Vec<String> = moves.iter().take(MOVES).map(one_move).collect();
+        if moves.len() > MOVES {
+            names.push(format!("{} more moves", moves.len() - MOVES));
+        }
+        parts.push(names.join(", "));
+    }
+    if since.new + since.gone > 0 {
+        parts.push(format!("other activities than released: {} new, {} gone", since.new, since.gone));
+    }
+    parts.join("; ")
+}
+
+/// `earns 129080.21 EUR`.
+pub(in crate::cli) fn aim(plan: &Plan) -> String {
+    let verb = if plan.minimise { "costs" } else { "earns" };
+    format!("{verb} {}", with_currency(short(plan.aim), plan))
+}
+
+fn one_move(told: &Move) -> String {
+    let side = |level: &Option<Value>| level.as_ref().map_or("none".to_owned(), value);
+    format!("{} {} → {}", told.name, side(&told.before), side(&told.after))
+}
+
+fn with_currency(number: String, plan: &Plan) -> String {
+    match plan.currency.as_deref() {
+        Some(currency) if !currency.is_empty() => format!("{number} {}", Plain(currency)),
+        _ => number,
+    }
+}
