@@ -122,7 +122,9 @@ pub(crate) fn optimum(model: &Model, program: &Program) -> Optimum {
         gains,
         worths,
         basis: Basis::default(),
+        exact: true,
         levels_unique: true,
+        spans: None,
         worths_unique: true,
         proof: Proof::default(),
     }
