@@ -27,6 +27,23 @@ pub(super) enum OnDisk {
     Nothing,
 }
 
+/// The record of a model, read when it is first asked for: an edit of a model that is in memory does without.
+pub(super) struct Recorded<'a> {
+    records: &'a Records,
+    model: &'a Path,
+    record: OnceCell<Option<Record>>,
+}
+
+impl<'a> Recorded<'a> {
+    pub(super) fn of(path: &'a ModelPath, records: &'a Records) -> Self {
+        Self { records, model: path.relative(), record: OnceCell::new() }
+    }
+
+    pub(super) fn get(&self) -> Option<&Record> {
+        self.record.get_or_init(|| self.records.load(self.model).ok()).as_ref()
+    }
+}
+
 /// A plan on disk. Its tables are read only if somebody asks for them.
 pub(super) struct Found {
     pub(super) head: Head,

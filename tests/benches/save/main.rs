@@ -44,7 +44,16 @@ fn main() {
     }
     println!(
         "{:>10} {:>9} | {:>8} {:>9} {:>7} | {:>8} {:>7} {:>8} {:>9} {:>7}",
-        "activities", "resources", "floor ms", "beside ms", "ratio", "solve ms", "pivots", "whole ms", "script ms", "ratio"
+        "activities",
+        "resources",
+        "floor ms",
+        "beside ms",
+        "ratio",
+        "solve ms",
+        "pivots",
+        "whole ms",
+        "script ms",
+        "ratio"
     );
     for (activities, resources, edits) in SIZES {
         if !words.is_empty() && !words.contains(&activities.to_string()) {
