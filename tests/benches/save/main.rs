@@ -1,5 +1,5 @@
 //! From save to plan: what a replan takes beside its solve, against the least that anything must do; and the whole of it, against a
-//! script that parses and solves afresh.
+//! script that parses and solves afresh. Edits of a capacity alone, and with the title, so that the text must be read whole.
 //!
 //! `cargo bench --bench save` prints the table; every ratio is the median of ratios of two times that were taken one after the other.
 //! `cargo bench --bench save -- 10000` takes that size only, `cargo bench --bench save -- reading` measures reading alone.
@@ -43,9 +43,10 @@ fn main() {
         return;
     }
     println!(
-        "{:>10} {:>9} | {:>8} {:>9} {:>7} | {:>8} {:>7} {:>8} {:>9} {:>7}",
+        "{:>10} {:>9} {:>6} | {:>8} {:>9} {:>5} | {:>8} {:>6} {:>8} {:>9} {:>5} | {:>7} {:>8}",
         "activities",
         "resources",
+        "read",
         "floor ms",
         "beside ms",
         "ratio",
@@ -53,27 +54,36 @@ fn main() {
         "pivots",
         "whole ms",
         "script ms",
-        "ratio"
+        "ratio",
+        "read ms",
+        "write ms"
     );
     for (activities, resources, edits) in SIZES {
-        if !words.is_empty() && !words.contains(&activities.to_string()) {
-            continue;
+        if words.is_empty() || words.contains(&activities.to_string()) {
+            for retitled in [false, true] {
+                print!("{activities:10} {resources:9} {:>6} | ", if retitled { "whole" } else { "edited" });
+                tell(&measure(activities, resources, edits, retitled));
+            }
         }
-        let measured = measure(activities, resources, edits);
-        let median = |of: fn(&Times) -> f64| median(measured.iter().map(of).collect());
-        println!(
-            "{activities:10} {resources:9} | {:8.2} {:9.2} {:7.2} | {:8.2} {:7.0} {:8.2} {:9.2} {:7.1}",
-            median(|t| t.floor),
-            median(Times::beside),
-            median(|t| t.beside() / t.floor),
-            median(|t| t.solve),
-            median(|t| t.pivots),
-            median(|t| t.whole),
-            median(|t| t.script),
-            median(|t| t.script / t.whole),
-        );
-        println!("{:20} | reading {:.2} ms, writing {:.2} ms", "", median(|t| t.read), median(|t| t.write));
     }
+}
+
+/// One line of the table, but for what was measured.
+fn tell(measured: &[Times]) {
+    let median = |of: fn(&Times) -> f64| median(measured.iter().map(of).collect());
+    println!(
+        "{:8.2} {:9.2} {:5.2} | {:8.2} {:6.0} {:8.2} {:9.2} {:5.1} | {:7.2} {:8.2}",
+        median(|t| t.floor),
+        median(Times::beside),
+        median(|t| t.beside() / t.floor),
+        median(|t| t.solve),
+        median(|t| t.pivots),
+        median(|t| t.whole),
+        median(|t| t.script),
+        median(|t| t.script / t.whole),
+        median(|t| t.read),
+        median(|t| t.write),
+    );
 }
 
 /// The times of one edit, in milliseconds.
@@ -94,8 +104,8 @@ impl Times {
     }
 }
 
-/// The times of edits of capacities that bind, each saved over the one before.
-fn measure(activities: usize, resources: usize, edits: usize) -> Vec<Times> {
+/// The times of edits of capacities that bind, each saved over the one before; with `retitled`, of the title as well.
+fn measure(activities: usize, resources: usize, edits: usize, retitled: bool) -> Vec<Times> {
     let folder = tempfile::tempdir().unwrap();
     let (root, beside) = (folder.path().join("works"), folder.path().join("beside"));
     fs::create_dir_all(&root).unwrap();
@@ -112,6 +122,9 @@ fn measure(activities: usize, resources: usize, edits: usize) -> Vec<Times> {
     for edit in 0..WARMING + edits {
         let scarce = scarce(&path, resources);
         works.edit(*rng.pick(&scarce), &mut rng);
+        if retitled {
+            works.retitle();
+        }
         fs::write(path.full(), works.text()).unwrap();
         let report = replanned(planner.as_mut(), &job);
         let [plan, note] = [path.plan(), path.note()].map(|written| fs::read_to_string(written).unwrap());

@@ -13,7 +13,8 @@ const STEPS: usize = 6;
 
 /// A tileworks: each tile takes some hours of a handful of machines, earns about what they are worth, and most have a market.
 pub(crate) struct Works {
-    pub(crate) capacities: Vec<f64>,
+    edition: usize,
+    capacities: Vec<f64>,
     tiles: Vec<Tile>,
 }
 
@@ -28,12 +29,12 @@ struct Tile {
 impl Works {
     pub(crate) fn new(tiles: usize, machines: usize, rng: &mut Rng) -> Self {
         let capacities = (0..machines).map(|_| rng.between(100.0, 2_000.0).round()).collect();
-        Self { capacities, tiles: (0..tiles).map(|at| Tile::new(at, machines, rng)).collect() }
+        Self { edition: 1, capacities, tiles: (0..tiles).map(|at| Tile::new(at, machines, rng)).collect() }
     }
 
     /// The model as a planner's editor would save it.
     pub(crate) fn text(&self) -> String {
-        let mut out = "format   = 1\ntitle    = \"Tileworks, next fortnight\"\ncurrency = \"EUR\"\n".to_owned();
+        let mut out = format!("format   = 1\ntitle    = \"Tileworks, edition {}\"\ncurrency = \"EUR\"\n", self.edition);
         for (at, capacity) in self.capacities.iter().enumerate() {
             let _ = write!(out, "\n[resources.{}]\nunit     = \"h\"\ncapacity = {capacity}\n", machine(at));
         }
@@ -56,6 +57,11 @@ impl Works {
     pub(crate) fn edit(&mut self, machine: usize, rng: &mut Rng) {
         let capacity = &mut self.capacities[machine];
         *capacity = round(*capacity * rng.between(0.9, 1.1), 1e3);
+    }
+
+    /// Gives the model another title, which stands outside its tables.
+    pub(crate) fn retitle(&mut self) {
+        self.edition += 1;
     }
 }
 
