@@ -1,7 +1,8 @@
 //! Reading a model: from bytes to a checked [`Model`], or to all the faults that keep it from being one.
 //!
 //! One pass with places: the bytes are made a text, the text is parsed into tables that know where they stand, and the
-//! tables are walked once. Nothing is guessed and nothing is passed over: what is not understood is a fault.
+//! tables are walked once. Nothing is guessed and nothing is passed over: what is not understood is a fault. A text that was
+//! read before it was edited is read by its edited tables where that comes to the same ([`again()`]).
 
 mod activity;
 mod again;
