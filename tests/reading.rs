@@ -2,6 +2,8 @@
 
 #![expect(clippy::unwrap_used, reason = "helpers of tests stop at what they did not expect")]
 
+#[path = "reading/again.rs"]
+mod again;
 #[path = "reading/faults.rs"]
 mod faults;
 #[path = "reading/files.rs"]

@@ -4,6 +4,7 @@ use std::collections::{BTreeMap, BTreeSet};
 
 use super::edit::{Edit, Kind, Subject};
 use super::rename::Renames;
+use super::side_by_side::{Pair, side_by_side};
 use crate::model::{Activity, Bound, Limit, Model, Name, Resource, Term, Value};
 
 /// Every edit that turns `old` into `new`, in the order of the model: its own keys, resources, activities, limits.
@@ -11,12 +12,17 @@ use crate::model::{Activity, Bound, Limit, Model, Name, Resource, Term, Value};
 /// A rename is a withdrawal and something new, unless every number agrees: then it is wording, told under the new name.
 #[must_use]
 pub fn compare(old: &Model, new: &Model) -> Vec<Edit> {
-    let renames = Renames::between(old, new);
+    compare_renamed(old, new, &Renames::between(old, new))
+}
+
+/// As [`compare`], where the renames are known: those [between](Renames::between) the two models.
+#[must_use]
+pub fn compare_renamed(old: &Model, new: &Model, renames: &Renames) -> Vec<Edit> {
     if renames.is_empty() {
         return compared(old, new).0;
     }
     let mut edits = compared(&renames.applied(old), new);
-    edits.renames(&renames);
+    edits.renames(renames);
     edits.0
 }
 
@@ -36,16 +42,12 @@ fn compared(old: &Model, new: &Model) -> Edits {
     edits
 }
 
-/// What was there and what is.
-type Pair<'a, T> = (Option<&'a T>, Option<&'a T>);
-
 /// What differs between two maps, by name.
 fn pairs<'a, T: PartialEq>(
     old: &'a BTreeMap<Name, T>,
     new: &'a BTreeMap<Name, T>,
 ) -> impl Iterator<Item = (&'a Name, Pair<'a, T>)> {
-    let names: BTreeSet<&Name> = old.keys().chain(new.keys()).collect();
-    names.into_iter().map(move |name| (name, (old.get(name), new.get(name)))).filter(|(_, (was, is))| was != is)
+    side_by_side(old, new).filter(|(_, (was, is))| was != is)
 }
 
 /// The tags that limits ask for, before or after.

@@ -7,9 +7,10 @@ pub mod compare;
 pub mod edit;
 pub mod kept;
 pub mod rename;
+mod side_by_side;
 
 pub use apply::apply;
-pub use compare::compare;
+pub use compare::{compare, compare_renamed};
 pub use edit::{Edit, Kind, Subject};
 pub use kept::{Kept, LastPlan};
 pub use rename::Renames;

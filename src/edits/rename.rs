@@ -2,6 +2,7 @@
 
 use std::collections::BTreeMap;
 
+use super::side_by_side::side_by_side;
 use crate::model::{Activity, Limit, Model, Name, Resource, Term, Value};
 
 /// What was renamed from one model to the next: new names by old ones.
@@ -72,8 +73,14 @@ fn matches<T>(
     new: &BTreeMap<Name, T>,
     same: impl Fn((&Name, &T), (&Name, &T)) -> bool,
 ) -> BTreeMap<Name, Name> {
-    let gone: Vec<_> = old.iter().filter(|(name, _)| !new.contains_key(*name)).collect();
-    let come: Vec<_> = new.iter().filter(|(name, _)| !old.contains_key(*name)).collect();
+    let (mut gone, mut come) = (Vec::new(), Vec::new());
+    for (name, pair) in side_by_side(old, new) {
+        match pair {
+            (Some(was), None) => gone.push((name, was)),
+            (None, Some(is)) => come.push((name, is)),
+            _ => {}
+        }
+    }
     let mut pairs = BTreeMap::new();
     for &was in &gone {
         let mut fits = come.iter().filter(|&&is| same(was, is));

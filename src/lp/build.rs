@@ -3,11 +3,14 @@
 //! One column per activity and period (a prospect's is held at 0, so that it is priced and never made), one row per resource
 //! and per limit. A resource's cost is charged to the activities that use it.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, HashMap};
 
 use super::program::{Column, Key, Program, Row, RowIndex, Sense};
 use crate::model::name::Name;
 use crate::model::{Activity, Aim, Bound, Horizon, Limit, Model, Period, Term, Value};
+
+/// What the key of an activity's level begins with.
+const ACTIVITIES: &str = "activities";
 
 /// The program behind `model`.
 #[must_use]
@@ -41,7 +44,7 @@ pub fn build(model: &Model) -> Program {
                 key: activity_key(name, &model.horizon, period),
                 lower: if activity.prospect { 0.0 } else { activity.at_least.at(period) },
                 upper: if activity.prospect { 0.0 } else { activity.at_most.at(period) },
-                aim: worth_of_one(model, activity, period),
+                aim: worth(model.aim, activity, period, |resource| entries.cost(resource, period)),
                 entries: entries.of_activity(name, activity, period),
             });
         }
@@ -61,7 +64,18 @@ pub fn build(model: &Model) -> Program {
 /// The key of an activity's level in a period.
 #[must_use]
 pub fn activity_key(name: &Name, horizon: &Horizon, period: Period) -> Key {
-    key("activities", name, None, horizon.label(period))
+    key(ACTIVITIES, name, None, horizon.label(period))
+}
+
+/// Whether `key` is the [key of an activity's level](activity_key) in a period, without making that.
+#[must_use]
+pub fn is_activity_key(key: &Key, name: &Name, horizon: &Horizon, period: Period) -> bool {
+    let rest = key.as_str().strip_prefix(ACTIVITIES).and_then(|rest| rest.strip_prefix('.'));
+    let rest = rest.and_then(|rest| rest.strip_prefix(name.as_str()));
+    match horizon.label(period) {
+        None => rest == Some(""),
+        Some(label) => rest.and_then(|rest| rest.strip_prefix('.')) == Some(label),
+    }
 }
 
 /// The key of a resource's row in a period.
@@ -77,8 +91,13 @@ pub fn limit_key(name: &Name, side: Option<&str>, horizon: &Horizon, period: Per
 }
 
 fn key(table: &str, name: &Name, side: Option<&str>, period: Option<&str>) -> Key {
-    let mut text = format!("{table}.{name}");
-    for part in [side, period].into_iter().flatten() {
+    let longer = [side, period].into_iter().flatten();
+    let length = table.len() + 1 + name.as_str().len() + longer.clone().map(|part| 1 + part.len()).sum::<usize>();
+    let mut text = String::with_capacity(length);
+    text.push_str(table);
+    text.push('.');
+    text.push_str(name.as_str());
+    for part in longer {
         text.push('.');
         text.push_str(part);
     }
@@ -120,13 +139,15 @@ pub fn sides(limit: &Limit, period: Period) -> Vec<Side> {
 /// What one unit of an activity adds to the aim: price less costs, or costs alone where they are to be small.
 #[must_use]
 pub fn worth_of_one(model: &Model, activity: &Activity, period: Period) -> f64 {
-    let resources: f64 = activity
-        .uses
-        .iter()
-        .filter_map(|(name, rate)| model.resources.get(name).map(|resource| rate.at(period) * resource.cost.at(period)))
-        .sum();
+    worth(model.aim, activity, period, |name| model.resources.get(name).map(|resource| resource.cost.at(period)))
+}
+
+/// As [`worth_of_one`], with the cost of a resource as `cost_of` tells it.
+fn worth(aim: Aim, activity: &Activity, period: Period, cost_of: impl Fn(&Name) -> Option<f64>) -> f64 {
+    let uses = activity.uses.iter();
+    let resources: f64 = uses.filter_map(|(name, rate)| cost_of(name).map(|cost| rate.at(period) * cost)).sum();
     let cost = activity.cost.at(period) + resources;
-    match model.aim {
+    match aim {
         Aim::Maximise => activity.price.at(period) - cost,
         Aim::Minimise => cost,
     }
@@ -146,19 +167,29 @@ fn in_order<'m>(rows: Vec<Row>, sums: Vec<Sum<'m>>) -> (Vec<Row>, Vec<Sum<'m>>) 
 }
 
 /// The rows' sums, turned round so that an activity's column can be gathered without looking at every row.
+#[derive(Default)]
 struct Entries<'m> {
-    resources: BTreeMap<(&'m Name, Period), RowIndex>,
-    terms: BTreeMap<(Term, Period), Vec<(RowIndex, f64)>>,
+    resources: HashMap<(&'m Name, Period), Used>,
+    activities: HashMap<(&'m Name, Period), Vec<(RowIndex, f64)>>,
+    tags: HashMap<(&'m Name, Period), Vec<(RowIndex, f64)>>,
+    all: HashMap<Period, Vec<(RowIndex, f64)>>,
+}
+
+/// What a column must know of a resource: its row, and what a unit costs.
+struct Used {
+    row: RowIndex,
+    cost: f64,
 }
 
 impl<'m> Entries<'m> {
     fn of(model: &'m Model, sums: &[Sum<'m>]) -> Self {
-        let mut entries = Self { resources: BTreeMap::new(), terms: BTreeMap::new() };
+        let mut entries = Self::default();
         for (position, sum) in sums.iter().enumerate() {
             let row = RowIndex(position);
             match *sum {
                 Sum::Resource(name, period) => {
-                    entries.resources.insert((name, period), row);
+                    let cost = model.resources.get(name).map_or(0.0, |resource| resource.cost.at(period));
+                    entries.resources.insert((name, period), Used { row, cost });
                 }
                 Sum::Limit(limit, bound, period) => {
                     entries.add(&limit.terms, 1.0, row, period);
@@ -174,33 +205,44 @@ impl<'m> Entries<'m> {
 
     fn add(&mut self, terms: &'m BTreeMap<Term, Value>, factor: f64, row: RowIndex, period: Period) {
         for (term, coefficient) in terms {
-            self.terms.entry((term.clone(), period)).or_default().push((row, coefficient.at(period) * factor));
+            let list = match term {
+                Term::Activity(name) => self.activities.entry((name, period)).or_default(),
+                Term::Tag(tag) => self.tags.entry((tag, period)).or_default(),
+                Term::All => self.all.entry(period).or_default(),
+            };
+            list.push((row, coefficient.at(period) * factor));
         }
     }
 
+    /// What one unit of a resource costs; `None` where there is no such resource.
+    fn cost(&self, resource: &Name, period: Period) -> Option<f64> {
+        self.resources.get(&(resource, period)).map(|used| used.cost)
+    }
+
     fn of_activity(&self, name: &Name, activity: &Activity, period: Period) -> Vec<(RowIndex, f64)> {
-        let uses = activity
-            .uses
-            .iter()
-            .filter_map(|(resource, rate)| self.resources.get(&(resource, period)).map(|&row| (row, rate.at(period))));
-        let terms = std::iter::once(Term::Activity(name.clone()))
-            .chain(activity.tags.iter().cloned().map(Term::Tag))
-            .chain(std::iter::once(Term::All));
-        let limits = terms.filter_map(|term| self.terms.get(&(term, period))).flatten().copied();
-        summed(uses.chain(limits).collect())
+        let mut entries = Vec::with_capacity(activity.uses.len());
+        for (resource, rate) in &activity.uses {
+            if let Some(used) = self.resources.get(&(resource, period)) {
+                entries.push((used.row, rate.at(period)));
+            }
+        }
+        let by_tag = activity.tags.iter().filter_map(|tag| self.tags.get(&(tag, period)));
+        let lists = self.activities.get(&(name, period)).into_iter().chain(by_tag).chain(self.all.get(&period));
+        entries.extend(lists.flatten());
+        summed(entries)
     }
 }
 
 /// Entries in order of rows, those of one row added up, zeros left out.
 fn summed(mut entries: Vec<(RowIndex, f64)>) -> Vec<(RowIndex, f64)> {
     entries.sort_by_key(|&(row, _)| row);
-    let mut sums: Vec<(RowIndex, f64)> = Vec::with_capacity(entries.len());
-    for (row, value) in entries {
-        match sums.last_mut() {
-            Some((last, sum)) if *last == row => *sum += value,
-            _ => sums.push((row, value)),
+    entries.dedup_by(|next, sum| {
+        let same = next.0 == sum.0;
+        if same {
+            sum.1 += next.1;
         }
-    }
-    sums.retain(|&(_, value)| value != 0.0);
-    sums
+        same
+    });
+    entries.retain(|&(_, value)| value != 0.0);
+    entries
 }

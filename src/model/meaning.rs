@@ -21,7 +21,7 @@ impl Meaning {
     pub fn of(model: &Model) -> Self {
         let mut digest = Digest::new();
         digest.model(model);
-        Self(*digest.0.finalize().as_bytes())
+        Self(digest.finish())
     }
 
     /// The meaning whose text is `text`: 64 hexadecimal digits, as [`Display`](fmt::Display) writes them.
@@ -44,13 +44,33 @@ impl fmt::Debug for Meaning {
 }
 
 /// Feeds a model to the hash without ambiguity: every text and list is preceded by its length, every number is its bits.
-struct Digest(blake3::Hasher);
+struct Digest {
+    hasher: blake3::Hasher,
+    /// What has not been fed yet: the hash takes large pieces many times faster than small ones.
+    waiting: Vec<u8>,
+}
+
+/// Bytes that wait at most.
+const PIECE: usize = 16 * 1024;
 
 impl Digest {
     fn new() -> Self {
-        let mut hasher = blake3::Hasher::new();
-        hasher.update(b"millreeve meaning 1\n");
-        Self(hasher)
+        let mut digest = Self { hasher: blake3::Hasher::new(), waiting: Vec::with_capacity(2 * PIECE) };
+        digest.bytes(b"millreeve meaning 1\n");
+        digest
+    }
+
+    fn finish(mut self) -> [u8; 32] {
+        self.hasher.update(&self.waiting);
+        *self.hasher.finalize().as_bytes()
+    }
+
+    fn bytes(&mut self, bytes: &[u8]) {
+        self.waiting.extend_from_slice(bytes);
+        if self.waiting.len() >= PIECE {
+            self.hasher.update(&self.waiting);
+            self.waiting.clear();
+        }
     }
 
     fn model(&mut self, model: &Model) {
@@ -137,16 +157,16 @@ impl Digest {
     }
 
     fn number(&mut self, number: f64) {
-        self.0.update(&bits(number).to_le_bytes());
+        self.bytes(&bits(number).to_le_bytes());
     }
 
     fn text(&mut self, text: &str) {
         self.count(text.len());
-        self.0.update(text.as_bytes());
+        self.bytes(text.as_bytes());
     }
 
     fn count(&mut self, count: usize) {
-        self.0.update(&(count as u64).to_le_bytes());
+        self.bytes(&(count as u64).to_le_bytes());
     }
 }
 

@@ -96,7 +96,7 @@ pub fn compare(before: &Plan, after: &Plan) -> Comparison {
     let comparable = before.minimise == after.minimise && before.currency == after.currency;
     comparison.aim = comparable.then_some((before.aim, after.aim));
     for (old, new) in paired(&before.activities, &after.activities, |planned| &planned.name) {
-        let Some(name) = new.or(old).map(|planned| planned.name.clone()) else { continue };
+        let Some(name) = new.or(old).map(|planned| &planned.name) else { continue };
         let (was_made, is_made) = (old.is_some_and(is_made), new.is_some_and(is_made));
         match (was_made, is_made) {
             (false, true) => comparison.entered.push(name.clone()),
@@ -106,16 +106,16 @@ pub fn compare(before: &Plan, after: &Plan) -> Comparison {
         if new.is_some_and(would_enter) && !old.is_some_and(would_enter) {
             comparison.would_enter.push(name.clone());
         }
-        let (before, after) = (old.map(|planned| planned.level.clone()), new.map(|planned| planned.level.clone()));
-        if (was_made || is_made) && differ(before.as_ref(), after.as_ref()) {
-            comparison.moved.push(Move { name, before, after });
+        let (before, after) = (old.map(|planned| &planned.level), new.map(|planned| &planned.level));
+        if (was_made || is_made) && differ(before, after) {
+            comparison.moved.push(Move { name: name.clone(), before: before.cloned(), after: after.cloned() });
         }
     }
     for (old, new) in paired(&before.resources, &after.resources, |planned| &planned.name) {
-        let Some(name) = new.or(old).map(|planned| planned.name.clone()) else { continue };
+        let Some(name) = new.or(old).map(|planned| &planned.name) else { continue };
         match (old.is_some_and(is_scarce), new.is_some_and(is_scarce)) {
-            (false, true) => comparison.binds.push(name),
-            (true, false) => comparison.eases.push(name),
+            (false, true) => comparison.binds.push(name.clone()),
+            (true, false) => comparison.eases.push(name.clone()),
             _ => {}
         }
     }

@@ -177,10 +177,13 @@ impl<'a> Maker<'a> {
     fn columns_of(&self, position: usize, name: &Name) -> Result<Vec<(Period, ColumnIndex)>, MakeError> {
         let mut columns = Vec::with_capacity(1);
         for period in self.model.horizon.periods() {
+            let guessed = self.program.columns.get(position);
+            if guessed.is_some_and(|column| build::is_activity_key(&column.key, name, &self.model.horizon, period)) {
+                columns.push((period, ColumnIndex(position)));
+                continue;
+            }
             let key = build::activity_key(name, &self.model.horizon, period);
-            let guessed = self.program.columns.get(position).is_some_and(|column| column.key == key);
-            let found = if guessed { Some(ColumnIndex(position)) } else { self.program.column(&key) };
-            columns.push((period, found.ok_or(MakeError::Missing(key))?));
+            columns.push((period, self.program.column(&key).ok_or(MakeError::Missing(key))?));
         }
         Ok(columns)
     }

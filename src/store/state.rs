@@ -4,7 +4,8 @@
 //! plan and note, so that a start can finish what was interrupted without solving.
 //!
 //! Layout of a record file: a line with the version, a line with the BLAKE3 hash of all that follows, a line of JSON with the small
-//! things and the lengths of the texts, then source, plan and note as they are.
+//! things and the lengths of the texts, then the texts as they are: source, plan, note, the columns of the basis and its rows. A basis
+//! has a line for each, a letter for the position and the key: it is written at every replan, and may be long.
 
 use std::borrow::Cow;
 use std::fs;
@@ -20,7 +21,7 @@ use crate::lp::Key;
 use crate::solver::basis::{NamedBasis, Position};
 
 /// Version of the layout.
-pub const VERSION: u32 = 1;
+pub const VERSION: u32 = 2;
 
 const MAGIC: &str = "millreeve record ";
 const SUBFOLDER: &str = "records";
@@ -79,16 +80,9 @@ struct Small<'a> {
     model: String,
     answers: Cow<'a, str>,
     cold_pivots: Option<usize>,
-    basis: Option<Columns<'a>>,
-    source: usize,
-    plan: usize,
-    note: usize,
-}
-
-#[derive(Serialize, Deserialize)]
-struct Columns<'a> {
-    columns: Vec<(Cow<'a, str>, Position)>,
-    rows: Vec<(Cow<'a, str>, Position)>,
+    has_basis: bool,
+    /// Bytes of source, plan, note, columns and rows.
+    lengths: [usize; 5],
 }
 
 impl Records {
@@ -161,26 +155,28 @@ fn version(bytes: &[u8]) -> Option<u32> {
 }
 
 fn encode(record: &Record) -> Result<Vec<u8>, StoreError> {
-    let keyed = |list: &'_ [(Key, Position)]| -> Vec<(Cow<'static, str>, Position)> {
-        list.iter().map(|(key, position)| (Cow::Owned(key.as_str().to_owned()), *position)).collect()
-    };
+    let lists = record.basis.as_ref().map(|basis| (listed(&basis.columns), listed(&basis.rows)));
+    let (columns, rows) = lists.unwrap_or_default();
+    let texts = [&record.source, record.plan.as_bytes(), record.note.as_bytes(), columns.as_bytes(), rows.as_bytes()];
     let small = Small {
         model: hexadecimal(record.model.as_os_str().as_bytes()),
         answers: Cow::Borrowed(&record.answers),
         cold_pivots: record.cold_pivots,
-        basis: record.basis.as_ref().map(|basis| Columns { columns: keyed(&basis.columns), rows: keyed(&basis.rows) }),
-        source: record.source.len(),
-        plan: record.plan.len(),
-        note: record.note.len(),
+        has_basis: record.basis.is_some(),
+        lengths: texts.map(<[u8]>::len),
     };
-    let mut body =
-        serde_json::to_vec(&small).map_err(|error| StoreError::failed(Step::Write, &record.model)(error.into()))?;
-    body.push(b'\n');
-    body.extend_from_slice(&record.source);
-    body.extend_from_slice(record.plan.as_bytes());
-    body.extend_from_slice(record.note.as_bytes());
-    let mut bytes = format!("{MAGIC}{VERSION}\n{}\n", blake3::hash(&body).to_hex()).into_bytes();
-    bytes.append(&mut body);
+    let json =
+        serde_json::to_string(&small).map_err(|error| StoreError::failed(Step::Write, &record.model)(error.into()))?;
+    let mut hasher = blake3::Hasher::new();
+    let parts = [json.as_bytes(), b"\n"].into_iter().chain(texts);
+    for part in parts.clone() {
+        hasher.update(part);
+    }
+    let mut bytes = format!("{MAGIC}{VERSION}\n{}\n", hasher.finalize().to_hex()).into_bytes();
+    bytes.reserve_exact(parts.clone().map(<[u8]>::len).sum());
+    for part in parts {
+        bytes.extend_from_slice(part);
+    }
     Ok(bytes)
 }
 
@@ -195,33 +191,64 @@ fn decode(bytes: &[u8]) -> Result<Record, Lost> {
     if blake3::Hash::from_hex(hash).ok() != Some(blake3::hash(body)) {
         return Err(Lost::Damaged("checksum"));
     }
-    let (json, texts) = line(body)?;
+    let (json, mut rest) = line(body)?;
     let small: Small<'_> = serde_json::from_slice(json).map_err(|_| Lost::Damaged("layout"))?;
-    let (source, texts) = texts.split_at_checked(small.source).ok_or(Lost::Damaged("length"))?;
-    let (plan, note) = texts.split_at_checked(small.plan).ok_or(Lost::Damaged("length"))?;
-    if note.len() != small.note {
+    let mut texts = [&[] as &[u8]; 5];
+    for (text, length) in texts.iter_mut().zip(small.lengths) {
+        (*text, rest) = rest.split_at_checked(length).ok_or(Lost::Damaged("length"))?;
+    }
+    if !rest.is_empty() {
         return Err(Lost::Damaged("length"));
     }
-    let text = |bytes: &[u8]| String::from_utf8(bytes.to_owned()).map_err(|_| Lost::Damaged("text"));
+    let [source, plan, note, columns, rows] = texts;
+    let basis = || Ok(NamedBasis { columns: read_list(text(columns)?)?, rows: read_list(text(rows)?)? });
     Ok(Record {
         model: path_of(&small.model).ok_or(Lost::Damaged("path"))?,
         answers: small.answers.into_owned(),
         source: source.to_owned(),
-        basis: small.basis.map(basis).transpose()?,
-        plan: text(plan)?,
-        note: text(note)?,
+        basis: small.has_basis.then(basis).transpose()?,
+        plan: text(plan)?.to_owned(),
+        note: text(note)?.to_owned(),
         cold_pivots: small.cold_pivots,
     })
 }
 
-fn basis(columns: Columns<'_>) -> Result<NamedBasis, Lost> {
-    let keyed = |list: Vec<(Cow<'_, str>, Position)>| {
-        // Positions are looked up by halving.
-        let ascending = list.is_sorted_by(|left, right| left.0 < right.0);
-        let list = list.into_iter().map(|(key, position)| (Key::new(&key), position)).collect();
-        ascending.then_some(list).ok_or(Lost::Damaged("order"))
+fn text(bytes: &[u8]) -> Result<&str, Lost> {
+    std::str::from_utf8(bytes).map_err(|_| Lost::Damaged("text"))
+}
+
+/// One side of a basis as text: a letter and a key on each line.
+fn listed(list: &[(Key, Position)]) -> String {
+    let mut out = String::with_capacity(list.iter().map(|(key, _)| key.as_str().len() + 2).sum());
+    for (key, position) in list {
+        out.push(match position {
+            Position::Basic => 'b',
+            Position::AtLower => 'l',
+            Position::AtUpper => 'u',
+            Position::AtZero => 'z',
+        });
+        out.push_str(key.as_str());
+        out.push('\n');
+    }
+    out
+}
+
+fn read_list(text: &str) -> Result<Vec<(Key, Position)>, Lost> {
+    let read = |line: &str| {
+        let mut signs = line.chars();
+        let position = match signs.next()? {
+            'b' => Position::Basic,
+            'l' => Position::AtLower,
+            'u' => Position::AtUpper,
+            'z' => Position::AtZero,
+            _ => return None,
+        };
+        Some((Key::new(signs.as_str()), position))
     };
-    Ok(NamedBasis { columns: keyed(columns.columns)?, rows: keyed(columns.rows)? })
+    let list: Option<Vec<_>> = text.split_terminator('\n').map(read).collect();
+    // Positions are looked up by halving.
+    let ascending = |list: &Vec<(Key, Position)>| list.is_sorted_by(|left, right| left.0 < right.0);
+    list.filter(ascending).ok_or(Lost::Damaged("order"))
 }
 
 /// The first line, without its end, and what follows it.
@@ -293,6 +320,16 @@ mod tests {
             damaged[at] ^= 1;
             assert!(decode(&damaged).is_err(), "flipped at {at}");
         }
+    }
+
+    #[test]
+    fn an_older_layout_is_not_read_but_replaced() {
+        let state = tempfile::tempdir().unwrap();
+        let records = Records::open(state.path()).unwrap();
+        fs::write(records.path(&record().model), format!("{MAGIC}{}\nwhatever", VERSION - 1)).unwrap();
+        assert!(matches!(records.load(&record().model), Err(Lost::Version(version)) if version == VERSION - 1));
+        records.save(&record()).unwrap();
+        assert_eq!(records.load(&record().model).unwrap(), record());
     }
 
     #[test]

@@ -293,7 +293,7 @@ fn a_start_over_current_plans_solves_nothing() {
     fs::remove_dir_all(works.path(".millreeve")).unwrap();
     start();
     for record in fs::read_dir(works.path(".millreeve/records")).unwrap() {
-        write(&record.unwrap().path(), "millreeve record 1\nnot one");
+        write(&record.unwrap().path(), "millreeve record 2\nnot one");
     }
     start();
     works.check();

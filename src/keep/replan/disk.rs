@@ -1,7 +1,7 @@
 //! The plan and the note as they lie on disk.
 
 use std::cell::OnceCell;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 
 use crate::keep::path::ModelPath;
 use crate::plan::text::{self, Head, is_ours};
@@ -21,6 +21,23 @@ pub(super) enum OnDisk {
     Good(Box<Found>),
     /// Nothing, or nothing that can be gone by: edited, damaged, of a newer version, not ours.
     Nothing,
+}
+
+/// The record of a model, read when it is first asked for: an edit of a model that is in memory does without.
+pub(super) struct Recorded<'a> {
+    records: &'a Records,
+    model: &'a Path,
+    record: OnceCell<Option<Record>>,
+}
+
+impl<'a> Recorded<'a> {
+    pub(super) fn of(path: &'a ModelPath, records: &'a Records) -> Self {
+        Self { records, model: path.relative(), record: OnceCell::new() }
+    }
+
+    pub(super) fn get(&self) -> Option<&Record> {
+        self.record.get_or_init(|| self.records.load(self.model).ok()).as_ref()
+    }
 }
 
 /// A plan on disk. Its tables are read only if somebody asks for them.

@@ -40,7 +40,7 @@ impl Replanner {
         };
         let held = last_good.and_then(|text| marked(&text, &Standing::Held(reason.clone())).ok());
         let plan = held.as_deref().and_then(|text| text::read(text).ok());
-        let last = self.memory.known(&job.path, record.as_ref());
+        let last = self.memory.known(&job.path, || record.as_ref());
         let telling = Telling::of(job).edited(read.map_or(&[], |(_, edits)| edits), &[]).model(model);
         let telling = telling.titled(last.as_ref().map(|known| &known.model));
         let seal = plan.as_ref().map(|written| written.seal.as_str());
@@ -62,7 +62,7 @@ impl Replanner {
     pub(super) fn retire(&mut self, job: &Job) -> Result<Told, Stopped> {
         let disk = Disk::of(&job.path);
         let record = self.memory.records(&job.state)?.load(job.path.relative()).ok();
-        let last = self.memory.known(&job.path, record.as_ref());
+        let last = self.memory.known(&job.path, || record.as_ref());
         let telling = Telling::of(job).titled(last.as_ref().map(|known| &known.model));
         let mut changed = false;
         if let OnDisk::Good(found) = disk.plan()

@@ -10,7 +10,8 @@ use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 use crate::edits::{LastPlan, Renames};
 use crate::keep::path::ModelPath;
 use crate::lp::{Key, Program, build};
-use crate::model::{Model, Name, read};
+use crate::model::read::{self, Before, Blocks, Reading};
+use crate::model::{Model, Name};
 use crate::plan::last::last_plan;
 use crate::plan::{Plan, text};
 use crate::solver::basis::NamedBasis;
@@ -22,6 +23,8 @@ const KEPT: usize = 256;
 
 /// The last accepted model and what was planned for it.
 pub(super) struct Known {
+    pub(super) bytes: Vec<u8>,
+    pub(super) blocks: Blocks,
     pub(super) model: Model,
     pub(super) program: Program,
     pub(super) plan: Plan,
@@ -32,10 +35,15 @@ pub(super) struct Known {
 impl Known {
     /// What a record tells, if what it holds can still be read.
     fn from(record: &Record) -> Option<Self> {
-        let model = read::text(&record.model, &record.source).ok()?.model;
+        let (Reading { model, .. }, blocks) = read::text_and_blocks(&record.model, &record.source).ok()?;
         let plan = text::read(&record.plan).ok()?.plan;
-        let program = build(&model);
-        Some(Self { model, program, plan, basis: record.basis.clone(), cold_pivots: record.cold_pivots })
+        let (bytes, basis, program) = (record.source.clone(), record.basis.clone(), build(&model));
+        Some(Self { bytes, blocks, model, program, plan, basis, cold_pivots: record.cold_pivots })
+    }
+
+    /// The text that the model was read from.
+    pub(super) fn text(&self) -> Before<'_> {
+        Before { bytes: &self.bytes, blocks: &self.blocks, model: &self.model }
     }
 
     /// What the solver can start from.
@@ -53,7 +61,9 @@ impl Known {
         rename(&mut plan.resources, &renames.resources, |planned| &planned.name, |planned, name| planned.name = name);
         rename(&mut plan.activities, &renames.activities, |planned| &planned.name, |planned, name| planned.name = name);
         rename(&mut plan.limits, &renames.limits, |planned| &planned.name, |planned, name| planned.name = name);
-        Self { model, program, plan, basis, cold_pivots: self.cold_pivots }
+        // Under the new names the text says something else.
+        let (bytes, blocks) = (Vec::new(), Blocks::default());
+        Self { bytes, blocks, model, program, plan, basis, cold_pivots: self.cold_pivots }
     }
 
     /// What mattered in the plan.
@@ -121,18 +131,21 @@ impl Memory {
         Ok(records)
     }
 
-    /// What is known of a model: from memory, else from its record.
-    pub(super) fn known(&self, path: &ModelPath, record: Option<&Record>) -> Option<Arc<Known>> {
-        let answers = |known: &Known| record.is_none_or(|record| record.answers == known.plan.answers.to_string());
-        if let Some((_, known)) = self.inner().known.get(path)
-            && answers(known)
-        {
-            return Some(known.clone());
-        }
-        Known::from(record?).map(Arc::new)
+    /// What is known of a model: from memory, else from its record, which is asked for only then.
+    pub(super) fn known<'r>(
+        &self,
+        path: &ModelPath,
+        record: impl FnOnce() -> Option<&'r Record>,
+    ) -> Option<Arc<Known>> {
+        self.at_hand(path).or_else(|| Known::from(record()?).map(Arc::new))
     }
 
-    /// Keeps what was planned for a model, in place of what was known.
+    /// What is in memory of a model. It is what the model's record says: whoever is about to write another one first makes this forgotten.
+    pub(super) fn at_hand(&self, path: &ModelPath) -> Option<Arc<Known>> {
+        self.inner().known.get(path).map(|(_, known)| known.clone())
+    }
+
+    /// Keeps what was planned for a model and recorded, in place of what was known.
     pub(super) fn keep(&self, path: &ModelPath, known: Known) {
         let mut inner = self.inner();
         inner.clock += 1;

@@ -10,10 +10,11 @@ mod pin;
 mod telling;
 mod worths;
 
+use std::borrow::Cow;
 use std::sync::Arc;
 use std::time::{Duration, Instant};
 
-use self::disk::{Disk, OnDisk};
+use self::disk::{Disk, OnDisk, Recorded};
 use self::memory::{Known, Memory};
 use self::telling::Telling;
 use super::afresh::Planned;
@@ -21,11 +22,11 @@ use super::pool::{Factory, Job, Planner, Replanned, Stop, What};
 use super::report::Report;
 use super::scan::Stamp;
 use super::settings::Settings;
-use crate::edits::{Edit, Kept, Renames, compare};
+use crate::edits::{Edit, Kept, Renames, compare, compare_renamed};
 use crate::lp::{Program, build};
 use crate::model::Model;
 use crate::model::meaning::Meaning;
-use crate::model::read::{self, FileProblem};
+use crate::model::read::{self, Blocks, FileProblem};
 use crate::plan::note::{Reckoning, Trouble, Verdict};
 use crate::plan::text::{self, marked};
 use crate::plan::{self, Plan, Standing};
@@ -74,6 +75,7 @@ impl From<StoreError> for Stopped {
 /// A model that was read, on its way to a plan.
 struct Read {
     bytes: Vec<u8>,
+    blocks: Blocks,
     model: Model,
     meaning: Meaning,
 }
@@ -126,9 +128,11 @@ impl Replanner {
     ) -> Result<Told, Stopped> {
         let disk = Disk::of(&job.path);
         let records = self.memory.records(&job.state)?;
-        let record = records.load(job.path.relative()).ok();
+        let recorded = Recorded::of(&job.path, &records);
+        let at_hand = self.memory.at_hand(&job.path);
         // The bytes of the last plan: nothing needs to be parsed to know that it stands.
-        if let Some(record) = &record
+        if at_hand.as_ref().is_none_or(|known| known.bytes == bytes)
+            && let Some(record) = recorded.get()
             && record.source == bytes
             && text::is_current(&record.plan)
         {
@@ -139,8 +143,11 @@ impl Replanner {
                 return Ok(Told { report, changed });
             }
         }
-        let model = match read::text(job.path.relative(), &bytes) {
-            Ok(reading) => reading.model,
+        let again = at_hand.and_then(|known| read::again(job.path.relative(), &bytes, known.text()));
+        let whole =
+            || read::text_and_blocks(job.path.relative(), &bytes).map(|(reading, blocks)| (reading.model, blocks));
+        let (model, blocks) = match again.map_or_else(whole, Ok) {
+            Ok(read) => read,
             Err(faults) => {
                 // What was read may be half of a save that has begun since: then there is no fault, but another look to be had.
                 if Stamp::of(&job.path.full()) != stamp {
@@ -151,15 +158,16 @@ impl Replanner {
             }
         };
         let meaning = Meaning::of(&model);
-        let read = Read { bytes, model, meaning };
+        let read = Read { bytes, blocks, model, meaning };
         heed(stop)?;
-        let known = self.memory.known(&job.path, record.as_ref());
+        let known = self.memory.known(&job.path, || recorded.get());
         let on_disk = disk.plan();
-        if let Some(told) = self.keep_standing(job, &read, known.as_deref(), record.as_ref(), &on_disk)? {
+        if let Some(told) = self.keep_standing(job, &read, known.as_deref(), &recorded, &on_disk)? {
             return Ok(told);
         }
+        drop(recorded);
         let read_in = begun.elapsed();
-        let mut told = self.solve(job, read, known, stop)?;
+        let mut told = self.solve(job, read, known, on_disk, stop)?;
         told.report.milliseconds.read = milliseconds(read_in);
         Ok(told)
     }
@@ -170,13 +178,15 @@ impl Replanner {
         job: &Job,
         read: &Read,
         known: Option<&Known>,
-        record: Option<&Record>,
+        recorded: &Recorded<'_>,
         on_disk: &OnDisk,
     ) -> Result<Option<Told>, Stopped> {
         let answers = read.meaning.to_string();
         let plan_text = match on_disk {
             OnDisk::Good(found) if found.head.answers == read.meaning => found.text.clone(),
-            _ => match record {
+            // The record, of which this is a copy, is about another meaning too.
+            _ if known.is_some_and(|known| known.plan.answers != read.meaning) => return Ok(None),
+            _ => match recorded.get() {
                 Some(record) if record.answers == answers && !record.plan.is_empty() => record.plan.clone(),
                 _ => return Ok(None),
             },
@@ -184,6 +194,7 @@ impl Replanner {
         if !text::follows_rules(&plan_text) {
             return Ok(None);
         }
+        let record = recorded.get();
         let was = text::read(&plan_text).ok();
         let Ok(plan_text) = marked(&plan_text, &Standing::Current) else { return Ok(None) };
         let Ok(now) = text::read(&plan_text) else { return Ok(None) };
@@ -216,16 +227,24 @@ impl Replanner {
             note,
             cold_pivots: record.and_then(|record| record.cold_pivots),
         };
-        let written = disk.publish(&self.memory.records(&job.state)?, &record)?;
         self.memory.forget(&job.path);
+        let written = disk.publish(&self.memory.records(&job.state)?, &record)?;
         let report = telling.planned(before, &now.plan, None);
         Ok(Some(Told { report, changed: written }))
     }
 
-    fn solve(&mut self, job: &Job, read: Read, known: Option<Arc<Known>>, stop: &Stop) -> Result<Told, Stopped> {
+    fn solve(
+        &mut self,
+        job: &Job,
+        read: Read,
+        known: Option<Arc<Known>>,
+        on_disk: OnDisk,
+        stop: &Stop,
+    ) -> Result<Told, Stopped> {
         let program = build(&read.model);
-        let edits = known.as_ref().map(|known| compare(&known.model, &read.model)).unwrap_or_default();
         let renames = known.as_ref().map(|known| Renames::between(&known.model, &read.model)).unwrap_or_default();
+        let edits =
+            known.as_ref().map(|known| compare_renamed(&known.model, &read.model, &renames)).unwrap_or_default();
         let known = if renames.is_empty() { known } else { known.map(|known| Arc::new(known.renamed(&renames))) };
         let key = ModelKey(job.path.relative().to_string_lossy().into_owned());
         let solver_stop = stop::Stop::watching(stop.flag());
@@ -242,7 +261,7 @@ impl Replanner {
                 let worths =
                     worths::of_each(known.as_deref(), &read.model, &edits, optimum.aim, self.time_limit, &solver_stop);
                 let reckoning = reckoning(Some(&optimum));
-                self.publish(job, read, program, *optimum, Solved { known, edits, worths, reckoning, account })
+                self.publish(job, read, program, *optimum, Solved { known, on_disk, edits, worths, reckoning, account })
             }
             Outcome::Infeasible(conflict) => self.hold(
                 job,
@@ -266,7 +285,7 @@ impl Replanner {
     fn publish(
         &mut self,
         job: &Job,
-        read: Read,
+        mut read: Read,
         program: Program,
         optimum: Optimum,
         solved: Solved,
@@ -274,30 +293,32 @@ impl Replanner {
         let Planned { plan, text: plan_text } = Planned::of(&read.model, read.meaning, &program, &optimum)
             .map_err(|error| Stopped::Trouble(format!("{error}; the last plan stays")))?;
         let seal = text::seal(&plan_text).map(str::to_owned);
-        let disk = Disk::of(&job.path);
-        let on_disk = disk.plan();
+        let on_disk = &solved.on_disk;
         let before = solved.known.as_ref().map(|known| &known.plan).or_else(|| on_disk.plan());
-        let before =
-            before.map(|plan| Plan { standing: on_disk.standing().unwrap_or(plan.standing.clone()), ..plan.clone() });
+        let before = before.map(|plan| match on_disk.standing() {
+            Some(standing) if standing != plan.standing => Cow::Owned(Plan { standing, ..plan.clone() }),
+            _ => Cow::Borrowed(plan),
+        });
+        let before = before.as_deref();
         let telling = Telling::of(job).edited(&solved.edits, &solved.worths).model(Some(&read.model));
-        let note = telling.note(before.as_ref(), Verdict::Planned(&plan), seal.as_deref(), Some(&solved.reckoning));
+        let note = telling.note(before, Verdict::Planned(&plan), seal.as_deref(), Some(&solved.reckoning));
         let record = Record {
             model: job.path.relative().to_owned(),
             answers: plan.answers.to_string(),
-            source: read.bytes,
+            source: std::mem::take(&mut read.bytes),
             basis: Some(optimum.basis.named(&program)),
             plan: plan_text,
             note,
             cold_pivots: solved.account.cold_pivots,
         };
         let begun = Instant::now();
-        let changed = disk.publish(&self.memory.records(&job.state)?, &record)?;
-        let mut report = telling.planned(before.as_ref(), &plan, Some((&solved.reckoning, &solved.account)));
+        self.memory.forget(&job.path);
+        let changed = Disk::of(&job.path).publish(&self.memory.records(&job.state)?, &record)?;
+        let mut report = telling.planned(before, &plan, Some((&solved.reckoning, &solved.account)));
         report.milliseconds.write = milliseconds(begun.elapsed());
-        self.memory.keep(
-            &job.path,
-            Known { model: read.model, program, plan, basis: record.basis, cold_pivots: record.cold_pivots },
-        );
+        let Record { source: bytes, basis, cold_pivots, .. } = record;
+        let Read { blocks, model, .. } = read;
+        self.memory.keep(&job.path, Known { bytes, blocks, model, program, plan, basis, cold_pivots });
         Ok(Told { report, changed })
     }
 }
@@ -305,6 +326,7 @@ impl Replanner {
 /// What a solve was about and how it went.
 struct Solved {
     known: Option<Arc<Known>>,
+    on_disk: OnDisk,
     edits: Vec<Edit>,
     worths: Vec<Option<f64>>,
     reckoning: Reckoning,

@@ -22,7 +22,7 @@ pub(super) fn text<'a>(path: &'a Path, bytes: &'a [u8]) -> Result<Source<'a>, Bo
     let mark = '\u{feff}'.len_utf8();
     let (skipped, text) = text.strip_prefix('\u{feff}').map_or((0, text), |rest| (mark, rest));
     let source = Source { path, text };
-    if let Some(at) = text.bytes().position(|byte| byte == 0) {
+    if let Some(at) = text.find('\0') {
         let message = format!("byte {} is NUL, which no text file holds", at + skipped);
         return Err(Box::new(source.fault(at..at + 1, "nul-byte", message, "save the file as UTF-8 text".to_owned())));
     }
@@ -87,14 +87,6 @@ fn not_utf8(path: &Path, bytes: &[u8], at: usize) -> Box<Fault> {
 }
 
 fn lone_return(text: &str) -> Option<usize> {
-    let bytes = text.as_bytes();
-    let mut from = 0;
-    while let Some(at) = bytes[from..].iter().position(|&byte| byte == b'\r') {
-        let at = from + at;
-        if bytes.get(at + 1) != Some(&b'\n') {
-            return Some(at);
-        }
-        from = at + 1;
-    }
-    None
+    let mut returns = text.match_indices('\r').map(|(at, _)| at);
+    returns.find(|&at| text.as_bytes().get(at + 1) != Some(&b'\n'))
 }

@@ -44,7 +44,8 @@ fn span(root: &Table<'_>, section: &str) -> Span {
     root.get_key_value(section).map(|(key, _)| key.span()).unwrap_or_default()
 }
 
-fn coefficients(model: &Model, tags: &Tags) -> usize {
+/// The coefficients of a model, where so many activities carry each tag.
+pub(super) fn coefficients(model: &Model, tags: &Tags) -> usize {
     let wide = |term: &Term| match term {
         Term::Activity(_) => 1,
         Term::Tag(tag) => tags.get(tag).copied().unwrap_or(0),

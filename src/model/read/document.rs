@@ -28,10 +28,10 @@ pub(super) fn model(root: &Table<'_>, findings: &mut Findings) -> Model {
     }
     head(root, &mut model, findings);
     model.resources = section(root, "resources", &keys::RESOURCE, findings, resource::read);
-    let known = Known { table: table(root, "resources"), names: &model.resources };
+    let known = Known::new(table(root, "resources"), &model.resources);
     model.activities =
         section(root, "activities", &keys::ACTIVITY, findings, |fields| activity::read(fields, model.aim, &known));
-    let known = Known { table: table(root, "activities"), names: &model.activities };
+    let known = Known::new(table(root, "activities"), &model.activities);
     let tags = known::tags(&model.activities);
     model.limits = section(root, "limits", &keys::LIMIT, findings, |fields| limit::read(fields, &known, &tags));
     caps::check(root, &model, &tags, findings);

@@ -1,6 +1,7 @@
 //! What has been read so far, for the tables that refer to it.
 
-use std::collections::BTreeMap;
+use std::cell::OnceCell;
+use std::collections::{BTreeMap, HashMap};
 
 use super::toml_types::Table;
 use crate::model::name::Name;
@@ -8,14 +9,22 @@ use crate::model::types::Activity;
 
 /// What other tables may refer to: the entries that were read, and those that were declared but could not be.
 pub(super) struct Known<'a, 'i, T> {
-    pub(super) table: Option<&'a Table<'i>>,
-    pub(super) names: &'a BTreeMap<Name, T>,
+    table: Option<&'a Table<'i>>,
+    names: &'a BTreeMap<Name, T>,
+    /// The names by their text: each is asked for as often as it is used, and halving would compare it with many others.
+    by_text: OnceCell<HashMap<&'a str, &'a Name>>,
 }
 
-impl<T> Known<'_, '_, T> {
+impl<'a, 'i, T> Known<'a, 'i, T> {
+    /// What was read as `names` from `table`.
+    pub(super) fn new(table: Option<&'a Table<'i>>, names: &'a BTreeMap<Name, T>) -> Self {
+        Self { table, names, by_text: OnceCell::new() }
+    }
+
     /// The name spelt so, if there is one.
     pub(super) fn find(&self, text: &str) -> Option<Name> {
-        self.names.get_key_value(text).map(|(name, _)| name.clone())
+        let by_text = self.by_text.get_or_init(|| self.names.keys().map(|name| (name.as_str(), name)).collect());
+        by_text.get(text).map(|&name| name.clone())
     }
 
     /// Whether it is there, though faulty: then its own fault says enough.

@@ -1,9 +1,12 @@
 //! Reading a model: from bytes to a checked [`Model`], or to all the faults that keep it from being one.
 //!
 //! One pass with places: the bytes are made a text, the text is parsed into tables that know where they stand, and the
-//! tables are walked once. Nothing is guessed and nothing is passed over: what is not understood is a fault.
+//! tables are walked once. Nothing is guessed and nothing is passed over: what is not understood is a fault. A text that was
+//! read before it was edited is read by its edited tables where that comes to the same ([`again()`]).
 
 mod activity;
+mod again;
+mod blocks;
 mod bounds;
 mod bytes;
 mod caps;
@@ -26,6 +29,8 @@ mod toml_types;
 
 use std::path::Path;
 
+pub use again::{Before, again};
+pub use blocks::Blocks;
 pub use caps::{MOST_ACTIVITIES, MOST_BYTES, MOST_COEFFICIENTS, MOST_LIMITS, MOST_LINES, MOST_RESOURCES, MOST_TOKENS};
 pub use fields::LONGEST_TEXT;
 pub use file::{FileProblem, file};
@@ -56,6 +61,14 @@ pub fn too_large(path: &Path) -> Faults {
 /// All faults found, in the order of the file; the first [`MOST_REPORTED`](super::fault::MOST_REPORTED) are told and the rest
 /// counted. A file that is no UTF-8 text or no TOML is not looked into further.
 pub fn text(path: &Path, bytes: &[u8]) -> Result<Reading, Faults> {
+    Ok(text_and_blocks(path, bytes)?.0)
+}
+
+/// As [`text`], and where the tables of the text lie, so that [`again`] can read it once it is edited.
+///
+/// # Errors
+/// As [`text`].
+pub fn text_and_blocks(path: &Path, bytes: &[u8]) -> Result<(Reading, Blocks), Faults> {
     let source = bytes::text(path, bytes).map_err(|fault| Faults { reported: vec![*fault], more: 0 })?;
     let root = syntax::parse(source)?;
     let mut findings = Findings::default();
@@ -64,5 +77,5 @@ pub fn text(path: &Path, bytes: &[u8]) -> Result<Reading, Faults> {
         return Err(findings.finish(source, &model));
     }
     let warnings = document::twins(root.get_ref(), &model).finish(source, &model).reported;
-    Ok(Reading { model, warnings })
+    Ok((Reading { model, warnings }, Blocks::of(source.text, root.get_ref())))
 }

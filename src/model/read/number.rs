@@ -141,8 +141,8 @@ fn too_large(text: &str) -> Refusal {
 }
 
 fn allowed(key: &str, number: f64, role: Role) -> Result<f64, Refusal> {
-    let key = shown(key);
     if number.is_infinite() {
+        let key = shown(key);
         let upward = number > 0.0;
         return match role {
             Role::Most if upward => Ok(number),
@@ -159,7 +159,7 @@ fn allowed(key: &str, number: f64, role: Role) -> Result<f64, Refusal> {
         return Err(too_large(&format!("{number:e}")));
     }
     if role == Role::Rate && number.abs() < SMALLEST_RATE && number.abs() > 0.0 {
-        let message = format!("{number:e} for `{key}` is too small for a coefficient");
+        let message = format!("{number:e} for `{}` is too small for a coefficient", shown(key));
         return Err(refusal("too-small", message, "coefficients are 0 or at least 1e-9; choose a smaller unit"));
     }
     Ok(number)

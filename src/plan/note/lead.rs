@@ -40,9 +40,9 @@ fn no_plan(report: &Report<'_>, trouble: Trouble<'_>) -> String {
 
 fn first(report: &Report<'_>, plan: &Plan) -> String {
     let aim = aim_told(plan, &amount(plan.aim.abs()));
-    let mut made: Vec<_> = plan.activities.iter().filter(|planned| is_made(planned)).collect();
-    let weight = |planned: &&PlannedActivity| tables::weight(report.model, &planned.name, total(Some(&planned.level)));
-    made.sort_by(|a, b| weight(b).total_cmp(&weight(a)).then_with(|| a.name.cmp(&b.name)));
+    let made = plan.activities.iter().filter(|planned| is_made(planned));
+    let weight = |planned: &PlannedActivity| tables::weight(report.model, &planned.name, total(Some(&planned.level)));
+    let made = tables::heaviest_first(made.map(|planned| (weight(planned), &planned.name, planned)).collect());
     let mut told: Vec<String> = made
         .iter()
         .take(3)

@@ -49,10 +49,9 @@ pub(super) fn of_plan(report: &Report<'_>, plan: &Plan, comparison: Option<&Comp
 }
 
 fn levels(report: &Report<'_>, plan: &Plan) -> String {
-    let mut made: Vec<&PlannedActivity> =
-        plan.activities.iter().filter(|planned| total(Some(&planned.level)).abs() > 0.0).collect();
+    let made = plan.activities.iter().filter(|planned| total(Some(&planned.level)).abs() > 0.0);
     let weight_of = |planned: &PlannedActivity| weight(report.model, &planned.name, total(Some(&planned.level)));
-    made.sort_by(|a, b| weight_of(b).total_cmp(&weight_of(a)).then_with(|| a.name.cmp(&b.name)));
+    let made = heaviest_first(made.map(|planned| (weight_of(planned), &planned.name, planned)).collect());
     let rows = made.into_iter().map(|planned| {
         let level = with_unit(&value(&planned.level), unit_of_activity(report.model, &planned.name));
         vec![name_of_activity(report.model, &planned.name), level, planned.state.words().to_owned()]
@@ -93,9 +92,13 @@ pub(super) fn move_table(model: Option<&Model>, moves: &[Move], before: &str) ->
 /// Moves, those first that weigh most in the aim.
 pub(super) fn by_weight<'m>(model: Option<&Model>, moves: &'m [Move]) -> Vec<&'m Move> {
     let weight_of = |told: &Move| weight(model, &told.name, total(told.after.as_ref()) - total(told.before.as_ref()));
-    let mut ordered: Vec<&Move> = moves.iter().collect();
-    ordered.sort_by(|a, b| weight_of(b).total_cmp(&weight_of(a)).then_with(|| a.name.cmp(&b.name)));
-    ordered
+    heaviest_first(moves.iter().map(|told| (weight_of(told), &told.name, told)).collect())
+}
+
+/// Things by weight, and those of equal weight by name. Working out a weight costs more than comparing two, so each is given.
+pub(super) fn heaviest_first<T>(mut weighed: Vec<(f64, &Name, T)>) -> Vec<T> {
+    weighed.sort_by(|a, b| b.0.total_cmp(&a.0).then_with(|| a.1.cmp(b.1)));
+    weighed.into_iter().map(|(_, _, thing)| thing).collect()
 }
 
 /// How much `level` of an activity counts: what it adds to the aim. What the model no longer has counts most.
@@ -175,13 +178,19 @@ fn prospects(report: &Report<'_>, plan: &Plan, comparison: Option<&Comparison>) 
     let near = |&(planned, loses, offered): &(&PlannedActivity, f64, f64)| {
         (planned.state != State::Prospect, loses / offered.abs().max(f64::MIN_POSITIVE))
     };
-    priced.sort_by(|a, b| {
+    let nearest_first = |a: &_, b: &_| {
         let (a_near, b_near) = (near(a), near(b));
         a_near.0.cmp(&b_near.0).then(a_near.1.total_cmp(&b_near.1)).then_with(|| a.0.name.cmp(&b.0.name))
-    });
+    };
     let more = priced.len().saturating_sub(ROWS);
+    if more > 0 {
+        // Thousands are left out: only those told need be in order.
+        priced.select_nth_unstable_by(ROWS, nearest_first);
+        priced.truncate(ROWS);
+    }
+    priced.sort_by(nearest_first);
     let mut body = String::new();
-    for (planned, loses, offered) in priced.into_iter().take(ROWS) {
+    for (planned, loses, offered) in priced {
         let newly = comparison.is_some_and(|comparison| comparison.would_enter.contains(&planned.name));
         body.push_str(&format!("- {}\n", priced_out(report, plan, planned, loses, offered, newly)));
     }

@@ -1,0 +1,158 @@
+//! An edited text read by its edited tables alone: always what reading the whole makes of it.
+
+use std::path::Path;
+
+use millreeve::model::Model;
+use millreeve::model::read::{Before, Blocks, again, text_and_blocks};
+use proptest::collection::vec;
+use proptest::prelude::*;
+
+use super::{TILEWORKS, edited};
+
+fn path() -> &'static Path {
+    Path::new("works.model.toml")
+}
+
+fn whole(text: &str) -> Option<(Model, Blocks)> {
+    text_and_blocks(path(), text.as_bytes()).ok().map(|(reading, blocks)| (reading.model, blocks))
+}
+
+/// What reading makes of `new` by what differs from `old`.
+fn in_part(old: &str, new: &str) -> Option<(Model, Blocks)> {
+    let (model, blocks) = whole(old).unwrap();
+    again(path(), new.as_bytes(), Before { bytes: old.as_bytes(), blocks: &blocks, model: &model })
+}
+
+#[test]
+fn edits_within_tables_are_read_alone() {
+    for (from, to) in [
+        ("price    = 21.0", "price    = 2.5"),
+        ("price    = 21.0", "price    = 21.0 # agreed"),
+        ("kiln = 0.020", "kiln = 0.0205, glaze_line = 1e-3"),
+        ("at_least = 500\n", ""),
+        ("terms    = { wall_tile = 1.0 }", "terms    = { wall_tile = 1.0, \"tag:small\" = 2 }"),
+    ] {
+        let new = edited(from, to);
+        assert_eq!(in_part(TILEWORKS, &new), whole(&new), "{to}");
+        assert!(in_part(TILEWORKS, &new).is_some(), "{to}");
+    }
+    let windows = TILEWORKS.replace('\n', "\r\n");
+    let new = format!("\u{feff}{}", edited("price    = 21.0", "price    = 2.5").replace('\n', "\r\n"));
+    assert_eq!(in_part(&windows, &new), whole(&new));
+    assert!(in_part(&windows, &new).is_some());
+}
+
+#[test]
+fn what_concerns_other_tables_or_is_faulty_is_left_to_reading_the_whole() {
+    for (from, to) in [
+        ("title ", "label "),
+        ("[activities.terrace_slab]", "[activities.garden_slab]"),
+        ("[activities.terrace_slab]", "[activities.floor_tile.uses]"),
+        ("[activities.terrace_slab]", "[activities.new]\n[activities.terrace_slab]"),
+        ("[activities.terrace_slab]", "spare = 1\n[activities.terrace_slab]"),
+        ("[activities.terrace_slab]\n", ""),
+        ("price    = 21.0", "price    = -"),
+        ("price    = 21.0", "price    = 21.0\nprice = 21.0"),
+        ("price    = 21.0", "price    = 1e16"),
+        ("price    = 21.0", "label    = \"\"\"\n"),
+        ("kiln = 0.020", "kilm = 0.020"),
+        ("tags     = [", "tags     = [\"new\", "),
+    ] {
+        assert_eq!(in_part(TILEWORKS, &edited(from, to)), None, "{to}");
+    }
+}
+
+#[test]
+fn a_text_in_which_brackets_mislead_has_no_blocks() {
+    let (_, blocks) = whole(TILEWORKS).unwrap();
+    assert_ne!(blocks, Blocks::default());
+    for (from, to) in [
+        ("[activities.terrace_slab]", "[ activities.terrace_slab]"),
+        ("[activities.terrace_slab]", "  [activities.terrace_slab]"),
+        ("[activities.terrace_slab]", "[activities.\"terrace_slab\"]"),
+        ("price    = 17.5", "price    = 17.5\nlabel = \"\"\"\n[activities.terrace_slab]\n\"\"\""),
+    ] {
+        let (_, blocks) = whole(&edited(from, to)).unwrap();
+        assert_eq!(blocks, Blocks::default(), "{to}");
+    }
+}
+
+/// One edit of a text, whatever comes of it.
+#[derive(Clone, Debug)]
+enum Slip {
+    /// Another number behind the equals sign of a line.
+    Number(usize, f64),
+    /// A sign put in somewhere.
+    Sign(usize, char),
+    /// A line taken out.
+    Gone(usize),
+    /// A line put in again after another.
+    Copied(usize, usize),
+    /// Two lines in each other's place.
+    Swapped(usize, usize),
+}
+
+impl Slip {
+    fn made(&self, text: &str) -> String {
+        let mut lines: Vec<String> = text.split_inclusive('\n').map(str::to_owned).collect();
+        let count = lines.len().max(1);
+        match *self {
+            Self::Number(at, number) => {
+                let numbered: Vec<usize> = (0..lines.len()).filter(|&at| lines[at].contains(" = ")).collect();
+                if let Some(&at) = numbered.get(at % numbered.len().max(1)) {
+                    let key = lines[at].split(" = ").next().unwrap_or_default().to_owned();
+                    lines[at] = format!("{key} = {number}\n");
+                }
+            }
+            Self::Sign(at, sign) => {
+                let mut text = text.to_owned();
+                text.insert(text.floor_char_boundary(at % (text.len() + 1)), sign);
+                return text;
+            }
+            Self::Gone(at) => {
+                lines.splice(at % count..(at % count + 1).min(lines.len()), []);
+            }
+            Self::Copied(from, to) => {
+                let line = lines.get(from % count).cloned().unwrap_or_default();
+                lines.insert(to % (lines.len() + 1), line);
+            }
+            Self::Swapped(a, b) if !lines.is_empty() => lines.swap(a % count, b % count),
+            Self::Swapped(..) => {}
+        }
+        lines.concat()
+    }
+}
+
+fn slip() -> impl Strategy<Value = Slip> {
+    let sign =
+        prop::sample::select(vec!['[', ']', '"', '\'', '=', '#', '\n', '\r', '\\', '{', '}', ',', '.', '0', 'a']);
+    prop_oneof![
+        4 => (any::<usize>(), (0..2000).prop_map(|n| f64::from(n) / 8.0)).prop_map(|(at, number)| Slip::Number(at, number)),
+        2 => (any::<usize>(), sign).prop_map(|(at, sign)| Slip::Sign(at, sign)),
+        1 => any::<usize>().prop_map(Slip::Gone),
+        1 => any::<(usize, usize)>().prop_map(|(from, to)| Slip::Copied(from, to)),
+        1 => any::<(usize, usize)>().prop_map(|(a, b)| Slip::Swapped(a, b)),
+    ]
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig::with_cases(2000))]
+
+    #[test]
+    fn in_part_or_as_a_whole_a_text_says_the_same(slips in vec(vec(slip(), 1..3), 1..6)) {
+        let mut old = TILEWORKS.to_owned();
+        let (mut model, mut blocks) = whole(&old).unwrap();
+        for slips in slips {
+            let new = slips.iter().fold(old.clone(), |text, slip| slip.made(&text));
+            let part = again(path(), new.as_bytes(), Before { bytes: old.as_bytes(), blocks: &blocks, model: &model });
+            let whole = whole(&new);
+            if part.is_some() {
+                prop_assert_eq!(&part, &whole, "{}", new);
+            }
+            // The next edit starts from what was read in part, as that of a running daemon does.
+            if let Some(read) = part.or(whole) {
+                (old, model, blocks) = (new, read.0, read.1);
+            }
+        }
+    }
+}
