@@ -152,8 +152,7 @@ impl Active {
         if empty {
             return None;
         }
-        let in_columns =
-            columns.iter().flat_map(|&column| self.columns[column].iter().map(move |&row| (row, column)));
+        let in_columns = columns.iter().flat_map(|&column| self.columns[column].iter().map(move |&row| (row, column)));
         let in_rows = rows.iter().flat_map(|&row| self.rows[row].iter().map(move |&(column, _)| (row, column)));
         let fill = |&(row, column): &(usize, usize)| (self.rows[row].len() - 1) * (self.columns[column].len() - 1);
         in_columns.chain(in_rows).min_by_key(fill)

@@ -64,8 +64,8 @@ impl<'p> Matrix<'p> {
         }
         let row_bits = row_sums.iter().map(|sum| 128 - sum.leading_zeros()).max().unwrap_or(0);
         let fields: &[Field] = match row_bits.max(column_bits) {
-            0..=WIDE_BITS => &[Field::WIDE, Field::NARROW],
-            0..=NARROW_BITS => &[Field::NARROW],
+            bits if bits <= WIDE_BITS => &[Field::WIDE, Field::NARROW],
+            bits if bits <= NARROW_BITS => &[Field::NARROW],
             _ => return Err(Unsettled::TooLarge),
         };
         // A determinant that the first prime divides by chance is not likely to be divided by the other as well.
@@ -316,5 +316,77 @@ fn balanced(number: IBig, modulus: &IBig) -> IBig {
         rest + modulus
     } else {
         rest
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Numbers that look random, from a linear congruence (Knuth's MMIX constants, from memory).
+    fn draw(state: &mut u64, end: u64) -> u64 {
+        *state = state.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
+        (*state >> 33) % end
+    }
+
+    fn columns(size: usize, bits: u32, state: &mut u64) -> Vec<Vec<(usize, i128)>> {
+        let entry = |state: &mut u64| {
+            let number = i128::from(draw(state, 1 << 20)) << (bits - 20) | i128::from(draw(state, 1 << 20));
+            if draw(state, 2) == 0 { number } else { -number }
+        };
+        (0..size)
+            .map(|column| {
+                let rows: Vec<usize> = (0..size).filter(|&row| row == column || draw(state, 4) == 0).collect();
+                rows.into_iter().map(|row| (row, entry(state))).filter(|entry| entry.1 != 0).collect()
+            })
+            .collect()
+    }
+
+    /// `matrix · numerators`, or `matrixᵀ · numerators`.
+    fn product(columns: &[Vec<(usize, i128)>], numerators: &[IBig], turn: Turn) -> Vec<IBig> {
+        let mut product = vec![IBig::ZERO; columns.len()];
+        for (column, entries) in columns.iter().enumerate() {
+            for &(row, entry) in entries {
+                let (to, from) = if turn == Turn::Plain { (row, column) } else { (column, row) };
+                product[to] += &numerators[from] * IBig::from(entry);
+            }
+        }
+        product
+    }
+
+    #[test]
+    fn solutions_are_exact_whatever_the_digits_and_the_guess() {
+        let mut state = 1;
+        for round in 0..240_u32 {
+            let size = 1 + usize::try_from(draw(&mut state, 14)).unwrap();
+            // From small entries to such as only the narrow field takes.
+            let columns = columns(size, [20, 24, 50, 62, 70, 86][usize::try_from(round % 6).unwrap()], &mut state);
+            let guess = IBig::from(1 + draw(&mut state, 3));
+            let Ok(mut matrix) = Matrix::of(columns.iter().map(Vec::as_slice).collect(), guess) else { continue };
+            for turn in [Turn::Plain, Turn::Transposed, Turn::Plain] {
+                let long = draw(&mut state, 3) == 0;
+                let number = |at: usize| IBig::from(at + 1) * if long { IBig::from(10).pow(40) } else { IBig::ONE };
+                let right: Vec<IBig> = (0..size).map(number).collect();
+                let Fractions { numerators, denominator } = matrix.solve(right.clone(), turn, &mut 1_000_000).unwrap();
+                let expected: Vec<IBig> = right.iter().map(|right| right * &denominator).collect();
+                assert_eq!(product(&columns, &numerators, turn), expected, "round {round}");
+                assert!(denominator > IBig::ZERO);
+            }
+        }
+    }
+
+    #[test]
+    fn denominators_that_have_nothing_in_common_are_all_found() {
+        // The primes below 100: 25 rows with a denominator each.
+        let primes: Vec<i128> = (2..100).filter(|number| (2..*number).all(|other| number % other != 0)).collect();
+        let columns: Vec<Vec<(usize, i128)>> =
+            primes.iter().enumerate().map(|(at, &prime)| vec![(at, prime)]).collect();
+        let mut matrix = Matrix::of(columns.iter().map(Vec::as_slice).collect(), IBig::ONE).unwrap();
+        let solution = matrix.solve(vec![IBig::ONE; primes.len()], Turn::Plain, &mut 1_000_000).unwrap();
+        for (numerator, prime) in solution.numerators.iter().zip(primes) {
+            assert_eq!(numerator * IBig::from(prime), solution.denominator);
+        }
+        let right = vec![IBig::ONE; columns.len()];
+        assert_eq!(matrix.solve(right, Turn::Plain, &mut 10).err(), Some(Unsettled::OutOfWork));
     }
 }
