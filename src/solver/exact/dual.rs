@@ -13,7 +13,7 @@ use super::Unsettled;
 use super::number::nearest;
 use super::price::{Prices, combine, improves};
 use super::primal::PATIENCE;
-use super::vertex::{Side, Vertex};
+use super::vertex::{Side, Swap, Vertex};
 use super::whole::{Costs, Variable};
 use crate::solver::basis::Position;
 
@@ -43,7 +43,7 @@ pub(super) fn restore(vertex: &mut Vertex<'_>, aim: &Costs) -> Result<(), Unsett
         });
         let entrant = entrants.reduce(|a, b| if b.is_before(&a) { b } else { a }).ok_or(Unsettled::Infeasible)?;
         still = if entrant.price.is_zero() { still + 1 } else { 0 };
-        vertex.swap(slot, side, entrant.variable, false)?;
+        vertex.swap(Swap { slot, side, entrant: entrant.variable, pivot: entrant.rate, still: false })?;
     }
     Ok(())
 }

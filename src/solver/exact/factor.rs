@@ -3,8 +3,6 @@
 //! There is no rounding to guard against, so pivots are chosen for sparsity alone: the entry whose row and column have the fewest
 //! others (Markowitz, *Management Science* 3, 1957, 255–269). Rows and columns with a single entry come first and fill in nothing.
 
-use std::collections::BTreeSet;
-
 use super::field::Field;
 
 /// A column of whole numbers, by row.
@@ -113,9 +111,8 @@ struct Active {
     rows: Vec<Vec<(usize, u64)>>,
     /// The rows that each column has an entry in, in no order.
     columns: Vec<Vec<usize>>,
-    /// Rows and columns by how many entries they have.
-    rows_by_count: BTreeSet<(usize, usize)>,
-    columns_by_count: BTreeSet<(usize, usize)>,
+    row_order: ByCount,
+    column_order: ByCount,
     /// The pivot's row, spread out by column; 0 elsewhere.
     spread: Vec<u64>,
 }
@@ -133,38 +130,39 @@ impl Active {
                 }
             }
         }
-        let rows_by_count = rows.iter().enumerate().map(|(at, row)| (row.len(), at)).collect();
-        let columns_by_count = columns.iter().enumerate().map(|(at, column)| (column.len(), at)).collect();
-        Self { field, rows, columns, rows_by_count, columns_by_count, spread: vec![0; matrix.len()] }
+        let mut active = Self {
+            field,
+            row_order: ByCount::new(matrix.len()),
+            column_order: ByCount::new(matrix.len()),
+            rows,
+            columns,
+            spread: vec![0; matrix.len()],
+        };
+        (0..matrix.len()).for_each(|at| active.row_order.put(at, active.rows[at].len()));
+        (0..matrix.len()).for_each(|at| active.column_order.put(at, active.columns[at].len()));
+        active
     }
 
     /// The row and column of the next pivot; `None` where some row or column has no entry left.
-    fn pivot(&self) -> Option<(usize, usize)> {
-        let (&(row_count, row), &(column_count, column)) =
-            (self.rows_by_count.first()?, self.columns_by_count.first()?);
-        match (row_count, column_count) {
-            (0, _) | (_, 0) => return None,
-            (_, 1) => return Some((*self.columns[column].first()?, column)),
-            (1, _) => return Some((row, self.rows[row].first()?.0)),
-            _ => {}
+    fn pivot(&mut self) -> Option<(usize, usize)> {
+        let columns = self.column_order.fewest();
+        let rows = self.row_order.fewest();
+        let empty = columns.iter().any(|&column| self.columns[column].is_empty())
+            || rows.iter().any(|&row| self.rows[row].is_empty());
+        if empty {
+            return None;
         }
-        let in_columns = self
-            .columns_by_count
-            .iter()
-            .take(SEARCHED)
-            .flat_map(|&(_, column)| self.columns[column].iter().map(move |&row| (row, column)));
-        let in_rows = self
-            .rows_by_count
-            .iter()
-            .take(SEARCHED)
-            .flat_map(|&(_, row)| self.rows[row].iter().map(move |&(column, _)| (row, column)));
+        let in_columns = columns.iter().flat_map(|&column| self.columns[column].iter().map(move |&row| (row, column)));
+        let in_rows = rows.iter().flat_map(|&row| self.rows[row].iter().map(move |&(column, _)| (row, column)));
         let fill = |&(row, column): &(usize, usize)| (self.rows[row].len() - 1) * (self.columns[column].len() - 1);
         in_columns.chain(in_rows).min_by_key(fill)
     }
 
     /// Eliminates a column from the rows other than the pivot's; the inverse of the pivot.
     fn eliminate(&mut self, row: usize, column: usize, factor: &mut Factor) -> u64 {
-        let pivot_row = self.take_row(row);
+        let pivot_row = std::mem::take(&mut self.rows[row]);
+        self.row_order.drop(row);
+        self.column_order.drop(column);
         let others = std::mem::take(&mut self.columns[column]);
         let mut pivot = 0;
         for &(at, entry) in &pivot_row {
@@ -184,19 +182,9 @@ impl Active {
         for &(at, _) in pivot_row {
             self.spread[at] = 0;
             self.columns[at].retain(|&other| other != row);
-            self.columns_by_count.insert((self.columns[at].len(), at));
+            self.column_order.put(at, self.columns[at].len());
         }
         inverse
-    }
-
-    /// Takes a row out, and its columns out of the order by count.
-    fn take_row(&mut self, row: usize) -> Vec<(usize, u64)> {
-        let entries = std::mem::take(&mut self.rows[row]);
-        self.rows_by_count.remove(&(entries.len(), row));
-        for &(column, _) in &entries {
-            self.columns_by_count.remove(&(self.columns[column].len(), column));
-        }
-        entries
     }
 
     /// Takes a multiple of the pivot's row (without the pivot) off another one so that its entry in the pivot's column vanishes;
@@ -204,7 +192,6 @@ impl Active {
     fn take_off(&mut self, row: usize, column: usize, inverse: u64, pivot_row: &[(usize, u64)]) -> u64 {
         let field = self.field;
         let mut entries = std::mem::take(&mut self.rows[row]);
-        self.rows_by_count.remove(&(entries.len(), row));
         let entry = entries.iter().find(|entry| entry.0 == column).map_or(0, |entry| entry.1);
         let multiple = field.mul(entry, inverse);
         entries.retain_mut(|(at, value)| {
@@ -225,9 +212,56 @@ impl Active {
             }
             self.spread[at] = value;
         }
-        self.rows_by_count.insert((entries.len(), row));
+        self.row_order.put(row, entries.len());
         self.rows[row] = entries;
         multiple
+    }
+}
+
+/// Rows or columns in the order of how many entries they have.
+struct ByCount {
+    counts: Vec<Option<usize>>,
+    /// For each count, those that have or had it.
+    lists: Vec<Vec<usize>>,
+    /// No list before this one holds any that count.
+    least: usize,
+}
+
+impl ByCount {
+    fn new(size: usize) -> Self {
+        Self { counts: vec![None; size], lists: vec![Vec::new(); size + 1], least: 0 }
+    }
+
+    fn put(&mut self, at: usize, count: usize) {
+        if self.counts[at] != Some(count) {
+            self.counts[at] = Some(count);
+            self.lists[count].push(at);
+            self.least = self.least.min(count);
+        }
+    }
+
+    fn drop(&mut self, at: usize) {
+        self.counts[at] = None;
+    }
+
+    /// Those with the fewest entries: one where it has at most one, or else up to [`SEARCHED`].
+    fn fewest(&mut self) -> Vec<usize> {
+        let mut found: Vec<usize> = Vec::with_capacity(SEARCHED);
+        for (count, list) in self.lists.iter_mut().enumerate().skip(self.least) {
+            while list.last().is_some_and(|&at| self.counts[at] != Some(count)) {
+                list.pop();
+            }
+            if found.is_empty() && list.is_empty() {
+                self.least = count + 1;
+            }
+            for &at in list.iter().rev().filter(|&&at| self.counts[at] == Some(count)) {
+                found.push(at);
+                if count <= 1 || found.len() == SEARCHED {
+                    return found;
+                }
+            }
+        }
+        found
     }
 }
 

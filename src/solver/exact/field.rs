@@ -54,6 +54,10 @@ impl Field {
 
     /// The inverse of a number that is not 0, by Fermat's little theorem.
     pub(super) fn invert(self, number: u64) -> u64 {
+        // 1 and −1, the most common ones, are their own.
+        if number == 1 || number == self.prime() - 1 {
+            return number;
+        }
         let (mut power, mut base, mut exponent) = (1, number, self.prime() - 2);
         while exponent > 0 {
             if exponent & 1 == 1 {

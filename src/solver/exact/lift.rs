@@ -41,14 +41,17 @@ pub(super) struct Matrix<'p> {
     /// Bits of the largest sum of absolute entries of a row, and of a column.
     row_bits: usize,
     column_bits: usize,
+    /// Divides the denominators of solutions, with all but certainty: they divide the determinant, and most of them are much of it.
+    divisor: IBig,
 }
 
 impl<'p> Matrix<'p> {
-    /// Factorises the matrix with these columns.
+    /// Factorises the matrix with these columns. `divisor` is a guess at what divides the denominators of solutions: a good one halves
+    /// the digits needed, a bad one costs some; 1 is always right.
     ///
     /// # Errors
     /// When it is singular, or its numbers have more digits than is provided for.
-    pub(super) fn of(columns: Vec<&'p Entries>) -> Result<Self, Unsettled> {
+    pub(super) fn of(columns: Vec<&'p Entries>, divisor: IBig) -> Result<Self, Unsettled> {
         let mut row_sums = vec![0_u128; columns.len()];
         let mut column_bits = 0;
         for column in &columns {
@@ -61,39 +64,46 @@ impl<'p> Matrix<'p> {
         }
         let row_bits = row_sums.iter().map(|sum| 128 - sum.leading_zeros()).max().unwrap_or(0);
         let fields: &[Field] = match row_bits.max(column_bits) {
-            0..=WIDE_BITS => &[Field::WIDE, Field::NARROW],
-            0..=NARROW_BITS => &[Field::NARROW],
+            bits if bits <= WIDE_BITS => &[Field::WIDE, Field::NARROW],
+            bits if bits <= NARROW_BITS => &[Field::NARROW],
             _ => return Err(Unsettled::TooLarge),
         };
         // A determinant that the first prime divides by chance is not likely to be divided by the other as well.
         let factors = fields.iter().find_map(|&field| Some((field, Factor::of(&columns, field)?)));
         let (field, factor) = factors.ok_or(Unsettled::Singular)?;
         let [row_bits, column_bits] = [row_bits, column_bits].map(|bits| usize::try_from(bits).unwrap_or(usize::MAX));
-        Ok(Self { columns, field, factor, row_bits, column_bits })
+        Ok(Self { columns, field, factor, row_bits, column_bits, divisor })
     }
 
     /// Solves exactly. `work` is what may be spent, in entries looked at, and is lessened by what is.
     ///
     /// # Errors
     /// When the work does not suffice.
-    pub(super) fn solve(&self, right: Vec<IBig>, turn: Turn, work: &mut u64) -> Result<Fractions, Unsettled> {
+    pub(super) fn solve(&mut self, right: Vec<IBig>, turn: Turn, work: &mut u64) -> Result<Fractions, Unsettled> {
         let mut lift = Lift::of(self, right, turn);
-        let mut next = 2;
+        let mut spend = |cost: usize| {
+            *work = work.checked_sub(u64::try_from(cost).unwrap_or(u64::MAX)).ok_or(Unsettled::OutOfWork)?;
+            Ok(())
+        };
+        let entries = self.factor.entries() + self.columns.iter().map(|column| column.len()).sum::<usize>();
+        let bits = usize::try_from(self.field.bits()).unwrap_or(1);
+        let guessed = self.divisor > IBig::ONE;
+        // Fewer digits than the denominator and the right-hand side have cannot do.
+        let mut next = 2 + (self.divisor.bit_len() + if guessed { lift.right_bits } else { 0 }) / bits;
         loop {
-            let cost = self.factor.entries() + self.columns.iter().map(|column| column.len()).sum::<usize>();
             while lift.steps() < next {
-                *work = work.checked_sub(u64::try_from(cost).unwrap_or(u64::MAX)).ok_or(Unsettled::OutOfWork)?;
+                spend(entries)?;
                 if lift.step() {
                     return Ok(lift.whole());
                 }
             }
-            // Putting a digit vector of k words together takes about k² / 2 products of words for each number.
-            let cost = u64::try_from(self.columns.len() * next * next / 2).unwrap_or(u64::MAX);
-            *work = work.checked_sub(cost).ok_or(Unsettled::OutOfWork)?;
+            // Putting k digits together takes about k² / 2 products of words for each number.
+            spend(self.columns.len() * next * next / 2)?;
             if let Some(fractions) = lift.fractions() {
+                self.divisor = fractions.denominator.clone();
                 return Ok(fractions);
             }
-            next += (next / 2).max(2);
+            next += 2 + if guessed { next / 8 } else { next / 2 };
         }
     }
 }
@@ -109,7 +119,7 @@ struct Lift<'m, 'p> {
     above: Vec<(usize, IBig)>,
     /// The digits found, least first: a vector for each step.
     digits: Vec<Vec<i64>>,
-    /// Divides the denominator, with all but certainty.
+    /// See [`Matrix::divisor`].
     divisor: IBig,
     /// The number that could not be told from so many digits; looked at first the next time.
     hardest: usize,
@@ -127,7 +137,7 @@ impl<'m, 'p> Lift<'m, 'p> {
             rest: vec![0; size],
             above: right.into_iter().enumerate().filter(|(_, number)| !number.is_zero()).collect(),
             digits: Vec::new(),
-            divisor: IBig::ONE,
+            divisor: matrix.divisor.clone(),
             hardest: 0,
             residues: vec![0; size],
             solution: vec![0; size],
@@ -194,60 +204,106 @@ impl<'m, 'p> Lift<'m, 'p> {
 
     /// The solution, where it is whole and complete.
     fn whole(&self) -> Fractions {
-        let numerators = (0..self.rest.len()).map(|at| self.number(at)).collect();
+        let numerators = (0..self.rest.len()).map(|at| self.number(at, self.steps())).collect();
         Fractions { numerators, denominator: IBig::ONE }
     }
 
-    /// The number that the digits of a place spell.
-    fn number(&self, at: usize) -> IBig {
-        let bits = usize::try_from(self.matrix.field.bits()).unwrap_or(0);
-        let mut number = IBig::ZERO;
-        for digits in self.digits.iter().rev() {
-            let shifted = &number << bits;
-            number = shifted - number + IBig::from(digits[at]);
-        }
-        number
+    /// The number that the first so many digits of a place spell.
+    fn number(&self, at: usize, steps: usize) -> IBig {
+        let prime = self.matrix.field.prime();
+        self.digits[..steps].iter().rev().fold(IBig::ZERO, |number, digits| number * prime + digits[at])
     }
 
     /// The solution, where the digits so far prove it.
+    ///
+    /// Telling a fraction takes twice the digits of its numerator; once the denominator is known, little more than half of them will do.
     fn fractions(&mut self) -> Option<Fractions> {
-        let modulus = IBig::from(self.matrix.field.prime()).pow(self.digits.len());
-        let norm_bits = match self.turn {
-            Turn::Plain => self.matrix.row_bits,
-            Turn::Transposed => self.matrix.column_bits,
-        };
-        // Both sides of the proof must be smaller than half the modulus.
-        let numerator_bits = modulus.bit_len().checked_sub(norm_bits + 2)?;
-        let denominator_bits = modulus.bit_len().checked_sub(self.right_bits + 2)?;
+        let all = Digits::first(self, self.steps());
+        let few = Digits::first(self, self.steps() * 5 / 8 + 1);
+        match self.told(&few, &all) {
+            Ok(fractions) => Some(fractions),
+            Err(Untold::MoreDigits) => None,
+            Err(Untold::AllDigits) => self.told(&all, &all).ok(),
+        }
+    }
+
+    /// The solution, as proven by `digits`; denominators are looked for in `all`.
+    fn told(&mut self, digits: &Digits, all: &Digits) -> Result<Fractions, Untold> {
         let size = self.rest.len();
+        let order = |from: usize| (0..size).map(move |at| (from + at) % size);
+        let first = self.hardest;
         let mut numerators = vec![IBig::ZERO; size];
-        let mut denominator = self.divisor.clone();
         let mut factors = vec![IBig::ONE; size];
-        for at in (0..size).map(|at| (self.hardest + at) % size) {
-            let number = balanced(self.number(at) * &denominator, &modulus);
-            if number.bit_len() + MARGIN <= numerator_bits {
-                numerators[at] = number;
-                continue;
-            }
-            let Some((numerator, factor)) = reconstruct(&number, &modulus, MARGIN + norm_bits) else {
-                (self.divisor, self.hardest) = (denominator, at);
-                return None;
+        for at in order(first) {
+            let number = digits.times(self, at);
+            numerators[at] = if number.bit_len() + MARGIN <= digits.numerator_bits {
+                number
+            } else {
+                let (numerator, factor) = self.told_alone(at, all)?;
+                self.divisor *= &factor;
+                factors[at] = factor;
+                numerator
             };
-            denominator *= &factor;
-            (numerators[at], factors[at]) = (numerator, factor);
         }
         // Numbers told before the denominator grew are brought to the whole of it.
         let mut growth = IBig::ONE;
-        for at in (0..size).rev().map(|at| (self.hardest + at) % size) {
+        for at in order(first).rev() {
             if growth > IBig::ONE {
                 numerators[at] *= &growth;
             }
             growth *= &factors[at];
         }
-        let proven = denominator.bit_len() <= denominator_bits
-            && numerators.iter().all(|numerator| numerator.bit_len() <= numerator_bits);
-        self.divisor = denominator.clone();
-        proven.then_some(Fractions { numerators, denominator })
+        let proven = self.divisor.bit_len() <= digits.denominator_bits
+            && numerators.iter().all(|numerator| numerator.bit_len() <= digits.numerator_bits);
+        let fractions = Fractions { numerators, denominator: self.divisor.clone() };
+        if proven { Ok(fractions) } else { Err(Untold::AllDigits) }
+    }
+
+    /// A number times the divisor, as a fraction of its own.
+    fn told_alone(&mut self, at: usize, all: &Digits) -> Result<(IBig, IBig), Untold> {
+        let number = all.times(self, at);
+        if number.bit_len() + MARGIN <= all.numerator_bits {
+            return Err(Untold::AllDigits);
+        }
+        self.hardest = at;
+        let margin = MARGIN + all.modulus.bit_len() - all.numerator_bits;
+        reconstruct(&number, &all.modulus, margin).ok_or(Untold::MoreDigits)
+    }
+}
+
+/// Why a solution is not told yet.
+enum Untold {
+    /// All the digits there are may do, where a part of them does not.
+    AllDigits,
+    /// More digits are needed than there are.
+    MoreDigits,
+}
+
+/// So many of the digits of each number, and what they prove.
+struct Digits {
+    steps: usize,
+    modulus: IBig,
+    /// Numerators and denominators up to so many bits are proven right: both sides are smaller than half the modulus.
+    numerator_bits: usize,
+    denominator_bits: usize,
+}
+
+impl Digits {
+    fn first(lift: &Lift<'_, '_>, steps: usize) -> Self {
+        let modulus = IBig::from(lift.matrix.field.prime()).pow(steps);
+        let norm_bits = match lift.turn {
+            Turn::Plain => lift.matrix.row_bits,
+            Turn::Transposed => lift.matrix.column_bits,
+        };
+        let bits = modulus.bit_len();
+        let numerator_bits = bits.saturating_sub(norm_bits + 2);
+        let denominator_bits = bits.saturating_sub(lift.right_bits + 2);
+        Self { steps, modulus, numerator_bits, denominator_bits }
+    }
+
+    /// A number times the divisor, as far as these digits tell.
+    fn times(&self, lift: &Lift<'_, '_>, at: usize) -> IBig {
+        balanced(lift.number(at, self.steps) * &lift.divisor, &self.modulus)
     }
 }
 
@@ -260,5 +316,77 @@ fn balanced(number: IBig, modulus: &IBig) -> IBig {
         rest + modulus
     } else {
         rest
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Numbers that look random, from a linear congruence (Knuth's MMIX constants, from memory).
+    fn draw(state: &mut u64, end: u64) -> u64 {
+        *state = state.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
+        (*state >> 33) % end
+    }
+
+    fn columns(size: usize, bits: u32, state: &mut u64) -> Vec<Vec<(usize, i128)>> {
+        let entry = |state: &mut u64| {
+            let number = i128::from(draw(state, 1 << 20)) << (bits - 20) | i128::from(draw(state, 1 << 20));
+            if draw(state, 2) == 0 { number } else { -number }
+        };
+        (0..size)
+            .map(|column| {
+                let rows: Vec<usize> = (0..size).filter(|&row| row == column || draw(state, 4) == 0).collect();
+                rows.into_iter().map(|row| (row, entry(state))).filter(|entry| entry.1 != 0).collect()
+            })
+            .collect()
+    }
+
+    /// `matrix · numerators`, or `matrixᵀ · numerators`.
+    fn product(columns: &[Vec<(usize, i128)>], numerators: &[IBig], turn: Turn) -> Vec<IBig> {
+        let mut product = vec![IBig::ZERO; columns.len()];
+        for (column, entries) in columns.iter().enumerate() {
+            for &(row, entry) in entries {
+                let (to, from) = if turn == Turn::Plain { (row, column) } else { (column, row) };
+                product[to] += &numerators[from] * IBig::from(entry);
+            }
+        }
+        product
+    }
+
+    #[test]
+    fn solutions_are_exact_whatever_the_digits_and_the_guess() {
+        let mut state = 1;
+        for round in 0..240_u32 {
+            let size = 1 + usize::try_from(draw(&mut state, 14)).unwrap();
+            // From small entries to such as only the narrow field takes.
+            let columns = columns(size, [20, 24, 50, 62, 70, 86][usize::try_from(round % 6).unwrap()], &mut state);
+            let guess = IBig::from(1 + draw(&mut state, 3));
+            let Ok(mut matrix) = Matrix::of(columns.iter().map(Vec::as_slice).collect(), guess) else { continue };
+            for turn in [Turn::Plain, Turn::Transposed, Turn::Plain] {
+                let long = draw(&mut state, 3) == 0;
+                let number = |at: usize| IBig::from(at + 1) * if long { IBig::from(10).pow(40) } else { IBig::ONE };
+                let right: Vec<IBig> = (0..size).map(number).collect();
+                let Fractions { numerators, denominator } = matrix.solve(right.clone(), turn, &mut 1_000_000).unwrap();
+                let expected: Vec<IBig> = right.iter().map(|right| right * &denominator).collect();
+                assert_eq!(product(&columns, &numerators, turn), expected, "round {round}");
+                assert!(denominator > IBig::ZERO);
+            }
+        }
+    }
+
+    #[test]
+    fn denominators_that_have_nothing_in_common_are_all_found() {
+        // The primes below 100: 25 rows with a denominator each.
+        let primes: Vec<i128> = (2..100).filter(|number| (2..*number).all(|other| number % other != 0)).collect();
+        let columns: Vec<Vec<(usize, i128)>> =
+            primes.iter().enumerate().map(|(at, &prime)| vec![(at, prime)]).collect();
+        let mut matrix = Matrix::of(columns.iter().map(Vec::as_slice).collect(), IBig::ONE).unwrap();
+        let solution = matrix.solve(vec![IBig::ONE; primes.len()], Turn::Plain, &mut 1_000_000).unwrap();
+        for (numerator, prime) in solution.numerators.iter().zip(primes) {
+            assert_eq!(numerator * IBig::from(prime), solution.denominator);
+        }
+        let right = vec![IBig::ONE; columns.len()];
+        assert_eq!(matrix.solve(right, Turn::Plain, &mut 10).err(), Some(Unsettled::OutOfWork));
     }
 }

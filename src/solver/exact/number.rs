@@ -15,19 +15,44 @@ impl Decimal {
 
     /// The shortest decimal that reads as `value`; `None` where it is no finite number.
     pub(super) fn of(value: f64) -> Option<Self> {
+        Self::short(value).or_else(|| Self::read(value))
+    }
+
+    /// The same where few places do: the double nearest to a decimal of at most 15 digits is nearest to no other one.
+    fn short(value: f64) -> Option<Self> {
+        let mut power = 1.0;
+        for places in 0..8 {
+            let digits = (value * power).round();
+            if digits.abs() >= 1e15 {
+                return None;
+            }
+            // Both are exact, so the quotient is what reading the decimal would give.
+            if (digits / power).total_cmp(&(value + 0.0)).is_eq() {
+                #[expect(clippy::cast_possible_truncation, reason = "a whole number below 2^53")]
+                return Some(Self::trimmed(digits as i64, -places));
+            }
+            power *= 10.0;
+        }
+        None
+    }
+
+    fn read(value: f64) -> Option<Self> {
         let text = format!("{value:e}");
         let (digits, exponent) = text.split_once('e')?;
         let (whole, places) = digits.split_once('.').unwrap_or((digits, ""));
         let shift: i32 = places.len().try_into().ok()?;
-        let mut mantissa: i64 = format!("{whole}{places}").parse().ok()?;
-        let mut exponent = exponent.parse::<i32>().ok()? - shift;
+        let mantissa: i64 = format!("{whole}{places}").parse().ok()?;
+        Some(Self::trimmed(mantissa, exponent.parse::<i32>().ok()? - shift))
+    }
+
+    fn trimmed(mut mantissa: i64, mut exponent: i32) -> Self {
         if mantissa == 0 {
-            return Some(Self::ZERO);
+            return Self::ZERO;
         }
         while mantissa % 10 == 0 {
             (mantissa, exponent) = (mantissa / 10, exponent + 1);
         }
-        Some(Self { mantissa, exponent })
+        Self { mantissa, exponent }
     }
 
     pub(super) fn is_zero(self) -> bool {
@@ -78,6 +103,9 @@ mod tests {
             [(0.1, 1, -1), (-2000.0, -2, 3), (12.5, 125, -1), (1e-9, 1, -9), (0.1 + 0.2, 30_000_000_000_000_004, -17)]
         {
             assert_eq!(Decimal::of(value), Some(Decimal { mantissa, exponent }), "{value}");
+        }
+        for value in [0.0, 1.0, -0.007, 1234.5678, 0.123_456_78, -999_999_999_999_999.0, 1e15, 0.3, 1e7 + 1e-7] {
+            assert_eq!(Decimal::of(value), Decimal::read(value), "{value}");
         }
         assert_eq!(Decimal::of(-0.0), Some(Decimal::ZERO));
         assert_eq!(Decimal::of(f64::INFINITY), None);

@@ -12,7 +12,7 @@ use dashu_int::ops::Abs;
 use super::Unsettled;
 use super::fractions::Fractions;
 use super::price::{Prices, improves};
-use super::vertex::{Side, Vertex};
+use super::vertex::{Side, Swap, Vertex};
 use super::whole::{Costs, Variable};
 use crate::solver::basis::Position;
 
@@ -105,10 +105,10 @@ fn step(vertex: &mut Vertex<'_>, entrant: Variable, rises: bool, column: &Fracti
         Some(Block { slot: Some((slot, side)), variable: vertex.basics[slot], distance, rate: rate.abs() })
     });
     let block = own.into_iter().chain(blocks).reduce(|a, b| if b.is_before(&a) { b } else { a });
-    let Block { slot, distance, .. } = block.ok_or(Unsettled::Unbounded)?;
+    let Block { slot, distance, rate, .. } = block.ok_or(Unsettled::Unbounded)?;
     let moved = !distance.is_zero();
     match slot {
-        Some((slot, side)) => vertex.swap(slot, side, entrant, !moved)?,
+        Some((slot, side)) => vertex.swap(Swap { slot, side, entrant, pivot: rate, still: !moved })?,
         None => vertex.put(entrant, if rises { Side::Upper } else { Side::Lower })?,
     }
     Ok(moved)

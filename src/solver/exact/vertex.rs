@@ -25,6 +25,20 @@ impl Side {
     }
 }
 
+/// A change of basis.
+#[derive(Debug)]
+pub(super) struct Swap {
+    /// The slot of the variable that leaves, and the bound that it leaves to.
+    pub(super) slot: usize,
+    pub(super) side: Side,
+    pub(super) entrant: Variable,
+    /// The numerator of the pivot, not negative. The new determinant is the pivot times the old one, and the pivot's denominator is most
+    /// of the old one: so the numerator is most of the new one.
+    pub(super) pivot: IBig,
+    /// Whether nothing moves.
+    pub(super) still: bool,
+}
+
 /// What may still be spent.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Budget {
@@ -62,7 +76,7 @@ impl<'p> Vertex<'p> {
             positions.zip(&whole.bounds).map(|(position, bounds)| seat(position, bounds)).collect();
         let basics: Vec<Variable> =
             whole.variables().filter(|variable| positions[variable.0] == Position::Basic).collect();
-        let matrix = matrix(whole, &basics)?;
+        let matrix = matrix(whole, &basics, IBig::ONE)?;
         let levels = Fractions::zeros(basics.len());
         let mut vertex = Self { whole, positions, basics, levels, matrix, budget };
         vertex.measure()?;
@@ -128,15 +142,16 @@ impl<'p> Vertex<'p> {
         self.measure()
     }
 
-    /// Takes `entrant` into the basis in place of the variable in `slot`, which leaves to a bound. `still` says that nothing moves.
-    pub(super) fn swap(&mut self, slot: usize, side: Side, entrant: Variable, still: bool) -> Result<(), Unsettled> {
+    /// Takes a variable into the basis in place of another.
+    pub(super) fn swap(&mut self, swap: Swap) -> Result<(), Unsettled> {
         self.count()?;
+        let Swap { slot, side, entrant, .. } = swap;
         let level = self.stand(entrant).map_or(IBig::ZERO, |stand| stand * &self.levels.denominator);
         self.positions[self.basics[slot].0] = side.position();
         self.positions[entrant.0] = Position::Basic;
         self.basics[slot] = entrant;
-        self.matrix = matrix(self.whole, &self.basics)?;
-        if still {
+        self.matrix = matrix(self.whole, &self.basics, swap.pivot)?;
+        if swap.still {
             self.levels.numerators[slot] = level;
             return Ok(());
         }
@@ -163,8 +178,8 @@ impl<'p> Vertex<'p> {
     }
 }
 
-fn matrix<'p>(whole: &'p Whole, basics: &[Variable]) -> Result<Matrix<'p>, Unsettled> {
-    Matrix::of(basics.iter().map(|&basic| whole.entries(basic)).collect())
+fn matrix<'p>(whole: &'p Whole, basics: &[Variable], divisor: IBig) -> Result<Matrix<'p>, Unsettled> {
+    Matrix::of(basics.iter().map(|&basic| whole.entries(basic)).collect(), divisor)
 }
 
 /// Where a variable stands that a basis puts at a bound: at that bound, or where it is infinite at the other, or else at 0.
