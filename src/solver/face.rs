@@ -8,7 +8,7 @@ use super::cold;
 use super::findings::Ending;
 use super::instance::{Instance, Member};
 use super::live::Refusal;
-use super::look::{Look, improves};
+use super::look::Look;
 use super::proof::TOLERANCE;
 use super::stop::Stop;
 use super::vertex::bound_at;
@@ -58,13 +58,25 @@ impl<'a> Face<'a> {
         self.look.basis.rows[at] != Position::Basic && row.lower < row.upper && worth.abs() <= TOLERANCE
     }
 
-    /// Whether the vertex of the look has the least sum of `aim` times level on the face already.
+    /// What `aim`, to be made small, loses as each of what may move leaves its place, per unit; below 0 where it would improve.
     ///
     /// # Errors
     /// When the basis cannot be factorised.
-    pub fn is_least(&self, instance: &mut Instance, aim: &[f64]) -> Result<bool, Refusal> {
+    pub fn gains(&self, instance: &mut Instance, aim: &[f64]) -> Result<Vec<f64>, Refusal> {
+        let worths = self.worths(instance, aim)?;
+        let basis = &self.look.basis;
+        let columns = (0..self.program.columns.len()).filter(|&at| self.moves_column(at)).map(|at| {
+            let entries = &self.program.columns[at].entries;
+            let charged: f64 = entries.iter().map(|&(row, value)| value * worths[row.0]).sum();
+            loss(basis.columns[at], aim[at] - charged)
+        });
+        let rows = (0..self.program.rows.len()).filter(|&at| self.moves_row(at));
+        Ok(columns.chain(rows.map(|at| loss(basis.rows[at], worths[at]))).collect())
+    }
+
+    fn worths(&self, instance: &mut Instance, aim: &[f64]) -> Result<Vec<f64>, Refusal> {
         if self.program.rows.is_empty() {
-            return Ok((0..self.program.columns.len()).all(|at| !self.moves_column(at) || !self.gains(at, aim[at])));
+            return Ok(Vec::new());
         }
         instance.factorise()?;
         let costs = instance.basics()?.into_iter().map(|member| match member {
@@ -72,22 +84,7 @@ impl<'a> Face<'a> {
             Member::Row(_) => 0.0,
         });
         let costs: Vec<f64> = costs.collect();
-        let worths = instance.solve_transposed(&costs)?;
-        let column_gains = |at: usize| {
-            let entries = &self.program.columns[at].entries;
-            let charged: f64 = entries.iter().map(|&(row, value)| value * worths[row.0]).sum();
-            self.moves_column(at) && self.gains(at, aim[at] - charged)
-        };
-        let row_gains = |at: usize| {
-            let row = &self.program.rows[at];
-            self.moves_row(at) && improves(self.look.basis.rows[at], row.lower, row.upper, worths[at])
-        };
-        Ok(!(0..self.program.columns.len()).any(column_gains) && !(0..self.program.rows.len()).any(row_gains))
-    }
-
-    fn gains(&self, at: usize, cost: f64) -> bool {
-        let column = &self.program.columns[at];
-        improves(self.look.basis.columns[at], column.lower, column.upper, cost)
+        instance.solve_transposed(&costs)
     }
 
     /// Walks to the least sum of `aim` times level on the face.
@@ -142,5 +139,14 @@ impl<'a> Face<'a> {
             columns: basis.columns.into_iter().enumerate().map(column).collect(),
             rows: basis.rows.into_iter().enumerate().map(row).collect(),
         }
+    }
+}
+
+/// What a cost loses as something leaves its place: by rising from its lower bound, by falling from its upper, by either where it is free.
+fn loss(position: Position, cost: f64) -> f64 {
+    match position {
+        Position::AtUpper => -cost,
+        Position::AtZero => -cost.abs(),
+        Position::AtLower | Position::Basic => cost,
     }
 }

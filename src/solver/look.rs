@@ -97,7 +97,7 @@ fn outside(value: f64, scale: f64, lower: f64, upper: f64) -> bool {
 }
 
 /// Whether something out of the basis would improve an aim to minimise by leaving its bound.
-pub(super) fn improves(position: Position, lower: f64, upper: f64, cost: f64) -> bool {
+fn improves(position: Position, lower: f64, upper: f64, cost: f64) -> bool {
     if lower >= upper {
         return false;
     }

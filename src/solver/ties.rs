@@ -86,7 +86,7 @@ pub fn spans(
 
 #[expect(clippy::float_cmp, reason = "both are the doubles nearest to exact numbers")]
 fn differs(plan: &Canonical, a: f64, b: f64) -> bool {
-    if plan.exact { a != b } else { (a - b).abs() > DIFFERS * a.abs().max(1.0) }
+    if plan.rational { a != b } else { (a - b).abs() > DIFFERS * a.abs().max(1.0) }
 }
 
 /// The levels with the least sum of `aim` times level on the optimal face; `None` where there is no least.
@@ -103,7 +103,7 @@ fn least(
         End::NoLeast => return Ok(None),
         End::Unknown => plan.look.basis.clone(),
     };
-    if plan.exact {
+    if plan.rational {
         return match exact::settle(program, &basis, aim) {
             Ok(settled) => Ok(Some(settled.levels)),
             Err(Unsettled::Unbounded) => Ok(None),
