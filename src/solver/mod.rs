@@ -24,6 +24,7 @@ pub mod optimum;
 pub mod proof;
 pub mod ranging;
 pub mod session;
+mod sharp;
 pub mod soft;
 pub mod stop;
 pub mod sum;

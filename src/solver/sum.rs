@@ -25,6 +25,12 @@ impl Sum {
         self.low += a.mul_add(b, -product);
     }
 
+    /// Takes another sum away.
+    pub fn take(&mut self, other: Self) {
+        self.add(-other.high);
+        self.add(-other.low);
+    }
+
     /// The sum, rounded once.
     #[must_use]
     pub fn value(self) -> f64 {
