@@ -2,8 +2,9 @@
 //!
 //! Floating point walks there; what is too close to call there is decided in exact arithmetic on the decimals as they are written.
 
-use super::exact::{self, Settled};
+use super::exact::{self, Settled, Unsettled};
 use super::face::{End, Face};
+use super::free;
 use super::instance::Instance;
 use super::live::Refusal;
 use super::look::Look;
@@ -23,6 +24,10 @@ const NIL: f64 = 1e-20;
 /// Programs with at most so many rows are settled in exact arithmetic wherever a gain or a slack is not clear; larger ones where one is
 /// grey. Measured on Netlib bases without a pivot: up to 4 ms with so many rows, 3 to 130 ms with more.
 const ALWAYS_EXACT: usize = 250;
+
+/// Larger programs are not settled in exact arithmetic: a basis takes tens of milliseconds there, and so does each pivot, more than a solve
+/// from nothing. The model alone decides, never a clock.
+const MOST_EXACT: usize = 500;
 
 /// The one plan, and how surely it is that.
 #[derive(Clone, Debug)]
@@ -63,9 +68,7 @@ pub fn of(instance: &mut Instance, program: &Program, mut look: Look, stop: &Sto
     if decided {
         return Ok(Canonical { look: sharpened(look, sharp), exact: true, rational: false, may_tie, pivots: 0 });
     }
-    if let Ok(settled) = exact::settle(program, &look.basis, &weights)
-        && let Some(exactly) = exactly(program, settled)
-    {
+    if let Some(exactly) = settle(program, &look, &weights) {
         if exactly.look.basis != look.basis {
             instance.set_basis(&exactly.look.basis)?;
         }
@@ -76,9 +79,9 @@ pub fn of(instance: &mut Instance, program: &Program, mut look: Look, stop: &Sto
 
 /// The look with the numbers of its vertex in all their digits.
 fn sharpened(mut look: Look, sharp: Sharp) -> Look {
-    let Sharp { levels, worths, sums, gains, .. } = sharp;
+    let Sharp { aim, levels, worths, sums, gains, .. } = sharp;
     look.vertex = Vertex { levels, worths };
-    look.checked = Checked { sums, gains, ..look.checked };
+    look.checked = Checked { aim, sums, gains, ..look.checked };
     look
 }
 
@@ -104,9 +107,16 @@ fn walk(
     Ok(None)
 }
 
-/// The plan that exact arithmetic has settled on; `None` where floating point cannot prove it.
-fn exactly(program: &Program, settled: Settled) -> Option<Canonical> {
-    let Settled { basis, levels, sums, worths, aim, pivots, ties, .. } = settled;
+/// The plan that exact arithmetic settles on; `None` where it cannot, or floating point cannot prove it.
+fn settle(program: &Program, look: &Look, weights: &[f64]) -> Option<Canonical> {
+    if program.rows.len() > MOST_EXACT {
+        return None;
+    }
+    let settled = match exact::settle(program, &look.basis, weights) {
+        Err(Unsettled::Unbounded) => free::settle(program, look, weights),
+        settled => settled,
+    };
+    let Settled { basis, levels, sums, worths, aim, pivots, ties, .. } = settled.ok()?;
     let vertex = Vertex { levels, worths };
     let checked = Checked { aim, sums, ..proof::check(program, &vertex.levels, &vertex.worths) };
     let look = Look { basis, vertex, checked, primal: 0, dual: 0 };

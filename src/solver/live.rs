@@ -387,12 +387,16 @@ impl Live {
         if right.len() != self.rows {
             return Err(Refusal("a right-hand side of another length"));
         }
+        // The solver takes anything below 1e-14 for 0: what is small altogether is made larger first.
+        let scale = power_of_two(right.iter().fold(0.0, |largest: f64, value| largest.max(value.abs())));
+        let right: Vec<f64> = right.iter().map(|value| value / scale).collect();
         let mut result = vec![0.0; self.rows];
         let call = if transposed { Highs_getBasisTransposeSolve } else { Highs_getBasisSolve };
         // SAFETY: both arrays have one element per row; NULL says that the nonzeros are not asked for.
         let code =
             unsafe { call(self.instance(), right.as_ptr(), result.as_mut_ptr(), ptr::null_mut(), ptr::null_mut()) };
         accepted(code, "a solve with its basis")?;
+        result.iter_mut().for_each(|value| *value *= scale);
         Ok(result)
     }
 
@@ -439,6 +443,12 @@ unsafe extern "C" fn on_look(
     if let Some(answer) = unsafe { answer.as_mut() } {
         answer.user_interrupt = c_int::from(stop.is_stopped());
     }
+}
+
+/// The power of two next below a size, by which numbers are divided without rounding; 1 where there is none.
+fn power_of_two(size: f64) -> f64 {
+    let power = f64::from_bits(size.to_bits() & f64::INFINITY.to_bits());
+    if power.is_normal() { power } else { 1.0 }
 }
 
 fn accepted(code: HighsInt, what: &'static str) -> Result<(), Refusal> {

@@ -12,6 +12,7 @@ pub mod desk;
 pub mod exact;
 pub mod face;
 pub mod findings;
+mod free;
 mod inherit;
 pub mod instance;
 mod let_go;

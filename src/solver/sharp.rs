@@ -41,6 +41,8 @@ impl Pair {
 
 /// The vertex of a basis, and how clearly each bound and gain is kept.
 pub(super) struct Sharp {
+    /// The aim, with its constant, rounded once.
+    pub(super) aim: f64,
     /// Level of each column, rounded once.
     pub(super) levels: Vec<f64>,
     /// Worth of each row, rounded once.
@@ -189,7 +191,11 @@ impl Refined {
             });
             margins.push(margin(look.basis.rows[at], room, row.lower < row.upper, self.worths[at].high));
         }
+        let mut aim = Sum::default();
+        aim.add(program.offset);
+        program.columns.iter().zip(&self.levels).for_each(|(column, level)| level.add_to(&mut aim, column.aim));
         Sharp {
+            aim: aim.value(),
             levels: self.levels.iter().map(|level| level.high + 0.0).collect(),
             worths: self.worths.iter().map(|worth| worth.high + 0.0).collect(),
             sums: sums.into_iter().map(Sum::value).collect(),

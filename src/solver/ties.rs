@@ -4,6 +4,7 @@ use super::basis::{Basis, Position};
 use super::canonical::Canonical;
 use super::exact::{self, Unsettled};
 use super::face::{End, Face};
+use super::free::is_free;
 use super::instance::Instance;
 use super::live::Refusal;
 use super::look::Look;
@@ -40,7 +41,7 @@ fn at_bound(position: Position, value: f64, scale: f64, lower: f64, upper: f64) 
     position == Position::Basic && ((value - lower).abs() <= near || (upper - value).abs() <= near)
 }
 
-/// Whether no other levels earn as much: those of the greatest weight on the optimal face are those of the least.
+/// Whether no other levels earn as much: those of the greatest weight on the optimal face are those of the least, and there are both.
 ///
 /// # Errors
 /// When the solver refuses.
@@ -53,9 +54,19 @@ pub fn levels_unique(
     if !plan.may_tie {
         return Ok(true);
     }
-    let against: Vec<f64> = weights(program).iter().map(|weight| -weight).collect();
-    let Some(other) = least(instance, program, plan, &against, stop)? else { return Ok(false) };
-    Ok(other.iter().zip(&plan.look.vertex.levels).all(|(&a, &b)| !differs(plan, a, b)))
+    let weights = weights(program);
+    let mut aims = vec![weights.iter().map(|weight| -weight).collect()];
+    if program.columns.iter().any(is_free) {
+        // The plan is not the one of least weight where there is none such.
+        aims.push(weights);
+    }
+    for aim in aims {
+        let Some(other) = least(instance, program, plan, &aim, stop)? else { return Ok(false) };
+        if other.iter().zip(&plan.look.vertex.levels).any(|(&a, &b)| differs(plan, a, b)) {
+            return Ok(false);
+        }
+    }
+    Ok(true)
 }
 
 /// Per column, the least and the most that its level is in any plan that earns as much.
@@ -100,8 +111,9 @@ fn least(
     let own = plan.look.vertex.levels.clone();
     let basis = match Face::of(program, &plan.look).least(aim, stop)? {
         End::Least(basis) => basis,
-        End::NoLeast => return Ok(None),
-        End::Unknown => plan.look.basis.clone(),
+        // Exact arithmetic has its own word on that: floating point takes what is nearly tied for tied.
+        End::NoLeast if !plan.rational => return Ok(None),
+        End::NoLeast | End::Unknown => plan.look.basis.clone(),
     };
     if plan.rational {
         return match exact::settle(program, &basis, aim) {

@@ -40,6 +40,8 @@ struct Times {
     cold: f64,
     /// The solver's own warm start as it is by default, without our proof.
     default: f64,
+    /// From the proven answer to the one plan.
+    settling: f64,
 }
 
 fn main() {
@@ -48,7 +50,7 @@ fn main() {
     let names: Vec<&String> = words.iter().filter(|word| word.parse::<u64>().is_err()).collect();
     let mut all: BTreeMap<&str, Vec<Times>> = BTreeMap::new();
     println!(
-        "{:10} {:22} {:>5} {:>8} {:>10} {:>13} {:>12} {:>10} {:>10} {:>7} {:>11}",
+        "{:10} {:22} {:>5} {:>8} {:>10} {:>13} {:>12} {:>10} {:>10} {:>12} {:>7} {:>11}",
         "program",
         "edit",
         "broke",
@@ -58,6 +60,7 @@ fn main() {
         "primal/taken",
         "dual/taken",
         "worst",
+        "settle/taken",
         "pivots",
         "cold pivots"
     );
@@ -77,7 +80,7 @@ fn main() {
             let pivots = mean(accounts.iter().map(|pivots| pivots.0 as f64 + 1.0)) - 1.0;
             let cold_pivots = mean(accounts.iter().map(|pivots| pivots.1 as f64 + 1.0)) - 1.0;
             println!(
-                "{name:10} {kind:22} {:5} {:8.2} {:10.1} {:13.2} {:12.1} {:10.1} {:10.2} {pivots:7.1} {cold_pivots:11.1}",
+                "{name:10} {kind:22} {:5} {:8.2} {:10.1} {:13.2} {:12.1} {:10.1} {:10.2} {:12.2} {pivots:7.1} {cold_pivots:11.1}",
                 times.len(),
                 1e3 * mean(times.iter().map(|t| t.taken)),
                 mean(times.iter().map(|t| t.cold / t.taken)),
@@ -85,6 +88,7 @@ fn main() {
                 mean(times.iter().map(|t| t.primal / t.taken)),
                 mean(times.iter().map(|t| t.dual / t.taken)),
                 worst(&times),
+                mean(times.iter().map(|t| t.settling / t.taken)),
             );
             all.entry(kind).or_default().extend(times);
         }
@@ -94,8 +98,17 @@ fn main() {
 
 fn summary(all: &BTreeMap<&str, Vec<Times>>) {
     println!(
-        "\n{:22} {:>5} {:>10} {:>7} {:>14} {:>12} {:>10} {:>16}",
-        "edit", "broke", "cold/taken", "aimed", "default/taken", "regret mean", "95th", "worst taken/cold"
+        "\n{:22} {:>5} {:>10} {:>7} {:>14} {:>12} {:>10} {:>16} {:>12} {:>17}",
+        "edit",
+        "broke",
+        "cold/taken",
+        "aimed",
+        "default/taken",
+        "regret mean",
+        "95th",
+        "worst taken/cold",
+        "settle/taken",
+        "worst settle/cold"
     );
     for (kind, _, aimed) in KINDS {
         let Some(times) = all.get(kind) else { continue };
@@ -104,13 +117,15 @@ fn summary(all: &BTreeMap<&str, Vec<Times>>) {
         regrets.sort_by(f64::total_cmp);
         let rank = (regrets.len() * 95).div_ceil(100).saturating_sub(1);
         println!(
-            "{kind:22} {:5} {:10.1} {aimed:7.0} {:14.2} {:12.2} {:10.2} {:16.2}",
+            "{kind:22} {:5} {:10.1} {aimed:7.0} {:14.2} {:12.2} {:10.2} {:16.2} {:12.2} {:17.2}",
             times.len(),
             mean(times.iter().map(|t| t.cold / t.taken)),
             mean(times.iter().map(|t| t.default / t.taken)),
             mean(regrets.iter().copied()),
             regrets.get(rank).copied().unwrap_or(f64::NAN),
             worst(times),
+            mean(times.iter().map(|t| t.settling / t.taken)),
+            times.iter().map(|t| t.settling / t.cold).fold(0.0, f64::max),
         );
     }
 }
@@ -149,6 +164,7 @@ fn measure(base: &Base, edit: edits::Edit, count: u64) -> Vec<(Times, (usize, us
             dual: forced(Start::Dual).0,
             cold,
             default: by_default(base, &edited),
+            settling: account.settling.as_secs_f64(),
         };
         measured.push((times, (account.pivots, cold_pivots)));
     }
