@@ -12,10 +12,13 @@ mod rational;
 mod rng;
 
 use std::fs;
+use std::path::Path;
 use std::time::Duration;
 
 use instances::netlib;
-use millreeve::lp::{Program, Sense, build, mps};
+use millreeve::lp::{Key, Program, Sense, build, mps};
+use millreeve::model::meaning::Meaning;
+use millreeve::plan;
 use millreeve::solver::basis::{Basis, Position};
 use millreeve::solver::exact::{Settled, Unsettled, settle};
 use millreeve::solver::message::Outcome;
@@ -191,6 +194,49 @@ const OPTIMA: [(&str, f64); 8] = [
     ("stair", -251.266_951_192_963_303_528),
     ("standmps", 1406.0175),
 ];
+
+/// By hand: a floor tile earns 21.1 − 6.5 = 14.6, as a wall tile does, and a mosaic 18.6 − 0.1 · 40 = 14.6, each for one of 100 hours; of
+/// a share of 0.3 the three take 0.1 + 0.2 − 0.3 · 1 = 0. In doubles the first earns 14.600000000000001, and 0.1 + 0.2 is more than 0.3.
+#[test]
+fn what_earns_as_much_on_paper_ties() {
+    let text = r#"
+        format = 1
+        [resources.kiln]
+        capacity = 100
+        [resources.sand]
+        cost = 0.1
+        [activities.floor_tile]
+        price = 21.1
+        cost = 6.5
+        uses = { kiln = 1 }
+        tags = ["fired"]
+        [activities.mosaic]
+        price = 18.6
+        uses = { kiln = 1, sand = 40 }
+        tags = ["fired"]
+        [activities.wall_tile]
+        price = 14.6
+        uses = { kiln = 1 }
+        tags = ["fired"]
+        [limits.share]
+        terms = { "tag:fired" = 0.1, "activities.*" = 0.2 }
+        per = { "activities.*" = 1 }
+        at_most = 0.3
+    "#;
+    let model = millreeve::model::read::text(Path::new("tiles.model.toml"), text.as_bytes()).unwrap().model;
+    let program = build(&model);
+    let aims: Vec<f64> = program.columns.iter().map(|column| column.aim).collect();
+    assert_eq!(aims, [14.6; 3]);
+    let share = program.row(&Key::new("limits.share.at_most")).unwrap();
+    assert!(program.columns.iter().all(|column| column.entries.iter().all(|&(row, _)| row != share)));
+
+    let answer = Session::default().solve(program.clone(), Duration::from_secs(60), &Stop::default());
+    let Outcome::Optimal(optimum) = answer.outcome else { panic!("{:?}", answer.outcome) };
+    let plan = plan::make(&model, Meaning::of(&model), &program, &optimum).unwrap();
+    assert!(plan.exact && plan.ties);
+    assert_eq!(plan.aim.to_bits(), 1460.0_f64.to_bits());
+    assert!(plan.activities.iter().all(|planned| planned.may_vary == Some((0.0, 100.0))), "{:?}", plan.activities);
+}
 
 #[test]
 fn netlib_programs_come_to_their_published_optima() {

@@ -103,6 +103,15 @@ fn answer(id: &str, program: &Program, expected: &Expected, optimum: &Optimum) {
 /// What the plan tells planners: break-evens of what is idle, and of one-sided worths the right side or nothing.
 fn told(id: &str, program: &Program, expected: &Expected, plan: &Plan) {
     let sign = -program.sense.sign();
+    assert!(plan.exact && plan.ties != expected.levels_unique && plan.may_vary_left_out == 0, "{id}");
+    for activity in &plan.activities {
+        match (expected.levels.get(activity.name.as_str()), activity.may_vary) {
+            (Some(range @ Told::Range(..)), Some(ends)) => assert!(range.is(ends), "{id}: {} {ends:?}", activity.name),
+            (Some(Told::Range(..)), None) => panic!("{id}: {} may vary", activity.name),
+            (Some(Told::One(_)), Some(ends)) => panic!("{id}: {} is {ends:?}", activity.name),
+            (Some(Told::One(_)) | None, _) => {}
+        }
+    }
     for activity in plan.activities.iter().filter(|activity| activity.state == State::Idle) {
         let Some(break_even) = activity.break_even else {
             assert!(!expected.levels_unique || !expected.worths_unique, "{id}: no break-even of {}", activity.name);

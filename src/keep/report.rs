@@ -25,6 +25,10 @@ pub struct Report {
     /// The aim of the plan before, where there was one. Not part of the object.
     #[serde(skip)]
     pub aim_before: Option<f64>,
+    /// Whether nothing in that plan was decided by a tolerance.
+    pub exact: Option<bool>,
+    /// Whether other plans earn as much.
+    pub ties: Option<bool>,
     /// The kinds of edit, without repeats.
     pub edit: Vec<&'static str>,
     /// The start taken; none where nothing was solved.
@@ -35,6 +39,8 @@ pub struct Report {
     pub infeasible: Option<Infeasible>,
     /// Simplex iterations.
     pub pivots: usize,
+    /// Pivots in exact arithmetic after that, to the one plan.
+    pub exact_pivots: usize,
     /// Whether a warm run was given up for taking more iterations than a fresh solve is worth.
     pub capped: bool,
     /// Where the time went.
@@ -197,11 +203,14 @@ mod tests {
             "path",
             "standing",
             "aim",
+            "exact",
+            "ties",
             "edit",
             "start",
             "expected_start",
             "infeasible",
             "pivots",
+            "exact_pivots",
             "capped",
             "milliseconds",
             "entered",

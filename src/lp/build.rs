@@ -2,9 +2,13 @@
 //!
 //! One column per activity and period (a prospect's is held at 0, so that it is priced and never made), one row per resource
 //! and per limit. A resource's cost is charged to the activities that use it.
+//!
+//! Where several numbers of a model meet in one of the program, they are added up as the decimals that people wrote and rounded once, so
+//! that what earns as much on paper earns as much here.
 
 use std::collections::{BTreeMap, HashMap};
 
+use super::products;
 use super::program::{Column, Key, Program, Row, RowIndex, Sense};
 use crate::model::name::Name;
 use crate::model::{Activity, Aim, Bound, Horizon, Limit, Model, Period, Term, Value};
@@ -144,13 +148,18 @@ pub fn worth_of_one(model: &Model, activity: &Activity, period: Period) -> f64 {
 
 /// As [`worth_of_one`], with the cost of a resource as `cost_of` tells it.
 fn worth(aim: Aim, activity: &Activity, period: Period, cost_of: impl Fn(&Name) -> Option<f64>) -> f64 {
-    let uses = activity.uses.iter();
-    let resources: f64 = uses.filter_map(|(name, rate)| cost_of(name).map(|cost| rate.at(period) * cost)).sum();
-    let cost = activity.cost.at(period) + resources;
-    match aim {
-        Aim::Maximise => activity.price.at(period) - cost,
-        Aim::Minimise => cost,
+    let (earned, spent) = match aim {
+        Aim::Maximise => (activity.price.at(period), -1.0),
+        Aim::Minimise => (0.0, 1.0),
+    };
+    let mut parts = Vec::with_capacity(2 + activity.uses.len());
+    parts.extend([(earned, 1.0), (spent * activity.cost.at(period), 1.0)]);
+    for (name, rate) in &activity.uses {
+        if let Some(cost) = cost_of(name).filter(|&cost| cost != 0.0) {
+            parts.push((spent * rate.at(period), cost));
+        }
     }
+    products::sum(parts.into_iter())
 }
 
 /// What a row sums, in which period.
@@ -170,9 +179,17 @@ fn in_order<'m>(rows: Vec<Row>, sums: Vec<Sum<'m>>) -> (Vec<Row>, Vec<Sum<'m>>) 
 #[derive(Default)]
 struct Entries<'m> {
     resources: HashMap<(&'m Name, Period), Used>,
-    activities: HashMap<(&'m Name, Period), Vec<(RowIndex, f64)>>,
-    tags: HashMap<(&'m Name, Period), Vec<(RowIndex, f64)>>,
-    all: HashMap<Period, Vec<(RowIndex, f64)>>,
+    activities: HashMap<(&'m Name, Period), Vec<Part>>,
+    tags: HashMap<(&'m Name, Period), Vec<Part>>,
+    all: HashMap<Period, Vec<Part>>,
+}
+
+/// What one term adds to an entry: a coefficient, times a factor.
+#[derive(Clone, Copy)]
+struct Part {
+    row: RowIndex,
+    coefficient: f64,
+    factor: f64,
 }
 
 /// What a column must know of a resource: its row, and what a unit costs.
@@ -210,7 +227,7 @@ impl<'m> Entries<'m> {
                 Term::Tag(tag) => self.tags.entry((tag, period)).or_default(),
                 Term::All => self.all.entry(period).or_default(),
             };
-            list.push((row, coefficient.at(period) * factor));
+            list.push(Part { row, coefficient: coefficient.at(period), factor });
         }
     }
 
@@ -220,29 +237,29 @@ impl<'m> Entries<'m> {
     }
 
     fn of_activity(&self, name: &Name, activity: &Activity, period: Period) -> Vec<(RowIndex, f64)> {
-        let mut entries = Vec::with_capacity(activity.uses.len());
+        let mut parts = Vec::with_capacity(activity.uses.len());
         for (resource, rate) in &activity.uses {
             if let Some(used) = self.resources.get(&(resource, period)) {
-                entries.push((used.row, rate.at(period)));
+                parts.push(Part { row: used.row, coefficient: rate.at(period), factor: 1.0 });
             }
         }
         let by_tag = activity.tags.iter().filter_map(|tag| self.tags.get(&(tag, period)));
         let lists = self.activities.get(&(name, period)).into_iter().chain(by_tag).chain(self.all.get(&period));
-        entries.extend(lists.flatten());
-        summed(entries)
+        parts.extend(lists.flatten());
+        summed(parts)
     }
 }
 
-/// Entries in order of rows, those of one row added up, zeros left out.
-fn summed(mut entries: Vec<(RowIndex, f64)>) -> Vec<(RowIndex, f64)> {
-    entries.sort_by_key(|&(row, _)| row);
-    entries.dedup_by(|next, sum| {
-        let same = next.0 == sum.0;
-        if same {
-            sum.1 += next.1;
-        }
-        same
-    });
-    entries.retain(|&(_, value)| value != 0.0);
+/// Entries in order of rows, the parts of one row added up, zeros left out.
+fn summed(mut parts: Vec<Part>) -> Vec<(RowIndex, f64)> {
+    parts.sort_by_key(|part| part.row);
+    let of_one_row = parts.chunk_by(|one, other| one.row == other.row);
+    let entry = |parts: &[Part]| {
+        let products = parts.iter().map(|part| (part.coefficient, part.factor));
+        Some((parts.first()?.row, products::sum(products)))
+    };
+    // Mostly there is one part for each entry.
+    let mut entries = Vec::with_capacity(parts.len());
+    entries.extend(of_one_row.filter_map(entry).filter(|&(_, value)| value != 0.0));
     entries
 }

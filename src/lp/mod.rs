@@ -4,8 +4,10 @@
 
 pub mod apply;
 pub mod build;
+pub(crate) mod decimal;
 pub mod difference;
 pub mod mps;
+mod products;
 pub mod program;
 
 pub use build::build;

@@ -2,15 +2,14 @@
 //!
 //! What depends on which of several optimal bases the solver ended in is left out, never told as if it were the only truth.
 
+mod activities;
+mod limits;
 mod resources;
 
-mod limits;
-
-use super::number::rounded_to;
 use super::types::{Plan, PlannedActivity, PlannedLimit, PlannedResource, Standing, State};
-use crate::lp::{Column, ColumnIndex, Key, Program, RowIndex, build};
+use crate::lp::{Key, Program, RowIndex};
 use crate::model::meaning::Meaning;
-use crate::model::{Activity, Aim, Model, Name, Period, Value};
+use crate::model::{Aim, Model, Name, Value};
 use crate::solver::message::{Optimum, Ranges};
 
 /// Levels and rates no larger than this are 0, and a level this near to a bound, relative to it, is that bound.
@@ -47,7 +46,7 @@ pub enum MakeError {
 /// The plan of `model`, which means `meaning`, from the `optimum` of its `program`.
 ///
 /// Worths are told where no others are optimal, ranges where in addition no other levels are; whatever this leaves out makes the
-/// plan incomplete. Nothing is decided in rational arithmetic yet, so no plan says that it is exact.
+/// plan incomplete. How far levels may vary where others are as good is told apart from that: what of it was not worked out is counted.
 ///
 /// # Errors
 /// Says what does not fit together, or which number is not finite where it must be.
@@ -65,8 +64,9 @@ pub fn make(model: &Model, meaning: Meaning, program: &Program, optimum: &Optimu
         aim: maker.aim()?,
         minimise: model.aim == Aim::Minimise,
         currency: model.currency.clone(),
-        exact: false,
+        exact: optimum.exact,
         ties: !optimum.levels_unique,
+        may_vary_left_out: maker.may_vary_left_out(&activities),
         complete,
         activities,
         resources,
@@ -94,6 +94,8 @@ struct Maker<'a> {
     worths: bool,
     /// Ranges, where they may be told.
     ranges: Option<&'a Ranges>,
+    /// Per column how far its level may vary without loss, where that may be told.
+    spans: Option<&'a Vec<(f64, f64)>>,
 }
 
 impl<'a> Maker<'a> {
@@ -105,6 +107,9 @@ impl<'a> Maker<'a> {
             ("sums", optimum.sums.len(), rows),
             ("worths", optimum.worths.len(), rows),
         ];
+        if let Some(spans) = &optimum.spans {
+            shapes.push(("spans", spans.len(), columns));
+        }
         if let Some(ranges) = &optimum.ranges {
             shapes.extend([
                 ("ranges of aims", ranges.aims.len(), columns),
@@ -115,9 +120,11 @@ impl<'a> Maker<'a> {
             return Err(MakeError::Shape { what, found, expected });
         }
         // A rate of a plan is one number; over several periods there would be one for each.
-        let worths = optimum.worths_unique && model.horizon.periods().count() == 1;
+        let single = model.horizon.periods().count() == 1;
+        let worths = optimum.worths_unique && single;
         let ranges = optimum.ranges.as_ref().filter(|_| worths && optimum.levels_unique);
-        Ok(Self { model, program, optimum, worths, ranges })
+        let spans = optimum.spans.as_ref().filter(|_| single && !optimum.levels_unique);
+        Ok(Self { model, program, optimum, worths, ranges, spans })
     }
 
     /// The aim, where a sum whose terms cancel to the last digits is 0.
@@ -127,97 +134,6 @@ impl<'a> Maker<'a> {
             self.program.columns.iter().zip(&self.optimum.levels).map(|(column, level)| (column.aim * level).abs());
         let scale = self.program.offset.abs() + earned.sum::<f64>();
         Ok(if aim.abs() <= 1e-12 * scale { 0.0 } else { aim })
-    }
-
-    fn activities(&self) -> Result<Vec<PlannedActivity>, MakeError> {
-        let activities = self.model.activities.iter().enumerate();
-        activities.map(|(position, (name, activity))| self.activity(position, name, activity)).collect()
-    }
-
-    /// `position` is that in the model, which in a single period is that in the program too.
-    fn activity(&self, position: usize, name: &Name, activity: &Activity) -> Result<PlannedActivity, MakeError> {
-        let columns = self.columns_of(position, name)?;
-        let mut levels = Vec::with_capacity(columns.len());
-        for &(_, index) in &columns {
-            levels.push(self.level(index)?);
-        }
-        let state = self.state(activity, &columns, &levels);
-        let mut planned = PlannedActivity {
-            name: name.clone(),
-            level: self.value(levels),
-            state,
-            price_range: None,
-            break_even: None,
-            loses: None,
-        };
-        let &[(period, index)] = columns.as_slice() else { return Ok(planned) };
-        match state {
-            State::Idle | State::Prospect if self.worths => {
-                let own = self.own_price(activity, period);
-                let gain = finite(self.optimum.gains[index.0], "the gain", name.as_str())?;
-                let break_even = own - gain;
-                let loses = rounded_to(-self.better(gain), own.abs().max(break_even.abs()));
-                planned.loses = Some(if loses.abs() <= NIL { 0.0 } else { loses });
-                planned.break_even = Some(finite(break_even, "the break-even", name.as_str())?);
-            }
-            State::Idle | State::Prospect => {}
-            _ => {
-                // The aim's number for a level is the price less all costs, or the cost with that of resources.
-                let beside = self.own_price(activity, period) - self.program.columns[index.0].aim;
-                planned.price_range = self
-                    .ranges
-                    .map(|ranges| ranges.aims[index.0])
-                    .map(|(least, most)| range(least + beside, most + beside, "the price range", name))
-                    .transpose()?;
-            }
-        }
-        Ok(planned)
-    }
-
-    fn columns_of(&self, position: usize, name: &Name) -> Result<Vec<(Period, ColumnIndex)>, MakeError> {
-        let mut columns = Vec::with_capacity(1);
-        for period in self.model.horizon.periods() {
-            let guessed = self.program.columns.get(position);
-            if guessed.is_some_and(|column| build::is_activity_key(&column.key, name, &self.model.horizon, period)) {
-                columns.push((period, ColumnIndex(position)));
-                continue;
-            }
-            let key = build::activity_key(name, &self.model.horizon, period);
-            columns.push((period, self.program.column(&key).ok_or(MakeError::Missing(key))?));
-        }
-        Ok(columns)
-    }
-
-    fn level(&self, index: ColumnIndex) -> Result<f64, MakeError> {
-        let column = &self.program.columns[index.0];
-        finite(settled(self.optimum.levels[index.0], column.lower, column.upper), "the level", column.key.as_str())
-    }
-
-    fn state(&self, activity: &Activity, columns: &[(Period, ColumnIndex)], levels: &[f64]) -> State {
-        let all = |holds: &dyn Fn(&Column, f64) -> bool| {
-            columns.iter().zip(levels).all(|(&(_, index), &level)| holds(&self.program.columns[index.0], level))
-        };
-        if activity.prospect {
-            State::Prospect
-        } else if all(&|column, _| same(column.lower, column.upper)) {
-            State::Fixed
-        } else if all(&|column, level| same(level, column.upper)) {
-            State::AtItsMost
-        } else if all(&|_, level| same(level, 0.0)) {
-            State::Idle
-        } else if all(&|column, level| same(level, column.lower)) {
-            State::AtItsLeast
-        } else {
-            State::InTheMix
-        }
-    }
-
-    /// The number of an activity's own that its break-even is compared with: its price, or its cost where costs are to be small.
-    fn own_price(&self, activity: &Activity, period: Period) -> f64 {
-        match self.model.aim {
-            Aim::Maximise => activity.price.at(period),
-            Aim::Minimise => activity.cost.at(period),
-        }
     }
 
     /// A rate of the aim, turned so that positive is better.

@@ -4,6 +4,7 @@ mod account;
 mod lead;
 mod since;
 mod tables;
+mod ties;
 mod trouble;
 mod words;
 
@@ -97,6 +98,8 @@ pub struct Reckoning {
     pub dual_infeasible: Option<usize>,
     /// Simplex iterations.
     pub pivots: usize,
+    /// Pivots in exact arithmetic after that, to the one plan.
+    pub exact_pivots: usize,
     /// What was tried and given up.
     pub detours: Vec<&'static str>,
     /// The worst relative breach of any law of optimality.
@@ -122,13 +125,14 @@ pub fn write(report: &Report<'_>) -> String {
     out.push_str(&tables::edits(report));
     if let Verdict::Planned(plan) = report.verdict {
         out.push_str(&tables::of_plan(report, plan, comparison.as_ref()));
-        out.push_str(&reservations(plan));
+        out.push_str(&reservations(plan, report.model));
     }
     let plan = if let Verdict::Planned(plan) = report.verdict { Some(plan) } else { report.before };
     out.push_str(&plan.map_or_else(String::new, |plan| since::told(report.release, plan, report.model)));
     out.push_str(since::ADVICE);
     if let Some(reckoning) = report.reckoning {
-        out.push_str(&format!("\n{}\n", account::line(reckoning, matches!(report.verdict, Verdict::Planned(_)))));
+        let planned = if let Verdict::Planned(plan) = report.verdict { Some(plan) } else { None };
+        out.push_str(&format!("\n{}\n", account::line(reckoning, planned)));
     }
     out
 }
@@ -157,17 +161,15 @@ fn is_hex(text: &str) -> bool {
     !text.is_empty() && text.bytes().all(|byte| byte.is_ascii_hexdigit())
 }
 
-/// What the plan does not tell, in a plain sentence or two.
-fn reservations(plan: &Plan) -> String {
-    let ties = if plan.minimise { "Other plans cost as little" } else { "Other plans earn as much" };
-    let mut told = Vec::new();
-    if plan.ties {
-        told.push(format!("{ties}; this is one of them."));
-    }
+/// What a plan cannot say in one number, in a few plain sentences.
+fn reservations(plan: &Plan, model: Option<&Model>) -> String {
+    let mut told = ties::told(plan, model);
     if !plan.complete {
-        told.push("Where one more or one less has no single worth, worths and ranges are left out.".to_owned());
+        let space = if told.is_empty() { "" } else { " " };
+        told.push_str(space);
+        told.push_str("Where one more or one less has no single worth, worths and ranges are left out.");
     }
-    if told.is_empty() { String::new() } else { format!("\n{}\n", told.join(" ")) }
+    if told.is_empty() { told } else { format!("\n{told}\n") }
 }
 
 /// Whether the plan before was held.

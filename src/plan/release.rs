@@ -18,7 +18,7 @@ pub const FORMAT: u32 = 1;
 pub struct Release {
     /// The seal of the plan that it pins.
     pub pins: String,
-    /// That plan as far as it is pinned: its aim and what is done. No resources, no limits, no worths and no ranges.
+    /// That plan as far as it is pinned: its aim and what is done. No resources, no limits, no worths and no ranges; nor how far levels may vary.
     pub plan: Plan,
 }
 
@@ -30,12 +30,20 @@ impl Release {
             name: planned.name.clone(),
             level: planned.level.clone(),
             state: planned.state,
+            may_vary: None,
             price_range: None,
             break_even: None,
             loses: None,
         };
         let activities = plan.activities.iter().map(pinned).collect();
-        let plan = Plan { activities, resources: Vec::new(), limits: Vec::new(), complete: false, ..plan.clone() };
+        let plan = Plan {
+            activities,
+            resources: Vec::new(),
+            limits: Vec::new(),
+            may_vary_left_out: 0,
+            complete: false,
+            ..plan.clone()
+        };
         Self { pins: seal.to_owned(), plan }
     }
 }

@@ -26,6 +26,8 @@ pub struct Plan {
     pub exact: bool,
     /// Whether other plans earn as much.
     pub ties: bool,
+    /// Of how many activities it was not worked out how far their levels may vary without loss, where other plans earn as much.
+    pub may_vary_left_out: usize,
     /// Whether every worth and range was worked out.
     pub complete: bool,
     /// What is done.
@@ -68,6 +70,9 @@ pub struct PlannedActivity {
     pub level: Value,
     /// How it stands.
     pub state: State,
+    /// The least and the most that its level is in any plan that earns as much, in the unit of the level; infinite where there is no
+    /// limit. `None` where no other level is as good, or where it was not worked out.
+    pub may_vary: Option<(f64, f64)>,
     /// Prices (costs, where the aim is to be small) between which these levels stay optimal. Infinite where there is no limit.
     pub price_range: Option<(f64, f64)>,
     /// Idle or prospect: the price above which (the cost below which) it would enter.

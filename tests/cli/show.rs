@@ -101,7 +101,56 @@ fn a_spreadsheet_gets_numbers_and_no_formulas() {
     let rows: Vec<csv::StringRecord> = reader.records().map(Result::unwrap).collect();
     let x = rows.iter().find(|row| &row[1] == "x").unwrap();
     assert_eq!((&x[0], &x[2], &x[3], &x[5]), ("activity", "'=2+3", "m2", "42"));
-    assert!(rows.iter().all(|row| row.len() == 15));
+    assert!(rows.iter().all(|row| row.len() == 17));
+    assert_eq!((&x[15], &x[16]), ("", ""));
+}
+
+/// By hand: 100 h make 100 m2 of either tile at 20 EUR, 80 m2 of floor tiles at most, so that of these there are 0 to 80 and of wall
+/// tiles 20 to 100. A mosaic earns 9 for an hour that is worth 20.
+pub(super) const TIED: &str = r#"
+format   = 1
+title    = "Tiles that earn alike"
+currency = "EUR"
+[resources.kiln]
+unit     = "h"
+capacity = 100
+[activities.floor_tile]
+unit     = "m2"
+price    = 20
+at_most  = 80
+uses     = { kiln = 1 }
+[activities.mosaic]
+unit     = "m2"
+price    = 9
+uses     = { kiln = 1 }
+[activities.wall_tile]
+unit     = "m2"
+price    = 20
+uses     = { kiln = 1 }
+"#;
+
+#[test]
+fn levels_that_may_differ_without_loss_are_told() {
+    let folder = works(TIED);
+    let (_, table, _) = run(folder.path(), &["show", "tiles"]);
+    let (_, why, _) = run(folder.path(), &["show", "tiles", "--why", "wall_tile"]);
+    insta::assert_snapshot!("show_tied", format!("{table}\n{why}"));
+
+    let (_, out, _) = run(folder.path(), &["--json", "show", "tiles"]);
+    let told = &objects(&out)[0];
+    assert_eq!((&told["exact"], &told["ties"]), (&true.into(), &true.into()));
+    let vary = [0, 1, 2].map(|at| told["activities"][at]["may_vary"].clone());
+    assert_eq!(vary, [serde_json::json!([0.0, 80.0]), serde_json::Value::Null, serde_json::json!([20.0, 100.0])]);
+    assert_eq!(told.get("may_vary_left_out"), None);
+
+    let (_, out, _) = run(folder.path(), &["show", "tiles", "--csv"]);
+    let mut reader = csv::Reader::from_reader(out.as_bytes());
+    let ends = |row: csv::StringRecord| (row[15].to_owned(), row[16].to_owned());
+    let rows: Vec<_> = reader.records().map(|row| ends(row.unwrap())).take(3).collect();
+    assert_eq!(rows, [("0", "80"), ("", ""), ("20", "100")].map(|(from, to)| (from.to_owned(), to.to_owned())));
+
+    let (_, out, _) = run(folder.path(), &["--json", "show", "tiles", "--why", "wall_tile"]);
+    assert_eq!(objects(&out)[0]["may_vary"], serde_json::json!([20.0, 100.0]));
 }
 
 /// Something done to a folder.

@@ -7,7 +7,7 @@ use millreeve::lp::Key;
 use millreeve::model::fault::{Excerpt, Place};
 use millreeve::model::{Fault, Faults, Model};
 use millreeve::plan::note::{EditTold, Reckoning, Report, Trouble, Verdict, reason, speaks_of, write};
-use millreeve::plan::{Plan, Standing};
+use millreeve::plan::{Plan, PlannedActivity, Standing};
 use millreeve::solver::message::{Conflict, Growth, Rule, Start};
 
 use crate::tileworks::{activity, model, name, planned};
@@ -27,6 +27,7 @@ fn reckoning(kind: Kind, taken: Start, broken: usize, open: usize, pivots: usize
         primal_infeasible: Some(broken),
         dual_infeasible: Some(open),
         pivots,
+        exact_pivots: 0,
         detours: vec![],
         worst: 2.2e-15,
     }
@@ -119,6 +120,65 @@ fn of_many_moves_an_activity_gone_and_a_resource_eased() {
     let report =
         Report { reckoning: Some(&reckoning), ..report(&model, Some(&before), &edits, Verdict::Planned(&plan)) };
     insta::assert_snapshot!(write(&report));
+}
+
+/// How far the levels may go is made up: what is tested is how it is told.
+#[test]
+fn of_plans_that_earn_as_much() {
+    let mut model = model();
+    let mut plan = planned(&model);
+    plan.ties = true;
+    let told = |model: &Model, plan: &Plan| {
+        let note = write(&report(model, None, &[], Verdict::Planned(plan)));
+        note.lines().find(|line| line.contains("Other plans")).map(str::to_owned)
+    };
+    let floor = plan.activities.iter().position(|planned| planned.name == name("floor_tile")).unwrap();
+    plan.activities[floor].may_vary = Some((0.0, 4180.25));
+    let mut expected = "Other plans earn as much: floor_tile may be anything from 0 to 4 180.25 m2; \
+        the one shown is always the same for the same model.";
+    assert_eq!(told(&model, &plan).as_deref(), Some(expected));
+
+    // The unit is somebody's text, the name has passed for one.
+    model.activities.get_mut("floor_tile").unwrap().unit = Some("m2 <b>*".to_owned());
+    (plan.minimise, plan.exact) = (true, false);
+    plan.activities[floor].may_vary = Some((f64::NEG_INFINITY, 5.0));
+    expected =
+        "Other plans cost as little: floor_tile may be anything up to 5 m2 &lt;b&gt;\\*; the one shown is one of them.";
+    assert_eq!(told(&model, &plan).as_deref(), Some(expected));
+
+    // Of many, the first are told. None of these has an end, so they come by name.
+    let template = plan.activities[floor].clone();
+    for number in 0..9 {
+        let may_vary = Some(if number == 0 { (f64::NEG_INFINITY, f64::INFINITY) } else { (1.0, f64::INFINITY) });
+        plan.activities.push(PlannedActivity { name: name(&format!("x{number}")), may_vary, ..template.clone() });
+    }
+    expected = "Other plans cost as little: floor_tile may be anything up to 5 m2 &lt;b&gt;\\*, x0 anything, \
+        x1 anything from 1 up, x2 anything from 1 up, x3 anything from 1 up, x4 anything from 1 up and 4 other levels, each as the others allow; \
+        the one shown is one of them.";
+    assert_eq!(told(&model, &plan).as_deref(), Some(expected));
+
+    for planned in &mut plan.activities {
+        planned.may_vary = None;
+    }
+    (plan.exact, plan.may_vary_left_out) = (true, 120);
+    expected = "Other plans cost as little; the one shown is always the same for the same model. \
+        How far 120 levels may differ is not worked out for a model of this size.";
+    assert_eq!(told(&model, &plan).as_deref(), Some(expected));
+    plan.ties = false;
+    assert_eq!(told(&model, &plan), None);
+}
+
+#[test]
+fn of_how_surely_it_was_settled() {
+    let (model, mut plan) = (model(), planned(&model()));
+    let reckoning = Reckoning { exact_pivots: 2, ..reckoning(Kind::Price, Start::None, 0, 0, 0) };
+    let last = |plan: &Plan| {
+        let report = Report { reckoning: Some(&reckoning), ..report(&model, None, &[], Verdict::Planned(plan)) };
+        write(&report).lines().last().unwrap().to_owned()
+    };
+    assert!(last(&plan).ends_with("; settled by 2 exact pivots; proven to 2e-15."), "{}", last(&plan));
+    plan.exact = false;
+    assert!(last(&plan).ends_with("; proven to 2e-15; near ties not told apart exactly."), "{}", last(&plan));
 }
 
 #[test]

@@ -7,7 +7,7 @@ use super::Shown;
 use crate::model::Value;
 use crate::plan::number;
 
-const HEADS: [&str; 15] = [
+const HEADS: [&str; 17] = [
     "kind",
     "name",
     "label",
@@ -23,9 +23,12 @@ const HEADS: [&str; 15] = [
     "price_to",
     "break_even",
     "loses",
+    "level_from",
+    "level_to",
 ];
 
-/// The bytes of the table. `level` is the level of an activity, what is used of a resource, and the value of a limit.
+/// The bytes of the table. `level` is the level of an activity, what is used of a resource, and the value of a
+/// limit; `level_from` and `level_to` are between which levels an activity may be without loss.
 pub(super) fn of(shown: &Shown) -> Result<Vec<u8>, Error> {
     let rows = rows(shown);
     let mut writer = WriterBuilder::new().terminator(Terminator::CRLF).from_writer(Vec::new());
@@ -52,6 +55,7 @@ fn rows(shown: &Shown) -> Vec<Row> {
         [row[11], row[12]] = ends(activity.price_range);
         row[13] = cell(activity.break_even);
         row[14] = cell(activity.loses);
+        [row[15], row[16]] = ends(activity.may_vary);
         rows.push(row);
     }
     for resource in &shown.plan.resources {

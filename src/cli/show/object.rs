@@ -27,6 +27,11 @@ pub(super) fn of(shown: &Shown) -> Json {
     put(&mut object, "currency", plan.currency.as_ref().map(|currency| json!(currency)));
     object.insert("exact".into(), json!(plan.exact));
     object.insert("ties".into(), json!(plan.ties));
+    put(
+        &mut object,
+        "may_vary_left_out",
+        Some(plan.may_vary_left_out).filter(|&many| many > 0).map(|many| json!(many)),
+    );
     object.insert("complete".into(), json!(plan.complete));
     put(&mut object, "since_release", shown.pinned.as_ref().map(|pinned| since_release(pinned, plan)));
     object.insert("activities".into(), activities(shown));
@@ -66,6 +71,7 @@ fn activities(shown: &Shown) -> Json {
         object.insert("name".into(), json!(activity.name.as_str()));
         object.insert("level".into(), value(&activity.level));
         object.insert("state".into(), json!(activity.state.words()));
+        put(&mut object, "may_vary", activity.may_vary.map(range));
         put(&mut object, "price_range", activity.price_range.map(range));
         put(&mut object, "break_even", activity.break_even.map(number));
         put(&mut object, "loses", activity.loses.map(number));
@@ -120,6 +126,6 @@ fn value(value: &Value) -> Json {
     }
 }
 
-fn range((least, most): (f64, f64)) -> Json {
+pub(in crate::cli) fn range((least, most): (f64, f64)) -> Json {
     Json::Array(vec![number(least), number(most)])
 }

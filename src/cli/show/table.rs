@@ -46,7 +46,14 @@ fn remarks(shown: &Shown) -> Vec<String> {
     }
     if plan.ties {
         let as_good = if plan.minimise { "cost as little" } else { "earn as much" };
-        remarks.push(format!("Other plans {as_good}: levels can differ without loss."));
+        let how_far = if plan.may_vary_left_out > 0 {
+            "levels can differ without loss; how far is not worked out for a model of this size"
+        } else if plan.activities.iter().any(|planned| planned.may_vary.is_some()) {
+            "levels may be anything in the ranges shown, each as the others allow"
+        } else {
+            "levels can differ without loss"
+        };
+        remarks.push(format!("Other plans {as_good}: {how_far}."));
     }
     if !plan.complete {
         remarks
@@ -100,6 +107,7 @@ fn activities(shown: &Shown) -> Sheet {
         ("level", true),
         ("unit", false),
         ("state", false),
+        ("level may be", false),
         (range_head, false),
         (even_head, true),
         ("loses", true),
@@ -112,6 +120,7 @@ fn activities(shown: &Shown) -> Sheet {
             value(&activity.level),
             plain(known.and_then(|known| known.unit.as_deref())),
             activity.state.words().to_owned(),
+            activity.may_vary.map(range).unwrap_or_default(),
             activity.price_range.map(range).unwrap_or_default(),
             number(activity.break_even),
             number(activity.loses),

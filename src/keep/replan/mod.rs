@@ -350,6 +350,7 @@ fn reckoning(known: Option<&Known>, edits: &[Edit], account: &Account, optimum: 
         primal_infeasible: account.primal_infeasible,
         dual_infeasible: account.dual_infeasible,
         pivots: account.pivots,
+        exact_pivots: account.exact_pivots,
         detours: account.detours.clone(),
         worst: optimum.map_or(0.0, |optimum| optimum.proof.worst()),
     }

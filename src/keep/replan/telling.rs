@@ -140,6 +140,8 @@ fn stand(report: &mut Report, plan: &Plan) {
     report.standing = plan.standing.word().to_owned();
     report.held = if let Standing::Held(reason) = &plan.standing { Some(reason.clone()) } else { None };
     report.aim = Some(rounded(plan.aim));
+    report.exact = Some(plan.exact);
+    report.ties = Some(plan.ties);
 }
 
 fn worked_out(report: &mut Report, solved: Option<(&Reckoning, &Account)>) {
@@ -148,10 +150,11 @@ fn worked_out(report: &mut Report, solved: Option<(&Reckoning, &Account)>) {
         Some(solved.map_or(Start::None.word().to_owned(), |(reckoning, _)| reckoning.expected.clone()));
     if let Some((_, account)) = solved {
         report.pivots = account.pivots;
+        report.exact_pivots = account.exact_pivots;
         report.capped = account.capped;
         report.infeasible =
             account.primal_infeasible.zip(account.dual_infeasible).map(|(primal, dual)| Infeasible { primal, dual });
-        report.milliseconds.solve = super::milliseconds(account.time + account.reading);
+        report.milliseconds.solve = super::milliseconds(account.time + account.settling + account.reading);
     }
 }
 

@@ -1,7 +1,8 @@
 //! Plans made of models solved by hand and of published examples.
 
 use super::*;
-use crate::model::{Bound, Limit, Resource, Term};
+use crate::lp::build;
+use crate::model::{Activity, Bound, Limit, Resource, Term};
 use crate::solver::basis::Basis;
 use crate::solver::proof::Proof;
 
@@ -114,7 +115,8 @@ fn the_molder_gets_the_plan_of_the_book() {
     close(demand.worth_of_more, 0.0);
     close(demand.spare.as_ref().map(|spare| spare.numbers()[0]), 11.0 / 7.0);
     between(demand.holds_between, 45.0 / 7.0, INF);
-    assert!(plan.complete && !plan.ties && !plan.exact && !plan.minimise);
+    assert!(plan.complete && !plan.ties && plan.exact && !plan.minimise);
+    assert!(!made(&molder(0.0), &Optimum { exact: false, ..molder_optimum() }).exact);
 }
 
 #[test]
@@ -131,6 +133,7 @@ fn what_is_not_unique_is_left_out() {
     optimum.levels_unique = false;
     let plan = made(&molder(0.0), &optimum);
     assert!(plan.ties && !plan.complete);
+    assert_eq!(plan.may_vary_left_out, 3);
     assert_eq!(plan.activities[1].price_range, None);
     assert_eq!(plan.limits[0].holds_between, None);
     close(plan.resources[0].worth_of_more, 550.0 / 7.0);
@@ -142,6 +145,26 @@ fn what_is_not_unique_is_left_out() {
     assert_eq!(plan.activities[0].break_even, None);
     assert_eq!(plan.activities[1].price_range, None);
     assert!(plan.resources.iter().all(|r| r.worth_of_more.is_none() && r.holds_between.is_none()));
+}
+
+/// The spans are made up: what is tested is what a plan says of them.
+#[test]
+fn levels_that_may_vary_say_how_far() {
+    let (six, ten) = (45.0 / 7.0, 30.0 / 7.0);
+    let spans = |champagne, ten| Optimum {
+        levels_unique: false,
+        spans: Some(vec![champagne, (six, six + 1e-12), ten]),
+        ..molder_optimum()
+    };
+    let vary = |plan: &Plan| [0, 1, 2].map(|at| plan.activities[at].may_vary);
+    let plan = made(&molder(0.0), &spans((-1e-10, 4.0), (1.0, INF)));
+    assert!(plan.ties);
+    assert_eq!((vary(&plan), plan.may_vary_left_out), ([Some((0.0, 4.0)), None, Some((1.0, INF))], 0));
+    // Nothing but rounding, and an end that rounding has put beyond the level itself.
+    let plan = made(&molder(0.0), &spans((-1e-10, 1e-10), (ten + 1e-12, 8.0)));
+    assert_eq!(vary(&plan), [None, None, Some((ten, 8.0))]);
+    let plan = made(&molder(0.0), &Optimum { levels_unique: true, ..spans((0.0, 4.0), (1.0, 8.0)) });
+    assert_eq!((vary(&plan), plan.may_vary_left_out), ([None; 3], 0));
 }
 
 /// Ten of a and b together are needed, at a cost of 3 and 5; a is held to 8 by a resource. c costs 6.
@@ -220,6 +243,8 @@ fn every_state_is_told() {
     assert_eq!(told, expected.map(|(state, level)| (state, level.to_owned())));
     close(plan.activities[5].break_even, 0.0);
     close(plan.activities[5].loses, -7.0);
+    // A level that its bounds fix, and that of a prospect, cannot vary.
+    assert_eq!(plan.may_vary_left_out, 4);
 }
 
 /// Two of three kilos come from a, as a may be at most two thirds of a and b. By hand: a 4, b 2, of 6 in all.
@@ -264,6 +289,9 @@ fn what_is_no_number_makes_no_plan() {
     assert!(refused(&|o| o.worths[1] = f64::NAN).contains("the worth of `hours`"));
     assert!(refused(&|o| o.gains[0] = f64::NAN).contains("the gain of `champagne`"));
     assert_eq!(refused(&|o| o.levels.truncate(2)), "the answer has 2 levels, the program 3");
+    assert_eq!(refused(&|o| o.spans = Some(vec![])), "the answer has 0 spans, the program 3");
+    let untold = |o: &mut Optimum| (o.levels_unique, o.spans) = (false, Some(vec![(0.0, f64::NAN); 3]));
+    assert!(refused(&untold).starts_with("how far the level may vary of `champagne` is "));
     let other = Model { activities: [].into(), ..molder(0.0) };
     let optimum = Optimum { levels: vec![], gains: vec![], ranges: None, ..molder_optimum() };
     let error = make(&model, Meaning::of(&model), &build(&other), &optimum).unwrap_err();

@@ -4,10 +4,11 @@ use super::Reckoning;
 use super::words::count;
 use crate::edits::Kind;
 use crate::model::escape::Markdown;
+use crate::plan::types::Plan;
 use crate::solver::message::Start;
 
 /// One line: kinds of edit, what became of the last basis, the start, pivots and, where there is a plan, the proof.
-pub(super) fn line(reckoning: &Reckoning, proven: bool) -> String {
+pub(super) fn line(reckoning: &Reckoning, plan: Option<&Plan>) -> String {
     let mut parts: Vec<String> = Vec::new();
     let kinds: Vec<String> = reckoning.kinds.iter().map(|&kind| kind_told(kind)).collect();
     if !kinds.is_empty() {
@@ -22,11 +23,17 @@ pub(super) fn line(reckoning: &Reckoning, proven: bool) -> String {
         let detours: Vec<String> = reckoning.detours.iter().map(|detour| Markdown(detour).to_string()).collect();
         parts.push(format!("given up on the way: {}", detours.join(", ")));
     }
-    if proven {
+    if reckoning.exact_pivots > 0 {
+        parts.push(format!("settled by {}", count(reckoning.exact_pivots, "exact pivot")));
+    }
+    if let Some(plan) = plan {
         parts.push(match reckoning.worst {
             worst if worst > 0.0 => format!("proven to {worst:.0e}"),
             _ => "proven to the last digit".to_owned(),
         });
+        if !plan.exact {
+            parts.push("near ties not told apart exactly".to_owned());
+        }
     }
     format!("Worked out: {}.", parts.join("; "))
 }

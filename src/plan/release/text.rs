@@ -120,6 +120,7 @@ impl File {
             currency: self.currency,
             exact: false,
             ties: false,
+            may_vary_left_out: 0,
             complete: false,
             activities: activities.map_err(broken)?,
             resources: Vec::new(),
@@ -140,7 +141,16 @@ mod tests {
     fn activity(name: &str, level: Value) -> PlannedActivity {
         let state = if level.numbers().iter().any(|&number| number > 0.0) { State::InTheMix } else { State::Idle };
         let name = Name::new(name).unwrap();
-        PlannedActivity { name, level, state, price_range: Some((1.0, 2.0)), break_even: None, loses: Some(3.0) }
+        let ranges = Some((1.0, 2.0));
+        PlannedActivity {
+            name,
+            level,
+            state,
+            may_vary: ranges,
+            price_range: ranges,
+            break_even: None,
+            loses: Some(3.0),
+        }
     }
 
     fn plan(aim: f64, activities: Vec<PlannedActivity>) -> Plan {
@@ -152,6 +162,7 @@ mod tests {
             currency: Some("EU\"R".to_owned()),
             exact: true,
             ties: true,
+            may_vary_left_out: 0,
             complete: true,
             activities,
             resources: vec![],

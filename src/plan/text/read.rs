@@ -149,6 +149,8 @@ struct File {
     currency: Option<String>,
     exact: bool,
     ties: bool,
+    #[serde(default)]
+    may_vary_left_out: usize,
     complete: bool,
     #[serde(default)]
     activities: Vec<ActivityEntry>,
@@ -165,6 +167,7 @@ pub(in crate::plan) struct ActivityEntry {
     name: String,
     level: Numbers,
     state: String,
+    may_vary: Option<(f64, f64)>,
     #[serde(alias = "cost_range")]
     price_range: Option<(f64, f64)>,
     break_even: Option<f64>,
@@ -223,6 +226,7 @@ impl File {
             currency: self.currency,
             exact: self.exact,
             ties: self.ties,
+            may_vary_left_out: self.may_vary_left_out,
             complete: self.complete,
             activities,
             resources,
@@ -242,6 +246,7 @@ impl ActivityEntry {
             name: name(&self.name)?,
             level: self.level.into(),
             state: state.ok_or_else(|| PlanError::Broken(format!("no state is called `{}`", Plain(&self.state))))?,
+            may_vary: self.may_vary,
             price_range: self.price_range,
             break_even: self.break_even,
             loses: self.loses,

@@ -34,11 +34,12 @@ fn rates() -> impl Strategy<Value = (Option<f64>, Option<f64>, Option<(f64, f64)
 }
 
 fn activities() -> impl Strategy<Value = Vec<PlannedActivity>> {
-    let entry = (values(), 0..6_usize, option::of(ends()), option::of(numbers()), option::of(numbers()));
+    let (may_vary, price_range) = (option::of(ends()), option::of(ends()));
+    let entry = (values(), 0..6_usize, may_vary, price_range, option::of(numbers()), option::of(numbers()));
     named(entry).prop_map(|list| {
-        let planned = |(name, (level, state, price_range, break_even, loses))| {
+        let planned = |(name, (level, state, may_vary, price_range, break_even, loses))| {
             let state = State::ALL[state];
-            PlannedActivity { name, level, state, price_range, break_even, loses }
+            PlannedActivity { name, level, state, may_vary, price_range, break_even, loses }
         };
         list.into_iter().map(planned).collect()
     })
@@ -83,13 +84,16 @@ prop_compose! {
         aim in numbers(),
         currency in option::of(any::<String>()),
         flags in any::<[bool; 4]>(),
+        may_vary_left_out in 0..30_000_usize,
         activities in activities(),
         resources in resources(),
         limits in limits(),
     ) -> Plan {
         let [minimise, exact, ties, complete] = flags;
         let answers = Meaning::parse(&digest).unwrap();
-        Plan { answers, standing, aim, minimise, currency, exact, ties, complete, activities, resources, limits }
+        Plan {
+            answers, standing, aim, minimise, currency, exact, ties, may_vary_left_out, complete, activities, resources, limits,
+        }
     }
 }
 
@@ -110,6 +114,7 @@ fn kept(mut plan: Plan) -> Plan {
     plan.aim = rounded(plan.aim);
     for planned in &mut plan.activities {
         value(&mut planned.level);
+        pair(&mut planned.may_vary);
         pair(&mut planned.price_range);
         single(&mut planned.break_even);
         single(&mut planned.loses);
@@ -172,6 +177,7 @@ fn sample() -> String {
         currency: Some("EUR".to_owned()),
         exact: false,
         ties: false,
+        may_vary_left_out: 0,
         complete: true,
         activities: vec![],
         resources: vec![],

@@ -25,14 +25,17 @@ pub fn write(plan: &Plan) -> String {
     standing(&mut out, &plan.standing);
     line(&mut out, "aim     ", |out| number::push(out, plan.aim));
     if plan.minimise {
-        line(&mut out, "minimise", |out| out.push_str("true"));
+        flag(&mut out, "minimise", true);
     }
     if let Some(currency) = &plan.currency {
         line(&mut out, "currency", |out| quoted(out, currency));
     }
-    for (key, value) in [("exact   ", plan.exact), ("ties    ", plan.ties), ("complete", plan.complete)] {
-        line(&mut out, key, |out| out.push_str(if value { "true" } else { "false" }));
+    flag(&mut out, "exact   ", plan.exact);
+    flag(&mut out, "ties    ", plan.ties);
+    if plan.may_vary_left_out > 0 {
+        line(&mut out, "may_vary_left_out", |out| out.push_str(&plan.may_vary_left_out.to_string()));
     }
+    flag(&mut out, "complete", plan.complete);
     for planned in &plan.activities {
         activity(&mut out, planned, plan.minimise);
     }
@@ -65,6 +68,7 @@ fn activity(out: &mut String, planned: &PlannedActivity, minimise: bool) {
     line(out, "name       ", |out| quoted(out, planned.name.as_str()));
     line(out, "level      ", |out| value(out, &planned.level));
     line(out, "state      ", |out| quoted(out, planned.state.words()));
+    pair(out, "may_vary   ", planned.may_vary);
     pair(out, if minimise { "cost_range " } else { "price_range" }, planned.price_range);
     single(out, "break_even ", planned.break_even);
     single(out, "loses      ", planned.loses);
@@ -102,6 +106,10 @@ pub(in crate::plan) fn line(out: &mut String, key: &str, value: impl FnOnce(&mut
     out.push_str(" = ");
     value(out);
     out.push('\n');
+}
+
+fn flag(out: &mut String, key: &str, holds: bool) {
+    line(out, key, |out| out.push_str(if holds { "true" } else { "false" }));
 }
 
 fn single(out: &mut String, key: &str, number: Option<f64>) {

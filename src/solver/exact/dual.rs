@@ -10,11 +10,11 @@ use dashu_int::IBig;
 use dashu_int::ops::{Abs, DivRem};
 
 use super::Unsettled;
-use super::number::nearest;
 use super::price::{Prices, combine, improves};
 use super::primal::PATIENCE;
 use super::vertex::{Side, Swap, Vertex};
 use super::whole::{Costs, Variable};
+use crate::lp::decimal::nearest;
 use crate::solver::basis::Position;
 
 /// Pivots until the vertex keeps all bounds.

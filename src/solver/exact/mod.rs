@@ -27,7 +27,7 @@
 //!
 //! | | |
 //! | --- | --- |
-//! | `number`, `whole` | the program in whole numbers |
+//! | `whole` | the program in whole numbers, by way of `lp::decimal` |
 //! | `field`, `factor` | a basis factorised modulo a prime |
 //! | `lift`, `fractions` | exact solutions from it |
 //! | `vertex`, `price` | where a basis stands, and what would improve it |
@@ -38,7 +38,6 @@ mod factor;
 mod field;
 mod fractions;
 mod lift;
-mod number;
 mod price;
 mod primal;
 mod settled;

@@ -7,11 +7,11 @@ use dashu_int::IBig;
 use thiserror::Error;
 
 use super::dual;
-use super::number::{Decimal, nearest, ten_to};
 use super::price::Prices;
 use super::primal::{lowest, minimise};
 use super::vertex::{Budget, Side, Vertex};
 use super::whole::{Bounds, Costs, Variable, Whole};
+use crate::lp::decimal::{Decimal, nearest, ten_to};
 use crate::lp::{Program, RowIndex, Sense};
 use crate::solver::basis::{Basis, Position};
 

@@ -9,7 +9,7 @@ use dashu_int::IBig;
 
 use super::Unsettled;
 use super::factor::Entries;
-use super::number::{Decimal, nearest, ten_to};
+use crate::lp::decimal::{Decimal, nearest, ten_to};
 use crate::lp::{Program, RowIndex};
 
 /// A column of the program or the sum of a row: columns first, both in the program's order.

@@ -4,7 +4,7 @@ use serde_json::{Value as Json, json};
 
 use super::super::super::screen::{HEAD, Screen};
 use super::super::number::{align, short, signed, value};
-use super::super::object::number;
+use super::super::object::{self, number};
 use super::sum::{self, Line, NoSum, Sum, What};
 use super::{Subject, titled, unit_or, with_unit};
 use crate::model::escape::Plain;
@@ -32,6 +32,22 @@ pub(super) fn tell(screen: &mut Screen, subject: &Subject<'_>, planned: &Planned
         }
         Err(reason) => screen.say(format_args!("\n{}", without(&reason))),
     }
+    if let Some(ends) = planned.may_vary {
+        screen.say(format_args!("\n{}", elsewhere(subject, ends, activity.unit.as_deref())));
+    }
+}
+
+/// Where plans that are as good have the level.
+fn elsewhere(subject: &Subject<'_>, ends: (f64, f64), unit: Option<&str>) -> String {
+    let as_good = if subject.shown.plan.minimise { "cost as little" } else { "earn as much" };
+    let unit = unit.map(|unit| format!(" {}", Plain(unit))).unwrap_or_default();
+    let anything = match (ends.0.is_finite(), ends.1.is_finite()) {
+        (true, true) => format!("anything from {} to {}{unit}", short(ends.0), short(ends.1)),
+        (true, false) => format!("anything from {}{unit} up", short(ends.0)),
+        (false, true) => format!("anything up to {}{unit}", short(ends.1)),
+        (false, false) => "anything".to_owned(),
+    };
+    format!("Other plans {as_good}: its level may be {anything}, as the others allow.")
 }
 
 fn in_currency(currency: &str) -> String {
@@ -170,6 +186,7 @@ fn object(subject: &Subject<'_>, planned: &PlannedActivity, sum: &Result<Sum, No
         "kind": "activity",
         "name": planned.name.as_str(),
         "state": planned.state.words(),
+        "may_vary": planned.may_vary.map(object::range),
         "lines": lines,
         "gain": sum.as_ref().ok().map(|sum| sum.gain),
         "break_even": planned.break_even.map(number),

@@ -5,16 +5,18 @@ use dashu_int::ops::{Abs, BitTest, DivRem};
 
 /// A decimal: `mantissa · 10^exponent`. The mantissa has at most 17 digits and does not end in 0.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub(super) struct Decimal {
-    pub(super) mantissa: i64,
-    pub(super) exponent: i32,
+pub(crate) struct Decimal {
+    /// Its digits.
+    pub(crate) mantissa: i64,
+    /// The power of ten that they are multiplied by.
+    pub(crate) exponent: i32,
 }
 
 impl Decimal {
-    pub(super) const ZERO: Self = Self { mantissa: 0, exponent: 0 };
+    pub(crate) const ZERO: Self = Self { mantissa: 0, exponent: 0 };
 
     /// The shortest decimal that reads as `value`; `None` where it is no finite number.
-    pub(super) fn of(value: f64) -> Option<Self> {
+    pub(crate) fn of(value: f64) -> Option<Self> {
         Self::short(value).or_else(|| Self::read(value))
     }
 
@@ -22,14 +24,19 @@ impl Decimal {
     fn short(value: f64) -> Option<Self> {
         let mut power = 1.0;
         for places in 0..8 {
-            let digits = (value * power).round();
-            if digits.abs() >= 1e15 {
+            let scaled: f64 = value * power;
+            if scaled.abs() >= 1e15 {
                 return None;
             }
-            // Both are exact, so the quotient is what reading the decimal would give.
-            if (digits / power).total_cmp(&(value + 0.0)).is_eq() {
-                #[expect(clippy::cast_possible_truncation, reason = "a whole number below 2^53")]
-                return Some(Self::trimmed(digits as i64, -places));
+            #[expect(clippy::cast_possible_truncation, reason = "below 2^53")]
+            let digits = (scaled + 0.5_f64.copysign(scaled)) as i64;
+            #[expect(clippy::cast_precision_loss, reason = "below 2^53")]
+            let whole = digits as f64;
+            // Both are exact, so the quotient is what reading the decimal would give; the difference is but quicker to look at.
+            if (scaled - whole).abs() <= scaled.abs() * f64::EPSILON
+                && (whole / power).total_cmp(&(value + 0.0)).is_eq()
+            {
+                return Some(Self::trimmed(digits, -places));
             }
             power *= 10.0;
         }
@@ -55,23 +62,23 @@ impl Decimal {
         Self { mantissa, exponent }
     }
 
-    pub(super) fn is_zero(self) -> bool {
+    pub(crate) fn is_zero(self) -> bool {
         self.mantissa == 0
     }
 
     /// The decimal times `10^places`, which must leave no decimal places.
-    pub(super) fn times_ten_to(self, places: i32) -> IBig {
+    pub(crate) fn times_ten_to(self, places: i32) -> IBig {
         if self.is_zero() { IBig::ZERO } else { IBig::from(self.mantissa) * ten_to(self.exponent + places) }
     }
 }
 
 /// `10^places`, for `places` that are not negative.
-pub(super) fn ten_to(places: i32) -> IBig {
+pub(crate) fn ten_to(places: i32) -> IBig {
     IBig::from(10).pow(usize::try_from(places).unwrap_or(0))
 }
 
 /// The double nearest to `numerator / denominator`, ties to even; the denominator is positive.
-pub(super) fn nearest(numerator: &IBig, denominator: &IBig) -> f64 {
+pub(crate) fn nearest(numerator: &IBig, denominator: &IBig) -> f64 {
     if numerator.is_zero() {
         return 0.0;
     }
