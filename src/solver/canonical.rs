@@ -27,7 +27,7 @@ const ALWAYS_EXACT: usize = 250;
 
 /// Larger programs are not settled in exact arithmetic: a basis takes tens of milliseconds there, and so does each pivot, more than a solve
 /// from nothing. The model alone decides, never a clock.
-const MOST_EXACT: usize = 500;
+const MOST_EXACT: usize = 600;
 
 /// The one plan, and how surely it is that.
 #[derive(Clone, Debug)]

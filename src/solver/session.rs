@@ -89,7 +89,7 @@ impl Session {
         let reached = self.reach(&program, limit, stop, &mut account);
         account.time = begun.elapsed();
         let outcome = match reached {
-            Reached::Optimal(instance, look) => self.settled(program, (instance, *look), stop, &mut account),
+            Reached::Optimal(instance, look) => self.settled(program, (instance, *look), (limit, stop), &mut account),
             Reached::Other(Outcome::Infeasible(conflict)) => {
                 Outcome::Infeasible(minimal::shrink(&program, conflict, limit, stop))
             }
@@ -105,11 +105,19 @@ impl Session {
         &mut self,
         program: Arc<Program>,
         (mut instance, look): (Box<Instance>, Look),
-        stop: &Stop,
+        (limit, stop): (Duration, &Stop),
         account: &mut Account,
     ) -> Outcome {
         let begun = Instant::now();
-        let plan = canonical::of(&mut instance, &program, look, stop);
+        let mut plan = canonical::of(&mut instance, &program, look, stop);
+        if plan.as_ref().is_ok_and(|plan| !plan.exact) && account.start != Start::Cold {
+            // What only a tolerance decides depends on the way there: the one from nothing is the same for everybody.
+            account.detours.push("near ties in a model too large to tell them apart exactly");
+            if let Reached::Optimal(afresh, look) = cold::solve(&program, limit, stop).end {
+                instance = afresh;
+                plan = canonical::of(&mut instance, &program, *look, stop);
+            }
+        }
         account.settling = begun.elapsed();
         let told = plan.and_then(|plan| {
             account.exact_pivots = plan.pivots;
