@@ -197,6 +197,15 @@ pub fn sweep<'a>(candidates: impl IntoIterator<Item = &'a PathBuf>) -> usize {
     candidates.into_iter().filter(|path| path.file_name().is_some_and(is_temp) && remove_orphan(path)).count()
 }
 
+/// As [`sweep`], for all that lies in one folder of ours.
+///
+/// # Errors
+/// The folder cannot be read.
+pub fn sweep_folder(folder: &Path) -> io::Result<usize> {
+    let entries = fs::read_dir(folder)?.flatten().filter(|entry| is_temp(&entry.file_name()));
+    Ok(sweep(&entries.map(|entry| entry.path()).collect::<Vec<_>>()))
+}
+
 /// Removes a file unless its writer still has it locked. The lock is held over the removal, so that a writer that comes just then
 /// finds out.
 fn remove_orphan(path: &Path) -> bool {

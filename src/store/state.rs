@@ -93,9 +93,7 @@ impl Records {
     pub fn open(state: &Path) -> Result<Self, StoreError> {
         let folder = state.join(SUBFOLDER);
         fs::create_dir_all(&folder).map_err(StoreError::failed(Step::MakeFolder, &folder))?;
-        let entries = fs::read_dir(&folder).map_err(StoreError::failed(Step::Look, &folder))?;
-        let left: Vec<_> = entries.flatten().filter(|entry| atomic::is_temp(&entry.file_name())).collect();
-        atomic::sweep(&left.iter().map(fs::DirEntry::path).collect::<Vec<_>>());
+        atomic::sweep_folder(&folder).map_err(StoreError::failed(Step::Look, &folder))?;
         Ok(Self { folder })
     }
 
