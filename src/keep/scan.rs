@@ -112,7 +112,7 @@ pub struct Scan {
     pub odd: BTreeSet<ModelPath>,
     /// Temporary files of ours.
     pub temps: Vec<PathBuf>,
-    /// Folders, relative to the root, that could not be read. Nothing is known about what is in them.
+    /// Folders and models, relative to the root, that could not be read. Nothing is known about what is in them.
     pub unread: Vec<PathBuf>,
 }
 
@@ -186,7 +186,11 @@ fn look_at(model: ModelPath, scan: &mut Scan) {
         Err(error) if error.kind() == io::ErrorKind::NotFound => {
             Sight { release: Stamp::of(&model.release()), ..Sight::default() }
         }
-        _ => {
+        Err(_) => {
+            scan.unread.push(model.relative().to_owned());
+            return;
+        }
+        Ok(_) => {
             scan.odd.insert(model);
             return;
         }
