@@ -107,7 +107,7 @@ impl Records {
             Err(error) if error.kind() == ErrorKind::NotFound => return Err(Lost::Missing),
             Err(error) => return Err(Lost::Unreadable(error)),
         };
-        let mut bytes = Vec::new();
+        let mut bytes = atomic::room_for(&file, LARGEST);
         file.take(LARGEST).read_to_end(&mut bytes).map_err(Lost::Unreadable)?;
         let record = decode(&bytes)?;
         if record.model == model { Ok(record) } else { Err(Lost::Damaged("it is about another model")) }
