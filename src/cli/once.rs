@@ -49,7 +49,7 @@ fn not_done(path: &Path, error: &OnceError) -> Error {
             Error::reading(path, source)
         }
         OnceError::Lock(lock) => locked(lock),
-        OnceError::Store(_) | OnceError::System(_) => Error::failure(error, ""),
+        OnceError::Store(_) | OnceError::Unread { .. } | OnceError::System(_) => Error::failure(error, ""),
     }
 }
 

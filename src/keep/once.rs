@@ -29,9 +29,29 @@ pub enum OnceError {
     /// A glob in the settings cannot be read.
     #[error(transparent)]
     Ignore(#[from] IgnoreError),
+    /// Folders or models could not be read; everything else was brought up to date.
+    #[error("{} cannot be read{}; let this user enter it", shown(.first), others(.more))]
+    Unread {
+        /// One of them.
+        first: PathBuf,
+        /// How many there are beside it.
+        more: usize,
+    },
     /// The system denies threads.
     #[error("cannot start: {}", reason(.0))]
     System(#[from] io::Error),
+}
+
+/// The words for what is not named.
+fn others(more: &usize) -> String {
+    if *more == 0 { String::new() } else { format!(", nor can {more} others") }
+}
+
+/// What is to be done under one root, and what could not be looked at.
+#[derive(Default)]
+struct Gathered {
+    work: BTreeMap<ModelPath, What>,
+    unread: Vec<PathBuf>,
 }
 
 /// Brings every model named, and every model in the folders named, up to date once. Models that are not there end as [`Replanned::Vanished`].
@@ -39,7 +59,7 @@ pub enum OnceError {
 /// State and lock are those of the watched folder that a path lies in; where there is none, of the path's own folder.
 ///
 /// # Errors
-/// Nothing is planned in a folder that cannot be used or locked; folders before it are done.
+/// Nothing is planned in a folder that cannot be used or locked; folders before it are done. What could not be read is told at the end.
 pub fn once(
     paths: &[PathBuf],
     settings: &Settings,
@@ -51,24 +71,31 @@ pub fn once(
     for path in paths {
         roots.entry(Folder::root_of(path)?).or_default().push(path);
     }
+    let mut unread = Vec::new();
     for (root, paths) in roots {
         let folder = Folder::open(&root, settings.state_dir.as_deref())?;
         let _lock = Lock::take(&folder)?;
-        let work = gather(&Arc::from(folder.root()), &paths, &ignore)?;
-        run(work, settings.workers.max(1), &Arc::from(folder.state()), factory, &mut on_report)?;
+        let gathered = gather(&Arc::from(folder.root()), &paths, &ignore)?;
+        run(gathered.work, settings.workers.max(1), &Arc::from(folder.state()), factory, &mut on_report)?;
+        unread.extend(gathered.unread);
     }
-    Ok(())
+    match unread.first() {
+        Some(first) => Err(OnceError::Unread { first: first.clone(), more: unread.len() - 1 }),
+        None => Ok(()),
+    }
 }
 
 /// The models that paths under one root name.
-fn gather(root: &Arc<Path>, paths: &[&Path], ignore: &Ignore) -> Result<BTreeMap<ModelPath, What>, OnceError> {
-    let mut work = BTreeMap::new();
+fn gather(root: &Arc<Path>, paths: &[&Path], ignore: &Ignore) -> Result<Gathered, OnceError> {
+    let Gathered { mut work, mut unread } = Gathered::default();
     for &path in paths {
         let failed = || StoreError::failed(Step::Look, path);
         if fs::symlink_metadata(path).map_err(failed())?.is_dir() {
             let within = path.canonicalize().map_err(failed())?;
             let found = scan(root, ignore).map_err(failed())?;
             atomic::sweep(&found.temps);
+            let missed = found.unread.iter().map(|path| root.join(path));
+            unread.extend(missed.filter(|path| path.starts_with(&within) || within.starts_with(path)));
             let named = found.sights.into_iter().filter(|(model, _)| model.full().starts_with(&within));
             work.extend(
                 named.map(|(model, sight)| (model, if sight.model.is_some() { What::Replan } else { What::Retire })),
@@ -80,7 +107,7 @@ fn gather(root: &Arc<Path>, paths: &[&Path], ignore: &Ignore) -> Result<BTreeMap
             work.insert(model.ok_or_else(|| OnceError::NotAModel(path.to_owned()))?, What::Replan);
         }
     }
-    Ok(work)
+    Ok(Gathered { work, unread })
 }
 
 fn run(

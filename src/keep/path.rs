@@ -2,6 +2,7 @@
 //!
 //! Names are bytes: they need not be UTF-8 and may hold anything but `/`. Nothing inside a model ever forms a path.
 
+use std::cmp::Ordering;
 use std::ffi::{OsStr, OsString};
 use std::fmt;
 use std::os::unix::ffi::{OsStrExt, OsStringExt};
@@ -18,11 +19,26 @@ const PLAN: &[u8] = b".plan.toml";
 const NOTE: &[u8] = b".note.md";
 const RELEASE: &[u8] = b".release.toml";
 
-/// A model file of a watched folder, by its path.
-#[derive(Clone, PartialEq, Eq, PartialOrd, Ord, Hash)]
+/// A model file of a watched folder, by its path. Ordered by the bytes of the path below the folder, which come in one spelling only:
+/// comparing parts of paths is what a folder of thousands would be busy with.
+#[derive(Clone, PartialEq, Eq, Hash)]
 pub struct ModelPath {
     root: Arc<Path>,
     relative: Arc<Path>,
+}
+
+impl Ord for ModelPath {
+    fn cmp(&self, other: &Self) -> Ordering {
+        let same_root = || Arc::ptr_eq(&self.root, &other.root);
+        let below = self.relative.as_os_str().as_bytes().cmp(other.relative.as_os_str().as_bytes());
+        below.then_with(|| if same_root() { Ordering::Equal } else { self.root.cmp(&other.root) })
+    }
+}
+
+impl PartialOrd for ModelPath {
+    fn partial_cmp(&self, other: &Self) -> Option<Ordering> {
+        Some(self.cmp(other))
+    }
 }
 
 impl ModelPath {
@@ -32,7 +48,9 @@ impl ModelPath {
         let inside = relative.components().all(|part| matches!(part, std::path::Component::Normal(_)));
         let entered = relative.parent().is_none_or(|folder| folder.iter().all(is_entered));
         let named = relative.file_name().is_some_and(is_model);
-        (inside && entered && named).then(|| Self { root: root.clone(), relative: relative.into() })
+        // Put together again, so that there is one spelling of it: `a//b` and `a/./b` are `a/b`.
+        let relative = || relative.components().collect::<PathBuf>().into();
+        (inside && entered && named).then(|| Self { root: root.clone(), relative: relative() })
     }
 
     /// The model that an absolute path leads to, if it lies under `root`.
@@ -174,6 +192,20 @@ mod tests {
 
     fn root() -> Arc<Path> {
         Arc::from(Path::new("/works"))
+    }
+
+    #[test]
+    fn a_model_has_one_spelling_and_a_place_in_order() {
+        let at = |root: &str, below: &str| ModelPath::new(&Arc::from(Path::new(root)), Path::new(below)).unwrap();
+        let same = [at("/works", "a/b.model.toml"), at("/works", "a//./b.model.toml")];
+        assert!(same[0] == same[1] && same[0].cmp(&same[1]) == Ordering::Equal);
+        assert_eq!(same[1].relative().as_os_str(), "a/b.model.toml");
+        let mut models = [at("/b", "n.model.toml"), at("/a", "n.model.toml"), at("/b", "m.model.toml")];
+        models.sort();
+        assert_eq!(
+            models.map(|model| model.full()),
+            ["/b/m", "/a/n", "/b/n"].map(|stem| PathBuf::from(format!("{stem}.model.toml")))
+        );
     }
 
     #[test]

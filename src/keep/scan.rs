@@ -112,7 +112,7 @@ pub struct Scan {
     pub odd: BTreeSet<ModelPath>,
     /// Temporary files of ours.
     pub temps: Vec<PathBuf>,
-    /// Folders, relative to the root, that could not be read. Nothing is known about what is in them.
+    /// Folders and models, relative to the root, that could not be read. Nothing is known about what is in them.
     pub unread: Vec<PathBuf>,
 }
 
@@ -179,21 +179,41 @@ fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) 
 }
 
 fn look_at(model: ModelPath, scan: &mut Scan) {
-    let sight = match fs::symlink_metadata(model.full()) {
-        Ok(metadata) if metadata.is_file() => {
-            Sight { model: Some(Stamp::from(&metadata)), release: Stamp::of(&model.release()), ..Sight::default() }
+    match look(&model) {
+        Ok(Some(sight)) => {
+            scan.sights.insert(model, sight);
         }
-        Err(error) if error.kind() == io::ErrorKind::NotFound => {
-            Sight { release: Stamp::of(&model.release()), ..Sight::default() }
-        }
-        _ => {
+        Ok(None) => {}
+        Err(error) if error.kind() == io::ErrorKind::InvalidInput => {
             scan.odd.insert(model);
-            return;
         }
+        Err(_) => scan.unread.push(model.relative().to_owned()),
+    }
+}
+
+/// What is to be seen of a model, or of a plan without one; `None` where there is neither.
+///
+/// # Errors
+/// What the system says; [`io::ErrorKind::InvalidInput`] where the model is no plain file.
+fn look(model: &ModelPath) -> io::Result<Option<Sight>> {
+    let sight = match about(&model.full())? {
+        Some(metadata) if metadata.is_file() => {
+            Sight { model: Some(Stamp::from(&metadata)), plan: Stamp::of(&model.plan()), ..Sight::default() }
+        }
+        Some(_) => return Err(io::ErrorKind::InvalidInput.into()),
+        None => match about(&model.plan())?.filter(Metadata::is_file) {
+            Some(plan) => Sight { plan: Some(Stamp::from(&plan)), ..Sight::default() },
+            None => return Ok(None),
+        },
     };
-    let sight = sight.with_outputs(&model);
-    if sight.model.is_some() || sight.plan.is_some() {
-        scan.sights.insert(model, sight);
+    Ok(Some(Sight { note: Stamp::of(&model.note()), release: Stamp::of(&model.release()), ..sight }))
+}
+
+/// What the system says of a path; `None` where nothing is.
+fn about(path: &Path) -> io::Result<Option<Metadata>> {
+    match fs::symlink_metadata(path) {
+        Err(error) if error.kind() == io::ErrorKind::NotFound => Ok(None),
+        about => about.map(Some),
     }
 }
 

@@ -116,13 +116,17 @@ fn look(path: &Path, bytes: &[u8], ours: fn(&[u8]) -> bool) -> Result<Option<Old
         Ok(metadata) => {
             return Err(StoreError::InTheWay { path: path.to_owned(), what: kind(metadata.file_type()) });
         }
-        Err(error) if error.kind() == io::ErrorKind::NotFound && folder_of(path).is_dir() => return Ok(None),
+        Err(error) if error.kind() == io::ErrorKind::NotFound => {
+            let folder = fs::metadata(folder_of(path)).map_err(failed())?;
+            return if folder.is_dir() { Ok(None) } else { Err(failed()(error)) };
+        }
         Err(error) => return Err(failed()(error)),
     }
     let file = open_plain(path).map_err(failed())?;
     let metadata = file.metadata().map_err(failed())?;
-    let mut there = Vec::new();
-    let most = u64::try_from(bytes.len().max(HEAD)).unwrap_or(u64::MAX).saturating_add(1);
+    let most = bytes.len().max(HEAD);
+    let mut there = Vec::with_capacity(most + 1);
+    let most = u64::try_from(most).unwrap_or(u64::MAX).saturating_add(1);
     file.take(most).read_to_end(&mut there).map_err(failed())?;
     if !ours(&there[..there.len().min(HEAD)]) {
         return Err(StoreError::NotOurs { path: path.to_owned() });
@@ -142,6 +146,12 @@ pub fn open_plain(path: &Path) -> io::Result<File> {
     } else {
         Err(io::Error::new(io::ErrorKind::InvalidInput, "not a plain file"))
     }
+}
+
+/// An empty buffer with room for what a file holds now, up to a limit: without it a small file takes a handful of reads.
+pub(super) fn room_for(file: &File, most: u64) -> Vec<u8> {
+    let length = file.metadata().map_or(0, |metadata| metadata.len()).min(most);
+    Vec::with_capacity(usize::try_from(length).unwrap_or(0).saturating_add(1))
 }
 
 /// The words for what is not a plain file.
@@ -195,6 +205,15 @@ pub fn is_temp(name: &std::ffi::OsStr) -> bool {
 /// What is not named as ours, is not a plain file, or is locked by a process that is still writing stays.
 pub fn sweep<'a>(candidates: impl IntoIterator<Item = &'a PathBuf>) -> usize {
     candidates.into_iter().filter(|path| path.file_name().is_some_and(is_temp) && remove_orphan(path)).count()
+}
+
+/// As [`sweep`], for all that lies in one folder of ours.
+///
+/// # Errors
+/// The folder cannot be read.
+pub fn sweep_folder(folder: &Path) -> io::Result<usize> {
+    let entries = fs::read_dir(folder)?.flatten().filter(|entry| is_temp(&entry.file_name()));
+    Ok(sweep(&entries.map(|entry| entry.path()).collect::<Vec<_>>()))
 }
 
 /// Removes a file unless its writer still has it locked. The lock is held over the removal, so that a writer that comes just then

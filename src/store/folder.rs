@@ -20,6 +20,7 @@ pub struct Folder {
 
 impl Folder {
     /// Makes `.millreeve/` under `root`, with a `.gitignore` that hides it, and the state folder: `state` where one is given, else `.millreeve/`.
+    /// What a killed process left half written in it is cleared away.
     ///
     /// # Errors
     /// `root` does not exist, `.millreeve` is not a folder, or one of them cannot be written.
@@ -27,6 +28,7 @@ impl Folder {
         let root = root.canonicalize().map_err(StoreError::failed(Step::Look, root))?;
         let own = root.join(OWN);
         make(&own)?;
+        atomic::sweep_folder(&own).map_err(StoreError::failed(Step::Look, &own))?;
         // A `.gitignore` that somebody has changed is theirs.
         match atomic::write(&own.join(".gitignore"), b"*\n", |_| false, Durability::Cached) {
             Ok(_) | Err(StoreError::NotOurs { .. } | StoreError::InTheWay { .. }) => {}
@@ -107,6 +109,16 @@ mod tests {
             assert_eq!(folder.state(), folder.own());
             assert_eq!(fs::read_to_string(folder.own().join(".gitignore")).unwrap(), "*\n");
         }
+    }
+
+    #[test]
+    fn what_a_killed_process_left_in_the_own_folder_is_cleared_away() {
+        let root = tempfile::tempdir().unwrap();
+        let own = Folder::open(root.path(), None).unwrap().own().to_owned();
+        let left = own.join(".millreeve-aB3dEf7h.tmp");
+        fs::File::create(&left).unwrap();
+        Folder::open(root.path(), None).unwrap();
+        assert!(!left.exists());
     }
 
     #[test]

@@ -77,7 +77,7 @@ pub fn finish(record: &Record, outputs: &Outputs<'_>) -> Result<Finished, StoreE
 
 /// Whether a file holds exactly this text. One that cannot be read does not; whoever then writes there is told why.
 fn holds(output: &Output<'_>, text: &str) -> bool {
-    let mut there = Vec::new();
+    let mut there = Vec::with_capacity(text.len() + 1);
     let most = u64::try_from(text.len()).unwrap_or(u64::MAX).saturating_add(1);
     let read = atomic::open_plain(output.path).and_then(|file| file.take(most).read_to_end(&mut there));
     read.is_ok() && there == text.as_bytes()

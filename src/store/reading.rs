@@ -15,7 +15,9 @@ const LARGEST: u64 = 64 << 20;
 /// What the system says; [`io::ErrorKind::InvalidInput`] where `path` is no plain file, [`io::ErrorKind::InvalidData`] where it holds
 /// no UTF-8, [`io::ErrorKind::FileTooLarge`] where it is larger.
 pub fn text(path: &Path) -> io::Result<String> {
-    let mut text = String::new();
-    atomic::open_plain(path)?.take(LARGEST + 1).read_to_string(&mut text)?;
+    let file = atomic::open_plain(path)?;
+    let mut bytes = atomic::room_for(&file, LARGEST);
+    file.take(LARGEST + 1).read_to_end(&mut bytes)?;
+    let text = String::from_utf8(bytes).map_err(|error| io::Error::new(io::ErrorKind::InvalidData, error))?;
     if text.len() as u64 > LARGEST { Err(io::ErrorKind::FileTooLarge.into()) } else { Ok(text) }
 }

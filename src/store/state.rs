@@ -93,9 +93,7 @@ impl Records {
     pub fn open(state: &Path) -> Result<Self, StoreError> {
         let folder = state.join(SUBFOLDER);
         fs::create_dir_all(&folder).map_err(StoreError::failed(Step::MakeFolder, &folder))?;
-        let entries = fs::read_dir(&folder).map_err(StoreError::failed(Step::Look, &folder))?;
-        let left: Vec<_> = entries.flatten().filter(|entry| atomic::is_temp(&entry.file_name())).collect();
-        atomic::sweep(&left.iter().map(fs::DirEntry::path).collect::<Vec<_>>());
+        atomic::sweep_folder(&folder).map_err(StoreError::failed(Step::Look, &folder))?;
         Ok(Self { folder })
     }
 
@@ -109,7 +107,7 @@ impl Records {
             Err(error) if error.kind() == ErrorKind::NotFound => return Err(Lost::Missing),
             Err(error) => return Err(Lost::Unreadable(error)),
         };
-        let mut bytes = Vec::new();
+        let mut bytes = atomic::room_for(&file, LARGEST);
         file.take(LARGEST).read_to_end(&mut bytes).map_err(Lost::Unreadable)?;
         let record = decode(&bytes)?;
         if record.model == model { Ok(record) } else { Err(Lost::Damaged("it is about another model")) }

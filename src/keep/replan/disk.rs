@@ -1,13 +1,16 @@
 //! The plan and the note as they lie on disk.
 
 use std::cell::OnceCell;
+use std::io;
 use std::path::{Path, PathBuf};
+
+use rustix::io::Errno;
 
 use crate::keep::path::ModelPath;
 use crate::plan::text::{self, Head, is_ours};
 use crate::plan::{Plan, Standing};
 use crate::store::publish::{self, Finished};
-use crate::store::{Durability, Output, Outputs, Record, Records, StoreError, Written, atomic, reading};
+use crate::store::{Durability, Output, Outputs, Record, Records, Step, StoreError, Written, atomic, reading};
 
 /// Where the plan and the note of a model lie.
 pub(super) struct Disk {
@@ -79,14 +82,20 @@ impl Disk {
         Outputs { plan: Output { path: &self.plan, ours: is_ours }, note: Output { path: &self.note, ours: is_ours } }
     }
 
-    /// The plan on disk, if it can be gone by. What cannot be read counts as nothing; writing will say why.
-    pub(super) fn plan(&self) -> OnDisk {
-        let text = reading::text(&self.plan).ok();
+    /// The plan on disk, if it can be gone by. What is no plain file or no text counts as nothing; writing will say why.
+    ///
+    /// # Errors
+    /// It cannot be read now: whether it is a good plan, to be kept or marked, is not known.
+    pub(super) fn plan(&self) -> Result<OnDisk, StoreError> {
+        let text = match reading::text(&self.plan) {
+            Err(error) if !says_what_is_there(&error) => return Err(StoreError::failed(Step::Look, &self.plan)(error)),
+            text => text.ok(),
+        };
         let head = text.as_deref().and_then(|text| text::read_head(text).ok()).filter(|head| head.sealed);
-        match (text, head) {
+        Ok(match (text, head) {
             (Some(text), Some(head)) => OnDisk::Good(Box::new(Found { head, text, plan: OnceCell::new() })),
             _ => OnDisk::Nothing,
-        }
+        })
     }
 
     /// The note on disk, if it is ours.
@@ -111,5 +120,27 @@ impl Disk {
 
     pub(super) fn write_note(&self, text: &str) -> Result<Written, StoreError> {
         atomic::write(&self.note, text.as_bytes(), is_ours, Durability::Synced)
+    }
+}
+
+/// Whether a file was not read because of what lies in its place, or because nothing does; not because the system could not just now.
+fn says_what_is_there(error: &io::Error) -> bool {
+    let Some(number) = error.raw_os_error() else { return true };
+    // No such file, a link, a socket, a file where a folder should be.
+    [Errno::NOENT, Errno::LOOP, Errno::NXIO, Errno::NOTDIR].iter().any(|errno| errno.raw_os_error() == number)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_plan_that_cannot_be_read_just_now_is_not_taken_for_none() {
+        for passing in [Errno::IO, Errno::ACCESS, Errno::MFILE, Errno::NOMEM, Errno::STALE] {
+            assert!(!says_what_is_there(&passing.into()), "{passing:?}");
+        }
+        let no_text = [io::ErrorKind::InvalidData, io::ErrorKind::InvalidInput, io::ErrorKind::FileTooLarge];
+        let lasting = [Errno::NOENT, Errno::LOOP].map(io::Error::from).into_iter().chain(no_text.map(io::Error::from));
+        assert!(lasting.into_iter().all(|error| says_what_is_there(&error)));
     }
 }

@@ -30,7 +30,7 @@ impl Replanner {
         let model = read.map(|(read, _)| &read.model);
         let reason = plan::note::reason(trouble, model);
         let disk = Disk::of(&job.path);
-        let on_disk = disk.plan();
+        let on_disk = disk.plan()?;
         let records = self.memory.records(&job.state)?;
         let record = records.load(job.path.relative()).ok();
         // A plan that lies there unharmed stays; one that was edited or lost comes back from the record.
@@ -65,7 +65,7 @@ impl Replanner {
         let last = self.memory.known(&job.path, || record.as_ref());
         let telling = Telling::of(job).titled(last.as_ref().map(|known| &known.model));
         let mut changed = false;
-        if let OnDisk::Good(found) = disk.plan()
+        if let OnDisk::Good(found) = disk.plan()?
             && let Ok(retired) = marked(&found.text, &Standing::Retired)
         {
             let seal = text::seal(&retired).map(str::to_owned);

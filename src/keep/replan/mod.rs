@@ -161,7 +161,7 @@ impl Replanner {
         let read = Read { bytes, blocks, model, meaning };
         heed(stop)?;
         let known = self.memory.known(&job.path, || recorded.get());
-        let on_disk = disk.plan();
+        let on_disk = disk.plan()?;
         if let Some(told) = self.keep_standing(job, &read, known.as_deref(), &recorded, &on_disk)? {
             return Ok(told);
         }
