@@ -14,7 +14,7 @@ pub(super) fn tell(screen: &mut Screen, dir: &Path, state: Option<&Path>) -> Res
     let none = || {
         Error::failure(
             format_args!("nothing keeps {}", shown(dir)),
-            format_args!("`millreeve keep {}` does", dir.display()),
+            format_args!("`millreeve keep {}` does", Plain(&dir.to_string_lossy())),
         )
     };
     let Some(folder) = Folder::find(dir, state) else { return Err(none()) };
@@ -37,7 +37,7 @@ fn words(status: &Status, holder: &str) -> String {
     let counts: Vec<_> = counts.chain([format!("{} waiting", status.waiting)]).collect();
     let done = &status.done;
     let mut text = format!(
-        "{HEAD}{}{HEAD:#}\n  kept by   {holder}, for {}\n  watching  {}\n  models    {models}: {}\n  done      {} replanned, {} unchanged, {} given up for a newer edit, {} failed\n",
+        "{HEAD}{}{HEAD:#}\n  kept by   {holder}\n  as of     {} after its start, when something last happened\n  watching  {}\n  models    {models}: {}\n  done      {} replanned, {} unchanged, {} given up for a newer edit, {} failed\n",
         Plain(&status.folder),
         lasting(status.seconds),
         Plain(&status.watching.words),
@@ -101,7 +101,8 @@ mod tests {
         let told = anstream::adapter::strip_str(&words(&status, "process 7 on host mill")).to_string();
         assert_eq!(
             told,
-            "/works\\u{1b}\n  kept by   process 7 on host mill, for 7 s\n  watching  edits are noticed by file events\n  \
+            "/works\\u{1b}\n  kept by   process 7 on host mill\n  as of     7 s after its start, when something last \
+             happened\n  watching  edits are noticed by file events\n  \
              models    5: 4 current, 1 held, 2 waiting\n  done      0 replanned, 0 unchanged, 0 given up for a newer edit, \
              0 failed\n  running   a.model.toml, for 3 s\n  held      b.model.toml: line 2:\\u{a}no such key\n  and 3 more\n"
         );
