@@ -49,7 +49,8 @@ fn c4_plans_that_are_committed_and_change_with_their_models() {
     daemon.wait_current("m", aim(2));
     all("two");
     for (branch, capacity) in [("main", 1), ("other", 2)] {
-        assert!(git(works.root(), &["checkout", "-qf", branch]));
+        // It gives up where the daemon replaces a plan under its hands.
+        wait_until("the checkout", || git(works.root(), &["checkout", "-qf", branch]));
         daemon.wait_current("m", aim(capacity));
         daemon.wait_scan(&works);
         // As committed, the plan answers its model: whatever was done about it, it is the same to the byte.

@@ -181,7 +181,11 @@ impl Works {
             for entry in fs::read_dir(&folder).unwrap() {
                 let entry = entry.unwrap();
                 let (path, name) = (entry.path(), entry.file_name());
-                assert!(!is_temp(&name), "left behind: {path:?}");
+                // The daemon may be writing its status; what was left behind stays.
+                if is_temp(&name) {
+                    wait_until("a temporary file to go", || !path.exists());
+                    continue;
+                }
                 if entry.file_type().unwrap().is_dir() && name != ".git" {
                     folders.push(path);
                 } else if name.to_string_lossy().ends_with(".plan.toml") && !self.is_foreign(&path) {
