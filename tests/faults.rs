@@ -4,8 +4,20 @@
 
 #[path = "faults/edits.rs"]
 mod edits;
+#[path = "faults/folders.rs"]
+mod folders;
+#[path = "faults/git.rs"]
+mod git;
 #[path = "faults/hostile.rs"]
 mod hostile;
+#[path = "faults/lab.rs"]
+mod lab;
+#[path = "faults/limits.rs"]
+mod limits;
+#[path = "faults/names.rs"]
+mod names;
+#[path = "faults/operating.rs"]
+mod operating;
 #[path = "faults/support.rs"]
 mod support;
 #[path = "faults/system.rs"]

@@ -4,7 +4,7 @@ use std::fs;
 use std::sync::{Arc, mpsc};
 use std::time::Duration;
 
-use millreeve::keep::{Factory, Job, Planner, Replanned, Settings, Stop, keep};
+use millreeve::keep::{Factory, Job, Operating, Planner, Replanned, Settings, Stop, keep};
 
 /// Solves for ever, until it is told to stop.
 struct Endless(mpsc::Sender<()>);
@@ -29,7 +29,7 @@ fn a_signal_in_mid_solve_ends_the_daemon() {
     let root = folder.path().to_owned();
     let daemon = std::thread::spawn(move || {
         let factory: Factory = Arc::new(move || Box::new(Endless(began.clone())));
-        keep(&root, &Settings::default(), factory, |_, _| {})
+        keep(&root, &Settings::default(), factory, Operating::default(), |_, _| {})
     });
     begins.recv_timeout(Duration::from_secs(60)).unwrap();
     let own = rustix::process::getpid();

@@ -86,11 +86,15 @@ pub(crate) enum Command {
     /// Keep the plans of every model under a folder optimal until told to stop
     ///
     /// The daemon. Brings every model under DIR up to date, then watches and replans after every edit. SIGTERM or Ctrl-C ends
-    /// it. It logs to standard error; with --json it also writes one object per replan to standard output.
+    /// it; SIGHUP makes it read its settings again. It logs to standard error; with --json it also writes one object per replan
+    /// to standard output.
     Keep {
         /// The folder to keep
         #[arg(value_hint = ValueHint::DirPath)]
         dir: PathBuf,
+        /// Only say how the daemon is that keeps DIR now; exit status 3 where none does
+        #[arg(long)]
+        status: bool,
     },
     /// Bring the plans of models up to date once, and exit
     ///

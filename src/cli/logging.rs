@@ -7,28 +7,55 @@ use serde_json::{Map, Value};
 use tracing::field::{Field, Visit};
 use tracing::level_filters::LevelFilter;
 use tracing::{Event, Subscriber};
-use tracing_subscriber::Layer;
 use tracing_subscriber::fmt::format::Writer;
 use tracing_subscriber::fmt::time::{FormatTime, SystemTime};
 use tracing_subscriber::layer::{Context, SubscriberExt as _};
 use tracing_subscriber::util::SubscriberInitExt as _;
+use tracing_subscriber::{Layer, Registry, reload};
 
 use super::json;
 use super::settings::LogFormat;
-use crate::model::escape::Plain;
+use crate::model::escape::{Plain, is_unsafe};
 
-/// Starts logging for the rest of the process. A second call changes nothing.
-pub(crate) fn start(format: LogFormat, level: LevelFilter) {
-    let subscriber = tracing_subscriber::registry().with(Log { format }.with_filter(level));
-    // It fails only where a log was started before, which then goes on.
-    let _ = subscriber.try_init();
+/// The longest message and the longest value of a field in a record, in bytes; what is longer is cut.
+const LONGEST: usize = 1024;
+
+/// The longest escape of one character, in bytes: two units of UTF-16.
+const LONGEST_ESCAPE: usize = 12;
+
+/// The running log.
+#[derive(Debug)]
+pub(crate) struct Log {
+    format: LogFormat,
+    level: reload::Handle<LevelFilter, Registry>,
 }
 
-struct Log {
+/// Starts logging for the rest of the process. A second call changes nothing and gives none.
+pub(crate) fn start(format: LogFormat, level: LevelFilter) -> Option<Log> {
+    let (filter, level) = reload::Layer::new(level);
+    let subscriber = tracing_subscriber::registry().with(Lines { format }.with_filter(filter));
+    // It fails only where a log was started before, which then goes on.
+    subscriber.try_init().ok().map(|()| Log { format, level })
+}
+
+impl Log {
+    /// How it is written.
+    pub(crate) fn format(&self) -> LogFormat {
+        self.format
+    }
+
+    /// Logs from this level on. Answers whether that is a change.
+    pub(crate) fn change(&self, level: LevelFilter) -> bool {
+        let changed = self.level.with_current(|now| *now != level).unwrap_or(false);
+        changed && self.level.reload(level).is_ok()
+    }
+}
+
+struct Lines {
     format: LogFormat,
 }
 
-impl<S: Subscriber> Layer<S> for Log {
+impl<S: Subscriber> Layer<S> for Lines {
     fn on_event(&self, event: &Event<'_>, _context: Context<'_, S>) {
         let mut record = Record::default();
         event.record(&mut record);
@@ -79,6 +106,10 @@ impl Record {
     }
 
     fn put(&mut self, field: &Field, value: Value) {
+        let value = match value {
+            Value::String(text) => Value::String(cut(text)),
+            other => other,
+        };
         if field.name() == "message" {
             self.message = match value {
                 Value::String(text) => text,
@@ -88,6 +119,20 @@ impl Record {
             self.fields.insert(field.name().to_owned(), value);
         }
     }
+}
+
+/// A text of bounded length, also when it is shown escaped, with a mark where it was cut.
+fn cut(mut text: String) -> String {
+    let mut length = 0;
+    let end = text.char_indices().find(|&(_, character)| {
+        length += if is_unsafe(character) { LONGEST_ESCAPE } else { character.len_utf8() };
+        length > LONGEST
+    });
+    if let Some((end, _)) = end {
+        text.truncate(end);
+        text.push('…');
+    }
+    text
 }
 
 impl Visit for Record {
@@ -134,6 +179,13 @@ mod tests {
             line,
             "2027-01-04T08:31:02Z INFO  na\\u{202e}me\\u{d}: current path=\"a\\n2027 INFO forged\\u001b[2J\" pivots=3"
         );
+    }
+
+    #[test]
+    fn a_long_message_is_cut_between_two_characters() {
+        assert_eq!(cut("é".repeat(512)), "é".repeat(512));
+        assert_eq!(cut(format!("x{}", "é".repeat(512))), format!("x{}…", "é".repeat(511)));
+        assert_eq!(cut("\u{1b}".repeat(512)), format!("{}…", "\u{1b}".repeat(85)));
     }
 
     #[test]

@@ -15,6 +15,7 @@ mod release;
 mod screen;
 mod settings;
 mod show;
+mod status;
 mod told;
 mod verify;
 
@@ -66,7 +67,7 @@ fn run(screen: &mut Screen, common: &Common, command: Command) -> Result<Outcome
         Command::Convert { from, to, force } => convert::run(screen, &from, &to, force),
         Command::Demo { dir } => demo::run(screen, &dir),
         Command::Completions { shell } => completions::run(screen, shell),
-        Command::Keep { dir } => keep::run(screen, &setting, &dir),
+        Command::Keep { dir, status } => keep::run(screen, &setting, &dir, status),
         Command::Once { paths } => {
             setting.log(LevelFilter::WARN)?;
             once::run(screen, &setting, &paths)

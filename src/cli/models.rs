@@ -42,7 +42,7 @@ pub(crate) fn under(path: &Path, ignore: &Ignore) -> Result<Found, Error> {
         return Ok(Found {
             models: models.map(|model: ModelPath| model.full()).collect(),
             gone: gone.into_iter().map(|(model, _)| model.full()).collect(),
-            unread: unread.into_iter().map(|folder| root.join(folder)).collect(),
+            unread: unread.into_keys().map(|folder| root.join(folder)).collect(),
         });
     }
     if !names_model(path) {

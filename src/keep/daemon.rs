@@ -1,18 +1,21 @@
 //! The dispatcher: the one owner of the daemon's state. An event in, a list of actions out; time is passed in.
 
-use std::collections::{BTreeMap, BTreeSet};
+use std::collections::BTreeMap;
 use std::path::Path;
 use std::sync::Arc;
 use std::time::{Duration, Instant};
 
 use super::event::{Action, Event, Scanned, Weight};
+use super::hints::Hint;
 use super::path::ModelPath;
 use super::pool::{Job, Replanned, What, Word, Worker};
 use super::queue::Queue;
+use super::sayings::{Cause, Sayings};
 use super::scan::{FolderId, Scan, Sight, Stamp};
 use super::settings::Settings;
 use super::settle::{Settling, StillOpen, Touch};
-use super::watch::Hint;
+use super::status::{Due, Status, Tally};
+use super::watch::{Followed, Watching};
 use crate::model::escape::Plain;
 
 /// A scan takes at most this share of the time: one part in so many.
@@ -50,9 +53,13 @@ pub struct Dispatcher {
     /// Stamps of the models in hand, as they were before reading.
     begun: BTreeMap<ModelPath, Option<Stamp>>,
     troubles: BTreeMap<ModelPath, Trouble>,
-    /// What was said once and need not be said again.
-    said: BTreeSet<String>,
+    sayings: Sayings,
+    tally: Tally,
+    status_due: Due,
+    watching: Watching,
+    /// The folder that is ours; none while another one stands in its place or the lock is lost, and then nothing is planned.
     claimed: Option<FolderId>,
+    begun_at: Instant,
     /// The time of the start by the clock of the file system; taken by the first scan.
     started: Option<i128>,
     scanned_once: bool,
@@ -78,8 +85,12 @@ impl Dispatcher {
             planned: BTreeMap::new(),
             begun: BTreeMap::new(),
             troubles: BTreeMap::new(),
-            said: BTreeSet::new(),
+            sayings: Sayings::default(),
+            tally: Tally::default(),
+            status_due: Due::default(),
+            watching: Watching::Events,
             claimed: None,
+            begun_at: now,
             started,
             scanned_once: false,
             scanning: false,
@@ -98,9 +109,20 @@ impl Dispatcher {
             Event::Claimed(folder) => {
                 self.claimed = Some(folder);
                 self.next_scan = now;
+                if self.sayings.settle(Cause::Unclaimed) {
+                    actions.push(Action::Say(Weight::Info, "the folder is kept again".to_owned()));
+                }
+                self.status_due.touch();
             }
-            Event::Unclaimed(why) => self.say_once(why, &mut actions),
+            Event::Unclaimed(why) => self.say(Cause::Unclaimed, &why, || why.clone(), &mut actions),
+            Event::Followed(followed) => self.followed(now, followed, &mut actions),
+            Event::ScanEvery(time) => {
+                self.scan_every = time;
+                self.next_scan = now;
+            }
             Event::Word(Word::Began { model, stamp }) => {
+                self.tally.began(now, &model);
+                self.status_due.touch();
                 self.begun.insert(model, stamp);
             }
             Event::Word(Word::Ended { worker, model, sight, outcome }) => {
@@ -108,7 +130,7 @@ impl Dispatcher {
             }
             Event::Tick => self.tick(now, &mut actions),
             Event::Stop => {
-                self.ending = Some(now + END_WITHIN);
+                self.ending.get_or_insert(now + END_WITHIN);
                 actions.extend(self.queue.close().into_iter().map(Action::Interrupt));
             }
         }
@@ -121,9 +143,10 @@ impl Dispatcher {
     pub fn wake(&self) -> Option<Instant> {
         let scan = (!self.scanning).then(|| self.scan_at());
         let retry = self.troubles.values().filter_map(|trouble| trouble.again).min();
+        let status = self.claimed.and_then(|_| self.status_due.next(self.tally.is_running()));
         match self.ending {
             Some(end) => Some(end),
-            None => [scan, retry, self.settling.next_quiet()].into_iter().flatten().min(),
+            None => [scan, retry, self.settling.next_quiet(), self.sayings.next(), status].into_iter().flatten().min(),
         }
     }
 
@@ -140,9 +163,31 @@ impl Dispatcher {
             }
             return;
         }
-        while let Some((worker, path, what)) = self.queue.take() {
+        while self.claimed.is_some()
+            && let Some((worker, path, what)) = self.queue.take()
+        {
             actions.push(Action::Run(worker, Job { path, what, state: self.state.clone() }));
         }
+        // Where another daemon keeps the folder, the status there is that one's.
+        if self.claimed.is_some() && self.status_due.take(now, self.tally.is_running()) {
+            actions.push(Action::Note(Box::new(self.status(now))));
+        }
+    }
+
+    /// How things are.
+    fn status(&self, now: Instant) -> Status {
+        let mut status = Status {
+            status: Status::VERSION,
+            process: std::process::id(),
+            folder: self.root.to_string_lossy().into_owned(),
+            seconds: now.saturating_duration_since(self.begun_at).as_secs(),
+            watching: (&self.watching).into(),
+            trouble: self.sayings.about_folder(),
+            waiting: self.queue.waiting(),
+            ..Status::default()
+        };
+        self.tally.fill(now, &mut status);
+        status
     }
 
     fn push(&mut self, model: &ModelPath, what: What, actions: &mut Vec<Action>) {
@@ -151,9 +196,40 @@ impl Dispatcher {
         }
     }
 
-    fn say_once(&mut self, text: String, actions: &mut Vec<Action>) {
-        if self.said.insert(text.clone()) {
-            actions.push(Action::Say(Weight::Warning, text));
+    fn say(&mut self, cause: Cause, key: &str, text: impl FnOnce() -> String, actions: &mut Vec<Action>) {
+        let said = self.sayings.say(cause, key, text);
+        if said.is_some() {
+            self.status_due.touch();
+        }
+        actions.extend(said);
+    }
+
+    /// Takes note of how the folders of a scan are watched.
+    fn followed(&mut self, now: Instant, followed: Followed, actions: &mut Vec<Action>) {
+        if followed.added > 0 {
+            // What was written into them before brought no event.
+            self.next_scan = now;
+        }
+        if followed.watching == self.watching {
+            return;
+        }
+        self.watching = followed.watching;
+        self.status_due.touch();
+        match &self.watching {
+            Watching::Events => {
+                if self.sayings.settle(Cause::Unwatched) {
+                    actions.push(Action::Say(Weight::Info, "file events come from all folders again".to_owned()));
+                }
+            }
+            Watching::Asked => {
+                self.sayings.settle(Cause::Unwatched);
+                actions.push(Action::Say(Weight::Info, self.watching.to_string()));
+            }
+            // How many folders there are may change all the time.
+            Watching::Partly { why, .. } | Watching::Scans(why) => {
+                let (key, text) = (why.clone(), self.watching.to_string());
+                self.say(Cause::Unwatched, &key, || text, actions);
+            }
         }
     }
 
@@ -162,17 +238,14 @@ impl Dispatcher {
             Hint::Closed(path) | Hint::Arrived(path) => (path, Touch::Finished),
             Hint::Writing(path) => (path, Touch::Writing),
             Hint::Gone(path) => (path, Touch::Gone),
-            Hint::Folder(_) => {
+            Hint::Folder(_) | Hint::FolderGone(_) => {
                 self.next_scan = now;
                 return;
             }
             Hint::Rescan => {
+                self.tally.lost();
                 self.settling.clear();
                 self.next_scan = now;
-                return;
-            }
-            Hint::Trouble(why) => {
-                self.say_once(format!("{why}; meanwhile edits are found by scanning"), actions);
                 return;
             }
         };
@@ -199,6 +272,7 @@ impl Dispatcher {
                 self.push(&model, What::Replan, actions);
             }
         }
+        actions.extend(self.sayings.tick(now));
         let due = |trouble: &Trouble| trouble.again.is_some_and(|again| again <= now);
         let again: Vec<_> =
             self.troubles.iter().filter(|(_, trouble)| due(trouble)).map(|(model, _)| model.clone()).collect();
@@ -219,38 +293,36 @@ impl Dispatcher {
         self.scanning = false;
         self.next_scan = now + self.scan_every.max(took * SCAN_SHARE);
         self.scan_floor = now + LEAST_GAP.max(took * HINTED_SCAN_SHARE);
-        let gone = format!(
-            "{} cannot be read; its plans are left as they are until it can",
-            Plain(&self.root.to_string_lossy())
-        );
         let scan = match scanned.found {
             Ok(scan) => scan,
             Err(why) => {
                 self.settling.clear();
-                if self.said.insert(gone.clone()) {
-                    actions.push(Action::Say(Weight::Warning, format!("{gone}: {why}")));
-                }
+                let root = Plain(&self.root.to_string_lossy()).to_string();
+                let text = || format!("{root} cannot be read; its plans are left as they are until it can: {why}");
+                self.say(Cause::Gone, "", text, actions);
                 return;
             }
         };
-        if self.said.remove(&gone) {
+        // An unmounted folder shows what lies below it: nothing is claimed there, and nothing taken for removed.
+        if scan.is_hollow() && !self.planned.is_empty() {
+            self.settling.clear();
+            let text = "neither models nor plans are left in the folder; in case it was unmounted, nothing is taken for removed";
+            self.say(Cause::Hollow, "", || text.to_owned(), actions);
+            return;
+        }
+        let back = [self.sayings.settle(Cause::Gone), self.sayings.settle(Cause::Hollow)].contains(&true);
+        if back {
             actions.push(Action::Say(Weight::Info, "the folder is back".to_owned()));
         }
-        if !scanned.locked || self.claimed != Some(scan.root) {
+        if back || !scanned.locked || self.claimed != Some(scan.root) {
             self.settling.clear();
+            self.claimed = None;
             actions.push(Action::Claim);
             return;
         }
-        let hollow =
-            "neither models nor plans are left in the folder; in case it was unmounted, nothing is taken for removed";
-        if scan.is_hollow() && !self.planned.is_empty() {
-            self.settling.clear();
-            self.say_once(hollow.to_owned(), actions);
-            return;
-        }
-        self.said.remove(hollow);
         self.compare(now, scanned.began, &scan, actions);
-        self.mention(&scan, actions);
+        actions.extend(self.sayings.mention(&scan));
+        actions.push(Action::Follow(scan.folders));
         if !self.scanned_once {
             self.scanned_once = true;
             actions.push(Action::Sweep(scan.temps));
@@ -287,23 +359,7 @@ impl Dispatcher {
             keep
         });
         self.troubles.retain(|model, _| kept(model));
-    }
-
-    /// Mentions, once each, what is in the way of models being planned.
-    fn mention(&mut self, scan: &Scan, actions: &mut Vec<Action>) {
-        for model in &scan.odd {
-            let text = format!(
-                "{model} is a link, a pipe or a folder, not a plain file: it is left alone; put the model itself there"
-            );
-            self.say_once(text, actions);
-        }
-        for folder in &scan.unread {
-            let text = format!(
-                "the folder {} cannot be read; let the daemon's user enter it",
-                Plain(&folder.to_string_lossy())
-            );
-            self.say_once(text, actions);
-        }
+        self.tally.retain(kept);
     }
 
     fn ended(
@@ -317,6 +373,8 @@ impl Dispatcher {
     ) {
         self.begun.remove(&model);
         self.queue.done(worker, &model, outcome == Replanned::Interrupted);
+        self.tally.ended(&model, &outcome);
+        self.status_due.touch();
         match &outcome {
             Replanned::Done(report) => {
                 let weight = if report.standing == "current" { Weight::Info } else { Weight::Warning };
@@ -345,7 +403,7 @@ impl Dispatcher {
     fn failed(&mut self, now: Instant, model: &ModelPath, message: &str, retry: bool, actions: &mut Vec<Action>) {
         let before = self.troubles.remove(model);
         if before.as_ref().is_none_or(|trouble| trouble.message != message) {
-            actions.push(Action::Say(Weight::Warning, format!("{model}: {message}")));
+            actions.extend(self.sayings.failed(now, format!("{model}: {message}")));
         }
         let pause = before.map_or(FIRST_PAUSE, |trouble| (trouble.pause * 2).min(LONGEST_PAUSE));
         let again = retry.then(|| now + pause);

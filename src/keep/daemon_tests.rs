@@ -1,5 +1,6 @@
 //! The dispatcher under made-up time: what it does about each event.
 
+use std::collections::BTreeSet;
 use std::path::PathBuf;
 
 use super::*;
@@ -20,6 +21,9 @@ struct Bench {
     said: Vec<String>,
     claims: usize,
     swept: Vec<PathBuf>,
+    folders: BTreeSet<PathBuf>,
+    statuses: Vec<Status>,
+    scans: Vec<Instant>,
     ended: bool,
 }
 
@@ -40,11 +44,19 @@ impl Bench {
             said: Vec::new(),
             claims: 0,
             swept: Vec::new(),
+            folders: BTreeSet::new(),
+            statuses: Vec::new(),
+            scans: Vec::new(),
             ended: false,
         };
-        let claimed = Event::Claimed(FolderId::of(&bench.root).unwrap());
-        bench.event(claimed);
+        bench.claim();
         bench
+    }
+
+    /// Claims the folder that stands at the root's path.
+    fn claim(&mut self) {
+        let claimed = Event::Claimed(FolderId::of(&self.root).unwrap());
+        self.event(claimed);
     }
 
     fn model(&self, name: &str) -> ModelPath {
@@ -64,6 +76,7 @@ impl Bench {
         for action in self.dispatcher.handle(self.now, event) {
             match action {
                 Action::Scan => {
+                    self.scans.push(self.now);
                     let found = crate::keep::scan::scan(&self.root, &crate::keep::Ignore::new(&[]).unwrap());
                     let found = found.map_err(|error| error.to_string());
                     self.event(Event::Scanned(Scanned { began: self.now, found, locked: true }));
@@ -75,8 +88,13 @@ impl Bench {
                 }
                 Action::Interrupt(worker) => self.interrupted.push(worker),
                 Action::Say(_, text) => self.said.push(text),
-                Action::Claim => self.claims += 1,
+                Action::Claim => {
+                    self.claims += 1;
+                    self.claim();
+                }
                 Action::Sweep(temps) => self.swept.extend(temps),
+                Action::Follow(folders) => self.folders = folders,
+                Action::Note(status) => self.statuses.push(*status),
                 Action::Tell(..) => {}
                 Action::End => self.ended = true,
             }
@@ -262,10 +280,8 @@ fn a_vanished_folder_is_held_and_claimed_again_when_another_takes_its_place() {
     assert_eq!((bench.claims, bench.said.len()), (0, 1), "{:?}", bench.said);
     std::fs::create_dir(&root).unwrap();
     bench.pass(3 * SECOND);
-    assert!(bench.claims > 0);
-    let claimed = Event::Claimed(FolderId::of(&root).unwrap());
-    bench.event(claimed);
     let claims = bench.claims;
+    assert_eq!((claims, bench.said.len()), (1, 2), "{:?}", bench.said);
     bench.write("a.model.toml", "1");
     bench.pass(10 * SECOND);
     assert_eq!((bench.claims, bench.in_hand()), (claims, vec![replan("a")]));
@@ -361,15 +377,11 @@ fn scans_give_way_to_work_while_much_is_waiting() {
     }
     bench.pass(5 * SECOND);
     assert_eq!(bench.in_hand().len(), 1);
-    // 49 wait. The next look is a whole interval away, not at once.
-    assert!(bench.dispatcher.wake().unwrap() > bench.now);
-    let wakes = std::iter::from_fn(|| {
-        bench.now = bench.dispatcher.wake().unwrap();
-        bench.event(Event::Tick);
-        Some(bench.now)
-    });
-    let wakes: Vec<_> = wakes.take(5).collect();
-    assert!(wakes.windows(2).all(|pair| pair[1] - pair[0] >= 2 * SECOND), "{wakes:?}");
+    // 49 wait. Looks come a whole interval apart, not at once.
+    bench.scans.clear();
+    bench.pass(20 * SECOND);
+    let scans = &bench.scans;
+    assert!(scans.len() > 5 && scans.windows(2).all(|pair| pair[1] - pair[0] >= 2 * SECOND), "{scans:?}");
 }
 
 #[test]
@@ -383,4 +395,86 @@ fn odd_files_are_mentioned_once_and_never_read() {
     assert_eq!(bench.in_hand(), []);
     assert_eq!(bench.said.len(), 2, "{:?}", bench.said);
     assert_eq!(bench.swept.len(), 1);
+}
+
+#[test]
+fn a_bare_mount_point_is_not_claimed_and_what_comes_back_is() {
+    let mut bench = Bench::new(2);
+    let root = bench.folder.path().to_owned();
+    let away = root.with_extension("away");
+    bench.write("a.model.toml", "1");
+    bench.hint(Hint::Closed, "a");
+    bench.end(done());
+    std::fs::rename(&root, &away).unwrap();
+    std::fs::create_dir(&root).unwrap();
+    bench.pass(60 * SECOND);
+    let told = |bench: &Bench, words| bench.said.iter().filter(|text| text.contains(words)).count();
+    assert_eq!((bench.claims, told(&bench, "unmounted"), bench.in_hand()), (0, 1, vec![]), "{:?}", bench.said);
+    std::fs::remove_dir(&root).unwrap();
+    std::fs::rename(&away, &root).unwrap();
+    bench.pass(10 * SECOND);
+    assert_eq!((bench.claims, told(&bench, "is back"), bench.in_hand()), (1, 1, vec![]), "{:?}", bench.said);
+}
+
+#[test]
+fn nothing_is_planned_in_a_folder_that_is_not_ours() {
+    let mut bench = Bench::new(2);
+    bench.dispatcher.claimed = None;
+    bench.write("a.model.toml", "1");
+    bench.hint(Hint::Closed, "a");
+    assert_eq!(bench.in_hand(), []);
+    bench.event(Event::Unclaimed("no room".into()));
+    bench.event(Event::Unclaimed("no room".into()));
+    assert_eq!(bench.said, ["no room"]);
+    bench.claim();
+    assert_eq!((bench.in_hand(), bench.said.len()), (vec![replan("a")], 2));
+}
+
+#[test]
+fn folders_that_come_to_be_watched_are_looked_at_again() {
+    let mut bench = Bench::new(2);
+    std::fs::create_dir(bench.folder.path().join("sub")).unwrap();
+    bench.pass(SECOND);
+    assert_eq!(bench.folders, ["", "sub"].map(PathBuf::from).into());
+    let scans = bench.scans.len();
+    bench.event(Event::Followed(Followed { added: 1, watching: Watching::Events }));
+    bench.pass(100 * MILLISECOND);
+    assert_eq!((bench.scans.len(), bench.said.len()), (scans + 1, 0));
+}
+
+#[test]
+fn a_want_of_watches_is_told_once_however_many_folders_it_costs() {
+    let mut bench = Bench::new(2);
+    for missing in 1..1500 {
+        let watching = Watching::Partly { missing, of: 2000, why: "no more watches".into() };
+        bench.event(Event::Followed(Followed { added: 0, watching }));
+    }
+    assert_eq!(bench.said.len(), 1, "{:?}", bench.said);
+    assert!(bench.said[0].starts_with("1 of 2000 folders send no file events: no more watches"), "{:?}", bench.said);
+    bench.pass(2 * SECOND);
+    assert!(bench.statuses.last().unwrap().watching.words.starts_with("1499 of 2000"));
+    bench.event(Event::Followed(Followed { added: 1499, watching: Watching::Events }));
+    assert_eq!(bench.said.len(), 2);
+}
+
+#[test]
+fn a_status_tells_what_runs_and_what_is_amiss() {
+    let mut bench = Bench::new(1);
+    for name in ["a", "b"] {
+        bench.write(&format!("{name}.model.toml"), "1");
+        bench.hint(Hint::Closed, name);
+    }
+    bench.pass(6 * SECOND);
+    let status = bench.statuses.last().unwrap();
+    assert_eq!((status.waiting, &status.running[0].path[..], status.models.len()), (1, "a.model.toml", 0));
+    assert!(status.running[0].seconds >= 5, "{status:?}");
+    bench.end(Replanned::Failed { message: "the disk is full".into(), retry: false });
+    bench.end(done());
+    bench.pass(2 * SECOND);
+    let status = bench.statuses.last().unwrap();
+    assert_eq!(status.models, [("current".to_owned(), 1), ("failed".to_owned(), 1)].into());
+    assert_eq!((&status.amiss[0].why[..], status.running.len(), status.waiting), ("the disk is full", 0, 0));
+    let written = bench.statuses.len();
+    bench.pass(60 * SECOND);
+    assert_eq!(bench.statuses.len(), written, "nothing has happened");
 }

@@ -1,12 +1,15 @@
 //! What can happen to the daemon, and what it can do about it: two closed sets.
 
+use std::collections::BTreeSet;
 use std::path::PathBuf;
-use std::time::Instant;
+use std::time::{Duration, Instant};
 
+use super::hints::Hint;
 use super::path::ModelPath;
 use super::pool::{Job, Replanned, Word, Worker};
 use super::scan::{FolderId, Scan};
-use super::watch::Hint;
+use super::status::Status;
+use super::watch::Followed;
 
 /// All that can happen to the daemon.
 #[derive(Debug)]
@@ -15,10 +18,14 @@ pub enum Event {
     Hint(Hint),
     /// A scan is done.
     Scanned(Scanned),
-    /// The folder was claimed: locked and, where events are used, watched.
+    /// The folder was claimed: locked and, where events are used, its root watched.
     Claimed(FolderId),
     /// The folder could not be claimed again: why. The next scan asks anew.
     Unclaimed(String),
+    /// The folders that a scan found are watched, as far as can be.
+    Followed(Followed),
+    /// The time from one scan to the next was set anew, and what is left out perhaps too.
+    ScanEvery(Duration),
     /// A worker says something.
     Word(Word),
     /// The time that [`Dispatcher::wake`](super::daemon::Dispatcher::wake) named has come.
@@ -43,6 +50,10 @@ pub struct Scanned {
 pub enum Action {
     /// Scan the folder.
     Scan,
+    /// Watch just these folders, given relative to the root.
+    Follow(BTreeSet<PathBuf>),
+    /// Write down how the daemon is.
+    Note(Box<Status>),
     /// Give a worker a job.
     Run(Worker, Job),
     /// Raise the stop flag of the job that a worker has in hand.

@@ -94,7 +94,7 @@ fn gather(root: &Arc<Path>, paths: &[&Path], ignore: &Ignore) -> Result<Gathered
             let within = path.canonicalize().map_err(failed())?;
             let found = scan(root, ignore).map_err(failed())?;
             atomic::sweep(&found.temps);
-            let missed = found.unread.iter().map(|path| root.join(path));
+            let missed = found.unread.keys().map(|path| root.join(path));
             unread.extend(missed.filter(|path| path.starts_with(&within) || within.starts_with(path)));
             let named = found.sights.into_iter().filter(|(model, _)| model.full().starts_with(&within));
             work.extend(

@@ -97,6 +97,12 @@ impl Queue {
         self.models.get(model).is_some_and(|places| places.waiting.is_some())
     }
 
+    /// How many models wait.
+    #[must_use]
+    pub fn waiting(&self) -> usize {
+        self.order.len()
+    }
+
     /// Whether a model is being planned.
     #[must_use]
     pub fn is_running(&self, model: &ModelPath) -> bool {
@@ -190,6 +196,27 @@ mod tests {
         // c's home is taken: it goes where there is room.
         queue.push(&model("c"), What::Replan);
         assert_eq!(started(&mut queue), Some((0, "c".into())));
+    }
+
+    #[test]
+    fn a_model_that_is_always_wanted_delays_no_other_by_more_than_one_slot() {
+        let mut queue = Queue::new(1);
+        queue.push(&model("poison"), What::Replan);
+        for name in ["a", "b", "c"] {
+            assert_eq!(started(&mut queue), Some((0, "poison".into())));
+            // While it runs it is saved over and over, and another model is saved once.
+            for _ in 0..9 {
+                queue.push(&model("poison"), What::Replan);
+            }
+            queue.push(&model(name), What::Replan);
+            queue.done(Worker(0), &model("poison"), true);
+            // It was there first and has one more run, for which it now waits behind the other.
+            assert_eq!(started(&mut queue), Some((0, "poison".into())));
+            queue.push(&model("poison"), What::Replan);
+            queue.done(Worker(0), &model("poison"), true);
+            assert_eq!(started(&mut queue), Some((0, name.into())));
+            queue.done(Worker(0), &model(name), false);
+        }
     }
 
     #[test]

@@ -10,6 +10,7 @@ use std::sync::Arc;
 
 use super::path::{Ignore, ModelPath, is_entered, is_model, model_of_plan};
 use crate::store::atomic::is_temp;
+use crate::store::error::reason;
 
 /// What tells one state of a file from another without reading it. Compared by `!=` only: times may go backwards.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -112,8 +113,10 @@ pub struct Scan {
     pub odd: BTreeSet<ModelPath>,
     /// Temporary files of ours.
     pub temps: Vec<PathBuf>,
-    /// Folders and models, relative to the root, that could not be read. Nothing is known about what is in them.
-    pub unread: Vec<PathBuf>,
+    /// The folders that were looked into, relative to the root, which is the empty path. These are the ones to watch.
+    pub folders: BTreeSet<PathBuf>,
+    /// Folders and models, relative to the root, that could not be read, and why. Nothing is known about what is in them.
+    pub unread: BTreeMap<PathBuf, String>,
 }
 
 impl Scan {
@@ -126,7 +129,7 @@ impl Scan {
     /// Whether a model that was not found may be there nevertheless.
     #[must_use]
     pub fn may_hide(&self, model: &ModelPath) -> bool {
-        self.odd.contains(model) || self.unread.iter().any(|folder| model.relative().starts_with(folder))
+        self.odd.contains(model) || self.unread.keys().any(|folder| model.relative().starts_with(folder))
     }
 }
 
@@ -136,18 +139,32 @@ impl Scan {
 /// The root itself cannot be read; what is wrong further down is in the result.
 pub fn scan(root: &Arc<Path>, ignore: &Ignore) -> io::Result<Scan> {
     let id = FolderId::of(root)?;
-    let mut scan =
-        Scan { root: id, sights: BTreeMap::new(), odd: BTreeSet::new(), temps: Vec::new(), unread: Vec::new() };
+    let mut scan = Scan {
+        root: id,
+        sights: BTreeMap::new(),
+        odd: BTreeSet::new(),
+        temps: Vec::new(),
+        folders: BTreeSet::new(),
+        unread: BTreeMap::new(),
+    };
     let mut folders = vec![PathBuf::new()];
     while let Some(folder) = folders.pop() {
         match look_into(root, &folder, ignore, &mut scan) {
-            Ok(inner) => folders.extend(inner),
+            Ok(inner) => {
+                folders.extend(inner);
+                scan.folders.insert(folder);
+            }
             Err(error) if folder.as_os_str().is_empty() => return Err(error),
             // Removed since its parent was read.
             Err(error) if error.kind() == io::ErrorKind::NotFound => {}
-            Err(_) => scan.unread.push(folder),
+            Err(error) => {
+                scan.unread.insert(folder, reason(&error));
+            }
         }
     }
+    // What was seen of a folder before it failed says nothing either.
+    let unread = &scan.unread;
+    scan.sights.retain(|model, _| model.relative().parent().is_none_or(|folder| !unread.contains_key(folder)));
     Ok(scan)
 }
 
@@ -172,13 +189,14 @@ fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) 
     for name in models {
         let relative = folder.join(name);
         if let Some(model) = ModelPath::new(root, &relative).filter(|_| !ignore.covers(&relative)) {
-            look_at(model, scan);
+            look_at(model, scan)?;
         }
     }
     Ok(inner)
 }
 
-fn look_at(model: ModelPath, scan: &mut Scan) {
+/// Looks at one model. Fails where the folder lets names be read and nothing behind them: then nothing is known of the others either.
+fn look_at(model: ModelPath, scan: &mut Scan) -> io::Result<()> {
     match look(&model) {
         Ok(Some(sight)) => {
             scan.sights.insert(model, sight);
@@ -187,8 +205,12 @@ fn look_at(model: ModelPath, scan: &mut Scan) {
         Err(error) if error.kind() == io::ErrorKind::InvalidInput => {
             scan.odd.insert(model);
         }
-        Err(_) => scan.unread.push(model.relative().to_owned()),
+        Err(error) if error.kind() == io::ErrorKind::PermissionDenied => return Err(error),
+        Err(error) => {
+            scan.unread.insert(model.relative().to_owned(), reason(&error));
+        }
     }
+    Ok(())
 }
 
 /// What is to be seen of a model, or of a plan without one; `None` where there is neither.
@@ -212,7 +234,8 @@ fn look(model: &ModelPath) -> io::Result<Option<Sight>> {
 /// What the system says of a path; `None` where nothing is.
 fn about(path: &Path) -> io::Result<Option<Metadata>> {
     match fs::symlink_metadata(path) {
-        Err(error) if error.kind() == io::ErrorKind::NotFound => Ok(None),
+        // The name of a plan's model may be too long to be there.
+        Err(error) if matches!(error.kind(), io::ErrorKind::NotFound | io::ErrorKind::InvalidFilename) => Ok(None),
         about => about.map(Some),
     }
 }
@@ -266,6 +289,7 @@ mod tests {
         assert_eq!(names(&scan.odd), ["d.model.toml", "l.model.toml"]);
         assert_eq!(scan.temps, [root.path().join(".millreeve-aB3dEf7h.tmp")]);
         assert!(scan.unread.is_empty() && !scan.is_hollow());
+        assert_eq!(scan.folders.iter().collect::<Vec<_>>(), [Path::new(""), Path::new("a"), Path::new("a/b")]);
     }
 
     #[test]

@@ -49,6 +49,35 @@ impl Default for Settings {
     }
 }
 
+impl Settings {
+    /// What is different in `new`, one line for people each: what holds from now on, and what only after the next start.
+    #[must_use]
+    pub fn changes(&self, new: &Self) -> Vec<String> {
+        let now = [
+            ("watch.by", self.by != new.by),
+            ("watch.scan_every", self.scan_every != new.scan_every),
+            ("watch.ignore", self.ignore != new.ignore),
+        ];
+        let later = [
+            ("solve.workers", self.workers != new.workers),
+            ("solve.time_limit", self.time_limit != new.time_limit),
+            ("solve.memory_limit", self.memory_limit != new.memory_limit),
+            ("state.dir", self.state_dir != new.state_dir),
+        ];
+        let of = |keys: &[(&str, bool)], what: &str| -> Vec<_> {
+            keys.iter().filter(|(_, changed)| *changed).map(|(key, _)| format!("{key} has changed{what}")).collect()
+        };
+        [of(&now, " and holds from now on"), of(&later, "; it holds after the daemon is started again")].concat()
+    }
+
+    /// Takes over from `new` what can be changed while the daemon runs.
+    pub fn take_live(&mut self, new: &Self) {
+        self.by = new.by;
+        self.scan_every = new.scan_every;
+        self.ignore.clone_from(&new.ignore);
+    }
+}
+
 /// How long things must be still before they count.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub struct Pace {

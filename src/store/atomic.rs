@@ -20,6 +20,9 @@ pub const HEAD: usize = 1024;
 /// The mode of a new file, before the process's umask.
 const NEW_MODE: u32 = 0o644;
 
+/// What the owner of a new file may do, whatever the umask.
+const OWNERS: u32 = 0o600;
+
 /// What a write came to.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum Written {
@@ -176,8 +179,13 @@ fn create(folder: &Path) -> io::Result<NamedTempFile> {
             .tempfile_in(folder)?;
         // Where the file system knows no locks the name alone protects it.
         let _ = temp.as_file().lock();
+        let about = temp.as_file().metadata()?;
+        // A umask may have taken away what the owner needs in order to read the file again.
+        if about.mode() & OWNERS != OWNERS {
+            temp.as_file().set_permissions(Permissions::from_mode(about.mode() & 0o7777 | OWNERS))?;
+        }
         // A sweep may have come upon it before the lock; it holds the lock itself until the file is gone.
-        if temp.as_file().metadata()?.nlink() > 0 {
+        if about.nlink() > 0 {
             return Ok(temp);
         }
     }

@@ -4,6 +4,8 @@ use std::fmt;
 use std::io::{self, ErrorKind};
 use std::path::{Path, PathBuf};
 
+use rustix::io::Errno;
+
 use crate::model::escape::Plain;
 
 /// The longest path shown in a message, in characters; the end of a longer one is shown.
@@ -107,7 +109,14 @@ pub(crate) fn shown(path: &Path) -> impl fmt::Display + use<> {
 /// What the system said, in plain words and with a cure where there is one.
 #[must_use]
 pub fn reason(error: &io::Error) -> String {
+    const TOO_MANY_OPEN: [Option<i32>; 2] = [Some(Errno::MFILE.raw_os_error()), Some(Errno::NFILE.raw_os_error())];
     let told = match error.kind() {
+        _ if TOO_MANY_OPEN.contains(&error.raw_os_error()) => {
+            "too many files are open; raise the limit on open files (ulimit -n, or LimitNOFILE of the service)"
+        }
+        ErrorKind::WouldBlock => {
+            "the system allows no more threads; raise the limit on processes (ulimit -u, or TasksMax of the service)"
+        }
         ErrorKind::StorageFull => "the disk is full (of data or of file entries); free some space",
         ErrorKind::QuotaExceeded => "the disk quota is used up; free some space or have it raised",
         ErrorKind::ReadOnlyFilesystem => "the file system is read-only; mount it for writing",
@@ -128,10 +137,18 @@ mod tests {
 
     #[test]
     fn causes_are_told_in_plain_words() {
-        // Error numbers of Linux: ENOSPC 28, EDQUOT 122, EROFS 30, EACCES 13, EFBIG 27, ENAMETOOLONG 36.
-        for (number, word) in
-            [(28, "full"), (122, "quota"), (30, "read-only"), (13, "permission"), (27, "larger"), (36, "too long")]
-        {
+        // Error numbers of Linux: ENOSPC 28, EDQUOT 122, EROFS 30, EACCES 13, EFBIG 27, ENAMETOOLONG 36, EMFILE 24, EAGAIN 11.
+        let words = [
+            (28, "full"),
+            (122, "quota"),
+            (30, "read-only"),
+            (13, "permission"),
+            (27, "larger"),
+            (36, "too long"),
+            (24, "ulimit -n"),
+            (11, "ulimit -u"),
+        ];
+        for (number, word) in words {
             let source = io::Error::from_raw_os_error(number);
             let error = StoreError::Failed { step: Step::Write, path: "a\u{1b}.plan.toml".into(), source };
             let told = error.to_string();

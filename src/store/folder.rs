@@ -44,6 +44,15 @@ impl Folder {
         Ok(Self { root, own, state })
     }
 
+    /// The watched folder `root` as it stands; none where it was never opened. Makes nothing.
+    #[must_use]
+    pub fn find(root: &Path, state: Option<&Path>) -> Option<Self> {
+        let root = root.canonicalize().ok()?;
+        let own = root.join(OWN);
+        let state = state.map_or_else(|| Some(own.clone()), |state| state.canonicalize().ok())?;
+        own.is_dir().then_some(Self { root, own, state })
+    }
+
     /// The root of the folder that `path` belongs to: the nearest folder at or above it that holds a `.millreeve/`, else `path` itself if
     /// it is a folder, else the folder it lies in.
     ///

@@ -7,6 +7,7 @@ use std::path::{Path, PathBuf};
 
 use rustix::fs::OFlags;
 
+use super::atomic::open_plain;
 use super::error::{reason, shown};
 use super::folder::Folder;
 use crate::model::escape::Plain;
@@ -15,6 +16,9 @@ const NAME: &str = "lock";
 
 /// The longest lock file that is read for a message, in bytes.
 const LONGEST: u64 = 512;
+
+/// How often a lock is tried for.
+const PATIENCE: usize = 200;
 
 /// The lock on a watched folder. Freed when dropped, and by the system when the process ends.
 #[derive(Debug)]
@@ -61,16 +65,32 @@ impl Lock {
             .custom_flags(flags.bits().cast_signed())
             .open(&path)
             .map_err(failed)?;
-        match file.try_lock() {
-            Ok(()) => {}
-            Err(TryLockError::WouldBlock) => {
-                return Err(LockError::Held { root: folder.root().to_owned(), holder: holder(&file) });
-            }
-            Err(TryLockError::Error(source)) => return Err(failed(source)),
+        if !acquire(&file).map_err(failed)? {
+            return Err(LockError::Held { root: folder.root().to_owned(), holder: holder(&file) });
         }
         // For the message only: a full disk must not keep the daemon from its work.
         let _ = file.set_len(0).and_then(|()| writeln!(file, "process {} on host {}", std::process::id(), host()));
         Ok(Self { file, path })
+    }
+
+    /// Who holds the lock on a watched folder now, as that process wrote, escaped; none where nobody does.
+    ///
+    /// # Errors
+    /// The lock file cannot be used.
+    pub fn holder(folder: &Folder) -> Result<Option<String>, LockError> {
+        let path = folder.own().join(NAME);
+        let failed = |source| LockError::Failed { path: path.clone(), source };
+        let file = match open_plain(&path) {
+            Ok(file) => file,
+            Err(error) if error.kind() == io::ErrorKind::NotFound => return Ok(None),
+            Err(error) => return Err(failed(error)),
+        };
+        // Shared, so that two who ask do not take each other for a daemon.
+        match file.try_lock_shared() {
+            Ok(()) => Ok(None),
+            Err(TryLockError::WouldBlock) => Ok(Some(holder(&file))),
+            Err(TryLockError::Error(source)) => Err(failed(source)),
+        }
     }
 
     /// Whether the lock file is still the one that is held: false once somebody has removed it or the folder, so that a second daemon could start.
@@ -87,6 +107,18 @@ impl Lock {
         let metadata = self.file.metadata().ok()?;
         Some(i128::from(metadata.mtime()) * 1_000_000_000 + i128::from(metadata.mtime_nsec()))
     }
+}
+
+/// Locks a file, unless somebody else has it. Whoever only asks for the holder has it for an instant, which is waited for.
+fn acquire(file: &File) -> io::Result<bool> {
+    for _ in 0..PATIENCE {
+        match file.try_lock() {
+            Ok(()) => return Ok(true),
+            Err(TryLockError::WouldBlock) => std::thread::yield_now(),
+            Err(TryLockError::Error(source)) => return Err(source),
+        }
+    }
+    Ok(false)
 }
 
 /// Who holds the lock, as that process wrote into it.
@@ -117,7 +149,9 @@ mod tests {
         assert!(first.stands() && first.taken().is_some());
         let told = Lock::take(&folder).unwrap_err().to_string();
         assert!(told.contains(&format!("process {} on host ", std::process::id())), "{told}");
+        assert!(Lock::holder(&folder).unwrap().unwrap().starts_with("process "));
         drop(first);
+        assert_eq!(Lock::holder(&folder).unwrap(), None);
         assert!(Lock::take(&folder).is_ok());
     }
 

@@ -2,9 +2,9 @@
 
 use std::fs::{self, File};
 use std::io::Write;
-use std::path::Path;
 use std::process::Command;
 
+use crate::lab::{commit, git};
 use crate::support::{Works, aim, identity, tiles, write};
 
 #[test]
@@ -68,18 +68,6 @@ fn b5_a_model_renamed() {
     daemon.wait_standing("m", "retired");
     assert_eq!(works.standing("m"), ("retired".to_owned(), aim(1)));
     works.check();
-}
-
-/// Runs git in a folder, with nothing of the caller's configuration.
-fn git(folder: &Path, arguments: &[&str]) -> bool {
-    let fixed = ["-c", "user.name=Tiler", "-c", "user.email=tiler@example.org", "-c", "init.defaultBranch=main"];
-    let mut git = Command::new("git");
-    git.env("GIT_CONFIG_GLOBAL", "/dev/null").env("GIT_CONFIG_SYSTEM", "/dev/null").current_dir(folder);
-    git.args(fixed).args(arguments).output().unwrap().status.success()
-}
-
-fn commit(works: &Works, message: &str) {
-    assert!(git(works.root(), &["add", "*.model.toml"]) && git(works.root(), &["commit", "-qm", message]));
 }
 
 #[test]

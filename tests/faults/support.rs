@@ -66,6 +66,15 @@ pub(crate) fn pause(milliseconds: u64) {
     std::thread::sleep(Duration::from_millis(milliseconds));
 }
 
+/// Looks again and again until something holds that nothing tells of.
+pub(crate) fn wait_until(what: &str, mut holds: impl FnMut() -> bool) {
+    let until = Instant::now() + DEADLINE;
+    while !holds() {
+        assert!(Instant::now() < until, "waited in vain for {what}");
+        pause(10);
+    }
+}
+
 /// What tells whether a file was touched: inode and times.
 pub(crate) fn identity(path: &Path) -> (u64, i64, i64, i64, i64) {
     let about = fs::symlink_metadata(path).unwrap();
@@ -172,7 +181,11 @@ impl Works {
             for entry in fs::read_dir(&folder).unwrap() {
                 let entry = entry.unwrap();
                 let (path, name) = (entry.path(), entry.file_name());
-                assert!(!is_temp(&name), "left behind: {path:?}");
+                // The daemon may be writing its status; what was left behind stays.
+                if is_temp(&name) {
+                    wait_until("a temporary file to go", || !path.exists());
+                    continue;
+                }
                 if entry.file_type().unwrap().is_dir() && name != ".git" {
                     folders.push(path);
                 } else if name.to_string_lossy().ends_with(".plan.toml") && !self.is_foreign(&path) {
@@ -272,7 +285,7 @@ impl Daemon {
     }
 
     /// Waits until the system would tell the daemon of a file: from then on no edit needs a scan to be found.
-    fn wait_watching(&mut self) {
+    pub(crate) fn wait_watching(&mut self) {
         let until = Instant::now() + DEADLINE;
         let folder = PathBuf::from(format!("/proc/{}/fdinfo", self.child.id()));
         let watches =
@@ -309,6 +322,21 @@ impl Daemon {
     /// Waits until a model stands so.
     pub(crate) fn wait_standing(&mut self, model: &str, standing: &str) -> Value {
         self.wait(&format!("{model} {standing}"), |object| object["model"] == model && object["standing"] == standing)
+    }
+
+    /// Waits until a line with these words has been logged, now or before.
+    pub(crate) fn wait_log(&mut self, words: &str) {
+        let until = Instant::now() + DEADLINE;
+        while self.logged(words) == 0 {
+            if !self.take(until, words) {
+                self.fail(words);
+            }
+        }
+    }
+
+    /// How many lines with these words have been logged so far.
+    pub(crate) fn logged(&self, words: &str) -> usize {
+        self.log.iter().filter(|line| line.contains(words)).count()
     }
 
     /// Waits until each of these models has been told of, now or before.

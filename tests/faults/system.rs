@@ -2,37 +2,15 @@
 
 use std::fs::{self, File};
 use std::io::Write;
-use std::os::unix::fs::{PermissionsExt, chown, symlink};
-use std::os::unix::process::CommandExt;
+use std::os::unix::fs::{PermissionsExt, symlink};
 use std::path::PathBuf;
 use std::process::Command;
 use std::time::Duration;
 
-use rustix::process::{Resource, Rlimit, Signal, getuid, prlimit};
+use rustix::process::{Resource, Rlimit, Signal, prlimit};
 
-use crate::support::{Daemon, Works, aim, command, heavy, identity, tiles, write};
-
-/// A user who owns nothing here.
-const NOBODY: u32 = 65_534;
-
-/// A small file system of its own, in place of a works' folder; unmounted when dropped.
-struct Mount(PathBuf);
-
-impl Mount {
-    /// `None` where mounting is not allowed.
-    fn over(works: &Works) -> Option<Self> {
-        let mut mount = Command::new("mount");
-        mount.args(["-t", "tmpfs", "-o", "size=256k", "millreeve-test"]).arg(works.root());
-        let mounted = mount.output().is_ok_and(|output| output.status.success());
-        mounted.then(|| Self(works.root().to_owned()))
-    }
-}
-
-impl Drop for Mount {
-    fn drop(&mut self) {
-        let _ = Command::new("umount").arg("-l").arg(&self.0).output();
-    }
-}
+use crate::lab::Mount;
+use crate::support::{Daemon, Works, aim, heavy, identity, tiles, write};
 
 /// Overwrites a model without emptying it first, which takes no room.
 fn save_over(works: &Works, name: &str, text: &str) {
@@ -44,7 +22,7 @@ fn save_over(works: &Works, name: &str, text: &str) {
 #[test]
 fn e1_a_full_disk() {
     let works = Works::new(&[]);
-    let Some(_mount) = Mount::over(&works) else {
+    let Some(_mount) = Mount::small(works.root(), "size=256k") else {
         // Without the right to mount, the limit on file sizes below takes the same way through the program.
         return e4_a_limit_on_file_sizes();
     };
@@ -160,18 +138,7 @@ fn g6_a_folder_that_may_not_be_written() {
     fs::create_dir(&sub).unwrap();
     works.save("sub/m", &tiles(1));
     let mode = |path: &PathBuf, mode| fs::set_permissions(path, fs::Permissions::from_mode(mode)).unwrap();
-    let mut keep = command(&["--json", "keep"]);
-    keep.arg(works.root());
-    if getuid().is_root() {
-        // The superuser may write anywhere.
-        for path in [works.outside(""), works.root().to_owned(), sub.clone()] {
-            chown(path, Some(NOBODY), Some(NOBODY)).unwrap();
-        }
-        // The target folder may be out of that user's reach.
-        fs::copy(env!("CARGO_BIN_EXE_millreeve"), works.outside("millreeve")).unwrap();
-        keep = crate::support::within(Command::new(works.outside("millreeve")), &["--json", "keep"]);
-        keep.arg(works.root()).uid(NOBODY).gid(NOBODY);
-    }
+    let mut keep = crate::lab::as_a_user_with_rights(&works, &[&sub]);
     mode(&sub, 0o555);
     let mut daemon = Daemon::spawn(&mut keep);
     let failed = daemon.wait_standing("m", "failed");
