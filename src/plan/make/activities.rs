@@ -1,7 +1,7 @@
 //! What a plan says of activities.
 
 use super::super::number::{rounded, rounded_to};
-use super::{MakeError, Maker, NIL, PlannedActivity, State, finite, range, same, settled};
+use super::{MakeError, Maker, NIL, PlannedActivity, State, finite, range, rate, same, settled};
 use crate::lp::{Column, ColumnIndex, build};
 use crate::model::{Activity, Aim, Name, Period};
 
@@ -37,7 +37,7 @@ impl Maker<'_> {
                 let break_even = own - gain;
                 let loses = rounded_to(-self.better(gain), own.abs().max(break_even.abs()));
                 planned.loses = Some(if loses.abs() <= NIL { 0.0 } else { loses });
-                planned.break_even = Some(finite(break_even, "the break-even", name.as_str())?);
+                planned.break_even = Some(rate(break_even, "the break-even", name)?);
             }
             State::Idle | State::Prospect => {}
             _ => {
