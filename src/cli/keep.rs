@@ -7,8 +7,9 @@ use tracing::level_filters::LevelFilter;
 use super::exit::{Error, Outcome, shown};
 use super::once::locked;
 use super::screen::Screen;
+use super::worker::planners;
 use super::{Setting, logging, told};
-use crate::keep::{self, KeepError, Replanned, replan};
+use crate::keep::{self, KeepError, Replanned};
 
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path) -> Result<Outcome, Error> {
     let about = std::fs::metadata(dir).map_err(|error| Error::reading(dir, &error))?;
@@ -21,7 +22,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path) -> Res
     let settings = setting.for_folder(dir)?;
     logging::start(settings.log_format, settings.level(LevelFilter::TRACE, setting.common.verbose));
     tracing::info!("keeping {}", shown(dir));
-    let kept = keep::keep(dir, &settings.keep, replan::factory(&settings.keep), |model, replanned| {
+    let kept = keep::keep(dir, &settings.keep, planners(&settings.keep), |model, replanned| {
         // A look that found all as it was is told too, without a start, so that a reader knows from the beginning where each model
         // stands. What was given up or has vanished is looked at again, and told then.
         if screen.json() && !matches!(replanned, Replanned::Interrupted | Replanned::Vanished) {

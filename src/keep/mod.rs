@@ -19,6 +19,7 @@ pub mod settings;
 pub mod settle;
 pub mod verify;
 pub mod watch;
+pub mod workers;
 
 pub use once::{OnceError, once};
 pub use path::{Ignore, IgnoreError, ModelPath};

@@ -7,6 +7,8 @@ mod tables;
 mod trouble;
 mod words;
 
+use std::borrow::Cow;
+
 use super::compare::compare;
 use super::release::Release;
 use super::text::NOTE_HEADER;
@@ -98,7 +100,7 @@ pub struct Reckoning {
     /// Simplex iterations.
     pub pivots: usize,
     /// What was tried and given up.
-    pub detours: Vec<&'static str>,
+    pub detours: Vec<Cow<'static, str>>,
     /// The worst relative breach of any law of optimality.
     pub worst: f64,
 }

@@ -33,4 +33,5 @@ pub mod ties;
 pub mod vertex;
 mod warm;
 pub mod weight;
+pub mod wire;
 pub mod worker;

@@ -137,7 +137,7 @@ impl Session {
                         self.anchor = Some(anchor);
                         return Reached::Other(outcome);
                     }
-                    Err(detour) => account.detours.push(detour),
+                    Err(detour) => account.detours.push(detour.into()),
                 }
             }
             anchor.instance = None;
@@ -146,7 +146,7 @@ impl Session {
         account.start = Start::Cold;
         let Cold { end, pivots, detours } = cold::solve(program, limit, stop);
         account.pivots += pivots;
-        account.detours.extend(detours);
+        account.detours.extend(detours.into_iter().map(Into::into));
         if let Reached::Optimal(..) = end {
             self.cold_pivots = Some(pivots);
         }
