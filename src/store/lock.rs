@@ -4,6 +4,8 @@ use std::fs::{File, OpenOptions, TryLockError};
 use std::io::{self, Read, Write};
 use std::os::unix::fs::{MetadataExt, OpenOptionsExt};
 use std::path::{Path, PathBuf};
+use std::thread;
+use std::time::{Duration, Instant};
 
 use rustix::fs::OFlags;
 
@@ -15,6 +17,13 @@ const NAME: &str = "lock";
 
 /// The longest lock file that is read for a message, in bytes.
 const LONGEST: u64 = 512;
+
+/// A daemon that was killed while it started another program leaves a process that has the lock until it is that program: some
+/// milliseconds, more on a busy machine.
+const PATIENCE: Duration = Duration::from_secs(1);
+
+/// How often a lock that is held is tried meanwhile.
+const LOOK_EVERY: Duration = Duration::from_millis(2);
 
 /// The lock on a watched folder. Freed when dropped, and by the system when the process ends.
 #[derive(Debug)]
@@ -45,7 +54,7 @@ pub enum LockError {
 }
 
 impl Lock {
-    /// Takes the lock on a watched folder, without waiting.
+    /// Takes the lock on a watched folder, without waiting for more than [`PATIENCE`].
     ///
     /// # Errors
     /// Another process has it, or the lock file cannot be used.
@@ -61,7 +70,7 @@ impl Lock {
             .custom_flags(flags.bits().cast_signed())
             .open(&path)
             .map_err(failed)?;
-        match file.try_lock() {
+        match try_for_a_moment(&file) {
             Ok(()) => {}
             Err(TryLockError::WouldBlock) => {
                 return Err(LockError::Held { root: folder.root().to_owned(), holder: holder(&file) });
@@ -86,6 +95,17 @@ impl Lock {
     pub fn taken(&self) -> Option<i128> {
         let metadata = self.file.metadata().ok()?;
         Some(i128::from(metadata.mtime()) * 1_000_000_000 + i128::from(metadata.mtime_nsec()))
+    }
+}
+
+/// Locks the file, if it is to be had soon.
+fn try_for_a_moment(file: &File) -> Result<(), TryLockError> {
+    let until = Instant::now() + PATIENCE;
+    loop {
+        match file.try_lock() {
+            Err(TryLockError::WouldBlock) if Instant::now() < until => thread::park_timeout(LOOK_EVERY),
+            done => return done,
+        }
     }
 }
 
