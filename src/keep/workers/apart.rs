@@ -120,7 +120,8 @@ impl Apart {
                 }
                 Look::Kill => {
                     tracing::warn!("worker {} did not stop when told to, and was killed", self.number);
-                    self.child.take().map(Child::kill);
+                    // Dropping it kills it.
+                    self.child = None;
                     return patience.judge(of(Outcome::Interrupted));
                 }
             }

@@ -144,11 +144,6 @@ impl Child {
         }
         None
     }
-
-    /// Makes an end of it at once.
-    pub(super) fn kill(mut self) {
-        let _ = self.process.kill();
-    }
 }
 
 impl Drop for Child {

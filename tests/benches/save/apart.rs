@@ -43,7 +43,8 @@ pub(crate) fn tell(activities: usize, resources: usize, edits: usize) {
     let mut rng = Rng::new(1);
     let mut works = Works::new(activities, resources, &mut rng);
     let text = works.text();
-    (here.save(&text), apart.save(&text));
+    here.save(&text);
+    apart.save(&text);
     let mut times = Vec::new();
     for edit in 0..WARMING + edits {
         let scarce = scarce(&here.job.path, resources);
