@@ -9,6 +9,9 @@ use super::stop::Stop;
 use super::worker::{Place, Solver};
 use crate::lp::{Difference, Program};
 
+/// Two ways to the same number may differ by this share of its largest term: far more than rounding comes to, far less than harm does.
+const ROUNDING: f64 = 1e-6;
+
 /// Asks a solver about models, each as often as it changes.
 pub struct Desk<S> {
     solver: S,
@@ -60,18 +63,30 @@ impl<S: Solver> Desk<S> {
 }
 
 /// An answer from another process, whose memory the solver may have harmed before it said "optimal": shapes are looked at and levels and
-/// worths proven once more, on this side. What follows from them is taken from this proof.
+/// worths proven once more, on this side. What else it says must agree with that, and stays as it is: it may be sharper than a proof is.
 fn proven_here(outcome: Outcome, program: &Program) -> Outcome {
-    let Outcome::Optimal(mut optimum) = outcome else { return outcome };
+    let Outcome::Optimal(optimum) = outcome else { return outcome };
     if !fits(&optimum, program) {
         return Outcome::Lost("an answer that does not fit the question".to_owned());
     }
-    let Checked { aim, sums, gains, proof, .. } = proof::check(program, &optimum.levels, &optimum.worths);
-    if !proof.holds() {
+    let checked = proof::check(program, &optimum.levels, &optimum.worths);
+    if !checked.proof.holds() || !agree(&optimum, &checked, program) {
         return Outcome::Lost("an answer that does not hold".to_owned());
     }
-    (optimum.aim, optimum.sums, optimum.gains, optimum.proof) = (aim, sums, gains, proof);
     Outcome::Optimal(optimum)
+}
+
+/// Whether aim, sums and gains are those that follow from levels and worths, but for rounding.
+fn agree(optimum: &Optimum, checked: &Checked, program: &Program) -> bool {
+    let near = |a: f64, b: f64, scale: f64| (a - b).abs() <= ROUNDING * scale.max(1.0);
+    let all = |told: &[f64], own: &[f64], scales: &[f64]| {
+        told.iter().zip(own).zip(scales).all(|((&told, &own), &scale)| near(told, own, scale))
+    };
+    let earned: f64 =
+        program.columns.iter().zip(&optimum.levels).map(|(column, level)| (column.aim * level).abs()).sum();
+    near(optimum.aim, checked.aim, earned + program.offset.abs())
+        && all(&optimum.sums, &checked.sums, &checked.sum_scales)
+        && all(&optimum.gains, &checked.gains, &checked.gain_scales)
 }
 
 /// Whether there is one of everything for each column and row.
@@ -79,7 +94,9 @@ fn fits(optimum: &Optimum, program: &Program) -> bool {
     let (columns, rows) = (program.columns.len(), program.rows.len());
     let ranges = optimum.ranges.as_ref();
     optimum.levels.len() == columns
+        && optimum.gains.len() == columns
         && optimum.worths.len() == rows
+        && optimum.sums.len() == rows
         && optimum.basis.fits(program)
         && optimum.spans.as_ref().is_none_or(|spans| spans.len() == columns)
         && ranges.is_none_or(|ranges| ranges.aims.len() == columns && ranges.bounds.len() == rows)
@@ -122,7 +139,11 @@ mod tests {
     #[test]
     fn an_answer_from_another_process_is_proven_again() {
         assert!(matches!(answer(|_| {}), Outcome::Optimal(_)));
-        let harms: [fn(&mut Optimum); 4] = [
+        let harms: [fn(&mut Optimum); 8] = [
+            |optimum| optimum.aim = 1.0,
+            |optimum| optimum.sums[0] = f64::NAN,
+            |optimum| optimum.gains[0] = 1.0,
+            |optimum| optimum.gains.clear(),
             |optimum| optimum.levels[0] = 83.0,
             |optimum| optimum.levels[0] = 85.0,
             |optimum| optimum.worths[0] = f64::NAN,
@@ -131,8 +152,8 @@ mod tests {
         for harm in harms {
             assert!(matches!(answer(harm), Outcome::Lost(_)));
         }
-        // What follows from levels and worths is worked out, not believed.
-        let Outcome::Optimal(optimum) = answer(|optimum| optimum.aim = 1.0) else { panic!("it holds") };
-        assert_eq!(optimum.aim.to_bits(), 252.0_f64.to_bits());
+        // Sharper than ours is no harm, and is kept.
+        let Outcome::Optimal(optimum) = answer(|optimum| optimum.aim = 252.0_f64.next_up()) else { panic!("it holds") };
+        assert_eq!(optimum.aim.to_bits(), 252.0_f64.next_up().to_bits());
     }
 }
