@@ -58,7 +58,7 @@ fn shown(outcome: &Outcome) -> String {
         Outcome::Infeasible(_) => "no plan".to_owned(),
         Outcome::Unbounded(_) => "no end".to_owned(),
         Outcome::Undecided(reason) => format!("undecided: {reason}"),
-        Outcome::Interrupted | Outcome::Forgotten => "no answer".to_owned(),
+        Outcome::Interrupted | Outcome::Forgotten | Outcome::Lost(_) => "no answer".to_owned(),
     }
 }
 

@@ -9,8 +9,9 @@ use super::exit::{Error, Outcome, shown};
 use super::logging::Log;
 use super::once::locked;
 use super::screen::Screen;
+use super::worker::planners;
 use super::{Setting, logging, status, told};
-use crate::keep::{self, KeepError, Manager, Operating, Replanned, replan};
+use crate::keep::{self, KeepError, Manager, Operating, Replanned};
 
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path, asked: bool) -> Result<Outcome, Error> {
     let about = std::fs::metadata(dir).map_err(|error| Error::reading(dir, &error))?;
@@ -30,7 +31,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path, asked:
     tracing::info!("keeping {}", shown(dir));
     let reread = || reread(setting, dir, log.as_ref());
     let operating = Operating { reread: Some(Box::new(reread)), manager };
-    let kept = keep::keep(dir, &settings.keep, replan::factory(&settings.keep), operating, |model, replanned| {
+    let kept = keep::keep(dir, &settings.keep, planners(&settings.keep), operating, |model, replanned| {
         // A look that found all as it was is told too, without a start, so that a reader knows from the beginning where each model
         // stands. What was given up or has vanished is looked at again, and told then.
         if screen.json() && !matches!(replanned, Replanned::Interrupted | Replanned::Vanished) {

@@ -18,6 +18,7 @@ mod show;
 mod status;
 mod told;
 mod verify;
+mod worker;
 
 use std::path::Path;
 use std::process::ExitCode;
@@ -37,6 +38,9 @@ use crate::store::error::reason;
 /// Runs the command line of this process.
 #[must_use]
 pub fn main() -> ExitCode {
+    if let Some(status) = worker::main(std::env::args_os().skip(1)) {
+        return status;
+    }
     // Help and mistakes of the command line are told here, with statuses 0 and 2.
     let Cli { common, command } = Cli::parse();
     let mut screen = Screen::new(common.color, common.json);
@@ -77,10 +81,15 @@ fn run(screen: &mut Screen, common: &Common, command: Command) -> Result<Outcome
 
 /// Lets a write past the limit on file sizes fail, instead of killing the process with half a file on disk.
 fn outlive_file_size_limit() -> std::io::Result<()> {
-    // The handler is the process's, and stays when the runtime that it takes to set one is gone.
+    outlive(&[Signal::XFSZ])
+}
+
+/// Lets nothing come of these signals from now on.
+fn outlive(signals: &[Signal]) -> std::io::Result<()> {
+    // A handler is the process's, and stays when the runtime that it takes to set one is gone.
     let runtime = tokio::runtime::Builder::new_current_thread().enable_all().build()?;
     let _inside = runtime.enter();
-    tokio::signal::unix::signal(SignalKind::from_raw(Signal::XFSZ.as_raw())).map(drop)
+    signals.iter().try_for_each(|signal| tokio::signal::unix::signal(SignalKind::from_raw(signal.as_raw())).map(drop))
 }
 
 /// Where the settings of this run come from.

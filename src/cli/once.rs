@@ -4,8 +4,9 @@ use std::path::{Path, PathBuf};
 
 use super::exit::{Error, Outcome, shown};
 use super::screen::Screen;
+use super::worker::planners;
 use super::{Setting, told};
-use crate::keep::{self, OnceError, replan};
+use crate::keep::{self, OnceError};
 use crate::store::{Folder, LockError, StoreError};
 
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf]) -> Result<Outcome, Error> {
@@ -19,17 +20,16 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
     for path in paths {
         let root = Folder::root_of(path).map_err(|error| Error::failure(error, ""))?;
         let settings = setting.for_folder(&root)?.keep;
-        let done =
-            keep::once(std::slice::from_ref(path), &settings, &replan::factory(&settings), |model, replanned| {
-                count += 1;
-                worst = worst.max(told::outcome(replanned));
-                if screen.json() {
-                    told::object(screen, model, replanned);
-                } else {
-                    told::line(screen, model, replanned);
-                    screen.progress(format_args!("{count} done, planning …"));
-                }
-            });
+        let done = keep::once(std::slice::from_ref(path), &settings, &planners(&settings), |model, replanned| {
+            count += 1;
+            worst = worst.max(told::outcome(replanned));
+            if screen.json() {
+                told::object(screen, model, replanned);
+            } else {
+                told::line(screen, model, replanned);
+                screen.progress(format_args!("{count} done, planning …"));
+            }
+        });
         done.map_err(|error| not_done(path, &error))?;
     }
     if count == 0 {

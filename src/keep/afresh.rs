@@ -60,6 +60,8 @@ pub fn work_out(model: &Model, meaning: Meaning, time_limit: Duration) -> Result
         Outcome::Infeasible(conflict) => Err(no_plan(Trouble::Infeasible(&conflict))),
         Outcome::Unbounded(growth) => Err(no_plan(Trouble::Unbounded(&growth))),
         Outcome::Undecided(why) => Err(Fruitless::Untold(reason(Trouble::Undecided(&why), Some(model)))),
-        Outcome::Interrupted | Outcome::Forgotten => Err(Fruitless::Untold("the solver gave up".to_owned())),
+        Outcome::Interrupted | Outcome::Forgotten | Outcome::Lost(_) => {
+            Err(Fruitless::Untold("the solver gave up".to_owned()))
+        }
     }
 }

@@ -26,6 +26,7 @@ mod signals;
 pub mod status;
 pub mod verify;
 pub mod watch;
+pub mod workers;
 
 pub use manager::Manager;
 pub use once::{OnceError, once};

@@ -1,12 +1,14 @@
 //! What differs between two programs, by key: enough to turn the first into the second.
 
+use serde::{Deserialize, Serialize};
+
 use super::program::{Column, Key, Program, Row, Sense};
 
 /// All that differs between two programs.
 ///
 /// Every list is in byte order of keys. An added or removed column or row brings or takes its entries with it; `entries` lists
 /// only those whose column and row are in both programs.
-#[derive(Clone, Debug, Default, PartialEq)]
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 pub struct Difference {
     /// The new sense of the aim, where it was turned round.
     pub sense: Option<Sense>,
@@ -31,7 +33,7 @@ pub struct Difference {
 }
 
 /// A column that only the second program has.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 pub struct AddedColumn {
     /// What it stands for.
     pub key: Key,

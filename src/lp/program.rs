@@ -4,6 +4,8 @@ use std::cmp::Ordering;
 use std::fmt;
 use std::sync::Arc;
 
+use serde::{Deserialize, Deserializer, Serialize, Serializer};
+
 /// The name of a column or row: the address of what it stands for, such as `activities.floor_tile` or `resources.kiln`.
 ///
 /// A basis, a difference and a plan refer to columns and rows by key, never by position, so they survive reordering.
@@ -45,6 +47,18 @@ impl Key {
     }
 }
 
+impl Serialize for Key {
+    fn serialize<S: Serializer>(&self, serializer: S) -> Result<S::Ok, S::Error> {
+        serializer.serialize_str(&self.0)
+    }
+}
+
+impl<'de> Deserialize<'de> for Key {
+    fn deserialize<D: Deserializer<'de>>(deserializer: D) -> Result<Self, D::Error> {
+        String::deserialize(deserializer).map(|text| Self(text.into()))
+    }
+}
+
 impl fmt::Display for Key {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         f.write_str(&self.0)
@@ -56,11 +70,11 @@ impl fmt::Display for Key {
 pub struct ColumnIndex(pub usize);
 
 /// A row of one program, by position.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
 pub struct RowIndex(pub usize);
 
 /// Whether the aim is to be large or small.
-#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
 pub enum Sense {
     /// The aim is to be as large as possible.
     #[default]
@@ -81,7 +95,7 @@ impl Sense {
 }
 
 /// One column: a level to be found between its bounds.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 pub struct Column {
     /// What it stands for.
     pub key: Key,
@@ -96,7 +110,7 @@ pub struct Column {
 }
 
 /// One row: a sum of columns held between two bounds.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 pub struct Row {
     /// What it stands for.
     pub key: Key,
@@ -109,7 +123,7 @@ pub struct Row {
 /// A linear program: find levels of the columns, within bounds, that keep every row and make the aim largest or smallest.
 ///
 /// Columns and rows are in byte order of their keys and no key stands twice.
-#[derive(Clone, Debug, Default, PartialEq)]
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 pub struct Program {
     /// Whether the aim is to be large or small.
     pub sense: Sense,

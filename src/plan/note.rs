@@ -8,6 +8,8 @@ mod ties;
 mod trouble;
 mod words;
 
+use std::borrow::Cow;
+
 use super::compare::compare;
 use super::release::Release;
 use super::text::NOTE_HEADER;
@@ -101,7 +103,7 @@ pub struct Reckoning {
     /// Pivots in exact arithmetic after that, to the one plan.
     pub exact_pivots: usize,
     /// What was tried and given up.
-    pub detours: Vec<&'static str>,
+    pub detours: Vec<Cow<'static, str>>,
     /// The worst relative breach of any law of optimality.
     pub worst: f64,
 }

@@ -22,7 +22,7 @@ pub enum Position {
 }
 
 /// The positions of a program's columns and rows, in the program's order: as many basic ones as there are rows.
-#[derive(Clone, Debug, Default, PartialEq, Eq)]
+#[derive(Clone, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
 pub struct Basis {
     /// One position per column.
     pub columns: Vec<Position>,
@@ -31,7 +31,7 @@ pub struct Basis {
 }
 
 /// A basis that stands on its own: by key, so that it outlives the program it was found for.
-#[derive(Clone, Debug, Default, PartialEq, Eq)]
+#[derive(Clone, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
 pub struct NamedBasis {
     /// Columns in byte order of keys.
     pub columns: Vec<(Key, Position)>,

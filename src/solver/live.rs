@@ -13,10 +13,10 @@ use highs_sys::{
     Highs_addCols, Highs_addRows, Highs_changeCoeff, Highs_changeColBounds, Highs_changeColCost,
     Highs_changeObjectiveOffset, Highs_changeObjectiveSense, Highs_changeRowBounds, Highs_clearSolver,
     Highs_deleteColsBySet, Highs_deleteRowsBySet, Highs_getBasicVariables, Highs_getBasis, Highs_getBasisSolve,
-    Highs_getBasisTransposeSolve, Highs_getDualRay, Highs_getIntInfoValue, Highs_getModelStatus, Highs_getPrimalRay,
-    Highs_getSolution, Highs_passLp, Highs_run, Highs_setBasis, Highs_setCallback, Highs_startCallback,
-    Highs_zeroAllClocks, HighsCallbackDataIn, HighsCallbackDataOut, HighsInt, MATRIX_FORMAT_COLUMN_WISE,
-    OBJECTIVE_SENSE_MAXIMIZE, OBJECTIVE_SENSE_MINIMIZE,
+    Highs_getBasisTransposeSolve, Highs_getDualRay, Highs_getIis, Highs_getIntInfoValue, Highs_getModelStatus,
+    Highs_getPrimalRay, Highs_getSolution, Highs_passLp, Highs_run, Highs_setBasis, Highs_setCallback,
+    Highs_startCallback, Highs_zeroAllClocks, HighsCallbackDataIn, HighsCallbackDataOut, HighsInt,
+    MATRIX_FORMAT_COLUMN_WISE, OBJECTIVE_SENSE_MAXIMIZE, OBJECTIVE_SENSE_MINIMIZE,
 };
 
 use super::basis::{Basis, Position};
@@ -418,6 +418,29 @@ impl Live {
         // SAFETY: the array has one element per column.
         let code = unsafe { Highs_getPrimalRay(self.instance(), &raw mut has, ray.as_mut_ptr()) };
         (code >= 0 && has != 0).then_some(ray)
+    }
+
+    /// Asks the solver for a conflict with the status of everything in it. On some infeasible programs (klein1, vol1) that crashes it:
+    /// for tests of what a crash costs.
+    pub fn conflict_with_statuses(&mut self) {
+        let _ = self.set("iis_strategy", 6);
+        let (mut some_columns, mut some_rows): (HighsInt, HighsInt) = (0, 0);
+        let [mut columns, mut column_bounds, mut column_status] = std::array::from_fn(|_| vec![0; self.columns]);
+        let [mut rows, mut row_bounds, mut row_status] = std::array::from_fn(|_| vec![0; self.rows]);
+        // SAFETY: every array has one element per column or row, the most that can be in a conflict.
+        unsafe {
+            Highs_getIis(
+                self.instance(),
+                &raw mut some_columns,
+                &raw mut some_rows,
+                columns.as_mut_ptr(),
+                rows.as_mut_ptr(),
+                column_bounds.as_mut_ptr(),
+                row_bounds.as_mut_ptr(),
+                column_status.as_mut_ptr(),
+                row_status.as_mut_ptr(),
+            );
+        }
     }
 
     fn instance(&mut self) -> *mut c_void {

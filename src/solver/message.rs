@@ -2,14 +2,17 @@
 //!
 //! Plain data without pointers, files or clocks, so that the solver can live in another thread or another process.
 
+use std::borrow::Cow;
 use std::time::Duration;
+
+use serde::{Deserialize, Serialize};
 
 use super::basis::{Basis, NamedBasis};
 use super::proof::Proof;
 use crate::lp::{Difference, Program};
 
 /// What the solver is asked.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, Serialize, Deserialize)]
 pub struct Request {
     /// Which model this is about; a live instance is kept for each.
     pub model: ModelKey,
@@ -20,11 +23,11 @@ pub struct Request {
 }
 
 /// Tells the models of one daemon apart.
-#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
 pub struct ModelKey(pub String);
 
 /// The program to solve, whole or as what differs from the one asked last about the same model.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, Serialize, Deserialize)]
 pub enum Task {
     /// A whole program, and one solved earlier to start from where that is remembered.
     Whole(Box<Program>, Option<Box<Last>>),
@@ -33,7 +36,7 @@ pub enum Task {
 }
 
 /// A program solved earlier, and the basis it was solved with.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, Serialize, Deserialize)]
 pub struct Last {
     /// The program.
     pub program: Program,
@@ -44,7 +47,7 @@ pub struct Last {
 }
 
 /// The solver's answer.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, Serialize, Deserialize)]
 pub struct Answer {
     /// What came of it.
     pub outcome: Outcome,
@@ -53,7 +56,7 @@ pub struct Answer {
 }
 
 /// What came of a request.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, Serialize, Deserialize)]
 pub enum Outcome {
     /// An optimal plan, proven.
     Optimal(Box<Optimum>),
@@ -67,12 +70,14 @@ pub enum Outcome {
     Interrupted,
     /// A difference came for a program that is no longer held; ask again with the whole program.
     Forgotten,
+    /// The process that was solving came to its end over it: how, in a few words. Whatever it held is gone with it.
+    Lost(String),
 }
 
 /// An optimal plan. Vectors are in the order of the program's columns or rows.
 ///
 /// Worths are derivatives of the aim in its own sense: what one unit more of a row's bound, or of a column's level, adds to it.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, Serialize, Deserialize)]
 pub struct Optimum {
     /// The aim, with its constant.
     pub aim: f64,
@@ -101,7 +106,7 @@ pub struct Optimum {
 }
 
 /// How far numbers of the program can move, one at a time, before the basis changes.
-#[derive(Clone, Debug, Default, PartialEq)]
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 pub struct Ranges {
     /// Per column: numbers of its worth in the aim between which the levels stay optimal.
     pub aims: Vec<(f64, f64)>,
@@ -110,7 +115,7 @@ pub struct Ranges {
 }
 
 /// Why there is no plan: rows and bounds that contradict each other, with the multipliers that prove it.
-#[derive(Clone, Debug, Default, PartialEq)]
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 pub struct Conflict {
     /// Rules that cannot all be kept.
     pub rules: Vec<Rule>,
@@ -121,7 +126,7 @@ pub struct Conflict {
 }
 
 /// One side of a row or column that takes part in a contradiction.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 pub struct Rule {
     /// The row or column.
     pub key: crate::lp::Key,
@@ -134,7 +139,7 @@ pub struct Rule {
 }
 
 /// Why the aim has no limit: columns that can grow together for ever, with their rates.
-#[derive(Clone, Debug, Default, PartialEq)]
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 pub struct Growth {
     /// Columns and how fast each moves, per unit of the strongest.
     pub rates: Vec<(crate::lp::Key, f64)>,
@@ -143,7 +148,7 @@ pub struct Growth {
 }
 
 /// How an answer was reached.
-#[derive(Clone, Debug, Default, PartialEq)]
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 pub struct Account {
     /// The start taken.
     pub start: Start,
@@ -158,7 +163,7 @@ pub struct Account {
     /// Iterations of the last solve from nothing.
     pub cold_pivots: Option<usize>,
     /// Steps down the ladder: what was tried and given up, as short phrases.
-    pub detours: Vec<&'static str>,
+    pub detours: Vec<Cow<'static, str>>,
     /// Exact pivots to the one plan.
     pub exact_pivots: usize,
     /// Time to a proven answer.
@@ -170,7 +175,7 @@ pub struct Account {
 }
 
 /// Where a solve starts from.
-#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
 pub enum Start {
     /// The last basis is still optimal: no pivot.
     None,
@@ -197,7 +202,7 @@ impl Start {
 }
 
 /// How a solve is getting on.
-#[derive(Clone, Copy, Debug, PartialEq)]
+#[derive(Clone, Copy, Debug, PartialEq, Serialize, Deserialize)]
 pub struct Progress {
     /// Simplex iterations so far.
     pub pivots: usize,

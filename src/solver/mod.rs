@@ -34,4 +34,5 @@ pub mod ties;
 pub mod vertex;
 mod warm;
 pub mod weight;
+pub mod wire;
 pub mod worker;

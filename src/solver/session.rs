@@ -112,7 +112,7 @@ impl Session {
         let mut plan = canonical::of(&mut instance, &program, look, stop);
         if plan.as_ref().is_ok_and(|plan| !plan.exact) && account.start != Start::Cold {
             // What only a tolerance decides depends on the way there: the one from nothing is the same for everybody.
-            account.detours.push("near ties in a model too large to tell them apart exactly");
+            account.detours.push("near ties in a model too large to tell them apart exactly".into());
             if let Reached::Optimal(afresh, look) = cold::solve(&program, limit, stop).end {
                 instance = afresh;
                 plan = canonical::of(&mut instance, &program, *look, stop);
@@ -145,7 +145,7 @@ impl Session {
                         self.anchor = Some(anchor);
                         return Reached::Other(outcome);
                     }
-                    Err(detour) => account.detours.push(detour),
+                    Err(detour) => account.detours.push(detour.into()),
                 }
             }
             anchor.instance = None;
@@ -154,7 +154,7 @@ impl Session {
         account.start = Start::Cold;
         let Cold { end, pivots, detours } = cold::solve(program, limit, stop);
         account.pivots += pivots;
-        account.detours.extend(detours);
+        account.detours.extend(detours.into_iter().map(Into::into));
         if let Reached::Optimal(..) = end {
             self.cold_pivots = Some(pivots);
         }

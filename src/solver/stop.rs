@@ -35,7 +35,7 @@ impl Stop {
     }
 
     /// Tells how many simplex iterations the run under way has made.
-    pub(super) fn count(&self, pivots: usize) {
+    pub(crate) fn count(&self, pivots: usize) {
         self.pivots.store(pivots, Ordering::Relaxed);
     }
 }

@@ -176,7 +176,7 @@ fn settle(
                 if look.is_optimal() {
                     return Ok(Settled::Optimal(Box::new(look)));
                 }
-                account.detours.push("an answer that was not proven");
+                account.detours.push("an answer that was not proven".into());
             }
             Ending::Stopped => return Ok(Settled::Other(Outcome::Interrupted)),
             Ending::OutOfPivots => {
@@ -185,7 +185,7 @@ fn settle(
                     return Err(TOO_LONG);
                 }
                 // Where rows are few a pivot costs little, and either variant may wander where the other goes straight.
-                account.detours.push(TOO_LONG);
+                account.detours.push(TOO_LONG.into());
                 cap += run.cap;
                 instance.set_basis(&look.basis).map_err(|_| "the last basis could not be brought back")?;
             }
@@ -204,7 +204,7 @@ fn settle(
                 }
                 return Err("a growth that was not proven");
             }
-            Ending::Trouble => account.detours.push("numerical trouble"),
+            Ending::Trouble => account.detours.push("numerical trouble".into()),
         }
     }
     Err("neither simplex variant got there")

@@ -11,10 +11,34 @@ use crate::lp::Program;
 /// Memory a live instance takes per entry, column or row, in bytes: measured between 350 and 560 per entry.
 const BYTES_PER_ENTRY: usize = 500;
 
+/// Where a request is answered.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Place {
+    /// In this process, which a crash of the solver ends.
+    Here,
+    /// In a process of its own.
+    Apart,
+}
+
 /// Something that answers requests about programs, one at a time.
 pub trait Solver: Send {
     /// Answers a request; `stop` can end it early.
     fn ask(&mut self, request: Request, stop: &Stop) -> Answer;
+
+    /// Makes ready for the next request, and tells where it will be answered.
+    fn place(&mut self) -> Place {
+        Place::Here
+    }
+}
+
+impl<S: Solver + ?Sized> Solver for Box<S> {
+    fn ask(&mut self, request: Request, stop: &Stop) -> Answer {
+        (**self).ask(request, stop)
+    }
+
+    fn place(&mut self) -> Place {
+        (**self).place()
+    }
 }
 
 /// Solves in the thread that asks.

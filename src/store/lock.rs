@@ -4,6 +4,8 @@ use std::fs::{File, OpenOptions, TryLockError};
 use std::io::{self, Read, Write};
 use std::os::unix::fs::{MetadataExt, OpenOptionsExt};
 use std::path::{Path, PathBuf};
+use std::thread;
+use std::time::{Duration, Instant};
 
 use rustix::fs::OFlags;
 
@@ -17,8 +19,12 @@ const NAME: &str = "lock";
 /// The longest lock file that is read for a message, in bytes.
 const LONGEST: u64 = 512;
 
-/// How often a lock is tried for.
-const PATIENCE: usize = 200;
+/// A daemon that was killed while it started another program leaves a process that has the lock until it is that program: some
+/// milliseconds, more on a busy machine.
+const PATIENCE: Duration = Duration::from_secs(1);
+
+/// How often a lock that is held is tried meanwhile.
+const LOOK_EVERY: Duration = Duration::from_millis(2);
 
 /// The lock on a watched folder. Freed when dropped, and by the system when the process ends.
 #[derive(Debug)]
@@ -49,7 +55,7 @@ pub enum LockError {
 }
 
 impl Lock {
-    /// Takes the lock on a watched folder, without waiting.
+    /// Takes the lock on a watched folder, without waiting for more than [`PATIENCE`].
     ///
     /// # Errors
     /// Another process has it, or the lock file cannot be used.
@@ -109,16 +115,17 @@ impl Lock {
     }
 }
 
-/// Locks a file, unless somebody else has it. Whoever only asks for the holder has it for an instant, which is waited for.
+/// Locks a file, unless somebody else keeps it. Whoever only asks for the holder has it for an instant, which is waited for too.
 fn acquire(file: &File) -> io::Result<bool> {
-    for _ in 0..PATIENCE {
+    let until = Instant::now() + PATIENCE;
+    loop {
         match file.try_lock() {
             Ok(()) => return Ok(true),
-            Err(TryLockError::WouldBlock) => std::thread::yield_now(),
+            Err(TryLockError::WouldBlock) if Instant::now() < until => thread::park_timeout(LOOK_EVERY),
+            Err(TryLockError::WouldBlock) => return Ok(false),
             Err(TryLockError::Error(source)) => return Err(source),
         }
     }
-    Ok(false)
 }
 
 /// Who holds the lock, as that process wrote into it.

@@ -9,6 +9,7 @@ pub mod lock;
 pub mod publish;
 pub mod reading;
 pub mod state;
+pub mod tries;
 
 pub use atomic::{Durability, Written};
 pub use error::{Step, StoreError};
@@ -16,3 +17,4 @@ pub use folder::Folder;
 pub use lock::{Lock, LockError};
 pub use publish::{Finished, Output, Outputs, Published};
 pub use state::{Lost, Record, Records};
+pub use tries::Tries;

@@ -136,7 +136,7 @@ impl Records {
         }
     }
 
-    fn path(&self, model: &Path) -> PathBuf {
+    pub(super) fn path(&self, model: &Path) -> PathBuf {
         let hash = blake3::hash(model.as_os_str().as_bytes());
         self.folder.join(format!("{}.record", &hash.to_hex()[..32]))
     }

@@ -402,12 +402,21 @@ impl Daemon {
         kill_process(self.pid(), signal).unwrap();
     }
 
-    /// The processor time that the daemon has used, in clock ticks.
+    /// The worker processes of the daemon, by the system's list.
+    pub(crate) fn workers(&self) -> Vec<Pid> {
+        let numbers =
+            fs::read_dir("/proc").unwrap().flatten().filter_map(|entry| entry.file_name().to_str()?.parse().ok());
+        let processes = numbers.filter_map(Pid::from_raw);
+        // `ppid`, field 4 of proc_pid_stat(5).
+        let parent = Some(self.pid().as_raw_nonzero().get().to_string());
+        processes.filter(|&process| stat(process).get(1).cloned() == parent).collect()
+    }
+
+    /// The processor time that the daemon and its workers have used, in clock ticks.
     pub(crate) fn ticks(&self) -> u64 {
-        let stat = fs::read_to_string(format!("/proc/{}/stat", self.child.id())).unwrap();
-        let fields: Vec<_> = stat.rsplit(") ").next().unwrap().split(' ').collect();
-        // `utime`, field 14 of proc_pid_stat(5), by the third as the first after the name.
-        fields[11].parse().unwrap()
+        // `utime`, field 14 of proc_pid_stat(5).
+        let ticks = |process| stat(process).get(11).map_or(0, |ticks| ticks.parse::<u64>().unwrap());
+        ticks(self.pid()) + self.workers().into_iter().map(ticks).sum::<u64>()
     }
 
     /// Waits for the end: the status, if it came within `time`.
@@ -442,6 +451,12 @@ impl Drop for Daemon {
         let _ = self.child.kill();
         let _ = self.child.wait();
     }
+}
+
+/// What the system tells of a process, see proc_pid_stat(5): from field 3 on, which follows the name; nothing of one that is gone.
+pub(crate) fn stat(process: Pid) -> Vec<String> {
+    let told = fs::read_to_string(format!("/proc/{}/stat", process.as_raw_nonzero())).unwrap_or_default();
+    told.rsplit_once(") ").map_or_else(Vec::new, |(_, fields)| fields.split(' ').map(str::to_owned).collect())
 }
 
 fn listen(from: impl Read + Send + 'static, to: Sender<Line>, line: impl Fn(String) -> Line + Send + 'static) {

@@ -116,7 +116,7 @@ fn of_many_moves_an_activity_gone_and_a_resource_eased() {
         .collect();
     let edits: Vec<EditTold<'_>> = edits.iter().map(|edit| EditTold { edit, worth: None }).collect();
     let mut reckoning = reckoning(Kind::WithdrawnActivity, Start::Cold, 7, 3, 41);
-    reckoning.detours = vec!["dual simplex past its share of pivots"];
+    reckoning.detours = vec!["dual simplex past its share of pivots".into()];
     let report =
         Report { reckoning: Some(&reckoning), ..report(&model, Some(&before), &edits, Verdict::Planned(&plan)) };
     insta::assert_snapshot!(write(&report));

@@ -8,6 +8,7 @@ mod hold;
 mod memory;
 mod pin;
 mod telling;
+mod tried;
 mod worths;
 
 use std::borrow::Cow;
@@ -22,6 +23,7 @@ use super::pool::{Factory, Job, Planner, Replanned, Stop, What};
 use super::report::Report;
 use super::scan::Stamp;
 use super::settings::Settings;
+use super::workers::{Limits, Workers};
 use crate::edits::{Edit, Kept, Renames, compare, compare_renamed};
 use crate::lp::{Program, build};
 use crate::model::Model;
@@ -31,30 +33,50 @@ use crate::plan::note::{Reckoning, Trouble, Verdict};
 use crate::plan::text::{self, marked};
 use crate::plan::{self, Plan, Standing};
 use crate::solver::desk::Desk;
-use crate::solver::message::{Account, Answer, ModelKey, Optimum, Outcome, Start};
+use crate::solver::message::{Account, Answer, Optimum, Outcome, Start};
 use crate::solver::stop;
-use crate::solver::worker::Worker;
+use crate::solver::worker::{Solver, Worker};
 use crate::store::publish::Finished;
 use crate::store::{Record, StoreError};
 
 /// Memory for live instances where the settings name no limit, in bytes.
 const MEMORY: u64 = 2 << 30;
 
-/// Makes planners that replan for real, all with one memory.
+/// Makes planners that replan for real, all with one memory. They solve in the thread that they replan in, and a crash of the solver is the
+/// end of the process.
 #[must_use]
 pub fn factory(settings: &Settings) -> Factory {
+    let live = usize::try_from(live_share(settings)).unwrap_or(usize::MAX);
+    planners(settings, move || Box::new(Worker::new(live)))
+}
+
+/// The same, with a worker process for each: started as `workers` says, which takes the limits of [`limits`].
+#[must_use]
+pub fn factory_apart(settings: &Settings, workers: Workers) -> Factory {
+    planners(settings, move || Box::new(workers.one_more()))
+}
+
+/// What one of the workers may take that the settings ask for.
+#[must_use]
+pub fn limits(settings: &Settings) -> Limits {
+    Limits::for_live(live_share(settings))
+}
+
+/// Memory for the live instances of one worker, in bytes.
+fn live_share(settings: &Settings) -> u64 {
+    settings.memory_limit.unwrap_or(MEMORY) / u64::try_from(settings.workers).unwrap_or(u64::MAX).max(1)
+}
+
+fn planners(settings: &Settings, solver: impl Fn() -> Box<dyn Solver> + Send + Sync + 'static) -> Factory {
     let memory = Arc::new(Memory::default());
-    let limit = usize::try_from(settings.memory_limit.unwrap_or(MEMORY)).unwrap_or(usize::MAX);
-    let share = limit / settings.workers.max(1);
     let time_limit = settings.time_limit;
-    Arc::new(move || Box::new(Replanner::new(memory.clone(), share, time_limit)))
+    Arc::new(move || Box::new(Replanner::new(memory.clone(), solver(), time_limit)))
 }
 
 /// Replans models, with live solvers of its own.
 struct Replanner {
     memory: Arc<Memory>,
-    desk: Desk<Worker>,
-    time_limit: Duration,
+    desk: Desk<Box<dyn Solver>>,
     /// Tells this planner's solver from those of other workers.
     number: usize,
 }
@@ -114,9 +136,9 @@ struct Told {
 }
 
 impl Replanner {
-    fn new(memory: Arc<Memory>, memory_limit: usize, time_limit: Duration) -> Self {
+    fn new(memory: Arc<Memory>, solver: Box<dyn Solver>, time_limit: Duration) -> Self {
         let number = memory.number();
-        Self { memory, desk: Desk::new(Worker::new(memory_limit), time_limit), time_limit, number }
+        Self { memory, desk: Desk::new(solver, time_limit), number }
     }
 
     fn bring_up_to_date(
@@ -246,12 +268,9 @@ impl Replanner {
         let edits =
             known.as_ref().map(|known| compare_renamed(&known.model, &read.model, &renames)).unwrap_or_default();
         let known = if renames.is_empty() { known } else { known.map(|known| Arc::new(known.renamed(&renames))) };
-        let key = ModelKey(job.path.relative().to_string_lossy().into_owned());
         let solver_stop = stop::Stop::watching(stop.flag());
-        if !renames.is_empty() || !self.memory.solved_last(&job.path, self.number) {
-            self.desk.forget(&key);
-        }
-        let answer = self.desk.solve(&key, &program, || known.as_ref().and_then(|known| known.last()), &solver_stop);
+        let whole = !renames.is_empty() || !self.memory.solved_last(&job.path, self.number);
+        let answer = self.ask(job, (&read.bytes, &program), whole, known.as_deref(), &solver_stop)?;
         self.memory.solves(&job.path, self.number);
         heed(stop)?;
         let Answer { outcome, account } = answer;
@@ -259,7 +278,7 @@ impl Replanner {
         match outcome {
             Outcome::Optimal(optimum) => {
                 let worths =
-                    worths::of_each(known.as_deref(), &read.model, &edits, optimum.aim, self.time_limit, &solver_stop);
+                    worths::of_each(known.as_deref(), &read.model, &edits, optimum.aim, &mut self.desk, &solver_stop);
                 let reckoning = reckoning(Some(&optimum));
                 self.publish(job, read, program, *optimum, Solved { known, on_disk, edits, worths, reckoning, account })
             }
@@ -278,6 +297,9 @@ impl Replanner {
             Outcome::Interrupted => Err(Stopped::Interrupted),
             Outcome::Forgotten => {
                 Err(Stopped::Trouble("the solver forgot the model twice; the last plan stays".to_owned()))
+            }
+            Outcome::Lost(how) => {
+                self.hold(job, Some((&read, &edits)), Trouble::Undecided(&tried::in_vain(&how)), None)
             }
         }
     }

@@ -3,8 +3,6 @@
 //! One edit alone is worth the whole difference. Several share it in the order of the list: the sum is always the whole, and each
 //! part is the truth about a model that somebody might have saved in between.
 
-use std::time::Duration;
-
 use super::memory::Known;
 use crate::edits::{Edit, Kind, apply};
 use crate::lp::build;
@@ -13,7 +11,7 @@ use crate::plan::make::NIL;
 use crate::solver::desk::Desk;
 use crate::solver::message::{ModelKey, Outcome};
 use crate::solver::stop::Stop;
-use crate::solver::worker::Worker;
+use crate::solver::worker::Solver;
 
 /// So many edits are told apart at most; more are told together.
 const TOLD_APART: usize = 12;
@@ -28,7 +26,7 @@ pub(super) fn of_each(
     model: &Model,
     edits: &[Edit],
     aim: f64,
-    limit: Duration,
+    desk: &mut Desk<impl Solver>,
     stop: &Stop,
 ) -> Vec<Option<f64>> {
     let untold = vec![None; edits.len()];
@@ -41,7 +39,7 @@ pub(super) fn of_each(
     let aims: Vec<Option<f64>> = match deciding {
         0 => return untold,
         1 => vec![],
-        _ if small => aims_between(known, model, edits, limit, stop),
+        _ if small => aims_between(known, model, edits, desk, stop),
         _ => return untold,
     };
     let better = |from: f64, to: f64| {
@@ -61,17 +59,35 @@ fn decides(edit: &Edit) -> bool {
 }
 
 /// The aims between one deciding edit and the next; `None` where there is no plan in between.
-fn aims_between(known: &Known, model: &Model, edits: &[Edit], limit: Duration, stop: &Stop) -> Vec<Option<f64>> {
-    let mut desk = Desk::new(Worker::new(usize::MAX), limit);
+fn aims_between(
+    known: &Known,
+    model: &Model,
+    edits: &[Edit],
+    desk: &mut Desk<impl Solver>,
+    stop: &Stop,
+) -> Vec<Option<f64>> {
+    // One session for what is between the edits of whatever model: it starts anew from the last basis of each.
     let key = ModelKey(String::new());
+    desk.forget(&key);
     let mut between = known.model.clone();
+    let mut lost = false;
     let deciding: Vec<&Edit> = edits.iter().filter(|edit| decides(edit)).collect();
     let solved = deciding.iter().take(deciding.len().saturating_sub(1)).map(|edit| {
         apply(&mut between, edit, model);
+        if lost {
+            return None;
+        }
         match desk.solve(&key, &build(&between), || known.last(), stop).outcome {
             Outcome::Optimal(optimum) => Some(optimum.aim),
+            Outcome::Lost(_) => {
+                // What ended one process would end the next one too.
+                lost = true;
+                None
+            }
             _ => None,
         }
     });
-    solved.collect()
+    let aims = solved.collect();
+    desk.forget(&key);
+    aims
 }

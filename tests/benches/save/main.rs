@@ -2,7 +2,8 @@
 //! script that parses and solves afresh. Edits of a capacity alone, and with the title, so that the text must be read whole.
 //!
 //! `cargo bench --bench save` prints the table; every ratio is the median of ratios of two times that were taken one after the other.
-//! `cargo bench --bench save -- 10000` takes that size only, `cargo bench --bench save -- reading` measures reading alone.
+//! `cargo bench --bench save -- 10000` takes that size only, `cargo bench --bench save -- reading` measures reading alone,
+//! `cargo bench --bench save -- apart` what it costs to solve in a process of its own.
 
 #![expect(
     clippy::unwrap_used,
@@ -11,6 +12,7 @@
     reason = "a measurement that saves models as people do, and prints its table or fails"
 )]
 
+mod apart;
 mod others;
 #[path = "../../support/rng.rs"]
 mod rng;
@@ -40,6 +42,13 @@ fn main() {
         let mut criterion = Criterion::default();
         reading(&mut criterion);
         criterion.final_summary();
+        return;
+    }
+    if words.iter().any(|word| word == "apart") {
+        println!("activities | in the thread, in a worker, ratio | the same of the whole replan");
+        for (activities, resources, edits) in SIZES {
+            apart::tell(activities, resources, edits);
+        }
         return;
     }
     println!(
