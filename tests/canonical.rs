@@ -2,7 +2,11 @@
 //!
 //! Then the same models edited at random: warm and cold tell the same, with levels that are free both ways among them.
 
-#![expect(clippy::unwrap_used, reason = "helpers of tests fail the test")]
+#![expect(
+    clippy::unwrap_used,
+    clippy::float_cmp,
+    reason = "helpers of tests fail the test; exact numbers are compared exactly"
+)]
 
 #[path = "support/random.rs"]
 mod random;

@@ -55,7 +55,7 @@ pub enum LockError {
 }
 
 impl Lock {
-    /// Takes the lock on a watched folder, without waiting for more than [`PATIENCE`].
+    /// Takes the lock on a watched folder, without waiting for more than a second.
     ///
     /// # Errors
     /// Another process has it, or the lock file cannot be used.
