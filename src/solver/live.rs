@@ -23,6 +23,7 @@ use super::basis::{Basis, Position};
 use super::batch::{Batch, int};
 use super::findings::{Basic, Ending, Point};
 use super::stop::Stop;
+use super::sum::power_of_two;
 use crate::lp::{Program, Sense};
 
 /// The solver refused a call that is sound by its own documentation.
@@ -466,12 +467,6 @@ unsafe extern "C" fn on_look(
     if let Some(answer) = unsafe { answer.as_mut() } {
         answer.user_interrupt = c_int::from(stop.is_stopped());
     }
-}
-
-/// The power of two next below a size, by which numbers are divided without rounding; 1 where there is none.
-fn power_of_two(size: f64) -> f64 {
-    let power = f64::from_bits(size.to_bits() & f64::INFINITY.to_bits());
-    if power.is_normal() { power } else { 1.0 }
 }
 
 fn accepted(code: HighsInt, what: &'static str) -> Result<(), Refusal> {

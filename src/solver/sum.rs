@@ -38,6 +38,12 @@ impl Sum {
     }
 }
 
+/// The power of two next below a size, by which numbers are divided without rounding; 1 where there is none.
+pub(super) fn power_of_two(size: f64) -> f64 {
+    let power = f64::from_bits(size.to_bits() & f64::INFINITY.to_bits());
+    if power.is_normal() { power } else { 1.0 }
+}
+
 #[cfg(test)]
 #[expect(clippy::float_cmp, reason = "what is tested is that nothing is lost")]
 mod tests {
