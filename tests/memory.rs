@@ -46,7 +46,10 @@ fn edits_leave_nothing_behind() {
     let program = build(&mps::read(&fs::read_to_string(netlib("25fv47")).unwrap()).unwrap().model);
     let mut session = Session::default();
     let mut rng = Rng::new(7);
-    there_and_back(&mut session, &program, &mut rng);
+    // The first parts bring the solver's and the allocator's own stores to the size that they keep.
+    for _ in 0..2 {
+        there_and_back(&mut session, &program, &mut rng);
+    }
     let entries = session.live_entries();
     let before = resident();
     let parts: Vec<usize> = (0..4)
@@ -57,5 +60,5 @@ fn edits_leave_nothing_behind() {
         .collect();
     assert_eq!(session.live_entries(), entries, "the program that is held is the one there was");
     let most = before + PLAY;
-    assert!(parts.iter().all(|&pages| pages <= most), "pages of 4 KiB: {before} after the first part, then {parts:?}");
+    assert!(parts.iter().all(|&pages| pages <= most), "pages of 4 KiB: {before} after the first parts, then {parts:?}");
 }
