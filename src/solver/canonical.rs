@@ -21,6 +21,10 @@ const CLEAR: f64 = 1e-6;
 /// What is nearer to 0, in twice the digits of an `f64`, is 0. What lies between is grey: it decides nothing in floating point.
 const NIL: f64 = 1e-20;
 
+/// The same on programs too large for exact arithmetic: decimals that would come to 0 exactly come to 1e-14 or so as doubles, which says
+/// nothing and would cost a solve from nothing at every edit.
+const NIL_IF_LARGE: f64 = 1e-12;
+
 /// Programs with at most so many rows are settled in exact arithmetic wherever a gain or a slack is not clear; larger ones where one is
 /// grey. Measured on Netlib bases without a pivot: up to 4 ms with so many rows, 3 to 130 ms with more.
 const ALWAYS_EXACT: usize = 250;
@@ -61,7 +65,8 @@ pub fn of(instance: &mut Instance, program: &Program, mut look: Look, stop: &Sto
     }
     let face = Face::of(program, &look);
     let may_tie = face.may_be_more_than_a_point();
-    let grey = |margin: &f64| (NIL..=CLEAR).contains(margin);
+    let nil = if program.rows.len() > MOST_EXACT { NIL_IF_LARGE } else { NIL };
+    let grey = |margin: &f64| (nil..=CLEAR).contains(margin);
     let decided = program.rows.len() > ALWAYS_EXACT
         && !sharp.margins.iter().any(grey)
         && (!may_tie || face.gains(instance, &weights)?.into_iter().all(|gain| gain > CLEAR));
