@@ -135,7 +135,7 @@ fn an_activity_withdrawn_with_its_promise_leaves_a_plan() {
     let term = Term::Activity(Name::new("slate").unwrap());
     let bound = Bound::Between(5.0.into(), f64::INFINITY.into());
     model.activities.insert(Name::new("slate").unwrap(), roof);
-    let promise = Limit { label: None, terms: [(term, 1.0.into())].into(), per: None, bound };
+    let promise = Limit { terms: [(term, 1.0.into())].into(), bound, ..Limit::default() };
     model.limits.insert(Name::new("slate_promised").unwrap(), promise);
 
     let mut session = Session::default();

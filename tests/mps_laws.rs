@@ -4,7 +4,7 @@
 use std::collections::{BTreeMap, BTreeSet};
 
 use millreeve::lp::mps::{read, write};
-use millreeve::lp::{Program, Sense, build};
+use millreeve::lp::{Program, Sense, build, keys};
 use millreeve::model::{Activity, Aim, Bound, Horizon, Limit, Model, Name, Resource, Term, Value};
 use proptest::prelude::*;
 use proptest::sample::{Index, select};
@@ -55,6 +55,7 @@ fn resource() -> impl Strategy<Value = Resource> {
         capacity: Value::Every(capacity),
         at_least: Value::Every(at_least),
         cost: Value::Every(cost),
+        ..Resource::default()
     })
 }
 
@@ -72,6 +73,7 @@ fn activity() -> impl Strategy<Value = Activity> {
             at_most: Value::Every(at_most),
             tags: tags.into_iter().map(ours).collect(),
             prospect,
+            ..Activity::default()
         },
     )
 }
@@ -95,6 +97,7 @@ fn limit() -> impl Strategy<Value = Limit> {
         terms,
         per,
         bound,
+        ..Limit::default()
     })
 }
 
@@ -105,6 +108,7 @@ fn model() -> impl Strategy<Value = Model> {
         currency: None,
         aim: if maximise { Aim::Maximise } else { Aim::Minimise },
         constant,
+        materials: [].into(),
         horizon: Horizon::single(),
         resources,
         activities,
@@ -177,7 +181,7 @@ proptest! {
             .activities
             .keys()
             .map(|name| {
-                let key = build::activity_key(name, &back.horizon, back.horizon.periods().next().unwrap());
+                let key = keys::activity_key(name, &back.horizon, back.horizon.periods().next().unwrap());
                 let spelt = if label(name).contains(' ') { name.to_string() } else { label(name) };
                 (spelt, again.column(&key).unwrap().0)
             })

@@ -325,7 +325,7 @@ fn capacity(model: &mut Model, resource: &str, capacity: f64) {
 fn limit(model: &mut Model, limit: &str, terms: &[(&str, f64)], least: f64, most: f64) {
     let terms = terms.iter().map(|&(activity, rate)| (Term::Activity(name(activity)), rate.into())).collect();
     let bound = Bound::Between(least.into(), most.into());
-    model.limits.insert(name(limit), Limit { label: None, terms, per: None, bound });
+    model.limits.insert(name(limit), Limit { terms, bound, ..Limit::default() });
 }
 
 #[test]

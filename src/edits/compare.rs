@@ -74,6 +74,7 @@ impl Concerned<'_> {
                 Term::Activity(one) => one == *name,
                 Term::Tag(tag) => activity.tags.contains(tag),
                 Term::All => true,
+                Term::Material(..) | Term::Surge(..) => false,
             };
             asked && self.old.activities.contains_key(*name) && self.new.activities.contains_key(*name)
         });
@@ -253,7 +254,7 @@ impl Edits {
         let terms: BTreeSet<&Term> = old.keys().chain(new.keys()).collect();
         for term in terms {
             let subject = Subject::Limit(limit.clone(), concerned.by(term));
-            let address = format!("{address}.{}", term_shown(term));
+            let address = format!("{address}.{term}");
             self.push(address, &subject, Kind::Recipe, old.get(term).map(shown), new.get(term).map(shown));
         }
     }
@@ -326,14 +327,6 @@ fn shown(value: &Value) -> String {
     match value.numbers() {
         [number] => number.to_string(),
         numbers => format!("{numbers:?}"),
-    }
-}
-
-fn term_shown(term: &Term) -> String {
-    match term {
-        Term::Activity(name) => name.to_string(),
-        Term::Tag(tag) => format!("tag:{tag}"),
-        Term::All => "activities.*".to_owned(),
     }
 }
 

@@ -8,13 +8,11 @@
 
 use std::collections::{BTreeMap, HashMap};
 
+use super::keys::{activity_key, limit_key, resource_key};
 use super::products;
-use super::program::{Column, Key, Program, Row, RowIndex, Sense};
+use super::program::{Column, Program, Row, RowIndex, Sense};
 use crate::model::name::Name;
-use crate::model::{Activity, Aim, Bound, Horizon, Limit, Model, Period, Term, Value};
-
-/// What the key of an activity's level begins with.
-const ACTIVITIES: &str = "activities";
+use crate::model::{Activity, Aim, Bound, Limit, Model, Period, Term, Value};
 
 /// The program behind `model`.
 #[must_use]
@@ -63,49 +61,6 @@ pub fn build(model: &Model) -> Program {
         columns,
         rows,
     }
-}
-
-/// The key of an activity's level in a period.
-#[must_use]
-pub fn activity_key(name: &Name, horizon: &Horizon, period: Period) -> Key {
-    key(ACTIVITIES, name, None, horizon.label(period))
-}
-
-/// Whether `key` is the [key of an activity's level](activity_key) in a period, without making that.
-#[must_use]
-pub fn is_activity_key(key: &Key, name: &Name, horizon: &Horizon, period: Period) -> bool {
-    let rest = key.as_str().strip_prefix(ACTIVITIES).and_then(|rest| rest.strip_prefix('.'));
-    let rest = rest.and_then(|rest| rest.strip_prefix(name.as_str()));
-    match horizon.label(period) {
-        None => rest == Some(""),
-        Some(label) => rest.and_then(|rest| rest.strip_prefix('.')) == Some(label),
-    }
-}
-
-/// The key of a resource's row in a period.
-#[must_use]
-pub fn resource_key(name: &Name, horizon: &Horizon, period: Period) -> Key {
-    key("resources", name, None, horizon.label(period))
-}
-
-/// The key of a limit's row in a period; `side` tells the two rows of a limit with `per` apart.
-#[must_use]
-pub fn limit_key(name: &Name, side: Option<&str>, horizon: &Horizon, period: Period) -> Key {
-    key("limits", name, side, horizon.label(period))
-}
-
-fn key(table: &str, name: &Name, side: Option<&str>, period: Option<&str>) -> Key {
-    let longer = [side, period].into_iter().flatten();
-    let length = table.len() + 1 + name.as_str().len() + longer.clone().map(|part| 1 + part.len()).sum::<usize>();
-    let mut text = String::with_capacity(length);
-    text.push_str(table);
-    text.push('.');
-    text.push_str(name.as_str());
-    for part in longer {
-        text.push('.');
-        text.push_str(part);
-    }
-    Key::new(&text)
 }
 
 /// One row of a limit: the bounds of the row, and what `per` is multiplied by in it.
@@ -226,6 +181,7 @@ impl<'m> Entries<'m> {
                 Term::Activity(name) => self.activities.entry((name, period)).or_default(),
                 Term::Tag(tag) => self.tags.entry((tag, period)).or_default(),
                 Term::All => self.all.entry(period).or_default(),
+                Term::Material(..) | Term::Surge(..) => continue,
             };
             list.push(Part { row, coefficient: coefficient.at(period), factor });
         }

@@ -6,6 +6,7 @@ pub mod apply;
 pub mod build;
 pub(crate) mod decimal;
 pub mod difference;
+pub mod keys;
 pub mod mps;
 mod products;
 pub mod program;

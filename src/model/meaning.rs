@@ -88,14 +88,14 @@ impl Digest {
     }
 
     fn resource(&mut self, resource: &Resource) {
-        let Resource { label: _, unit: _, capacity, at_least, cost } = resource;
+        let Resource { label: _, unit: _, capacity, at_least, cost, surge: _ } = resource;
         self.value(capacity);
         self.value(at_least);
         self.value(cost);
     }
 
     fn activity(&mut self, activity: &Activity) {
-        let Activity { label: _, unit: _, price, cost, uses, at_least, at_most, tags, prospect } = activity;
+        let Activity { label: _, unit: _, price, cost, uses, at_least, at_most, tags, prospect, .. } = activity;
         for value in [price, cost, at_least, at_most] {
             self.value(value);
         }
@@ -108,7 +108,7 @@ impl Digest {
     }
 
     fn limit(&mut self, limit: &Limit) {
-        let Limit { label: _, terms, per, bound } = limit;
+        let Limit { label: _, terms, per, bound, over: _ } = limit;
         self.map(terms, Self::term, Self::value);
         self.count(usize::from(per.is_some()));
         if let Some(per) = per {
@@ -132,6 +132,8 @@ impl Digest {
             Term::Activity(name) => ("activity", Some(name)),
             Term::Tag(name) => ("tag", Some(name)),
             Term::All => ("all", None),
+            Term::Material(name, _) => ("material", Some(name)),
+            Term::Surge(name, _) => ("surge", Some(name)),
         };
         self.text(kind);
         self.text(name.map_or("", Name::as_str));

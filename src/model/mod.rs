@@ -13,5 +13,8 @@ pub mod write;
 
 pub use fault::{Fault, Faults};
 pub use name::Name;
-pub use types::{Activity, Aim, Bound, Limit, Model, Resource, Term};
+pub use types::{
+    Activity, Aim, Bound, Closing, Discard, Flow, Late, Limit, Material, Model, Over, Purchase, Resource, Sale, Stock,
+    Surge, Term,
+};
 pub use value::{Horizon, Period, Value};

@@ -3,7 +3,13 @@
 //! A [`Model`] is what reading yields when it found no fault: every name it refers to is there, every number is finite
 //! where it must be. Everything is kept in byte order of names, so nothing that follows can depend on the order of declaration.
 
+mod limit;
+mod material;
+
 use std::collections::{BTreeMap, BTreeSet};
+
+pub use limit::{Bound, Flow, Limit, Over, Term};
+pub use material::{Closing, Discard, Late, Material, Purchase, Sale, Stock};
 
 use super::name::Name;
 use super::value::{Horizon, Value};
@@ -25,6 +31,8 @@ pub struct Model {
     pub resources: BTreeMap<Name, Resource>,
     /// What can be done, at a level to be planned.
     pub activities: BTreeMap<Name, Activity>,
+    /// What is stocked, bought, sold, or made by one activity and drawn by another.
+    pub materials: BTreeMap<Name, Material>,
     /// Any other linear rule.
     pub limits: BTreeMap<Name, Limit>,
 }
@@ -63,6 +71,17 @@ pub struct Resource {
     pub at_least: Value,
     /// Cost of one unit used, in currency.
     pub cost: Value,
+    /// Extra capacity, dearer by tier: each adds to the capacity up to its own width.
+    pub surge: Vec<Surge>,
+}
+
+/// One tier of extra capacity.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Surge {
+    /// How much it adds at most, in the unit of the resource.
+    pub at_most: Value,
+    /// Cost of one unit of it, in currency, on top of what a unit used costs.
+    pub cost: Value,
 }
 
 impl Default for Resource {
@@ -73,6 +92,7 @@ impl Default for Resource {
             capacity: Value::Every(f64::INFINITY),
             at_least: Value::Every(f64::NEG_INFINITY),
             cost: Value::Every(0.0),
+            surge: Vec::new(),
         }
     }
 }
@@ -90,10 +110,18 @@ pub struct Activity {
     pub cost: Value,
     /// Resource used per unit of level.
     pub uses: BTreeMap<Name, Value>,
+    /// Material taken per unit of level, in the period of the level.
+    pub draws: BTreeMap<Name, Value>,
+    /// Material made per unit of level; it is there `lead` periods later.
+    pub makes: BTreeMap<Name, Value>,
+    /// Periods until what it makes is there.
+    pub lead: usize,
     /// The least level; 0 unless the model says otherwise, minus infinity where it is free.
     pub at_least: Value,
     /// The highest level; infinite where there is no limit.
     pub at_most: Value,
+    /// How far the level may move, up or down, from the period before; infinite where there is no limit. The first period has none before it.
+    pub change_at_most: Value,
     /// Groups it belongs to, for limits and addresses.
     pub tags: BTreeSet<Name>,
     /// Priced out at every plan, never made.
@@ -108,45 +136,14 @@ impl Default for Activity {
             price: Value::Every(0.0),
             cost: Value::Every(0.0),
             uses: BTreeMap::new(),
+            draws: BTreeMap::new(),
+            makes: BTreeMap::new(),
+            lead: 0,
             at_least: Value::Every(0.0),
             at_most: Value::Every(f64::INFINITY),
+            change_at_most: Value::Every(f64::INFINITY),
             tags: BTreeSet::new(),
             prospect: false,
         }
     }
-}
-
-/// A linear rule over levels: `at_least · per ≤ Σ terms ≤ at_most · per`, or `Σ terms = equals · per`.
-///
-/// Without `per` the bounds stand alone.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Limit {
-    /// Shown beside the name; decides nothing.
-    pub label: Option<String>,
-    /// What is summed: coefficient per unit of level.
-    pub terms: BTreeMap<Term, Value>,
-    /// What the bounds are multiplied by; `None` where they stand alone.
-    pub per: Option<BTreeMap<Term, Value>>,
-    /// The bounds.
-    pub bound: Bound,
-}
-
-/// What bounds a limit.
-#[derive(Clone, Debug, PartialEq)]
-pub enum Bound {
-    /// From the first to the second; one of the two may be infinite.
-    Between(Value, Value),
-    /// Exactly so much.
-    Equals(Value),
-}
-
-/// What a limit sums over.
-#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
-pub enum Term {
-    /// The level of one activity.
-    Activity(Name),
-    /// The levels of all activities with a tag.
-    Tag(Name),
-    /// The levels of all activities (`activities.*`).
-    All,
 }

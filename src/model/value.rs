@@ -1,13 +1,29 @@
 //! Values that may differ by period, and the periods they differ by.
 
+use super::name::Name;
+
 /// One period of the horizon, by position.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
 pub struct Period(usize);
 
+impl Period {
+    /// Its position in the horizon, from 0.
+    #[must_use]
+    pub fn position(self) -> usize {
+        self.0
+    }
+
+    /// The period so many periods before; `None` before the first.
+    #[must_use]
+    pub fn before(self, periods: usize) -> Option<Self> {
+        self.0.checked_sub(periods).map(Self)
+    }
+}
+
 /// The periods a model plans, in order. A model that names none plans a single, nameless one.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
 pub struct Horizon {
-    labels: Vec<String>,
+    labels: Vec<Name>,
 }
 
 impl Horizon {
@@ -17,15 +33,39 @@ impl Horizon {
         Self::default()
     }
 
+    /// The horizon of these periods, in order; the single nameless one where there are none. Reading sees to it that no two are called the same.
+    #[must_use]
+    pub fn of(labels: Vec<Name>) -> Self {
+        Self { labels }
+    }
+
+    /// Whether the periods have names.
+    #[must_use]
+    pub fn is_named(&self) -> bool {
+        !self.labels.is_empty()
+    }
+
+    /// How many periods there are: at least one.
+    #[must_use]
+    pub fn count(&self) -> usize {
+        self.labels.len().max(1)
+    }
+
+    /// The period called `label`.
+    #[must_use]
+    pub fn period(&self, label: &str) -> Option<Period> {
+        self.labels.iter().position(|name| name.as_str() == label).map(Period)
+    }
+
     /// The periods, first to last.
     pub fn periods(&self) -> impl Iterator<Item = Period> + use<> {
-        (0..self.labels.len().max(1)).map(Period)
+        (0..self.count()).map(Period)
     }
 
     /// What people call a period; `None` where the horizon is a single nameless one.
     #[must_use]
     pub fn label(&self, period: Period) -> Option<&str> {
-        self.labels.get(period.0).map(String::as_str)
+        self.labels.get(period.0).map(Name::as_str)
     }
 }
 

@@ -43,7 +43,7 @@ fn document(text: &mut String, model: &Model) -> fmt::Result {
 }
 
 fn resource_keys(resource: &Resource) -> Keys {
-    let Resource { label, unit, capacity, at_least, cost } = resource;
+    let Resource { label, unit, capacity, at_least, cost, surge: _ } = resource;
     let mut keys = Keys::default();
     keys.text("label", label.as_deref());
     keys.text("unit", unit.as_deref());
@@ -54,7 +54,7 @@ fn resource_keys(resource: &Resource) -> Keys {
 }
 
 fn activity_keys(activity: &Activity) -> Keys {
-    let Activity { label, unit, price, cost, uses, at_least, at_most, tags, prospect } = activity;
+    let Activity { label, unit, price, cost, uses, at_least, at_most, tags, prospect, .. } = activity;
     let mut keys = Keys::default();
     keys.text("label", label.as_deref());
     keys.text("unit", unit.as_deref());
@@ -76,7 +76,7 @@ fn activity_keys(activity: &Activity) -> Keys {
 }
 
 fn limit_keys(limit: &Limit) -> Keys {
-    let Limit { label, terms, per, bound } = limit;
+    let Limit { label, terms, per, bound, over: _ } = limit;
     let mut keys = Keys::default();
     keys.text("label", label.as_deref());
     keys.add("terms", Inline(terms));
@@ -187,8 +187,7 @@ impl Word for Term {
     fn word(&self) -> std::borrow::Cow<'_, str> {
         match self {
             Self::Activity(name) => name.as_str().into(),
-            Self::Tag(tag) => format!("tag:{tag}").into(),
-            Self::All => "activities.*".into(),
+            _ => self.to_string().into(),
         }
     }
 }

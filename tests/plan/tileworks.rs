@@ -38,10 +38,10 @@ pub(crate) fn model() -> Model {
     let slab = activity(34.0, 2.0, &[("kiln", 0.045), ("press", 0.02)]);
     let glazed = [name("glazed")];
     let share = Limit {
-        label: None,
         terms: [(Term::Tag(name("glazed")), 1.0.into())].into(),
         per: Some([(Term::All, 1.0.into())].into()),
         bound: Bound::Between(f64::NEG_INFINITY.into(), 0.6.into()),
+        ..Limit::default()
     };
     Model {
         title: Some("Tileworks, next fortnight".to_owned()),
@@ -49,6 +49,7 @@ pub(crate) fn model() -> Model {
         aim: Aim::Maximise,
         constant: 0.0,
         horizon: Horizon::single(),
+        materials: [].into(),
         resources: [
             (name("dryer"), resource("h", 90.0)),
             (name("kiln"), Resource { label: Some("Tunnel kiln".to_owned()), ..resource("h", 120.0) }),

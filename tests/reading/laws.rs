@@ -48,8 +48,9 @@ fn bounds(low: f64) -> impl Strategy<Value = (Value, Value)> {
 }
 
 fn resource() -> impl Strategy<Value = Resource> {
-    (text(), text(), bounds(f64::NEG_INFINITY), value())
-        .prop_map(|(label, unit, (at_least, capacity), cost)| Resource { label, unit, capacity, at_least, cost })
+    (text(), text(), bounds(f64::NEG_INFINITY), value()).prop_map(|(label, unit, (at_least, capacity), cost)| {
+        Resource { label, unit, capacity, at_least, cost, ..Resource::default() }
+    })
 }
 
 fn activity(resources: Vec<Name>, minimise: bool) -> impl Strategy<Value = Activity> {
@@ -73,6 +74,7 @@ fn activity(resources: Vec<Name>, minimise: bool) -> impl Strategy<Value = Activ
             at_most: if prospect { Value::Every(f64::INFINITY) } else { at_most },
             tags,
             prospect,
+            ..Activity::default()
         },
     )
 }
@@ -96,6 +98,7 @@ fn limit(terms: Vec<Term>) -> impl Strategy<Value = Limit> {
         terms,
         per,
         bound,
+        ..Limit::default()
     })
 }
 

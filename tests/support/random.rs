@@ -142,9 +142,9 @@ impl Draw<'_> {
         if self.once_in(4) {
             let share = |draw: &mut Self| if draw.grain == Grain::Fine { draw.rng.share() } else { 0.5 };
             let per = Some(self.terms(model));
-            return Limit { label: None, terms, per, bound: Bound::Between((-INF).into(), share(self).into()) };
+            return Limit { terms, per, bound: Bound::Between((-INF).into(), share(self).into()), ..Limit::default() };
         }
-        Limit { label: None, terms, per: None, bound: self.bound(model.aim) }
+        Limit { terms, bound: self.bound(model.aim), ..Limit::default() }
     }
 
     pub(crate) fn bound(&mut self, aim: Aim) -> Bound {

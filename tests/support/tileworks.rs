@@ -31,7 +31,7 @@ fn activity(price: f64, kiln: f64, press: f64, at_most: f64) -> Activity {
 
 fn limit(terms: &[(&str, f64)], least: f64, most: f64) -> Limit {
     let terms = terms.iter().map(|&(activity, rate)| (Term::Activity(name(activity)), rate.into())).collect();
-    Limit { label: None, terms, per: None, bound: Bound::Between(least.into(), most.into()) }
+    Limit { terms, bound: Bound::Between(least.into(), most.into()), ..Limit::default() }
 }
 
 /// Its plan: floor 60 and wall 40 use up the kiln (100 h) and leave 20 h of the press (100 h); trim stands at its most of 10, which

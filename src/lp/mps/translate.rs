@@ -34,9 +34,10 @@ pub(super) fn model(draft: &Draft<'_>, layout: Layout, warnings: &mut Warnings) 
     for ((row, bound), terms) in draft.rows.iter().zip(bounds).zip(terms) {
         let Some(bound) = bound else { continue };
         let (name, label) = name(row.name, layout);
-        limits.insert(name, Limit { label, terms, per: None, bound });
+        limits.insert(name, Limit { label, terms, bound, ..Limit::default() });
     }
     Ok(Model {
+        materials: BTreeMap::new(),
         title: draft.title.clone(),
         currency: None,
         aim,

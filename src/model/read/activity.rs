@@ -33,6 +33,7 @@ pub(super) fn read(fields: &mut Fields<'_, '_>, aim: Aim, resources: &Known<'_, 
         at_most: at_most.map_or(default.at_most, |given| given.value),
         tags: fields.names("tags").into_iter().collect(),
         prospect,
+        ..default
     }
 }
 

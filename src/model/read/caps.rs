@@ -47,7 +47,7 @@ fn span(root: &Table<'_>, section: &str) -> Span {
 /// The coefficients of a model, where so many activities carry each tag.
 pub(super) fn coefficients(model: &Model, tags: &Tags) -> usize {
     let wide = |term: &Term| match term {
-        Term::Activity(_) => 1,
+        Term::Activity(_) | Term::Material(..) | Term::Surge(..) => 1,
         Term::Tag(tag) => tags.get(tag).copied().unwrap_or(0),
         Term::All => model.activities.len(),
     };

@@ -24,6 +24,7 @@ pub(super) fn read(fields: &mut Fields<'_, '_>, activities: &Known<'_, '_, Activ
         terms: sum(fields, "terms", activities, tags).unwrap_or_else(|| missing(fields)),
         per: sum(fields, "per", activities, tags),
         bound,
+        ..Limit::default()
     }
 }
 

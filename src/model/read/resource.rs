@@ -19,5 +19,6 @@ pub(super) fn read(fields: &mut Fields<'_, '_>) -> Resource {
         capacity: capacity.map_or(default.capacity, |given| given.value),
         at_least: at_least.map_or(default.at_least, |given| given.value),
         cost: fields.value("cost", Role::Amount).map_or(default.cost, |given| given.value),
+        surge: default.surge,
     }
 }

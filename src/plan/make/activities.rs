@@ -2,7 +2,7 @@
 
 use super::super::number::{rounded, rounded_to};
 use super::{MakeError, Maker, NIL, PlannedActivity, State, finite, range, rate, same, settled};
-use crate::lp::{Column, ColumnIndex, build};
+use crate::lp::{Column, ColumnIndex, keys};
 use crate::model::{Activity, Aim, Name, Period};
 
 impl Maker<'_> {
@@ -57,11 +57,11 @@ impl Maker<'_> {
         let mut columns = Vec::with_capacity(1);
         for period in self.model.horizon.periods() {
             let guessed = self.program.columns.get(position);
-            if guessed.is_some_and(|column| build::is_activity_key(&column.key, name, &self.model.horizon, period)) {
+            if guessed.is_some_and(|column| keys::is_activity_key(&column.key, name, &self.model.horizon, period)) {
                 columns.push((period, ColumnIndex(position)));
                 continue;
             }
-            let key = build::activity_key(name, &self.model.horizon, period);
+            let key = keys::activity_key(name, &self.model.horizon, period);
             columns.push((period, self.program.column(&key).ok_or(MakeError::Missing(key))?));
         }
         Ok(columns)

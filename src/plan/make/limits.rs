@@ -5,7 +5,7 @@ use std::collections::BTreeMap;
 use super::super::number::rounded_to;
 use super::resources::left_up_to;
 use super::{MakeError, Maker, NIL, PlannedActivity, PlannedLimit, Rates, Side, finite, rate, settled};
-use crate::lp::{RowIndex, build};
+use crate::lp::{RowIndex, build, keys};
 use crate::model::{Bound, Limit, Name, Period, Term, Value};
 
 /// What a limit comes to in one period.
@@ -52,7 +52,7 @@ impl Maker<'_> {
 
     /// A limit whose bounds stand alone.
     fn sum(&self, name: &Name, limit: &Limit, period: Period) -> Result<Told, MakeError> {
-        let index = self.row(build::limit_key(name, None, &self.model.horizon, period))?;
+        let index = self.row(keys::limit_key(name, None, &self.model.horizon, period))?;
         let row = &self.program.rows[index.0];
         let sum = finite(settled(self.optimum.sums[index.0], row.lower, row.upper), "the value", name.as_str())?;
         let side = Side::of(sum, row.lower, row.upper);
@@ -106,7 +106,7 @@ impl Maker<'_> {
     fn rates_of_ratio(&self, name: &Name, limit: &Limit, scale: f64, period: Period) -> Result<Rates, MakeError> {
         let mut worth = 0.0_f64;
         for side in build::sides(limit, period) {
-            let RowIndex(index) = self.row(build::limit_key(name, side.word, &self.model.horizon, period))?;
+            let RowIndex(index) = self.row(keys::limit_key(name, side.word, &self.model.horizon, period))?;
             let binds = self.optimum.sums[index].abs() <= NIL * scale.max(1.0);
             let own = rate(self.better(self.optimum.worths[index]), "the worth", name)?;
             if binds && own.abs() > worth.abs() {
@@ -133,6 +133,7 @@ impl Maker<'_> {
                     .map(|(_, planned)| level(planned))
                     .sum(),
                 Term::All => activities.iter().map(level).sum(),
+                Term::Material(..) | Term::Surge(..) => 0.0,
             }
         };
         terms.iter().map(|(term, coefficient)| coefficient.at(period) * sum_of(term)).sum()

@@ -4,7 +4,7 @@
 
 use super::super::number::{rounded, rounded_to};
 use super::{MakeError, Maker, PlannedResource, Rates, Side, finite, range, rate, settled};
-use crate::lp::{RowIndex, build};
+use crate::lp::{RowIndex, keys};
 use crate::model::{Name, Resource};
 
 impl Maker<'_> {
@@ -15,7 +15,7 @@ impl Maker<'_> {
     fn resource(&self, name: &Name, resource: &Resource) -> Result<PlannedResource, MakeError> {
         let (mut used, mut spare, mut rates) = (Vec::new(), Vec::new(), None);
         for period in self.model.horizon.periods() {
-            let index = self.row(build::resource_key(name, &self.model.horizon, period))?;
+            let index = self.row(keys::resource_key(name, &self.model.horizon, period))?;
             let capacity = resource.capacity.at(period);
             let sum = finite(
                 settled(self.optimum.sums[index.0], resource.at_least.at(period), capacity),

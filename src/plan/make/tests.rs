@@ -19,10 +19,9 @@ fn activity(price: f64, uses: &[(&str, f64)]) -> Activity {
 
 fn bounded(term: &str, least: f64, most: f64) -> Limit {
     Limit {
-        label: None,
         terms: [(Term::Activity(name(term)), 1.0.into())].into(),
-        per: None,
         bound: Bound::Between(least.into(), most.into()),
+        ..Limit::default()
     }
 }
 
@@ -52,6 +51,7 @@ fn empty() -> Model {
         resources: [].into(),
         activities: [].into(),
         limits: [].into(),
+        materials: [].into(),
     }
 }
 

@@ -148,6 +148,7 @@ pub(super) fn total(terms: &BTreeMap<Term, Value>, name: &Name, activity: &Activ
         Term::Activity(other) => other == name,
         Term::Tag(tag) => activity.tags.contains(tag),
         Term::All => true,
+        Term::Material(..) | Term::Surge(..) => false,
     };
     terms.iter().filter(|(term, _)| counts(term)).map(|(_, value)| value.at(period)).sum()
 }
