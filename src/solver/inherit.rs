@@ -26,7 +26,8 @@ pub(super) fn vertex(
     stays.then(|| carried(from, vertex, to, difference))
 }
 
-fn carried(from: &Program, vertex: &Vertex, to: &Program, difference: &Difference) -> Vertex {
+/// The vertex of `from` as numbers for `to`: what is new in it is at 0.
+pub(super) fn carried(from: &Program, vertex: &Vertex, to: &Program, difference: &Difference) -> Vertex {
     let same_columns = difference.added_columns.is_empty() && difference.removed_columns.is_empty();
     let same_rows = difference.added_rows.is_empty() && difference.removed_rows.is_empty();
     let moved =

@@ -24,7 +24,7 @@ pub(super) fn let_go(
         instance.set_basis(&basis)?;
         look = Look::at(instance, way)?;
     }
-    step(instance, way, program)
+    step(instance, way, &look.vertex, program)
 }
 
 /// The basis after one more member is out of the way; `None` when nothing is left, or nothing can be done.

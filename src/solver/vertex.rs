@@ -26,25 +26,44 @@ pub struct Vertex {
 }
 
 impl Vertex {
-    /// The vertex of `basis`, which is the basis that `instance` holds.
+    /// The vertex of `basis`, which is the basis that `instance` holds; refined from the solver's own point, where it has one.
     ///
     /// # Errors
     /// When the basis cannot be factorised.
     pub fn of(instance: &mut Instance, program: &Program, basis: &Basis) -> Result<Self, Refusal> {
-        let (levels, worths) = starting_point(instance, program, basis);
+        let guess = solvers_point(instance);
+        Self::near(instance, program, basis, guess)
+    }
+
+    /// As [`of`](Self::of), refined from a `guess`: the nearer it is, the fewer steps that takes.
+    ///
+    /// # Errors
+    /// When the basis cannot be factorised.
+    pub fn near(instance: &mut Instance, program: &Program, basis: &Basis, guess: Self) -> Result<Self, Refusal> {
+        let mut vertex = guess.put_on_bounds(program, basis);
         if program.rows.is_empty() {
-            return Ok(Self { levels, worths });
+            return Ok(vertex);
         }
         if program.columns.is_empty() {
             // All rows stand at 0, and there is no factorisation to be had.
-            return Ok(Self { levels, worths: vec![0.0; program.rows.len()] });
+            vertex.worths.fill(0.0);
+            return Ok(vertex);
         }
         instance.factorise()?;
         let basics = instance.basics()?;
-        let mut vertex = Self { levels, worths };
         vertex.refine_levels(instance, program, basis, &basics)?;
         vertex.refine_worths(instance, program, &basics)?;
         Ok(vertex)
+    }
+
+    /// What is out of the basis stands exactly at its bound.
+    fn put_on_bounds(mut self, program: &Program, basis: &Basis) -> Self {
+        for ((level, column), &position) in self.levels.iter_mut().zip(&program.columns).zip(&basis.columns) {
+            if let Some(bound) = bound_at(position, column.lower, column.upper) {
+                *level = bound;
+            }
+        }
+        self
     }
 
     fn refine_levels(
@@ -145,15 +164,14 @@ impl Vertex {
     }
 }
 
-/// The solver's own point, put exactly on the bounds where the basis says so.
-fn starting_point(instance: &mut Instance, program: &Program, basis: &Basis) -> (Vec<f64>, Vec<f64>) {
+/// The solver's own point; 0 where it has none.
+fn solvers_point(instance: &mut Instance) -> Vertex {
     let point = instance.live.point().unwrap_or_default();
     let taken = |list: &[f64], at: usize| list.get(at).copied().filter(|value| value.is_finite()).unwrap_or(0.0);
-    let levels = program.columns.iter().zip(&basis.columns).zip(&instance.columns).map(|((column, &position), &at)| {
-        bound_at(position, column.lower, column.upper).unwrap_or_else(|| taken(&point.columns, at))
-    });
-    let worths = instance.rows.iter().map(|&at| taken(&point.row_duals, at));
-    (levels.collect(), worths.collect())
+    Vertex {
+        levels: instance.columns.iter().map(|&at| taken(&point.columns, at)).collect(),
+        worths: instance.rows.iter().map(|&at| taken(&point.row_duals, at)).collect(),
+    }
 }
 
 /// Where something out of the basis stands; `None` for what is in it.

@@ -10,7 +10,7 @@ use super::findings::Ending;
 use super::instance::Instance;
 use super::let_go::let_go;
 use super::live::Refusal;
-use super::look::{Look, is_flat};
+use super::look::Look;
 use super::message::{Account, Outcome, Start};
 use super::soft::on_the_way;
 use super::stop::Stop;
@@ -61,7 +61,7 @@ pub(super) fn warm(
         return finish(anchor, instance, program, &difference, run, account);
     };
     let way = Arc::new(way);
-    let first = step(&mut instance, &anchor.program, &way).map_err(lost)?;
+    let first = step(&mut instance, &anchor.program, &anchor.vertex, &way).map_err(lost)?;
     let look = match begin(anchor, &mut instance, &way, first, run, account)? {
         Settled::Optimal(look) => look,
         // The way is narrower than the program: that it leads nowhere says nothing of the program.
@@ -94,7 +94,10 @@ fn finish(
     let lost = |_| "the last basis did not survive the edit";
     let first = match inherit::vertex(&anchor.program, &anchor.basis, &anchor.vertex, program, difference) {
         Some(vertex) => Look::of(program, instance.basis().map_err(lost)?, vertex),
-        None => Look::at(&mut instance, program).map_err(lost)?,
+        None => {
+            let guess = inherit::carried(&anchor.program, &anchor.vertex, program, difference);
+            Look::near(&mut instance, program, guess).map_err(lost)?
+        }
     };
     match begin(anchor, &mut instance, program, first, run, account)? {
         Settled::Optimal(look) => Ok(Reached::Optimal(instance, look)),
@@ -137,12 +140,12 @@ fn live(anchor: &mut Anchor) -> Result<Box<Instance>, Refusal> {
     Ok(instance)
 }
 
-/// Turns what `instance` holds into `to`, and looks at its basis there.
-pub(super) fn step(instance: &mut Instance, from: &Program, to: &Program) -> Result<Look, Refusal> {
+/// Turns what `instance` holds into `to`, and looks at its basis there; `vertex` is where it was.
+pub(super) fn step(instance: &mut Instance, from: &Program, vertex: &Vertex, to: &Program) -> Result<Look, Refusal> {
     let difference = Difference::between(from, to);
     change(instance, from, to, &difference)?;
     opened::stay(instance, from, to, &difference)?;
-    Look::at(instance, to)
+    Look::near(instance, to, inherit::carried(from, vertex, to, &difference))
 }
 
 enum Settled {
@@ -167,9 +170,8 @@ fn settle(
         account.start = chosen;
     }
     let other = if chosen == Start::Primal { Start::Dual } else { Start::Primal };
-    let mut cap = run.cap;
     for variant in [chosen, other] {
-        let ending = simplex(instance, variant, cap, run, account).map_err(|_| "the solver refused its options")?;
+        let ending = simplex(instance, variant, run, account).map_err(|_| "the solver refused its options")?;
         match ending {
             Ending::Optimal => {
                 let look = Look::at(instance, program).map_err(|_| "the basis reached could not be factorised")?;
@@ -181,13 +183,7 @@ fn settle(
             Ending::Stopped => return Ok(Settled::Other(Outcome::Interrupted)),
             Ending::OutOfPivots => {
                 account.capped = true;
-                if variant == other || !is_flat(program) {
-                    return Err(TOO_LONG);
-                }
-                // Where rows are few a pivot costs little, and either variant may wander where the other goes straight.
-                account.detours.push(TOO_LONG.into());
-                cap += run.cap;
-                instance.set_basis(&look.basis).map_err(|_| "the last basis could not be brought back")?;
+                return Err(TOO_LONG);
             }
             Ending::OutOfTime => return Err("the time limit"),
             Ending::Infeasible => {
@@ -213,11 +209,10 @@ fn settle(
 fn simplex(
     instance: &mut Instance,
     variant: Start,
-    cap: usize,
     run: &Run<'_>,
     account: &mut Account,
 ) -> Result<Ending, Refusal> {
-    let left = cap.saturating_sub(account.pivots);
+    let left = run.cap.saturating_sub(account.pivots);
     instance.live.set("simplex_strategy", if variant == Start::Primal { 4 } else { 1 })?;
     instance.live.set("simplex_iteration_limit", i32::try_from(left).unwrap_or(i32::MAX))?;
     instance.live.set("time_limit", run.limit.as_secs_f64())?;
