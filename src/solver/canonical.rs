@@ -40,6 +40,10 @@ pub struct Canonical {
     pub look: Look,
     /// Whether nothing was decided by a tolerance.
     pub exact: bool,
+    /// Whether it is the same whatever basis it was found from, as far as twice the digits of an `f64` tell.
+    pub sure: bool,
+    /// A gain no larger than this, relative to what it is summed from, is none.
+    pub nil: f64,
     /// Whether its levels are those of exact arithmetic, to the last digit.
     pub rational: bool,
     /// Whether something out of the basis may move at no loss.
@@ -52,26 +56,32 @@ pub struct Canonical {
 ///
 /// # Errors
 /// When the solver refuses a basis or a program.
-pub fn of(instance: &mut Instance, program: &Program, mut look: Look, stop: &Stop) -> Result<Canonical, Refusal> {
+pub fn of(instance: &mut Instance, program: &Program, look: Look, stop: &Stop) -> Result<Canonical, Refusal> {
     let mut sharp = Sharp::of(instance, program, &look)?;
-    if sharp.margins.iter().all(|&margin| margin > CLEAR) {
-        // Every bound and every gain is kept by so much that rounding has no say: the vertex is the only optimal one.
-        return Ok(Canonical { look: sharpened(look, sharp), exact: true, rational: false, may_tie: false, pivots: 0 });
+    let clear = sharp.margins.iter().all(|&margin| margin > CLEAR);
+    let mut look = sharpened(look, &sharp);
+    // Every bound and every gain may be kept by so much that rounding has no say: the vertex is the only optimal one.
+    let plan =
+        |look, exact| Canonical { look, exact, sure: true, rational: false, nil: TOLERANCE, may_tie: false, pivots: 0 };
+    if clear {
+        return Ok(plan(look, true));
     }
     let weights = weights(program);
-    if let Some(walked) = walk(instance, program, &look, &weights, stop)? {
-        look = walked;
-        sharp = Sharp::of(instance, program, &look)?;
+    let large = program.rows.len() > MOST_EXACT;
+    let right = |sharp: &Sharp| sharp.margins.iter().all(|&margin| margin >= -NIL_IF_LARGE);
+    // Where nothing exact follows, what twice the digits tell from 0 is not a tie.
+    let nil = if large && right(&sharp) { NIL_IF_LARGE } else { TOLERANCE };
+    if let Some(walked) = walk(instance, program, &Face::of(program, &look, nil), &weights, stop)? {
+        sharp = Sharp::of(instance, program, &walked)?;
+        look = sharpened(walked, &sharp);
     }
-    let face = Face::of(program, &look);
+    let face = Face::of(program, &look, nil);
     let may_tie = face.may_be_more_than_a_point();
-    let nil = if program.rows.len() > MOST_EXACT { NIL_IF_LARGE } else { NIL };
-    let grey = |margin: &f64| (nil..=CLEAR).contains(margin);
-    let decided = program.rows.len() > ALWAYS_EXACT
-        && !sharp.margins.iter().any(grey)
-        && (!may_tie || face.gains(instance, &weights)?.into_iter().all(|gain| gain > CLEAR));
-    if decided {
-        return Ok(Canonical { look: sharpened(look, sharp), exact: true, rational: false, may_tie, pivots: 0 });
+    let walked_out = !may_tie || face.gains(instance, &weights)?.into_iter().all(|gain| gain > CLEAR);
+    let grey = (if large { NIL_IF_LARGE } else { NIL })..=CLEAR;
+    let decided = walked_out && !sharp.margins.iter().any(|margin| grey.contains(&margin.abs()));
+    if decided && program.rows.len() > ALWAYS_EXACT {
+        return Ok(Canonical { may_tie, nil, ..plan(look, true) });
     }
     if let Some(exactly) = settle(program, &look, &weights) {
         if exactly.look.basis != look.basis {
@@ -79,26 +89,26 @@ pub fn of(instance: &mut Instance, program: &Program, mut look: Look, stop: &Sto
         }
         return Ok(exactly);
     }
-    Ok(Canonical { look: sharpened(look, sharp), exact: false, rational: false, may_tie, pivots: 0 })
+    let sure = large && walked_out && right(&sharp);
+    Ok(Canonical { sure, may_tie, nil, ..plan(look, false) })
 }
 
 /// The look with the numbers of its vertex in all their digits.
-fn sharpened(mut look: Look, sharp: Sharp) -> Look {
+fn sharpened(look: Look, sharp: &Sharp) -> Look {
     let Sharp { aim, levels, worths, sums, gains, .. } = sharp;
-    look.vertex = Vertex { levels, worths };
-    look.checked = Checked { aim, sums, gains, ..look.checked };
-    look
+    let vertex = Vertex { levels: levels.clone(), worths: worths.clone() };
+    let checked = Checked { aim: *aim, sums: sums.clone(), gains: gains.clone(), ..look.checked };
+    Look { vertex, checked, ..look }
 }
 
 /// To the plan of least weight, as far as floating point tells; `None` where it stays where it is.
 fn walk(
     instance: &mut Instance,
     program: &Program,
-    look: &Look,
+    face: &Face<'_>,
     weights: &[f64],
     stop: &Stop,
 ) -> Result<Option<Look>, Refusal> {
-    let face = Face::of(program, look);
     if !face.may_be_more_than_a_point() || face.gains(instance, weights)?.into_iter().all(|gain| gain >= -TOLERANCE) {
         return Ok(None);
     }
@@ -108,7 +118,7 @@ fn walk(
     if walked.is_optimal() {
         return Ok(Some(walked));
     }
-    instance.set_basis(&look.basis)?;
+    instance.set_basis(&face.look().basis)?;
     Ok(None)
 }
 
@@ -126,5 +136,6 @@ fn settle(program: &Program, look: &Look, weights: &[f64]) -> Option<Canonical> 
     let checked = Checked { aim, sums, ..proof::check(program, &vertex.levels, &vertex.worths) };
     let look = Look { basis, vertex, checked, primal: 0, dual: 0 };
     let proven = look.checked.proof.holds();
-    proven.then_some(Canonical { look, exact: true, rational: true, may_tie: ties, pivots })
+    let found = Canonical { look, exact: true, sure: true, rational: true, nil: TOLERANCE, may_tie: ties, pivots };
+    proven.then_some(found)
 }

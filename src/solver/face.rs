@@ -9,7 +9,6 @@ use super::findings::Ending;
 use super::instance::{Instance, Member};
 use super::live::Refusal;
 use super::look::Look;
-use super::proof::TOLERANCE;
 use super::stop::Stop;
 use super::vertex::bound_at;
 use crate::lp::{Program, Sense};
@@ -18,6 +17,8 @@ use crate::lp::{Program, Sense};
 pub struct Face<'a> {
     program: &'a Program,
     look: &'a Look,
+    /// A gain or worth no larger than this, relative to what it is summed from, is none.
+    nil: f64,
 }
 
 /// Where another aim ends on a face.
@@ -31,10 +32,16 @@ pub enum End {
 }
 
 impl<'a> Face<'a> {
-    /// The face of the optimal plan of `look`.
+    /// The face of the optimal plan of `look`; a gain within `nil` of 0 is none.
     #[must_use]
-    pub fn of(program: &'a Program, look: &'a Look) -> Self {
-        Self { program, look }
+    pub fn of(program: &'a Program, look: &'a Look, nil: f64) -> Self {
+        Self { program, look, nil }
+    }
+
+    /// The look whose face it is.
+    #[must_use]
+    pub fn look(&self) -> &Look {
+        self.look
     }
 
     /// Whether something out of the basis can move at no loss, as far as its gain or worth tells.
@@ -49,13 +56,13 @@ impl<'a> Face<'a> {
         let Look { basis, checked, .. } = self.look;
         let column = &self.program.columns[at];
         let gain = checked.gains[at] / checked.gain_scales[at].max(1.0);
-        basis.columns[at] != Position::Basic && column.lower < column.upper && gain.abs() <= TOLERANCE
+        basis.columns[at] != Position::Basic && column.lower < column.upper && gain.abs() <= self.nil
     }
 
     fn moves_row(&self, at: usize) -> bool {
         let row = &self.program.rows[at];
         let worth = self.look.vertex.worths[at];
-        self.look.basis.rows[at] != Position::Basic && row.lower < row.upper && worth.abs() <= TOLERANCE
+        self.look.basis.rows[at] != Position::Basic && row.lower < row.upper && worth.abs() <= self.nil
     }
 
     /// What `aim`, to be made small, loses as each of what may move leaves its place, per unit; below 0 where it would improve.

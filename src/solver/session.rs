@@ -110,7 +110,7 @@ impl Session {
     ) -> Outcome {
         let begun = Instant::now();
         let mut plan = canonical::of(&mut instance, &program, look, stop);
-        if plan.as_ref().is_ok_and(|plan| !plan.exact) && account.start != Start::Cold {
+        if plan.as_ref().is_ok_and(|plan| !plan.sure) && account.start != Start::Cold {
             // What only a tolerance decides depends on the way there: the one from nothing is the same for everybody.
             account.detours.push("near ties in a model too large to tell them apart exactly".into());
             if let Reached::Optimal(afresh, look) = cold::solve(&program, limit, stop).end {

@@ -52,7 +52,7 @@ pub(super) struct Sharp {
     /// Gain of each column, rounded once.
     pub(super) gains: Vec<f64>,
     /// By how much each basic column and row keeps its nearer bound, and by how much each other one would lose by moving; columns first,
-    /// relative to what they are summed from, unsigned where nothing could gain by it.
+    /// relative to what they are summed from; below 0 where a bound is broken, or moving would gain.
     pub(super) margins: Vec<f64>,
 }
 
@@ -172,24 +172,27 @@ impl Refined {
     }
 
     fn told(&self, program: &Program, look: &Look) -> Sharp {
+        let sign = program.sense.sign();
         let sums = self.sums(program);
         let mut gains = Vec::with_capacity(program.columns.len());
         let mut margins = Vec::with_capacity(program.columns.len() + program.rows.len());
         for (at, column) in program.columns.iter().enumerate() {
             let (gain, scale) = self.gain(program, at);
             let Pair { high, low } = self.levels[at];
-            let room = [column.lower, column.upper].map(|bound| ((high - bound) + low).abs() / high.abs().max(1.0));
-            margins.push(margin(look.basis.columns[at], room, column.lower < column.upper, gain.value() / scale));
+            let size = high.abs().max(1.0);
+            let room = [((high - column.lower) + low) / size, ((column.upper - high) - low) / size];
+            let cost = sign * gain.value() / scale;
+            margins.push(margin(look.basis.columns[at], room, column.lower < column.upper, cost));
             gains.push(gain.value());
         }
         for (at, row) in program.rows.iter().enumerate() {
             let scale = look.checked.sum_scales[at].max(1.0);
-            let room = [row.lower, row.upper].map(|bound| {
+            let room = [(row.lower, 1.0), (row.upper, -1.0)].map(|(bound, side)| {
                 let mut room = sums[at];
                 room.add(-bound);
-                if bound.is_finite() { room.value().abs() / scale } else { f64::INFINITY }
+                if bound.is_finite() { side * room.value() / scale } else { f64::INFINITY }
             });
-            margins.push(margin(look.basis.rows[at], room, row.lower < row.upper, self.worths[at].high));
+            margins.push(margin(look.basis.rows[at], room, row.lower < row.upper, sign * self.worths[at].high));
         }
         let mut aim = Sum::default();
         aim.add(program.offset);
@@ -205,11 +208,14 @@ impl Refined {
     }
 }
 
-fn margin(position: Position, room: [f64; 2], moves: bool, multiplier: f64) -> f64 {
+/// `cost` is what an aim to be made small would lose by a rise of one.
+fn margin(position: Position, room: [f64; 2], moves: bool, cost: f64) -> f64 {
     match position {
         Position::Basic => room[0].min(room[1]),
-        _ if moves => multiplier.abs(),
-        _ => f64::INFINITY,
+        _ if !moves => f64::INFINITY,
+        Position::AtLower => cost,
+        Position::AtUpper => -cost,
+        Position::AtZero => -cost.abs(),
     }
 }
 

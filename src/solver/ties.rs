@@ -109,7 +109,7 @@ fn least(
     stop: &Stop,
 ) -> Result<Option<Vec<f64>>, Refusal> {
     let own = plan.look.vertex.levels.clone();
-    let basis = match Face::of(program, &plan.look).least(aim, stop)? {
+    let basis = match Face::of(program, &plan.look, plan.nil).least(aim, stop)? {
         End::Least(basis) => basis,
         // Exact arithmetic has its own word on that: floating point takes what is nearly tied for tied.
         End::NoLeast if !plan.rational => return Ok(None),

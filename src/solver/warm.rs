@@ -206,12 +206,7 @@ fn settle(
     Err("neither simplex variant got there")
 }
 
-fn simplex(
-    instance: &mut Instance,
-    variant: Start,
-    run: &Run<'_>,
-    account: &mut Account,
-) -> Result<Ending, Refusal> {
+fn simplex(instance: &mut Instance, variant: Start, run: &Run<'_>, account: &mut Account) -> Result<Ending, Refusal> {
     let left = run.cap.saturating_sub(account.pivots);
     instance.live.set("simplex_strategy", if variant == Start::Primal { 4 } else { 1 })?;
     instance.live.set("simplex_iteration_limit", i32::try_from(left).unwrap_or(i32::MAX))?;
