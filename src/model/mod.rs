@@ -11,6 +11,7 @@ pub(crate) mod products;
 pub mod read;
 pub mod types;
 pub mod value;
+mod values;
 pub mod write;
 
 pub use fault::{Fault, Faults};

@@ -8,7 +8,9 @@ mod activity;
 mod again;
 mod blocks;
 mod bounds;
+mod by_period;
 mod bytes;
+mod calendar;
 mod caps;
 mod complaints;
 mod document;
@@ -16,22 +18,29 @@ mod duplicate;
 mod fields;
 mod file;
 mod findings;
+mod flow;
 mod keys;
 mod known;
 mod limit;
+mod material;
 mod near;
 mod number;
+mod over;
 mod resource;
 mod source;
 mod syntax;
 mod term;
+mod tiers;
 mod toml_types;
 
 use std::path::Path;
 
 pub use again::{Before, again};
 pub use blocks::Blocks;
-pub use caps::{MOST_ACTIVITIES, MOST_BYTES, MOST_COEFFICIENTS, MOST_LIMITS, MOST_LINES, MOST_RESOURCES, MOST_TOKENS};
+pub use caps::{
+    MOST_ACTIVITIES, MOST_BYTES, MOST_COEFFICIENTS, MOST_COLUMNS, MOST_LIMITS, MOST_LINES, MOST_LISTED, MOST_MATERIALS,
+    MOST_PERIODS, MOST_RESOURCES, MOST_ROWS, MOST_TOKENS,
+};
 pub use fields::LONGEST_TEXT;
 pub use file::{FileProblem, file};
 pub use number::{LARGEST, SMALLEST_RATE};
@@ -72,10 +81,10 @@ pub fn text_and_blocks(path: &Path, bytes: &[u8]) -> Result<(Reading, Blocks), F
     let source = bytes::text(path, bytes).map_err(|fault| Faults { reported: vec![*fault], more: 0 })?;
     let root = syntax::parse(source)?;
     let mut findings = Findings::default();
-    let model = document::model(root.get_ref(), &mut findings);
+    let (model, days) = document::model(root.get_ref(), &mut findings);
     if !findings.is_empty() {
         return Err(findings.finish(source, &model));
     }
     let warnings = document::twins(root.get_ref(), &model).finish(source, &model).reported;
-    Ok((Reading { model, warnings }, Blocks::of(source.text, root.get_ref())))
+    Ok((Reading { model, warnings }, Blocks::of(source.text, root.get_ref(), days)))
 }
