@@ -81,7 +81,8 @@ fn look_alike_names_are_a_warning() {
     // The `i` of the second is U+0456, a Cyrillic letter.
     let text = edited("[activities.terrace_slab]", "[activities.\"tr\u{456}m\"]");
     let warnings = good(&text).warnings;
-    let told: Vec<String> = warnings.iter().map(|warning| format!("[{}] {}", warning.code, warning.line())).collect();
+    let told: Vec<String> =
+        warnings.reported.iter().map(|warning| format!("[{}] {}", warning.code, warning.line())).collect();
     let expected = "[look-alike] works.model.toml:50:13: `tr\u{456}m` looks like `trim`, but is another name; \
                     its character 3 is U+0456, not U+0069; rename one of the two";
     assert_eq!(told, [expected]);

@@ -4,15 +4,14 @@ use std::collections::BTreeMap;
 
 use super::digest::Digest;
 use crate::model::name::Name;
-use crate::model::types::{Model, Term};
+use crate::model::types::{Limit, Model, Term};
 
 /// The activities behind each tag that a limit sums, as a hash of their names.
 pub(super) struct Groups<'m>(BTreeMap<&'m Name, [u8; 32]>);
 
 impl<'m> Groups<'m> {
     pub(super) fn of(model: &'m Model) -> Self {
-        let sums = model.limits.values().flat_map(|limit| std::iter::once(&limit.terms).chain(&limit.per));
-        let tags = sums.flat_map(BTreeMap::keys).filter_map(|term| match term {
+        let tags = model.limits.values().flat_map(Limit::sums).flat_map(BTreeMap::keys).filter_map(|term| match term {
             Term::Tag(tag) => Some((tag, Vec::new())),
             _ => None,
         });

@@ -28,7 +28,8 @@ impl ByPeriod<'_> {
             let numbers = if list.len() == 1 { "number" } else { "numbers" };
             let message =
                 format!("`{}` lists {} {numbers}, but {} are wanted", shown(self.key), list.len(), horizon.count());
-            let help = format!("give one number for each of {}", self.calendar.told());
+            let each = if horizon.count() == 1 { "" } else { "each of " };
+            let help = format!("give one number for {each}{}", self.calendar.told());
             findings.add(span, "wrong-length", message, help);
         }
         let numbers: Vec<_> = list.iter().map(|item| number::number(self.key, item, self.role, findings)).collect();

@@ -74,14 +74,14 @@ impl Calendar {
         self.positions.get(label).copied()
     }
 
-    /// What to say where a value is given by period: how many there are, and what they are called.
+    /// The periods in words: how many there are, and what they are called.
     pub(super) fn told(&self) -> String {
         let label = |period| self.horizon.label(period).unwrap_or_default().to_owned();
         let labels: Vec<String> = self.horizon.periods().map(label).collect();
         match &labels[..] {
-            [only] => format!("the one period, {only}"),
-            [first, second] => format!("the 2 periods, {first} and {second}"),
-            [first, .., last] => format!("the {} periods, {first} to {last}", labels.len()),
+            [only] => format!("the one period {only}"),
+            [first, second] => format!("the 2 periods {first} and {second}"),
+            [first, .., last] => format!("the {} periods {first} to {last}", labels.len()),
             [] => "the period".to_owned(),
         }
     }

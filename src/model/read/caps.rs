@@ -62,11 +62,11 @@ pub(super) fn check(root: &Table<'_>, model: &Model, tags: &Tags, findings: &mut
     if coefficients > MOST_COEFFICIENTS {
         let message =
             format!("{coefficients} coefficients are more than the {MOST_COEFFICIENTS} that one model may have");
-        let help = match model.horizon.is_named() {
-            true => "plan fewer periods, split the model, or sum fewer tags",
-            false => "split the model, or sum fewer tags",
+        let (section, help) = match model.horizon.is_named() {
+            true => ("periods", "plan fewer periods, split the model, or sum fewer tags"),
+            false => ("limits", "split the model, or sum fewer tags"),
         };
-        findings.add(&span(root, "limits"), "too-many", message, help);
+        findings.add(&span(root, section), "too-many", message, help);
     }
 }
 
@@ -110,8 +110,7 @@ impl Size {
             size.add(late, late, 3);
         }
         for limit in model.limits.values() {
-            let sums = std::iter::once(&limit.terms).chain(limit.per.as_ref());
-            let terms: usize = sums.flat_map(|sum| sum.keys().map(|term| width(term, model, tags))).sum();
+            let terms: usize = limit.sums().flat_map(|sum| sum.keys().map(|term| width(term, model, tags))).sum();
             // With `per`, each bound has a row of its own.
             let rows = if limit.per.is_some() { 2 } else { 1 };
             size.rows += rows - 1;

@@ -11,7 +11,7 @@ use super::keys::{self, Keys};
 use super::known::{self, Known, Summable, Supplies};
 use super::number::Role;
 use super::toml_types::{Table, kind};
-use super::{activity, caps, limit, material, near, resource};
+use super::{activity, caps, limit, material, resource};
 use crate::model::name::Name;
 use crate::model::types::{Aim, Model};
 use crate::model::value::Value;
@@ -66,25 +66,6 @@ fn head(root: &Table<'_>, model: &mut Model, calendar: &Calendar, findings: &mut
 
 fn table<'a, 'i>(root: &'a Table<'i>, section: &str) -> Option<&'a Table<'i>> {
     root.get(section).and_then(|node| node.get_ref().as_table())
-}
-
-/// Pairs of names that look alike, as warnings.
-pub(super) fn twins(root: &Table<'_>, model: &Model) -> Findings {
-    let mut warnings = Findings::default();
-    warn("resources", root, near::twins(model.resources.keys()), &mut warnings);
-    warn("activities", root, near::twins(model.activities.keys()), &mut warnings);
-    warn("materials", root, near::twins(model.materials.keys()), &mut warnings);
-    warn("limits", root, near::twins(model.limits.keys()), &mut warnings);
-    warnings
-}
-
-fn warn(section: &str, root: &Table<'_>, pairs: Vec<(&Name, &Name, String)>, warnings: &mut Findings) {
-    let Some(table) = table(root, section) else { return };
-    for (first, second, oddity) in pairs {
-        let Some((key, _)) = table.get_key_value(second.as_str()) else { continue };
-        let message = format!("`{second}` looks like `{first}`, but is another name");
-        warnings.add(&key.span(), "look-alike", message, format!("{oddity}; rename one of the two"));
-    }
 }
 
 /// Whether the document says it is of the format read here.

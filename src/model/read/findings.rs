@@ -3,10 +3,10 @@
 use std::ops::Range;
 
 use super::calendar::{EACH, PER_DAY};
-use super::near;
 use super::source::Source;
 use crate::model::fault::{Fault, Faults, MOST_REPORTED};
 use crate::model::name::{LONGEST, Name, NameError};
+use crate::model::near;
 use crate::model::types::Model;
 
 /// A place in the text, as byte offsets.
@@ -120,7 +120,7 @@ fn nearest(wrong: &str, among: Among, model: &Model) -> String {
         Among::Materials => near::help(wrong, model.materials.keys().map(Name::as_str), || declare("materials", wrong)),
         Among::Periods(told) => {
             let labels = model.horizon.periods().filter_map(|period| model.horizon.label(period));
-            near::help(wrong, labels.chain([EACH, PER_DAY]), || format!("a number here is for one of {told}"))
+            near::help(wrong, labels.chain([EACH, PER_DAY]), || format!("the model plans {told}"))
         }
         Among::Tags => {
             let tags = model.activities.values().flat_map(|activity| &activity.tags).map(Name::as_str);

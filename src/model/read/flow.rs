@@ -22,7 +22,7 @@ pub(super) fn of_material(
         return None;
     };
     let Some(flow) = flow(address) else {
-        let message = format!("`{}` is nothing that is planned of a material", shown(key.get_ref()));
+        let message = format!("`{}` is nothing that a limit can sum", shown(key.get_ref()));
         let help = format!(
             "write \"materials.{name}.\" with purchase, sale, sale.late, stock or discard; one tier by its number, as in purchase.1"
         );
@@ -52,7 +52,7 @@ pub(super) fn of_resource(
         return None;
     };
     let Some(wanted) = tiers(address, "surge") else {
-        let message = format!("`{}` is nothing that is planned of a resource", shown(key.get_ref()));
+        let message = format!("`{}` is nothing that a limit can sum", shown(key.get_ref()));
         let help = format!("write \"resources.{name}.surge\"; one tier by its number, as in surge.1");
         findings.add(&key.span(), "bad-term", message, help);
         return None;
@@ -100,8 +100,12 @@ fn lacking(name: &Name, material: &Material, flow: Flow) -> Option<(String, Stri
                 Some(tier) => late(tier - 1),
                 None => (0..material.sale.len()).any(late),
             };
-            let help = format!("add `late` to the `sale` of [materials.{name}], or take the term out");
-            (!any).then(|| (format!("what is sold of `{name}` there is never late"), help))
+            let help = format!("add `late` to it in [materials.{name}], or take the term out");
+            let message = match tier {
+                Some(tier) => format!("tier {tier} of the `sale` of `{name}` is never late"),
+                None => format!("sales of `{name}` are never late"),
+            };
+            (!any).then_some((message, help))
         }),
         Flow::Stock if material.stock.is_none() && material.closing.is_none() => {
             let help = format!("add `stock` to [materials.{name}], or take the term out");

@@ -4,7 +4,7 @@ use super::bounds;
 use super::fields::{Fields, Given};
 use super::keys;
 use super::number::{self, Role};
-use super::tiers::{self, Order};
+use super::tiers::{self, Order, Price};
 use crate::model::types::{Closing, Discard, Late, Material, Purchase, Sale, Stock};
 use crate::model::value::Value;
 
@@ -29,16 +29,16 @@ pub(super) fn read(fields: &mut Fields<'_, '_>) -> Material {
     }
 }
 
-fn purchase(fields: &mut Fields<'_, '_>) -> (Purchase, Option<Given>) {
+fn purchase(fields: &mut Fields<'_, '_>) -> (Purchase, Price) {
     let price = fields.value("price", Role::Amount);
     let (at_least, at_most) = between(fields);
-    (Purchase { price: or(price.clone(), 0.0), at_least, at_most }, price)
+    (Purchase { price: or(price.clone(), 0.0), at_least, at_most }, Price::of(fields, "price", price))
 }
 
-fn sale(fields: &mut Fields<'_, '_>) -> (Sale, Option<Given>) {
+fn sale(fields: &mut Fields<'_, '_>) -> (Sale, Price) {
     let price = fields.value("price", Role::Amount);
     let (at_least, at_most) = between(fields);
-    (Sale { price: or(price.clone(), 0.0), at_least, at_most, late: late(fields) }, price)
+    (Sale { price: or(price.clone(), 0.0), at_least, at_most, late: late(fields) }, Price::of(fields, "price", price))
 }
 
 fn late(fields: &mut Fields<'_, '_>) -> Option<Late> {
@@ -65,6 +65,12 @@ fn stock(fields: &mut Fields<'_, '_>) -> Option<(Stock, Option<Given>)> {
 fn closing(fields: &mut Fields<'_, '_>) -> Option<(Closing, Option<Given>)> {
     let node = fields.node("closing")?;
     let given = |number| Given { value: Value::Every(number), span: node.span() };
+    if node.get_ref().is_array() {
+        let message = "`closing` must be a number or a table, not a list".to_owned();
+        let help = "it is what is left after the last period: one number";
+        fields.findings().add(&node.span(), "wrong-type", message, help);
+        return None;
+    }
     if !node.get_ref().is_table() {
         let at_least = number::number("closing", node, Role::Floor, fields.findings())?;
         return Some((Closing { at_least, worth: 0.0 }, Some(given(at_least))));

@@ -152,7 +152,8 @@ pub(super) fn allowed(key: &str, number: f64, role: Role) -> Result<f64, Refusal
             Role::Level if !upward => Ok(number),
             Role::Most | Role::Room => Err(refusal("not-finite", format!("`{key}` cannot be -inf"), "give a number")),
             Role::Least if !upward => {
-                let help = "leave the key out where there is no limit";
+                let help =
+                    "leave the key out where there is no limit; among numbers by period, write one that is far below";
                 Err(refusal("not-finite", format!("`{key}` cannot be -inf here"), help))
             }
             _ => Err(refusal("not-finite", format!("`{key}` must be a finite number"), "give a number")),

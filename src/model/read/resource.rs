@@ -1,10 +1,10 @@
 //! Reading one resource.
 
 use super::bounds;
-use super::fields::{Fields, Given};
+use super::fields::Fields;
 use super::keys;
 use super::number::Role;
-use super::tiers::{self, Order};
+use super::tiers::{self, Order, Price};
 use crate::model::types::{Resource, Surge};
 use crate::model::value::Value;
 
@@ -26,8 +26,11 @@ pub(super) fn read(fields: &mut Fields<'_, '_>) -> Resource {
     }
 }
 
-fn surge(fields: &mut Fields<'_, '_>) -> (Surge, Option<Given>) {
+fn surge(fields: &mut Fields<'_, '_>) -> (Surge, Price) {
     let cost = fields.value("cost", Role::Amount);
     let at_most = fields.value_or("at_most", Role::Room, f64::INFINITY);
-    (Surge { at_most, cost: cost.clone().map_or(Value::Every(0.0), |given| given.value) }, cost)
+    (
+        Surge { at_most, cost: cost.clone().map_or(Value::Every(0.0), |given| given.value) },
+        Price::of(fields, "cost", cost),
+    )
 }

@@ -3,7 +3,6 @@
 use toml::de::DeValue;
 
 use super::fields::{Fields, Given};
-use super::findings::Span;
 use super::keys::Keys;
 use super::toml_types::kind;
 use crate::model::value::Value;
@@ -17,13 +16,33 @@ pub(super) enum Order {
     Cheaper,
 }
 
+/// The price of a tier as it was written.
+pub(super) enum Price {
+    /// Not at all, so it is 0.
+    LeftOut,
+    Given(Given),
+    /// Its own fault says enough.
+    Faulty,
+}
+
+impl Price {
+    /// What was read under `key`.
+    pub(super) fn of(fields: &Fields<'_, '_>, key: &str, given: Option<Given>) -> Self {
+        match given {
+            Some(given) => Self::Given(given),
+            None if fields.node(key).is_some() => Self::Faulty,
+            None => Self::LeftOut,
+        }
+    }
+}
+
 /// The tiers under `key`: a table, or a list of tables. `read` reads one and tells its price as it was given.
 pub(super) fn read<T>(
     fields: &mut Fields<'_, '_>,
     key: &str,
     keys: &'static Keys,
     order: Order,
-    read: impl Fn(&mut Fields<'_, '_>) -> (T, Option<Given>),
+    read: impl Fn(&mut Fields<'_, '_>) -> (T, Price),
 ) -> Vec<T> {
     let Some(node) = fields.node(key) else { return Vec::new() };
     let nodes = match node.get_ref() {
@@ -40,17 +59,23 @@ pub(super) fn read<T>(
         };
         let (tier, price) = read(&mut fields.within(table, node.span(), keys));
         tiers.push(tier);
-        prices.push(price.map_or((Value::Every(0.0), node.span()), |given| (given.value, given.span)));
+        prices.push(match price {
+            Price::LeftOut => Some(Given { value: Value::Every(0.0), span: node.span() }),
+            Price::Given(given) => Some(given),
+            Price::Faulty => None,
+        });
     }
     for (at, pair) in prices.windows(2).enumerate() {
-        in_order(fields, key, at + 1, &pair[0].0, &pair[1], order);
+        if let [Some(price), Some(next)] = pair {
+            in_order(fields, key, at + 1, &price.value, next, order);
+        }
     }
     tiers
 }
 
 /// Adds a fault where the price of the tier behind tier `first` goes the wrong way.
-fn in_order(fields: &mut Fields<'_, '_>, key: &str, first: usize, price: &Value, next: &(Value, Span), order: Order) {
-    let (next, span) = next;
+fn in_order(fields: &mut Fields<'_, '_>, key: &str, first: usize, price: &Value, next: &Given, order: Order) {
+    let Given { value: next, span } = next;
     let wrong = |(_, before, after): &(_, f64, f64)| match order {
         Order::Dearer => after < before,
         Order::Cheaper => after > before,
