@@ -18,6 +18,8 @@ mod hostile;
 mod laws;
 #[path = "reading/models.rs"]
 mod models;
+#[path = "reading/odd.rs"]
+mod odd;
 
 use std::path::Path;
 

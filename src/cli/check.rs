@@ -20,7 +20,10 @@ struct Checked<'a> {
     faults: &'a [Fault],
     /// How many more faults there are than are told.
     more: usize,
+    /// What is odd, though no fault.
     warnings: &'a [Fault],
+    /// How many more of these there are than are told.
+    more_warnings: usize,
     /// Why the file could not be read.
     #[serde(skip_serializing_if = "Option::is_none")]
     unread: Option<String>,
@@ -115,6 +118,7 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
             faults: reported,
             more: *more,
             warnings: &warnings.reported,
+            more_warnings: warnings.more,
             unread,
         });
         return;

@@ -14,7 +14,7 @@ fn path() -> &'static Path {
 }
 
 fn whole(text: &str) -> Option<(Model, Blocks)> {
-    text_and_blocks(path(), text.as_bytes()).ok().map(|(reading, blocks)| (reading.model, blocks))
+    text_and_blocks(path(), text.as_bytes()).ok()
 }
 
 /// What reading makes of `new` by what differs from `old`.

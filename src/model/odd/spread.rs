@@ -57,9 +57,9 @@ impl<'m> Range<'m> {
     fn oddity(self) -> Option<Oddity> {
         let [smallest, largest] = self.0.filter(|[smallest, largest]| largest.size > WIDEST * smallest.size)?;
         let message = format!(
-            "{:e} is more than 1e8 times smaller than the {:e} of `{}` in {}",
-            smallest.size,
-            largest.size,
+            "{} is more than 1e8 times smaller than the {} of `{}` in {}",
+            shown(smallest.size),
+            shown(largest.size),
             largest.key,
             largest.place.join(".")
         );
@@ -68,4 +68,8 @@ impl<'m> Range<'m> {
         let [section, name, rates] = smallest.place;
         Some(Oddity::new(&[section, name, rates, &key], "spread", message, help))
     }
+}
+
+fn shown(size: f64) -> String {
+    if (1e-4..1e7).contains(&size) { size.to_string() } else { format!("{size:e}") }
 }
