@@ -125,7 +125,7 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
 /// What is wrong with a file that cannot be read: the command line where it is not there or is no file, else the system.
 pub(super) fn unreadable(problem: &FileProblem) -> Error {
     match problem {
-        FileProblem::Forbidden(_) | FileProblem::Other { .. } => Error::failure(problem, ""),
+        FileProblem::Forbidden(_) | FileProblem::Moving(_) | FileProblem::Other { .. } => Error::failure(problem, ""),
         FileProblem::Missing(_) | FileProblem::Link(_) | FileProblem::NotAFile { .. } | FileProblem::TooLarge(_) => {
             Error::usage(problem, "")
         }

@@ -11,6 +11,7 @@ mod bounds;
 mod bytes;
 mod caps;
 mod complaints;
+mod csv;
 mod document;
 mod duplicate;
 mod fields;
@@ -21,20 +22,26 @@ mod known;
 mod limit;
 mod near;
 mod number;
+mod parts;
 mod resource;
 mod source;
 mod syntax;
 mod term;
 mod toml_types;
+mod writing;
 
 use std::path::Path;
 
 pub use again::{Before, again};
 pub use blocks::Blocks;
-pub use caps::{MOST_ACTIVITIES, MOST_BYTES, MOST_COEFFICIENTS, MOST_LIMITS, MOST_LINES, MOST_RESOURCES, MOST_TOKENS};
+pub use caps::{
+    MOST_ACTIVITIES, MOST_BYTES, MOST_COEFFICIENTS, MOST_LIMITS, MOST_LINES, MOST_PARTS, MOST_RESOURCES, MOST_TOKENS,
+};
 pub use fields::LONGEST_TEXT;
 pub use file::{FileProblem, file};
 pub use number::{LARGEST, SMALLEST_RATE};
+pub use parts::folder::{Listing, is_part};
+pub use writing::{FILE, FOLDER, Writing, forms, is_folder_name, writing};
 
 use super::fault::{Fault, Faults};
 use super::types::Model;
