@@ -29,8 +29,7 @@ struct Checked<'a> {
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf]) -> Result<Outcome, Error> {
     let mut tally = Tally::default();
     for path in paths {
-        let folder = if path.is_dir() { path } else { path.parent().unwrap_or(path) };
-        let settings = setting.for_folder(folder)?;
+        let settings = setting.for_folder(models::folder_of(path))?;
         let ignore = Ignore::new(&settings.keep.ignore).map_err(|error| Error::usage(error, ""))?;
         let found = models::under(path, &ignore)?;
         for folder in &found.unread {
@@ -43,8 +42,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
         }
     }
     if tally.models == 0 && !tally.refused {
-        let help = format!("a model is a file whose name ends in {}", models::MODEL);
-        return Err(Error::usage("there is no model to check", help));
+        return Err(Error::usage("there is no model to check", models::WHAT_A_MODEL_IS));
     }
     if screen.out_is_terminal() && !screen.json() {
         let gap = if tally.faulty > 0 { "\n" } else { "" };
@@ -90,7 +88,7 @@ pub(super) fn counted(count: usize, what: &str) -> String {
 }
 
 fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
-    let (faults, warnings, unread) = match read::file(path).map(|bytes| read::text(path, &bytes)) {
+    let (faults, warnings, unread) = match read::writing(path).map(|writing| writing.read(path)) {
         Ok(Ok(Reading { warnings, .. })) => (Faults::default(), warnings, None),
         Ok(Err(faults)) => (faults, Vec::new(), None),
         Err(problem) => {

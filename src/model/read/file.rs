@@ -57,7 +57,9 @@ impl FileProblem {
     #[must_use]
     pub fn fault(&self, path: &Path) -> Fault {
         let (code, message, help) = match self {
-            Self::Link(_) => ("not-a-file", "a symbolic link, which is not followed".to_owned(), "put the file itself here"),
+            Self::Link(_) => {
+                ("not-a-file", "a symbolic link, which is not followed".to_owned(), "put the file itself here")
+            }
             Self::NotAFile { what, .. } => ("not-a-file", format!("{what}, not a file"), "take it out of the folder"),
             Self::TooLarge(_) => return bytes::too_large(path),
             Self::Missing(_) => ("unread", "there is no such file".to_owned(), ""),

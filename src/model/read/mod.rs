@@ -41,7 +41,7 @@ pub use fields::LONGEST_TEXT;
 pub use file::{FileProblem, file};
 pub use number::{LARGEST, SMALLEST_RATE};
 pub use parts::folder::{Listing, is_part};
-pub use writing::{FILE, FOLDER, Writing, forms, is_folder_name, writing};
+pub use writing::{FILE, FOLDER, Writing, forms, is_folder_name, is_in_parts, writing};
 
 use super::fault::{Fault, Faults};
 use super::types::Model;

@@ -7,8 +7,9 @@ use std::os::unix::ffi::{OsStrExt, OsStringExt};
 use std::path::{Path, PathBuf};
 
 use super::parts::{self, bundle, folder};
-use super::{Blocks, FileProblem, Reading, file, text_and_blocks};
+use super::{Before, Blocks, FileProblem, Reading, again, file, text_and_blocks};
 use crate::model::fault::{Fault, Faults};
+use crate::model::types::Model;
 
 /// How the name of a model in one file ends.
 pub const FILE: &str = ".model.toml";
@@ -42,7 +43,9 @@ pub fn writing(path: &Path) -> Result<Writing, FileProblem> {
     let kind = |path: &Path| fs::symlink_metadata(path).map(|about| about.file_type()).ok();
     let is_folder = kind(&folder).is_some_and(|kind| kind.is_dir());
     match kind(&single) {
-        Some(kind) if kind.is_file() && is_folder => Ok(Writing { bytes: Vec::new(), amiss: vec![both(&single, &folder)] }),
+        Some(kind) if kind.is_file() && is_folder => {
+            Ok(Writing { bytes: Vec::new(), amiss: vec![both(&single, &folder)] })
+        }
         _ if is_folder => in_parts(&folder),
         // A link to a folder is not followed either.
         None if kind(&folder).is_some() => Err(FileProblem::Link(folder)),
@@ -62,7 +65,8 @@ fn in_parts(path: &Path) -> Result<Writing, FileProblem> {
 
 fn both(single: &Path, folder: &Path) -> Fault {
     let name = |path: &Path| path.file_name().unwrap_or_default().to_string_lossy().into_owned();
-    let message = format!("`{}` and the folder `{}` are both there, and a model is one of the two", name(single), name(folder));
+    let message =
+        format!("`{}` and the folder `{}` are both there, and a model is one of the two", name(single), name(folder));
     let help = "take one of them away, or give it another name".to_owned();
     Fault { path: PathBuf::new(), place: None, code: "both-forms", message, help }
 }
@@ -103,7 +107,7 @@ impl Writing {
     /// Whether it is in parts.
     #[must_use]
     pub fn is_in_parts(&self) -> bool {
-        bundle::is_bundle(&self.bytes)
+        is_in_parts(&self.bytes)
     }
 
     /// The path of the model, given in either form, in the form that it was read in.
@@ -122,6 +126,15 @@ impl Writing {
     /// As [`text`](super::text).
     pub fn read(&self, path: &Path) -> Result<Reading, Faults> {
         Ok(self.read_with_blocks(path)?.0)
+    }
+
+    /// The model it spells, read by what differs from what was read before; `None` where all of it must be read.
+    #[must_use]
+    pub fn read_again(&self, path: &Path, before: Before<'_>) -> Option<(Model, Blocks)> {
+        if !self.amiss.is_empty() || self.is_in_parts() {
+            return None;
+        }
+        again(&self.path(path), &self.bytes, before)
     }
 
     /// As [`Writing::read`], and where the tables of a file's text lie.
@@ -143,6 +156,12 @@ impl Writing {
         let reading = parts::whole(&path, &bundle::parts(&self.bytes))?;
         Ok((reading, Blocks::default()))
     }
+}
+
+/// Whether these are the bytes of a writing in parts.
+#[must_use]
+pub fn is_in_parts(bytes: &[u8]) -> bool {
+    bundle::is_bundle(bytes)
 }
 
 /// Whether a folder of this name holds a model in parts.

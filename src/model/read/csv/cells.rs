@@ -100,7 +100,12 @@ pub(super) fn misquoted(raw: &str, cell: &Cell<'_>, findings: &mut Findings) -> 
     }
     let Some(rest) = raw.strip_prefix('"') else {
         let message = "a quote stands inside a cell that does not begin with one".to_owned();
-        findings.add(&cell.span, "bad-quotes", message, "put the whole cell in double quotes, and double those inside it");
+        findings.add(
+            &cell.span,
+            "bad-quotes",
+            message,
+            "put the whole cell in double quotes, and double those inside it",
+        );
         return true;
     };
     if rest.strip_suffix('"').is_some_and(all_doubled) {

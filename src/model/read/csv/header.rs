@@ -90,7 +90,8 @@ impl<'a> Header<'a> {
         let mut all = true;
         for (word, holds) in part.kind.needed() {
             // A column that is there, though not as it should be, is told already.
-            let there = |column: &Column<'_>| column.holds == Some(holds) || column.word.split('@').next() == Some(word);
+            let there =
+                |column: &Column<'_>| column.holds == Some(holds) || column.word.split('@').next() == Some(word);
             if !self.columns.iter().any(there) {
                 let place = cells.first().map(|cell| cell.span.clone()).unwrap_or_default();
                 let message = format!("the column `{word}` is missing");
@@ -130,7 +131,9 @@ fn column<'a>(kind: Kind, cell: &Cell<'a>, periods: &Periods<'_>, findings: &mut
             if is_period(period, cell, periods, findings) {
                 column.holds = Some(holds);
                 column.period = Some(match &cell.text {
-                    Cow::Borrowed(text) => Cow::Borrowed(text.split_once('@').map_or("", |(_, period)| period.trim_start())),
+                    Cow::Borrowed(text) => {
+                        Cow::Borrowed(text.split_once('@').map_or("", |(_, period)| period.trim_start()))
+                    }
                     Cow::Owned(_) => Cow::Owned(period.to_owned()),
                 });
             }

@@ -128,7 +128,8 @@ impl<'a> Row<'_, 'a> {
         let cell = self.header.cells(self.cells, holds).next()?;
         if cell.text.is_empty() {
             let word = self.header.columns.iter().find(|column| column.holds == Some(holds));
-            let message = format!("`{}` is empty in this row", word.map(|column| column.word.as_ref()).unwrap_or_default());
+            let message =
+                format!("`{}` is empty in this row", word.map(|column| column.word.as_ref()).unwrap_or_default());
             findings.add(&cell.span, "no-name", message, "give a name, or take the row out");
             return None;
         }
@@ -157,13 +158,7 @@ impl<'a> Row<'_, 'a> {
 }
 
 /// Puts a value under its key: as it is where it is for every period, else into the table of the periods.
-fn put_value<'a>(
-    entry: &mut Table<'a>,
-    word: &'static str,
-    column: &Column<'a>,
-    cell: &Cell<'a>,
-    value: Node<'a>,
-) {
+fn put_value<'a>(entry: &mut Table<'a>, word: &'static str, column: &Column<'a>, cell: &Cell<'a>, value: Node<'a>) {
     let spelt = |word: &'a str| Spanned::new(cell.span.clone(), Cow::Borrowed(word));
     let Some(given) = entry.get_mut(word) else {
         let value = match &column.period {

@@ -31,7 +31,8 @@ pub(super) fn of<'a>(
 
 fn flag(key: &str, cell: &Cell<'_>, findings: &mut Findings) -> Option<bool> {
     // Spreadsheets write them in capitals.
-    let found = [true, false].into_iter().find(|flag| cell.text.eq_ignore_ascii_case(if *flag { "true" } else { "false" }));
+    let found =
+        [true, false].into_iter().find(|flag| cell.text.eq_ignore_ascii_case(if *flag { "true" } else { "false" }));
     if found.is_none() {
         let message = format!("`{key}` must be true or false, not `{}`", shown(&cell.text));
         findings.add(&cell.span, "wrong-type", message, "write true, or leave the cell empty");

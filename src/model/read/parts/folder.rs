@@ -155,8 +155,21 @@ mod tests {
             assert!(is_part(OsStr::new(good)), "{good}");
         }
         for bad in [
-            ".a.toml", ".toml", ".csv", "#a.toml", ".#a.toml", "#a.toml#", "a.toml~", "a.toml.swp", "a.csv.bak",
-            "~$activities.csv", ".~lock.activities.csv#", "a.TOML", "notes.md", "a.xlsx", "",
+            ".a.toml",
+            ".toml",
+            ".csv",
+            "#a.toml",
+            ".#a.toml",
+            "#a.toml#",
+            "a.toml~",
+            "a.toml.swp",
+            "a.csv.bak",
+            "~$activities.csv",
+            ".~lock.activities.csv#",
+            "a.TOML",
+            "notes.md",
+            "a.xlsx",
+            "",
         ] {
             assert!(!is_part(OsStr::new(bad)), "{bad}");
         }
@@ -177,7 +190,8 @@ mod tests {
                 save("b.toml", "two");
             }
         });
-        let texts: Vec<_> = read.unwrap().into_iter().map(|(_, text)| String::from_utf8(text.unwrap()).unwrap()).collect();
+        let texts: Vec<_> =
+            read.unwrap().into_iter().map(|(_, text)| String::from_utf8(text.unwrap()).unwrap()).collect();
         assert_eq!((texts, saves), (vec!["two".to_owned(), "two".to_owned()], 2));
         let mut number = 0;
         let restless = parts_while(folder.path(), || {

@@ -33,7 +33,12 @@ pub(super) fn merge<'a>(into: &mut Table<'a>, from: Table<'a>, base: usize, merg
 }
 
 /// Merges rates of a CSV part, a table for each activity, into the activities that other parts begin.
-pub(super) fn merge_rates<'a>(root: &mut Table<'a>, what: &'static str, rates: Table<'a>, merging: &mut Merging<'_, '_>) {
+pub(super) fn merge_rates<'a>(
+    root: &mut Table<'a>,
+    what: &'static str,
+    rates: Table<'a>,
+    merging: &mut Merging<'_, '_>,
+) {
     let mut none = Table::new();
     let activities = match root.get_mut("activities").map(Spanned::get_mut) {
         Some(DeValue::Table(activities)) => activities,

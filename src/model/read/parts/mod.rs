@@ -146,7 +146,8 @@ fn merged<'a>(
     let tables: Vec<_> = {
         let periods = Periods::of(&root);
         let csv = sheets.iter().filter_map(|sheet| Some((sheet, sheet.csv?)));
-        let part = |(sheet, kind): (&'a sheets::Sheet<'a>, Kind)| csv::Part { source: sheet.source(), base: sheet.base, kind };
+        let part =
+            |(sheet, kind): (&'a sheets::Sheet<'a>, Kind)| csv::Part { source: sheet.source(), base: sheet.base, kind };
         csv.map(part).map(|part| (part.kind, csv::table(part, &periods, findings))).collect()
     };
     let (entries, rates): (Vec<_>, Vec<_>) = tables.into_iter().partition(|(kind, _)| matches!(kind, Kind::Entries(_)));
