@@ -270,7 +270,8 @@ fn look_at(model: ModelPath, scan: &mut Scan) -> io::Result<()> {
         }
         Ok(None) => {}
         Err(error) if error.kind() == io::ErrorKind::InvalidInput => {
-            scan.odd.insert(model);
+            let form = if model.lying(Form::Folder).full().is_dir() { Form::Folder } else { Form::File };
+            scan.odd.insert(model.lying(form));
         }
         Err(error) if error.kind() == io::ErrorKind::PermissionDenied => return Err(error),
         Err(error) => {
@@ -356,6 +357,66 @@ mod tests {
         assert_eq!(scan.temps, [root.path().join(".millreeve-aB3dEf7h.tmp")]);
         assert!(scan.unread.is_empty() && !scan.is_hollow());
         assert_eq!(scan.folders.iter().collect::<Vec<_>>(), [Path::new(""), Path::new("a"), Path::new("a/b")]);
+    }
+
+    #[test]
+    fn folders_of_parts_are_models_and_are_watched_but_not_searched() {
+        let root = tempfile::tempdir().unwrap();
+        let outside = tempfile::tempdir().unwrap();
+        for folder in ["m.model/deep", "a/n.model", "both.model", "old.model", ".x.model"] {
+            fs::create_dir_all(root.path().join(folder)).unwrap();
+        }
+        let files = [
+            "m.model/works.toml",
+            "m.model/inner.model.toml",
+            "m.model/deep/far.model.toml",
+            "m.plan.toml",
+            "both.model.toml",
+            "file.model",
+            ".x.model/x.model.toml",
+        ];
+        for file in files {
+            fs::write(root.path().join(file), "").unwrap();
+        }
+        symlink(outside.path(), root.path().join("linked.model")).unwrap();
+        symlink(root.path().join("file.model"), root.path().join("lead.model")).unwrap();
+        let scan = found(root.path(), &["old.model"]);
+        assert_eq!(names(scan.sights.keys()), [".x.model/x.model.toml", "a/n.model", "both.model.toml", "m.model"]);
+        assert_eq!(names(&scan.odd), ["linked.model"]);
+        let watched = ["", ".x.model", "a", "a/n.model", "both.model", "m.model"];
+        assert_eq!(scan.folders.iter().collect::<Vec<_>>(), watched.map(Path::new));
+        let m = scan.sights.iter().find(|(model, _)| model.name() == "m").unwrap();
+        assert!(m.1.plan.is_some() && m.1.model == Stamp::of_model(&m.0.full()));
+    }
+
+    #[test]
+    fn any_change_of_a_part_changes_the_stamp_and_nothing_else_does() {
+        let root = tempfile::tempdir().unwrap();
+        let folder = root.path().join("m.model");
+        let stamp = || Stamp::of_model(&root.path().join("m.model.toml"));
+        let mut stamps = vec![stamp()];
+        let mut differs = || {
+            let now = stamp();
+            assert!(!stamps.contains(&now), "{now:?}");
+            stamps.push(now);
+        };
+        fs::create_dir(&folder).unwrap();
+        differs();
+        fs::write(folder.join("a.toml"), "one").unwrap();
+        differs();
+        fs::write(folder.join("a.toml"), "three").unwrap();
+        differs();
+        fs::rename(folder.join("a.toml"), folder.join("b.toml")).unwrap();
+        differs();
+        let whole = stamp();
+        fs::write(folder.join(".a.toml.swp"), "swap").unwrap();
+        fs::write(folder.join("notes.md"), "notes").unwrap();
+        assert_eq!(stamp(), whole);
+        fs::write(root.path().join("m.model.toml"), "both").unwrap();
+        let both = stamp();
+        assert!(both.is_some() && both != whole);
+        fs::remove_dir_all(&folder).unwrap();
+        assert!(stamp().is_some() && stamp() != both);
     }
 
     #[test]

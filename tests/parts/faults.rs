@@ -28,7 +28,10 @@ fn the_folder_and_its_parts() {
     insta::assert_snapshot!(told(&[
         nothing,
         without_format,
-        with(&WORKS, "works.toml", "title = \"Tileworks\"\n").into_iter().filter(|(name, _)| *name != "sales.toml").collect(),
+        with(&WORKS, "works.toml", "title = \"Tileworks\"\n")
+            .into_iter()
+            .filter(|(name, _)| *name != "sales.toml")
+            .collect(),
         with(&WORKS, "sales.toml", "format = 2\nnews = 1\n"),
         with(&WORKS, "sales.toml", "format = \"1\"\n"),
         with(&WORKS, "sales.toml", " \n"),

@@ -27,8 +27,10 @@ fn the_order_and_names_of_parts_decide_nothing() {
 #[test]
 fn what_editors_and_spreadsheets_do_to_a_file_changes_nothing() {
     let same = |name: &str, change: fn(&str) -> String| {
-        let parts: Vec<_> =
-            WORKS.iter().map(|&(n, text)| (n.to_owned(), if n == name { change(text) } else { text.to_owned() })).collect();
+        let parts: Vec<_> = WORKS
+            .iter()
+            .map(|&(n, text)| (n.to_owned(), if n == name { change(text) } else { text.to_owned() }))
+            .collect();
         assert_eq!(good(&borrowed(&parts)).model, good(&WORKS).model, "{name}");
     };
     for (name, _) in WORKS {
