@@ -32,8 +32,7 @@ struct Checked<'a> {
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf]) -> Result<Outcome, Error> {
     let mut tally = Tally::default();
     for path in paths {
-        let folder = if path.is_dir() { path } else { path.parent().unwrap_or(path) };
-        let settings = setting.for_folder(folder)?;
+        let settings = setting.for_folder(models::folder_of(path))?;
         let ignore = Ignore::new(&settings.keep.ignore).map_err(|error| Error::usage(error, ""))?;
         let found = models::under(path, &ignore)?;
         for folder in &found.unread {
@@ -46,8 +45,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
         }
     }
     if tally.models == 0 && !tally.refused {
-        let help = format!("a model is a file whose name ends in {}", models::MODEL);
-        return Err(Error::usage("there is no model to check", help));
+        return Err(Error::usage("there is no model to check", models::WHAT_A_MODEL_IS));
     }
     if screen.out_is_terminal() && !screen.json() {
         let gap = if tally.faulty > 0 { "\n" } else { "" };
@@ -93,7 +91,7 @@ pub(super) fn counted(count: usize, what: &str) -> String {
 }
 
 fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
-    let (faults, warnings, unread) = match read::file(path).map(|bytes| read::text(path, &bytes)) {
+    let (faults, warnings, unread) = match read::writing(path).map(|writing| writing.read(path)) {
         Ok(Ok(Reading { warnings, .. })) => (Faults::default(), warnings, None),
         Ok(Err(faults)) => (faults, Faults::default(), None),
         Err(problem) => {
@@ -139,7 +137,7 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
 /// What is wrong with a file that cannot be read: the command line where it is not there or is no file, else the system.
 pub(super) fn unreadable(problem: &FileProblem) -> Error {
     match problem {
-        FileProblem::Forbidden(_) | FileProblem::Other { .. } => Error::failure(problem, ""),
+        FileProblem::Forbidden(_) | FileProblem::Moving(_) | FileProblem::Other { .. } => Error::failure(problem, ""),
         FileProblem::Missing(_) | FileProblem::Link(_) | FileProblem::NotAFile { .. } | FileProblem::TooLarge(_) => {
             Error::usage(problem, "")
         }

@@ -18,22 +18,26 @@ pub(super) struct ByPeriod<'a> {
 impl ByPeriod<'_> {
     /// The value in a list.
     pub(super) fn list(&self, list: &DeArray<'_>, span: &Span, findings: &mut Findings) -> Option<Value> {
-        let horizon = self.calendar.horizon();
-        if self.calendar.is_faulty() {
-        } else if !horizon.is_named() {
-            let message =
-                format!("a list for `{}` gives one number per period, but the model names no periods", shown(self.key));
+        if !self.calendar.is_faulty() {
+            self.check_length(list.len(), span, findings);
+        }
+        let numbers: Vec<_> = list.iter().map(|item| number::number(self.key, item, self.role, findings)).collect();
+        let numbers = numbers.into_iter().collect::<Option<_>>()?;
+        self.calendar.kept(Value::of(numbers), span, findings)
+    }
+
+    fn check_length(&self, length: usize, span: &Span, findings: &mut Findings) {
+        let (key, wanted) = (shown(self.key), self.calendar.horizon().count());
+        if !self.calendar.horizon().is_named() {
+            let message = format!("a list for `{key}` gives one number per period, but the model names no periods");
             findings.add(span, "no-periods", message, NAME_THEM);
-        } else if list.len() != horizon.count() {
-            let numbers = if list.len() == 1 { "number" } else { "numbers" };
-            let message =
-                format!("`{}` lists {} {numbers}, but {} are wanted", shown(self.key), list.len(), horizon.count());
-            let each = if horizon.count() == 1 { "" } else { "each of " };
+        } else if length != wanted {
+            let numbers = if length == 1 { "number" } else { "numbers" };
+            let message = format!("`{key}` lists {length} {numbers}, but {wanted} are wanted");
+            let each = if wanted == 1 { "" } else { "each of " };
             let help = format!("give one number for {each}{}", self.calendar.told());
             findings.add(span, "wrong-length", message, help);
         }
-        let numbers: Vec<_> = list.iter().map(|item| number::number(self.key, item, self.role, findings)).collect();
-        self.calendar.value(numbers.into_iter().collect::<Option<_>>()?, span, findings)
     }
 
     /// The value in a table.
@@ -47,10 +51,11 @@ impl ByPeriod<'_> {
         let named = table.iter().filter(|(word, _)| ![EACH, PER_DAY].contains(&word.get_ref().as_ref()));
         let named: Vec<_> = named.map(|(word, node)| self.of_one(word, node, findings)).collect();
         let (rest, named) = (rest?, named.into_iter().collect::<Option<Vec<_>>>()?);
-        match rest {
-            Some(value) if named.is_empty() => Some(value),
-            rest => self.filled(rest.as_ref(), &named, span, findings),
-        }
+        let value = match rest {
+            Some(value) if named.is_empty() => value,
+            rest => self.filled(rest.as_ref(), &named, span, findings)?,
+        };
+        self.calendar.kept(value, span, findings)
     }
 
     /// What `each` or `per_day` gives for the periods that are not named. The outer `None` is for what is faulty.
@@ -95,7 +100,7 @@ impl ByPeriod<'_> {
                 return None;
             }
         }
-        self.calendar.value(numbers, &node.span(), findings)
+        Some(Value::of(numbers))
     }
 
     fn of_one(&self, word: &Key<'_>, node: &Node<'_>, findings: &mut Findings) -> Option<(Period, f64)> {
@@ -134,7 +139,7 @@ impl ByPeriod<'_> {
             findings.add(span, "period-missing", message, "add one, or `each` for all periods that are not named");
             return None;
         }
-        self.calendar.value(numbers.into_iter().flatten().collect(), span, findings)
+        Some(Value::of(numbers.into_iter().flatten().collect()))
     }
 }
 

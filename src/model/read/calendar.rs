@@ -7,7 +7,7 @@ use super::caps::{MOST_LISTED, MOST_PERIODS};
 use super::fields::name;
 use super::findings::{Findings, Span, shown};
 use super::number::{self, Role};
-use super::toml_types::{Table, kind};
+use super::toml_types::{Node, Table, kind};
 use crate::model::name::Name;
 use crate::model::products;
 use crate::model::value::{Horizon, Period, Value};
@@ -102,22 +102,20 @@ impl Calendar {
         Some(self.horizon.periods().map(product).collect())
     }
 
-    /// The value of one number per period; a fault where the model has too many such numbers to be kept.
-    pub(super) fn value(&self, numbers: Vec<f64>, span: &Span, findings: &mut Findings) -> Option<Value> {
-        let value = Value::of(numbers);
+    /// The value, counted; a fault where the model lists more numbers by period than are kept.
+    pub(super) fn kept(&self, value: Value, span: &Span, findings: &mut Findings) -> Option<Value> {
         let before = self.listed.get();
-        if before > MOST_LISTED {
-            return None;
-        }
         if let Value::Listed(numbers) = &value {
             self.listed.set(before + numbers.len());
         }
-        if self.listed.get() > MOST_LISTED {
+        if self.listed.get() <= MOST_LISTED {
+            return Some(value);
+        }
+        if before <= MOST_LISTED {
             let message = format!("the model lists more than {MOST_LISTED} numbers by period up to here");
             findings.add(span, "too-many", message, "plan fewer periods, or split the model");
-            return None;
         }
-        Some(value)
+        None
     }
 }
 
@@ -140,23 +138,27 @@ fn labels(root: &Table<'_>, findings: &mut Findings) -> Option<Vec<Name>> {
         return None;
     }
     let mut seen = HashSet::new();
-    let mut labels = Vec::with_capacity(list.len());
-    for item in list {
-        let Some(text) = item.get_ref().as_str() else {
-            let message = format!("`periods` holds names, not {}", kind(item));
-            findings.add(&item.span(), "wrong-type", message, "put each name in double quotes");
-            continue;
-        };
-        let Some(label) = name(text, &item.span(), findings) else { continue };
-        if [EACH, PER_DAY].contains(&text) {
-            let message = format!("a period cannot be called `{text}`, which has a meaning of its own in values");
-            findings.add(&item.span(), "bad-name", message, "give it another name");
-        } else if seen.insert(label.clone()) {
-            labels.push(label);
-        } else {
-            let message = format!("period `{}` is given twice", shown(text));
-            findings.add(&item.span(), "duplicate-period", message, "give each period a name of its own");
-        }
-    }
+    let labels: Vec<Name> = list.iter().filter_map(|item| label(item, &mut seen, findings)).collect();
     (labels.len() == list.len()).then_some(labels)
+}
+
+/// The name of one period, which is none of those `seen`.
+fn label(item: &Node<'_>, seen: &mut HashSet<Name>, findings: &mut Findings) -> Option<Name> {
+    let Some(text) = item.get_ref().as_str() else {
+        let message = format!("`periods` holds names, not {}", kind(item));
+        findings.add(&item.span(), "wrong-type", message, "put each name in double quotes");
+        return None;
+    };
+    let label = name(text, &item.span(), findings)?;
+    if [EACH, PER_DAY].contains(&text) {
+        let message = format!("a period cannot be called `{text}`, which has a meaning of its own in values");
+        findings.add(&item.span(), "bad-name", message, "give it another name");
+        return None;
+    }
+    if !seen.insert(label.clone()) {
+        let message = format!("period `{}` is given twice", shown(text));
+        findings.add(&item.span(), "duplicate-period", message, "give each period a name of its own");
+        return None;
+    }
+    Some(label)
 }

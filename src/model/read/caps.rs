@@ -9,6 +9,8 @@ use crate::model::values;
 
 /// The largest file, in bytes.
 pub const MOST_BYTES: usize = 16 * 1024 * 1024;
+/// The most parts of a model.
+pub const MOST_PARTS: usize = 1000;
 /// The most lines in a file.
 pub const MOST_LINES: usize = 500_000;
 /// The most words and signs in a file: what the parser takes memory for, some 100 bytes each.

@@ -69,7 +69,7 @@ fn table<'a, 'i>(root: &'a Table<'i>, section: &str) -> Option<&'a Table<'i>> {
 }
 
 /// Whether the document says it is of the format read here.
-fn format(root: &Table<'_>, findings: &mut Findings) -> bool {
+pub(super) fn format(root: &Table<'_>, findings: &mut Findings) -> bool {
     let Some((key, node)) = root.get_key_value("format") else {
         let message = "`format` is missing".to_owned();
         findings.add(&(0..0), "no-format", message, "begin the file with `format = 1`");

@@ -3,7 +3,7 @@
 use std::ops::Range;
 
 use super::calendar::{EACH, PER_DAY};
-use super::source::Source;
+use super::source::Places;
 use crate::model::fault::{Fault, Faults, MOST_REPORTED};
 use crate::model::name::{LONGEST, Name, NameError};
 use crate::model::near;
@@ -89,9 +89,9 @@ impl Findings {
     }
 
     /// The faults to report, in order of place. `model` is what could be read, for the names it has.
-    pub(super) fn finish(mut self, source: Source<'_>, model: &Model) -> Faults {
+    pub(super) fn finish(mut self, places: impl Places, model: &Model) -> Faults {
         self.prune();
-        let told = |finding: Finding| tell(finding, source, model);
+        let told = |finding: Finding| tell(finding, &places, model);
         Faults { reported: self.kept.into_iter().map(told).collect(), more: self.dropped }
     }
 
@@ -102,12 +102,12 @@ impl Findings {
     }
 }
 
-fn tell(finding: Finding, source: Source<'_>, model: &Model) -> Fault {
+fn tell(finding: Finding, places: &impl Places, model: &Model) -> Fault {
     let help = match finding.cure {
         Cure::Say(text) => text,
         Cure::Nearest(wrong, among) => nearest(&wrong, among, model),
     };
-    source.fault(finding.span, finding.code, finding.message, help)
+    places.fault(finding.span, finding.code, finding.message, help)
 }
 
 fn nearest(wrong: &str, among: Among, model: &Model) -> String {

@@ -13,6 +13,7 @@ mod bytes;
 mod calendar;
 mod caps;
 mod complaints;
+mod csv;
 mod document;
 mod duplicate;
 mod fields;
@@ -26,12 +27,14 @@ mod material;
 mod number;
 mod oddities;
 mod over;
+mod parts;
 mod resource;
 mod source;
 mod syntax;
 mod term;
 mod tiers;
 mod toml_types;
+mod writing;
 
 use std::path::Path;
 
@@ -39,11 +42,13 @@ pub use again::{Before, again};
 pub use blocks::Blocks;
 pub use caps::{
     MOST_ACTIVITIES, MOST_BYTES, MOST_COEFFICIENTS, MOST_COLUMNS, MOST_LIMITS, MOST_LINES, MOST_LISTED, MOST_MATERIALS,
-    MOST_PERIODS, MOST_RESOURCES, MOST_ROWS, MOST_TOKENS,
+    MOST_PARTS, MOST_PERIODS, MOST_RESOURCES, MOST_ROWS, MOST_TOKENS,
 };
 pub use fields::LONGEST_TEXT;
 pub use file::{FileProblem, file};
 pub use number::{LARGEST, SMALLEST_RATE};
+pub use parts::folder::{Listing, is_part};
+pub use writing::{FILE, FOLDER, Writing, forms, is_folder_name, is_in_parts, writing};
 
 use toml::Spanned;
 

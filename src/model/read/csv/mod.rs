@@ -1,0 +1,194 @@
+//! CSV parts: rows become the tables that the same entries would be in TOML, every key and value placed at its cell.
+
+mod cells;
+mod columns;
+mod header;
+mod value;
+
+pub(super) use cells::called;
+pub(super) use columns::{KINDS, Kind};
+pub(super) use header::Periods;
+
+use std::borrow::Cow;
+
+use toml::Spanned;
+use toml::de::DeValue;
+
+use self::cells::{Cell, Cells};
+use self::columns::Holds;
+use self::header::{Column, Header};
+use super::findings::{Findings, shown};
+use super::source::Source;
+use super::toml_types::{Node, Table};
+
+/// A CSV part, placed among the other parts.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Part<'a> {
+    /// Its text.
+    pub(super) source: Source<'a>,
+    /// What every place in it is moved by.
+    pub(super) base: usize,
+    /// What it holds.
+    pub(super) kind: Kind,
+}
+
+/// The entries of a part, or what each activity uses, draws or makes by it: a table for each name.
+pub(super) fn table<'a>(part: Part<'a>, periods: &Periods<'_>, findings: &mut Findings) -> Table<'a> {
+    let mut table = Table::new();
+    let (mut reader, mut cells) = (Cells::of(part.source.text, part.base), Vec::new());
+    // A text of blank lines is an empty one, which is told before.
+    if !reader.record(&mut cells) {
+        return table;
+    }
+    let Some(header) = Header::read(part, &cells, periods, findings) else { return table };
+    while reader.record(&mut cells) {
+        if cells.iter().all(|cell| cell.text.is_empty()) {
+            continue;
+        }
+        let row = Row { part, header: &header, cells: &cells };
+        if row.is_sound(findings) {
+            row.put(&mut table, findings);
+        }
+    }
+    table
+}
+
+/// One row that says something.
+struct Row<'r, 'a> {
+    part: Part<'a>,
+    header: &'r Header<'a>,
+    cells: &'r [Cell<'a>],
+}
+
+impl<'a> Row<'_, 'a> {
+    /// Whether it has the cells it should, each written as it should be.
+    fn is_sound(&self, findings: &mut Findings) -> bool {
+        let Self { part, header, cells } = self;
+        let mut sound = true;
+        for cell in *cells {
+            let raw = part.source.text.get(cell.span.start - part.base..cell.span.end - part.base);
+            sound &= !cells::misquoted(raw.unwrap_or_default(), cell, findings);
+        }
+        if !sound {
+            return false;
+        }
+        let width = header.columns.len();
+        let beyond = cells.iter().skip(width).find(|cell| !cell.text.is_empty());
+        if cells.len() < width || beyond.is_some() {
+            let place = beyond.or(cells.last()).map(|cell| cell.span.clone()).unwrap_or_default();
+            let message = format!("this row has {} cells, and the first row has {width}", cells.len());
+            let cure = if beyond.is_some() {
+                "write numbers with a decimal point, and a text that holds a comma in double quotes"
+            } else {
+                "give it a comma for every cell that is left empty"
+            };
+            findings.add(&place, "row-length", message, cure);
+            return false;
+        }
+        true
+    }
+
+    /// Puts what the row says into the table of its name.
+    fn put(&self, table: &mut Table<'a>, findings: &mut Findings) {
+        let Some(name) = self.named(Holds::Name, findings) else { return };
+        match self.part.kind {
+            Kind::Entries(_) => {
+                if let Some((first, _)) = table.get_key_value(name.text.as_ref()) {
+                    return self.twice(&shown(&name.text), first.span().start, name, findings);
+                }
+                let entry = self.entry(findings);
+                table.insert(key(name), node(name, DeValue::Table(entry)));
+            }
+            Kind::Rates(_) => self.put_rate(name, table, findings),
+        }
+    }
+
+    fn put_rate(&self, activity: &Cell<'a>, table: &mut Table<'a>, findings: &mut Findings) {
+        let Some(other) = self.named(Holds::Other, findings) else { return };
+        let rates = table.entry(key(activity)).or_insert_with(|| node(activity, DeValue::Table(Table::new())));
+        let DeValue::Table(rates) = rates.get_mut() else { return };
+        if let Some((first, _)) = rates.get_key_value(other.text.as_ref()) {
+            let what = format!("{}` of `{}", shown(&other.text), shown(&activity.text));
+            return self.twice(&what, first.span().start, other, findings);
+        }
+        let mut entry = self.entry(findings);
+        match entry.remove(columns::RATE) {
+            Some(rate) => drop(rates.insert(key(other), rate)),
+            // A cell that could not be read is told already.
+            None if self.header.cells(self.cells, Holds::Value(columns::RATE)).all(|cell| cell.text.is_empty()) => {
+                let message = format!("this row gives no rate for `{}`", shown(&other.text));
+                findings.add(&other.span, "no-rate", message, "give a number, or take the row out");
+            }
+            None => {}
+        }
+    }
+
+    /// The cell with the name of what the row is about.
+    fn named(&self, holds: Holds, findings: &mut Findings) -> Option<&Cell<'a>> {
+        let cell = self.header.cells(self.cells, holds).next()?;
+        if cell.text.is_empty() {
+            let word = self.header.columns.iter().find(|column| column.holds == Some(holds));
+            let message =
+                format!("`{}` is empty in this row", word.map(|column| column.word.as_ref()).unwrap_or_default());
+            findings.add(&cell.span, "no-name", message, "give a name, or take the row out");
+            return None;
+        }
+        Some(cell)
+    }
+
+    /// The cells of the row as a table. An empty cell is a key left out.
+    fn entry(&self, findings: &mut Findings) -> Table<'a> {
+        let mut entry = Table::new();
+        for (column, cell) in self.header.columns.iter().zip(self.cells) {
+            if cell.text.is_empty() {
+                continue;
+            }
+            let Some((word, value)) = value::of(column, cell, findings) else { continue };
+            put_value(&mut entry, word, column, cell, node(cell, value));
+        }
+        entry
+    }
+
+    fn twice(&self, what: &str, first: usize, second: &Cell<'_>, findings: &mut Findings) {
+        let line = |at: usize| self.part.source.line(at - self.part.base);
+        let lines = (line(first), line(second.span.start));
+        let message = format!("`{what}` is given twice: on line {} and on line {}", lines.0, lines.1);
+        findings.add(&second.span, "duplicate-key", message, "keep one of the two");
+    }
+}
+
+/// Puts a value under its key: as it is where it is for every period, else into the table of the periods.
+fn put_value<'a>(entry: &mut Table<'a>, word: &'static str, column: &Column<'a>, cell: &Cell<'a>, value: Node<'a>) {
+    let spelt = |word: &'a str| Spanned::new(cell.span.clone(), Cow::Borrowed(word));
+    let Some(given) = entry.get_mut(word) else {
+        let value = match &column.period {
+            None => value,
+            Some(period) => {
+                let list = Table::from_iter([(Spanned::new(cell.span.clone(), period.clone()), value)]);
+                node(cell, DeValue::Table(list))
+            }
+        };
+        entry.insert(spelt(word), value);
+        return;
+    };
+    let period = column.period.clone().unwrap_or(Cow::Borrowed("each"));
+    if let DeValue::Table(list) = given.get_mut() {
+        list.insert(Spanned::new(cell.span.clone(), period), value);
+        return;
+    }
+    // So far there is a number for every period.
+    let span = given.span();
+    let each = std::mem::replace(given, Spanned::new(span.clone(), DeValue::Table(Table::new())));
+    if let DeValue::Table(list) = given.get_mut() {
+        list.insert(Spanned::new(span, Cow::Borrowed("each")), each);
+        list.insert(Spanned::new(cell.span.clone(), period), value);
+    }
+}
+
+fn key<'a>(cell: &Cell<'a>) -> Spanned<Cow<'a, str>> {
+    Spanned::new(cell.span.clone(), cell.text.clone())
+}
+
+fn node<'a>(cell: &Cell<'_>, value: DeValue<'a>) -> Node<'a> {
+    Spanned::new(cell.span.clone(), value)
+}
