@@ -118,3 +118,25 @@ impl From<f64> for Value {
         Self::Every(number)
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_list_of_the_same_number_is_the_number() {
+        assert_eq!(Value::of(vec![2.5, 2.5, 2.5]), Value::Every(2.5));
+        assert_eq!(Value::of(vec![2.5]), Value::Every(2.5));
+        assert_eq!(Value::of(vec![f64::INFINITY; 2]), Value::Every(f64::INFINITY));
+        assert_eq!(Value::of(vec![2.5, 2.0]), Value::Listed(vec![2.5, 2.0]));
+    }
+
+    #[test]
+    fn values_side_by_side_are_as_long_as_the_longer() {
+        let (number, list) = (Value::Every(1.0), Value::Listed(vec![2.0, 3.0]));
+        let beside = |a: &Value, b: &Value| a.beside(b).collect::<Vec<_>>();
+        assert_eq!(beside(&number, &list), [(Period(0), 1.0, 2.0), (Period(1), 1.0, 3.0)]);
+        assert_eq!(beside(&list, &number), [(Period(0), 2.0, 1.0), (Period(1), 3.0, 1.0)]);
+        assert_eq!(beside(&number, &number), [(Period(0), 1.0, 1.0)]);
+    }
+}

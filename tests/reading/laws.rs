@@ -6,7 +6,7 @@ use proptest::collection::vec;
 use proptest::prelude::*;
 
 use super::models::model;
-use super::{TILEWORKS, WEEKS, good, read};
+use super::{TILEWORKS, WEEKS, edited_weeks, good, read};
 
 /// The blocks of a text: what stands before the first table, and each table.
 fn blocks(text: &str) -> Vec<String> {
@@ -200,6 +200,28 @@ proptest! {
         // A bound may now contradict another, and another format is another file; then there is no meaning to compare.
         if let Ok(reading) = read(text.as_bytes()) {
             prop_assert_ne!(Meaning::of(&reading.model), Meaning::of(&good(works).model));
+        }
+    }
+
+    #[test]
+    fn however_a_value_is_written_it_is_the_same(numbers in vec(0..200u32, 3), rest in 0..3usize) {
+        let labels = ["2027-W01", "2027-W02", "2027-W03"];
+        let named = |left_out: Option<u32>| {
+            let told = labels.iter().zip(&numbers).filter(|(_, number)| Some(**number) != left_out);
+            told.fold(String::new(), |text, (label, number)| format!("{text}, \"{label}\" = {number}"))
+        };
+        let list = numbers.iter().fold(String::new(), |text, number| format!("{text}{number}, "));
+        let each = numbers[rest];
+        let ways = [
+            format!("{{ {} }}", named(None).trim_start_matches(", ")),
+            format!("{{ each = {each}{} }}", named(Some(each))),
+            format!("{{ each = 7{} }}", named(None)),
+            format!("{{ per_day = 3{} }}", named(None)),
+        ];
+        let model = |way: &str| good(&edited_weeks("[60, 48, 54]", way)).model;
+        let first = model(&format!("[{list}]"));
+        for way in ways {
+            prop_assert_eq!(&model(&way), &first, "{}", way);
         }
     }
 

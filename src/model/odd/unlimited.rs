@@ -1,11 +1,11 @@
 //! Activities that nothing limits.
 
-use std::collections::HashSet;
+use std::collections::{BTreeMap, HashSet};
 
 use super::{Oddity, entry, terms};
 use crate::model::name::Name;
 use crate::model::types::{Activity, Aim, Material, Model, Resource, Term};
-use crate::model::value::Period;
+use crate::model::value::{Period, Value};
 
 /// Activities that could be carried on without end: no bound, no resource that is scarce and no limit holds them.
 ///
@@ -61,59 +61,65 @@ impl<'m> Limited<'m> {
 
 /// Whether neither its own bounds, nor a resource, nor a material stops an activity in a period.
 fn is_free(model: &Model, activity: &Activity, period: Period) -> bool {
-    let changes = activity.change_at_most.at(period).is_finite() && period.before(1).is_some();
-    let unbounded = !activity.at_most.at(period).is_finite() && !changes;
-    let scarce = |resource: &Resource| {
-        let endless = resource.surge.iter().any(|tier| !tier.at_most.at(period).is_finite());
-        (resource.capacity.at(period).is_finite() && !endless) || resource.at_least.at(period).is_finite()
-    };
-    let mut used = activity.uses.iter().filter(|(_, rate)| rate.at(period) != 0.0);
-    let stopped = used.any(|(name, _)| model.resources.get(name).is_some_and(scarce));
-    let mut drawn = activity.draws.iter().filter(|(_, rate)| rate.at(period) != 0.0);
-    let bought = drawn.all(|(name, rate)| {
-        rate.at(period) > 0.0 && model.materials.get(name).is_some_and(|it| cheapest(it, period).is_some())
-    });
-    let mut made = activity.makes.iter().filter(|(_, rate)| rate.at(period) != 0.0);
-    let gone = made.all(|(name, rate)| {
-        rate.at(period) > 0.0 && model.materials.get(name).is_some_and(|it| best(it, period).is_some())
-    });
-    unbounded && !stopped && bought && gone
+    let held = activity.change_at_most.at(period).is_finite() && period.before(1).is_some();
+    if activity.at_most.at(period).is_finite() || held {
+        return false;
+    }
+    let mut used = rates(&activity.uses, &model.resources, period);
+    let mut drawn = rates(&activity.draws, &model.materials, period);
+    let mut made = rates(&activity.makes, &model.materials, period);
+    used.all(|(_, resource)| !is_scarce(resource, period))
+        && drawn.all(|(rate, material)| rate > 0.0 && cheapest(material, period).is_some())
+        && made.all(|(rate, material)| rate > 0.0 && best(material, period).is_some())
 }
 
-/// What a unit of a material costs, where any amount can be had.
+/// The rates of an activity that are not 0 in a period, each with what it is of.
+fn rates<'m, T>(
+    rates: &'m BTreeMap<Name, Value>,
+    of: &'m BTreeMap<Name, T>,
+    period: Period,
+) -> impl Iterator<Item = (f64, &'m T)> {
+    rates.iter().filter_map(move |(name, rate)| Some((rate.at(period), of.get(name)?))).filter(|(rate, _)| *rate != 0.0)
+}
+
+fn is_scarce(resource: &Resource, period: Period) -> bool {
+    let ends = resource.capacity.at(period).is_finite() && extra(resource, period).is_none();
+    ends || resource.at_least.at(period).is_finite()
+}
+
+/// What a unit of extra capacity costs, where there is any amount of it.
+fn extra(resource: &Resource, period: Period) -> Option<f64> {
+    let endless = resource.surge.iter().filter(|tier| tier.at_most.at(period).is_infinite());
+    endless.map(|tier| tier.cost.at(period)).min_by(f64::total_cmp)
+}
+
+/// What a unit of a material costs, where any amount can be bought.
 fn cheapest(material: &Material, period: Period) -> Option<f64> {
-    let endless = material.purchase.iter().filter(|tier| !tier.at_most.at(period).is_finite());
+    let endless = material.purchase.iter().filter(|tier| tier.at_most.at(period).is_infinite());
     endless.map(|tier| tier.price.at(period)).min_by(f64::total_cmp)
 }
 
 /// What a unit of a material earns, where any amount can be sold or thrown away.
 fn best(material: &Material, period: Period) -> Option<f64> {
-    let sold = material.sale.iter().filter(|tier| !tier.at_most.at(period).is_finite());
+    let sold = material.sale.iter().filter(|tier| tier.at_most.at(period).is_infinite());
     let discard = &material.discard;
-    let thrown = (!discard.at_most.at(period).is_finite()).then(|| -discard.cost.at(period));
+    let thrown = discard.at_most.at(period).is_infinite().then(|| -discard.cost.at(period));
     sold.map(|tier| tier.price.at(period)).chain(thrown).max_by(f64::total_cmp)
 }
 
-/// What one unit of an activity that is free adds to the plan, at least.
+/// What one unit more of an activity that is free adds to the plan in the long run.
 fn gain(model: &Model, activity: &Activity, period: Period) -> f64 {
     let price = match model.aim {
         Aim::Maximise => activity.price.at(period),
         Aim::Minimise => 0.0,
     };
-    let used = activity.uses.iter().filter_map(|(name, rate)| {
-        let resource = model.resources.get(name)?;
-        let surge = resource.surge.iter().filter(|tier| !tier.at_most.at(period).is_finite());
-        let dearest = surge.map(|tier| tier.cost.at(period)).min_by(f64::total_cmp);
-        let beyond = if resource.capacity.at(period).is_finite() { dearest.unwrap_or(0.0) } else { 0.0 };
-        Some(rate.at(period) * (resource.cost.at(period) + beyond))
+    let used = rates(&activity.uses, &model.resources, period).map(|(rate, resource)| {
+        let beyond = if resource.capacity.at(period).is_finite() { extra(resource, period) } else { None };
+        rate * (resource.cost.at(period) + beyond.unwrap_or(0.0))
     });
-    let drawn = activity
-        .draws
-        .iter()
-        .filter_map(|(name, rate)| Some(rate.at(period) * cheapest(model.materials.get(name)?, period)?));
-    let made = activity
-        .makes
-        .iter()
-        .filter_map(|(name, rate)| Some(rate.at(period) * best(model.materials.get(name)?, period)?));
+    let drawn = rates(&activity.draws, &model.materials, period)
+        .map(|(rate, material)| rate * cheapest(material, period).unwrap_or(0.0));
+    let made = rates(&activity.makes, &model.materials, period)
+        .map(|(rate, material)| rate * best(material, period).unwrap_or(0.0));
     price - activity.cost.at(period) - used.sum::<f64>() - drawn.sum::<f64>() + made.sum::<f64>()
 }

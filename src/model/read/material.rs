@@ -4,7 +4,7 @@ use super::bounds;
 use super::fields::{Fields, Given};
 use super::keys;
 use super::number::{self, Role};
-use super::tiers::{self, Order, Price};
+use super::tiers::{self, Order};
 use crate::model::types::{Closing, Discard, Late, Material, Purchase, Sale, Stock};
 use crate::model::value::Value;
 
@@ -20,8 +20,8 @@ pub(super) fn read(fields: &mut Fields<'_, '_>) -> Material {
         label: fields.text("label"),
         unit: fields.text("unit"),
         opening: fields.number("opening", Role::Floor).unwrap_or(0.0),
-        purchase: tiers::read(fields, "purchase", &keys::PURCHASE, Order::Dearer, purchase),
-        sale: tiers::read(fields, "sale", &keys::SALE, Order::Cheaper, sale),
+        purchase: tiers::read(fields, "purchase", &keys::PURCHASE, ("price", Order::Dearer), purchase),
+        sale: tiers::read(fields, "sale", &keys::SALE, ("price", Order::Cheaper), sale),
         // Where a stock is left in any case, a closing that asks for nothing says nothing.
         closing: closing.filter(|closing| stock.is_none() || *closing != Closing::default()),
         stock,
@@ -29,16 +29,16 @@ pub(super) fn read(fields: &mut Fields<'_, '_>) -> Material {
     }
 }
 
-fn purchase(fields: &mut Fields<'_, '_>) -> (Purchase, Price) {
+fn purchase(fields: &mut Fields<'_, '_>) -> (Purchase, Option<Given>) {
     let price = fields.value("price", Role::Amount);
     let (at_least, at_most) = between(fields);
-    (Purchase { price: or(price.clone(), 0.0), at_least, at_most }, Price::of(fields, "price", price))
+    (Purchase { price: or(price.clone(), 0.0), at_least, at_most }, price)
 }
 
-fn sale(fields: &mut Fields<'_, '_>) -> (Sale, Price) {
+fn sale(fields: &mut Fields<'_, '_>) -> (Sale, Option<Given>) {
     let price = fields.value("price", Role::Amount);
     let (at_least, at_most) = between(fields);
-    (Sale { price: or(price.clone(), 0.0), at_least, at_most, late: late(fields) }, Price::of(fields, "price", price))
+    (Sale { price: or(price.clone(), 0.0), at_least, at_most, late: late(fields) }, price)
 }
 
 fn late(fields: &mut Fields<'_, '_>) -> Option<Late> {

@@ -1,10 +1,10 @@
 //! Reading one resource.
 
 use super::bounds;
-use super::fields::Fields;
+use super::fields::{Fields, Given};
 use super::keys;
 use super::number::Role;
-use super::tiers::{self, Order, Price};
+use super::tiers::{self, Order};
 use crate::model::types::{Resource, Surge};
 use crate::model::value::Value;
 
@@ -22,15 +22,12 @@ pub(super) fn read(fields: &mut Fields<'_, '_>) -> Resource {
         capacity: capacity.map_or(default.capacity, |given| given.value),
         at_least: at_least.map_or(default.at_least, |given| given.value),
         cost: fields.value_or("cost", Role::Amount, 0.0),
-        surge: tiers::read(fields, "surge", &keys::SURGE, Order::Dearer, surge),
+        surge: tiers::read(fields, "surge", &keys::SURGE, ("cost", Order::Dearer), surge),
     }
 }
 
-fn surge(fields: &mut Fields<'_, '_>) -> (Surge, Price) {
+fn surge(fields: &mut Fields<'_, '_>) -> (Surge, Option<Given>) {
     let cost = fields.value("cost", Role::Amount);
     let at_most = fields.value_or("at_most", Role::Room, f64::INFINITY);
-    (
-        Surge { at_most, cost: cost.clone().map_or(Value::Every(0.0), |given| given.value) },
-        Price::of(fields, "cost", cost),
-    )
+    (Surge { at_most, cost: cost.clone().map_or(Value::Every(0.0), |given| given.value) }, cost)
 }

@@ -16,33 +16,13 @@ pub(super) enum Order {
     Cheaper,
 }
 
-/// The price of a tier as it was written.
-pub(super) enum Price {
-    /// Not at all, so it is 0.
-    LeftOut,
-    Given(Given),
-    /// Its own fault says enough.
-    Faulty,
-}
-
-impl Price {
-    /// What was read under `key`.
-    pub(super) fn of(fields: &Fields<'_, '_>, key: &str, given: Option<Given>) -> Self {
-        match given {
-            Some(given) => Self::Given(given),
-            None if fields.node(key).is_some() => Self::Faulty,
-            None => Self::LeftOut,
-        }
-    }
-}
-
-/// The tiers under `key`: a table, or a list of tables. `read` reads one and tells its price as it was given.
+/// The tiers under `key`: a table, or a list of tables. `read` reads one and tells its price as it was given, under the key `price`.
 pub(super) fn read<T>(
     fields: &mut Fields<'_, '_>,
     key: &str,
     keys: &'static Keys,
-    order: Order,
-    read: impl Fn(&mut Fields<'_, '_>) -> (T, Price),
+    (price, order): (&str, Order),
+    read: impl Fn(&mut Fields<'_, '_>) -> (T, Option<Given>),
 ) -> Vec<T> {
     let Some(node) = fields.node(key) else { return Vec::new() };
     let nodes = match node.get_ref() {
@@ -57,15 +37,13 @@ pub(super) fn read<T>(
             fields.findings().add(&node.span(), "wrong-type", message, help);
             continue;
         };
-        let (tier, price) = read(&mut fields.within(table, node.span(), keys));
+        let (tier, given) = read(&mut fields.within(table, node.span(), keys));
         tiers.push(tier);
-        prices.push(match price {
-            Price::LeftOut => Some(Given { value: Value::Every(0.0), span: node.span() }),
-            Price::Given(given) => Some(given),
-            Price::Faulty => None,
-        });
+        let left_out = !table.contains_key(price);
+        prices.push(given.or(left_out.then(|| Given { value: Value::Every(0.0), span: node.span() })));
     }
     for (at, pair) in prices.windows(2).enumerate() {
+        // What is faulty has a fault of its own.
         if let [Some(price), Some(next)] = pair {
             in_order(fields, key, at + 1, &price.value, next, order);
         }
