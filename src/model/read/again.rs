@@ -144,7 +144,7 @@ fn replaced(model: &Model, root: &Table<'_>, pieces: &Blocks, calendar: &Calenda
             }
         }
     }
-    let fits = findings.is_empty() && caps::fit(&edited, &there.tags);
+    let fits = findings.is_empty() && !calendar.is_full() && caps::fit(&edited, &there.tags);
     fits.then_some(edited)
 }
 

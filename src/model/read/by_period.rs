@@ -23,7 +23,7 @@ impl ByPeriod<'_> {
         }
         let numbers: Vec<_> = list.iter().map(|item| number::number(self.key, item, self.role, findings)).collect();
         let numbers = numbers.into_iter().collect::<Option<_>>()?;
-        self.calendar.kept(Value::of(numbers), span, findings)
+        self.calendar.kept(Value::of(numbers))
     }
 
     fn check_length(&self, length: usize, span: &Span, findings: &mut Findings) {
@@ -47,6 +47,9 @@ impl ByPeriod<'_> {
             findings.add(span, "wrong-type", message, "give a number, such as 168");
             return None;
         }
+        if self.calendar.is_full() {
+            return None;
+        }
         let rest = self.rest(table, findings);
         let named = table.iter().filter(|(word, _)| ![EACH, PER_DAY].contains(&word.get_ref().as_ref()));
         let named: Vec<_> = named.map(|(word, node)| self.of_one(word, node, findings)).collect();
@@ -55,7 +58,7 @@ impl ByPeriod<'_> {
             Some(value) if named.is_empty() => value,
             rest => self.filled(rest.as_ref(), &named, span, findings)?,
         };
-        self.calendar.kept(value, span, findings)
+        self.calendar.kept(value)
     }
 
     /// What `each` or `per_day` gives for the periods that are not named. The outer `None` is for what is faulty.

@@ -5,7 +5,7 @@ use std::collections::{HashMap, HashSet};
 
 use super::caps::{MOST_LISTED, MOST_PERIODS};
 use super::fields::name;
-use super::findings::{Findings, Span, shown};
+use super::findings::{Findings, shown};
 use super::number::{self, Role};
 use super::toml_types::{Node, Table, kind};
 use crate::model::name::Name;
@@ -102,20 +102,17 @@ impl Calendar {
         Some(self.horizon.periods().map(product).collect())
     }
 
-    /// The value, counted; a fault where the model lists more numbers by period than are kept.
-    pub(super) fn kept(&self, value: Value, span: &Span, findings: &mut Findings) -> Option<Value> {
-        let before = self.listed.get();
+    /// Whether more numbers were listed by period than a model may have, so that no more of them are kept: the whole of it is refused.
+    pub(super) fn is_full(&self) -> bool {
+        self.listed.get() > MOST_LISTED
+    }
+
+    /// The value, counted; `None` where there are too many of them.
+    pub(super) fn kept(&self, value: Value) -> Option<Value> {
         if let Value::Listed(numbers) = &value {
-            self.listed.set(before + numbers.len());
+            self.listed.set(self.listed.get() + numbers.len());
         }
-        if self.listed.get() <= MOST_LISTED {
-            return Some(value);
-        }
-        if before <= MOST_LISTED {
-            let message = format!("the model lists more than {MOST_LISTED} numbers by period up to here");
-            findings.add(span, "too-many", message, "plan fewer periods, or split the model");
-        }
-        None
+        (!self.is_full()).then_some(value)
     }
 }
 

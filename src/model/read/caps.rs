@@ -1,5 +1,6 @@
 //! How large a model may be. Each cap is far above what planning is meant for, and keeps a hostile file from taking the machine.
 
+use super::calendar::Calendar;
 use super::findings::{Findings, Span};
 use super::known::Tags;
 use super::toml_types::Table;
@@ -35,7 +36,11 @@ pub const MOST_COEFFICIENTS: usize = 2_000_000;
 pub const MOST_LISTED: usize = 4_000_000;
 
 /// Adds a fault for each cap that the model exceeds.
-pub(super) fn check(root: &Table<'_>, model: &Model, tags: &Tags, findings: &mut Findings) {
+pub(super) fn check(root: &Table<'_>, model: &Model, calendar: &Calendar, tags: &Tags, findings: &mut Findings) {
+    if calendar.is_full() {
+        let message = format!("the model lists more than {MOST_LISTED} numbers by period");
+        findings.add(&span(root, "periods"), "too-many", message, "plan fewer periods, or split the model");
+    }
     let counts = [
         ("resources", model.resources.len(), MOST_RESOURCES),
         ("activities", model.activities.len(), MOST_ACTIVITIES),

@@ -48,7 +48,7 @@ pub(super) fn model(root: &Table<'_>, findings: &mut Findings) -> (Model, Option
     let there = Summable { supplies, activities, tags: known::tags(&model.activities) };
     model.limits = walk.section("limits", &keys::LIMIT, |fields| limit::read(fields, &there));
     let tags = there.tags;
-    caps::check(root, &model, &tags, findings);
+    caps::check(root, &model, &calendar, &tags, findings);
     (model, calendar.days().cloned())
 }
 
