@@ -10,6 +10,7 @@ pub(super) use columns::{KINDS, Kind};
 pub(super) use header::Periods;
 
 use std::borrow::Cow;
+use std::path::Path;
 
 use toml::Spanned;
 use toml::de::DeValue;
@@ -20,12 +21,13 @@ use self::header::{Column, Header};
 use super::findings::{Findings, shown};
 use super::source::Source;
 use super::toml_types::{Node, Table};
+use crate::model::name::Name;
 
 /// A CSV part, placed among the other parts.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Part<'a> {
     /// Its text.
-    pub(super) source: Source<'a>,
+    pub(super) text: &'a str,
     /// What every place in it is moved by.
     pub(super) base: usize,
     /// What it holds.
@@ -35,7 +37,7 @@ pub(super) struct Part<'a> {
 /// The entries of a part, or what each activity uses, draws or makes by it: a table for each name.
 pub(super) fn table<'a>(part: Part<'a>, periods: &Periods<'_>, findings: &mut Findings) -> Table<'a> {
     let mut table = Table::new();
-    let (mut reader, mut cells) = (Cells::of(part.source.text, part.base), Vec::new());
+    let (mut reader, mut cells) = (Cells::of(part.text, part.base), Vec::new());
     // A text of blank lines is an empty one, which is told before.
     if !reader.record(&mut cells) {
         return table;
@@ -53,6 +55,31 @@ pub(super) fn table<'a>(part: Part<'a>, periods: &Periods<'_>, findings: &mut Fi
     table
 }
 
+/// Where the rows of a part begin that say something, each with its name: what lets an edited part be read by its edited rows alone. `None`
+/// where a row has no name.
+pub(super) fn rows(text: &str, kind: Kind) -> Option<Vec<(usize, Name)>> {
+    let (mut reader, mut cells) = (Cells::of(text, 0), Vec::new());
+    reader.record(&mut cells);
+    let named = cells.iter().position(|cell| kind.column(&cell.text) == Some(Holds::Name))?;
+    let mut rows: Vec<(usize, Name)> = Vec::new();
+    while reader.record(&mut cells) {
+        if cells.iter().all(|cell| cell.text.is_empty()) {
+            continue;
+        }
+        // A cell's place leaves out the blanks before it; the row begins with its line.
+        let first = cells.first()?.span.start;
+        let start = text.get(..first)?.rfind('\n').map_or(0, |end| end + 1);
+        let text = &cells.get(named)?.text;
+        // Rows of one name mostly follow each other.
+        let name = match rows.last().filter(|(_, last)| last.as_str() == text) {
+            Some((_, last)) => last.clone(),
+            None => Name::new(text).ok()?,
+        };
+        rows.push((start, name));
+    }
+    Some(rows)
+}
+
 /// One row that says something.
 struct Row<'r, 'a> {
     part: Part<'a>,
@@ -66,7 +93,7 @@ impl<'a> Row<'_, 'a> {
         let Self { part, header, cells } = self;
         let mut sound = true;
         for cell in *cells {
-            let raw = part.source.text.get(cell.span.start - part.base..cell.span.end - part.base);
+            let raw = part.text.get(cell.span.start - part.base..cell.span.end - part.base);
             sound &= !cells::misquoted(raw.unwrap_or_default(), cell, findings);
         }
         if !sound {
@@ -150,7 +177,8 @@ impl<'a> Row<'_, 'a> {
     }
 
     fn twice(&self, what: &str, first: usize, second: &Cell<'_>, findings: &mut Findings) {
-        let line = |at: usize| self.part.source.line(at - self.part.base);
+        let source = Source { path: Path::new(""), text: self.part.text };
+        let line = |at: usize| source.line(at - self.part.base);
         let lines = (line(first), line(second.span.start));
         let message = format!("`{what}` is given twice: on line {} and on line {}", lines.0, lines.1);
         findings.add(&second.span, "duplicate-key", message, "keep one of the two");
