@@ -7,7 +7,7 @@ use std::os::unix::ffi::{OsStrExt, OsStringExt};
 use std::path::{Path, PathBuf};
 
 use super::parts::{self, bundle, folder};
-use super::{Before, Blocks, FileProblem, Reading, again, file, text, text_and_blocks};
+use super::{Before, Blocks, FileProblem, Reading, Traces, again, file, text, text_and_blocks};
 use crate::model::fault::{Fault, Faults};
 use crate::model::types::Model;
 
@@ -183,7 +183,7 @@ pub enum Traced {
     /// In a file.
     File(Blocks),
     /// In parts.
-    Parts(parts::Traces),
+    Parts(Traces),
 }
 
 impl Default for Traced {
