@@ -18,7 +18,8 @@ use toml::de::DeValue;
 use self::cells::{Cell, Cells};
 use self::columns::Holds;
 use self::header::{Column, Header};
-use super::findings::{Findings, shown};
+use super::calendar::EACH;
+use super::findings::{Findings, Span, shown};
 use super::source::Source;
 use super::toml_types::{Node, Table};
 use crate::model::name::Name;
@@ -138,8 +139,13 @@ impl<'a> Row<'_, 'a> {
             let what = format!("{}` of `{}", shown(&other.text), shown(&activity.text));
             return self.twice(&what, first.span().start, other, findings);
         }
-        let mut entry = self.entry(findings);
-        match entry.remove(columns::RATE) {
+        let mut rate = None;
+        for (column, cell) in self.given() {
+            if let Some((_, value)) = value::of(column, cell, findings) {
+                rate = Some(joined(rate, column, cell, node(cell, value)));
+            }
+        }
+        match rate {
             Some(rate) => drop(rates.insert(key(other), rate)),
             // A cell that could not be read is told already.
             None if self.header.cells(self.cells, Holds::Value(columns::RATE)).all(|cell| cell.text.is_empty()) => {
@@ -163,17 +169,30 @@ impl<'a> Row<'_, 'a> {
         Some(cell)
     }
 
-    /// The cells of the row as a table. An empty cell is a key left out.
+    /// The cells of the row as a table.
     fn entry(&self, findings: &mut Findings) -> Table<'a> {
         let mut entry = Table::new();
-        for (column, cell) in self.header.columns.iter().zip(self.cells) {
-            if cell.text.is_empty() {
-                continue;
-            }
+        for (column, cell) in self.given() {
             let Some((word, value)) = value::of(column, cell, findings) else { continue };
-            put_value(&mut entry, word, column, cell, node(cell, value));
+            let value = node(cell, value);
+            match entry.get_mut(word) {
+                Some(given) => {
+                    let span = given.span();
+                    let before = std::mem::replace(given, Spanned::new(span, DeValue::Boolean(false)));
+                    *given = joined(Some(before), column, cell, value);
+                }
+                None => {
+                    let word = Spanned::new(cell.span.clone(), Cow::Borrowed(word));
+                    entry.insert(word, joined(None, column, cell, value));
+                }
+            }
         }
         entry
+    }
+
+    /// The cells that hold something, with their columns. An empty cell is a key left out.
+    fn given(&self) -> impl Iterator<Item = (&Column<'a>, &Cell<'a>)> {
+        self.header.columns.iter().zip(self.cells).filter(|(_, cell)| !cell.text.is_empty())
     }
 
     fn twice(&self, what: &str, first: usize, second: &Cell<'_>, findings: &mut Findings) {
@@ -185,32 +204,23 @@ impl<'a> Row<'_, 'a> {
     }
 }
 
-/// Puts a value under its key: as it is where it is for every period, else into the table of the periods.
-fn put_value<'a>(entry: &mut Table<'a>, word: &'static str, column: &Column<'a>, cell: &Cell<'a>, value: Node<'a>) {
-    let spelt = |word: &'a str| Spanned::new(cell.span.clone(), Cow::Borrowed(word));
-    let Some(given) = entry.get_mut(word) else {
-        let value = match &column.period {
-            None => value,
-            Some(period) => {
-                let list = Table::from_iter([(Spanned::new(cell.span.clone(), period.clone()), value)]);
-                node(cell, DeValue::Table(list))
+/// What a key stands for once another of its cells is read: a number for every period, or a table of those for some.
+fn joined<'a>(given: Option<Node<'a>>, column: &Column<'a>, cell: &Cell<'a>, value: Node<'a>) -> Node<'a> {
+    let spelt = |span: &Span, period: &Cow<'a, str>| Spanned::new(span.clone(), period.clone());
+    let each = Cow::Borrowed(EACH);
+    let (mut list, span) = match (given, &column.period) {
+        (None, None) => return value,
+        (None, Some(_)) => (Table::new(), cell.span.clone()),
+        (Some(given), _) => {
+            let span = given.span();
+            match given.into_inner() {
+                DeValue::Table(list) => (list, span),
+                number => (Table::from_iter([(spelt(&span, &each), Spanned::new(span.clone(), number))]), span),
             }
-        };
-        entry.insert(spelt(word), value);
-        return;
+        }
     };
-    let period = column.period.clone().unwrap_or(Cow::Borrowed("each"));
-    if let DeValue::Table(list) = given.get_mut() {
-        list.insert(Spanned::new(cell.span.clone(), period), value);
-        return;
-    }
-    // So far there is a number for every period.
-    let span = given.span();
-    let each = std::mem::replace(given, Spanned::new(span.clone(), DeValue::Table(Table::new())));
-    if let DeValue::Table(list) = given.get_mut() {
-        list.insert(Spanned::new(span, Cow::Borrowed("each")), each);
-        list.insert(Spanned::new(cell.span.clone(), period), value);
-    }
+    list.insert(spelt(&cell.span, column.period.as_ref().unwrap_or(&each)), value);
+    Spanned::new(span, DeValue::Table(list))
 }
 
 fn key<'a>(cell: &Cell<'a>) -> Spanned<Cow<'a, str>> {
