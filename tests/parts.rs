@@ -2,6 +2,8 @@
 
 #![expect(clippy::unwrap_used, reason = "helpers of tests stop at what they did not expect")]
 
+#[path = "parts/again.rs"]
+mod again;
 #[path = "parts/faults.rs"]
 mod faults;
 #[path = "parts/good.rs"]

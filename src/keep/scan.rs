@@ -24,7 +24,7 @@ pub struct Stamp {
     /// The same; moves with every write and cannot be set back.
     changed: (i64, i64),
     /// A mark of the parts in a model's folder.
-    parts: Option<u128>,
+    parts: Option<u64>,
 }
 
 impl Stamp {

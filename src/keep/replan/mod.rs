@@ -29,7 +29,7 @@ use crate::edits::{Edit, Kept, Renames, compare, compare_renamed};
 use crate::lp::{Program, build};
 use crate::model::Model;
 use crate::model::meaning::Meaning;
-use crate::model::read::{self, Blocks, FileProblem, Writing};
+use crate::model::read::{self, FileProblem, Traced, Writing};
 use crate::plan::note::{Reckoning, Trouble, Verdict};
 use crate::plan::text::{self, marked};
 use crate::plan::{self, Plan, Standing};
@@ -98,7 +98,7 @@ impl From<StoreError> for Stopped {
 /// A model that was read, on its way to a plan.
 struct Read {
     bytes: Vec<u8>,
-    blocks: Blocks,
+    traced: Traced,
     model: Model,
     meaning: Meaning,
 }
@@ -170,9 +170,9 @@ impl Replanner {
             }
         }
         let path = job.path.seen();
-        let again = at_hand.and_then(|known| writing.read_again(&path, known.text()));
-        let whole = || writing.read_with_blocks(&path);
-        let (model, blocks) = match again.map_or_else(whole, Ok) {
+        let again = at_hand.and_then(|known| writing.read_again(&path, known.writing()));
+        let whole = || writing.read_tracing(&path);
+        let (model, traced) = match again.map_or_else(whole, Ok) {
             Ok(read) => read,
             Err(faults) => {
                 // What was read may be half of a save that has begun since: then there is no fault, but another look to be had.
@@ -184,7 +184,7 @@ impl Replanner {
             }
         };
         let meaning = Meaning::of(&model);
-        let read = Read { bytes: writing.into_bytes(), blocks, model, meaning };
+        let read = Read { bytes: writing.into_bytes(), traced, model, meaning };
         heed(stop)?;
         let known = self.memory.known(&job.path, || recorded.get());
         let on_disk = disk.plan()?;
@@ -343,8 +343,8 @@ impl Replanner {
         let mut report = telling.planned(before, &plan, Some((&solved.reckoning, &solved.account)));
         report.milliseconds.write = milliseconds(begun.elapsed());
         let Record { source: bytes, basis, cold_pivots, .. } = record;
-        let Read { blocks, model, .. } = read;
-        self.memory.keep(&job.path, Known { bytes, blocks, model, program, plan, basis, cold_pivots });
+        let Read { traced, model, .. } = read;
+        self.memory.keep(&job.path, Known { bytes, traced, model, program, plan, basis, cold_pivots });
         Ok(Told { report, changed })
     }
 }

@@ -34,6 +34,10 @@ pub struct Before<'a> {
 pub fn again(path: &Path, bytes: &[u8], before: Before<'_>) -> Option<(Model, Blocks)> {
     let (old, new) = (bytes::text(path, before.bytes).ok()?, bytes::text(path, bytes).ok()?);
     let edited = Edited::between(old.text, new.text, &before.blocks.tables)?;
+    // Where most of the text is new, reading it whole costs no more.
+    if 2 * edited.text.len() >= new.text.len() {
+        return None;
+    }
     let piece = new.text.get(edited.text.clone())?;
     let root = syntax::parse(super::source::Source { path, text: piece }).ok()?;
     let pieces = Blocks::of(piece, root.get_ref(), None);
@@ -50,17 +54,18 @@ pub fn again(path: &Path, bytes: &[u8], before: Before<'_>) -> Option<(Model, Bl
 }
 
 /// The part of a text that was edited, as whole blocks.
-struct Edited {
+pub(super) struct Edited {
     /// The blocks.
-    blocks: Range<usize>,
+    pub(super) blocks: Range<usize>,
     /// Where they lie in the new text.
-    text: Range<usize>,
+    pub(super) text: Range<usize>,
     /// How far what follows has moved, as new place less old place.
-    moved: isize,
+    pub(super) moved: isize,
 }
 
 impl Edited {
-    fn between(old: &str, new: &str, blocks: &[Block]) -> Option<Self> {
+    /// What is different in `new`, where the text before had these blocks.
+    pub(super) fn between(old: &str, new: &str, blocks: &[Block]) -> Option<Self> {
         let from = common(old.as_bytes().chunks(STRIDE).zip(new.as_bytes().chunks(STRIDE)), |(a, b)| {
             a.iter().zip(b).take_while(|(a, b)| a == b).count()
         });
@@ -76,10 +81,9 @@ impl Edited {
         let moved = isize::try_from(new.len()).ok()? - isize::try_from(old.len()).ok()?;
         let text = start..end.checked_add_signed(moved)?;
         // The next block must go on beginning a line.
-        let whole = last == blocks.len() || new.get(text.clone())?.ends_with('\n');
-        // Where most of the text is new, reading it whole costs no more.
-        let worth_it = 2 * text.len() < new.len();
-        (whole && worth_it).then_some(Self { blocks: first..last, text, moved })
+        let piece = new.get(text.clone())?;
+        let whole = last == blocks.len() || piece.is_empty() || piece.ends_with('\n');
+        whole.then_some(Self { blocks: first..last, text, moved })
     }
 
     /// The blocks of the new text: those of `old`, with `pieces` in place of those edited.
@@ -115,7 +119,7 @@ fn common<'a>(
 }
 
 /// `model` with the entries of a piece in place of what they were. `None` where what others refer to has changed, or for a fault.
-fn replaced(model: &Model, root: &Table<'_>, pieces: &Blocks, calendar: &Calendar) -> Option<Model> {
+pub(super) fn replaced(model: &Model, root: &Table<'_>, pieces: &Blocks, calendar: &Calendar) -> Option<Model> {
     let mut findings = Findings::default();
     let mut edited = model.clone();
     let supplies =

@@ -24,7 +24,7 @@ pub(super) struct Block {
 }
 
 /// A section of a model.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
 pub(super) enum Section {
     Resources,
     Activities,

@@ -47,8 +47,9 @@ pub use caps::{
 pub use fields::LONGEST_TEXT;
 pub use file::{FileProblem, file};
 pub use number::{LARGEST, SMALLEST_RATE};
+pub use parts::Traces;
 pub use parts::folder::{Listing, is_part};
-pub use writing::{FILE, FOLDER, Writing, forms, is_folder_name, is_in_parts, writing};
+pub use writing::{FILE, FOLDER, Traced, Writing, forms, is_folder_name, is_in_parts, writing};
 
 use toml::Spanned;
 

@@ -7,7 +7,7 @@ use std::os::unix::ffi::{OsStrExt, OsStringExt};
 use std::path::{Path, PathBuf};
 
 use super::parts::{self, bundle, folder};
-use super::{Before, Blocks, FileProblem, Reading, again, file, text, text_and_blocks};
+use super::{Before, Blocks, FileProblem, Reading, Traces, again, file, text, text_and_blocks};
 use crate::model::fault::{Fault, Faults};
 use crate::model::types::Model;
 
@@ -123,46 +123,72 @@ impl Writing {
     /// The model it spells. Pure: `path`, in either form, is only repeated in faults.
     ///
     /// # Errors
-    /// As [`text`](super::text).
+    /// As [`text()`].
     pub fn read(&self, path: &Path) -> Result<Reading, Faults> {
-        let path = self.path(path);
-        self.all_there(&path)?;
-        if self.is_in_parts() { parts::whole(&path, &bundle::parts(&self.bytes)) } else { text(&path, &self.bytes) }
+        let path = self.sound(path)?;
+        if self.is_in_parts() { parts::read(&path, &bundle::parts(&self.bytes)) } else { text(&path, &self.bytes) }
     }
 
-    /// The model it spells, read by what differs from what was read before; `None` where all of it must be read.
-    #[must_use]
-    pub fn read_again(&self, path: &Path, before: Before<'_>) -> Option<(Model, Blocks)> {
-        if !self.amiss.is_empty() || self.is_in_parts() {
-            return None;
-        }
-        again(&self.path(path), &self.bytes, before)
-    }
-
-    /// The model it spells, and where the tables of a file's text lie. Does not look for oddities.
+    /// As [`Writing::read`], but for the oddities, and with what lets it be read again once it is edited.
     ///
     /// # Errors
-    /// As [`text`](super::text).
-    pub fn read_with_blocks(&self, path: &Path) -> Result<(Model, Blocks), Faults> {
-        let path = self.path(path);
-        self.all_there(&path)?;
-        if !self.is_in_parts() {
-            return text_and_blocks(&path, &self.bytes);
+    /// As [`text()`].
+    pub fn read_tracing(&self, path: &Path) -> Result<(Model, Traced), Faults> {
+        let path = self.sound(path)?;
+        if self.is_in_parts() {
+            let (model, traces) = parts::read_tracing(&path, &bundle::parts(&self.bytes))?;
+            return Ok((model, Traced::Parts(traces)));
         }
-        Ok((parts::model(&path, &bundle::parts(&self.bytes))?, Blocks::default()))
+        let (model, blocks) = text_and_blocks(&path, &self.bytes)?;
+        Ok((model, Traced::File(blocks)))
     }
 
-    /// # Errors
-    /// The faults of what could not be read of it.
-    fn all_there(&self, path: &Path) -> Result<(), Faults> {
-        if !self.amiss.is_empty() {
-            let placed = |fault: &Fault| {
-                let whole = fault.path.as_os_str().is_empty();
-                Fault { path: if whole { path.to_path_buf() } else { path.join(&fault.path) }, ..fault.clone() }
-            };
-            return Err(Faults { reported: self.amiss.iter().map(placed).collect(), more: 0 });
+    /// The model it spells, read by what differs from `before`, which had these bytes and traces and spelt this model. `None` where all of
+    /// it must be read.
+    #[must_use]
+    pub fn read_again(&self, path: &Path, before: (&[u8], &Traced, &Model)) -> Option<(Model, Traced)> {
+        let path = self.sound(path).ok()?;
+        let (bytes, traced, model) = before;
+        match traced {
+            Traced::File(blocks) if !self.is_in_parts() => {
+                let (model, blocks) = again(&path, &self.bytes, Before { bytes, blocks, model })?;
+                Some((model, Traced::File(blocks)))
+            }
+            Traced::Parts(traces) if self.is_in_parts() => {
+                let (now, before) = (bundle::parts(&self.bytes), bundle::parts(bytes));
+                let (model, traces) = parts::again(&path, &now, &before, (traces, model))?;
+                Some((model, Traced::Parts(traces)))
+            }
+            _ => None,
         }
-        Ok(())
+    }
+
+    /// The path in the form that it was read in, where it can be gone by.
+    fn sound<'a>(&self, path: &'a Path) -> Result<Cow<'a, Path>, Faults> {
+        let path = self.path(path);
+        if self.amiss.is_empty() {
+            return Ok(path);
+        }
+        let placed = |fault: &Fault| {
+            let whole = fault.path.as_os_str().is_empty();
+            Fault { path: if whole { path.to_path_buf() } else { path.join(&fault.path) }, ..fault.clone() }
+        };
+        Err(Faults { reported: self.amiss.iter().map(placed).collect(), more: 0 })
+    }
+}
+
+/// Where what a writing says lies in it, as far as that is plain to see: what lets it be read by what was edited.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Traced {
+    /// In a file.
+    File(Blocks),
+    /// In parts.
+    Parts(Traces),
+}
+
+impl Default for Traced {
+    fn default() -> Self {
+        Self::File(Blocks::default())
     }
 }
 

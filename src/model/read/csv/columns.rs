@@ -96,7 +96,15 @@ impl Kind {
         KINDS.iter().find(|(known, _)| *known == name).map(|&(_, kind)| kind)
     }
 
-    /// What stands at a place of a row.
+    /// The section that its rows are about.
+    pub(in crate::model::read) fn section(self) -> &'static str {
+        match self {
+            Self::Entries(entries) => entries.section,
+            Self::Rates(_) => "activities",
+        }
+    }
+
+    /// What the cells of a column hold that is called so; `None` where there is no such column.
     pub(super) fn column(self, word: &str) -> Option<Holds> {
         let given = |list: &'static [&'static str]| list.iter().copied().find(|key| *key == word);
         match self {

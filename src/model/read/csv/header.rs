@@ -73,7 +73,7 @@ impl<'a> Header<'a> {
                 findings.add(&cell.span, "duplicate-key", message, "keep one of the two");
             }
             seen.insert(&cell.text, at);
-            let raw = part.source.text.get(cell.span.start - part.base..cell.span.end - part.base);
+            let raw = part.text.get(cell.span.start - part.base..cell.span.end - part.base);
             let sound = !cells::misquoted(raw.unwrap_or_default(), cell, findings);
             columns.push(if sound { column(part.kind, cell, periods, findings) } else { nameless() });
         }
@@ -163,7 +163,7 @@ fn is_period(period: &str, cell: &Cell<'_>, periods: &Periods<'_>, findings: &mu
 fn separated_otherwise(part: Part<'_>, cells: &[Cell<'_>], findings: &mut Findings) -> bool {
     let [cell] = cells else { return false };
     let Some(sign) = [';', '\t', '|'].into_iter().find(|&sign| cell.text.contains(sign)) else { return false };
-    let at = part.source.text.find(sign).unwrap_or_default() + part.base;
+    let at = part.text.find(sign).unwrap_or_default() + part.base;
     let told = if sign == '\t' { "a tab".to_owned() } else { format!("`{sign}`") };
     let message = format!("{told} stands between the cells, where a comma is meant");
     let help = "save it with commas between cells and a decimal point in numbers";

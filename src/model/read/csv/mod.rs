@@ -10,6 +10,7 @@ pub(super) use columns::{KINDS, Kind};
 pub(super) use header::Periods;
 
 use std::borrow::Cow;
+use std::path::Path;
 
 use toml::Spanned;
 use toml::de::DeValue;
@@ -17,15 +18,17 @@ use toml::de::DeValue;
 use self::cells::{Cell, Cells};
 use self::columns::Holds;
 use self::header::{Column, Header};
-use super::findings::{Findings, shown};
+use super::calendar::EACH;
+use super::findings::{Findings, Span, shown};
 use super::source::Source;
 use super::toml_types::{Node, Table};
+use crate::model::name::Name;
 
 /// A CSV part, placed among the other parts.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Part<'a> {
     /// Its text.
-    pub(super) source: Source<'a>,
+    pub(super) text: &'a str,
     /// What every place in it is moved by.
     pub(super) base: usize,
     /// What it holds.
@@ -35,7 +38,7 @@ pub(super) struct Part<'a> {
 /// The entries of a part, or what each activity uses, draws or makes by it: a table for each name.
 pub(super) fn table<'a>(part: Part<'a>, periods: &Periods<'_>, findings: &mut Findings) -> Table<'a> {
     let mut table = Table::new();
-    let (mut reader, mut cells) = (Cells::of(part.source.text, part.base), Vec::new());
+    let (mut reader, mut cells) = (Cells::of(part.text, part.base), Vec::new());
     // A text of blank lines is an empty one, which is told before.
     if !reader.record(&mut cells) {
         return table;
@@ -53,6 +56,31 @@ pub(super) fn table<'a>(part: Part<'a>, periods: &Periods<'_>, findings: &mut Fi
     table
 }
 
+/// Where the rows of a part begin that say something, each with its name: what lets an edited part be read by its edited rows alone. `None`
+/// where a row has no name.
+pub(super) fn rows(text: &str, kind: Kind) -> Option<Vec<(usize, Name)>> {
+    let (mut reader, mut cells) = (Cells::of(text, 0), Vec::new());
+    reader.record(&mut cells);
+    let named = cells.iter().position(|cell| kind.column(&cell.text) == Some(Holds::Name))?;
+    let mut rows: Vec<(usize, Name)> = Vec::new();
+    while reader.record(&mut cells) {
+        if cells.iter().all(|cell| cell.text.is_empty()) {
+            continue;
+        }
+        // A cell's place leaves out the blanks before it; the row begins with its line.
+        let first = cells.first()?.span.start;
+        let start = text.get(..first)?.rfind('\n').map_or(0, |end| end + 1);
+        let text = &cells.get(named)?.text;
+        // Rows of one name mostly follow each other.
+        let name = match rows.last().filter(|(_, last)| last.as_str() == text) {
+            Some((_, last)) => last.clone(),
+            None => Name::new(text).ok()?,
+        };
+        rows.push((start, name));
+    }
+    Some(rows)
+}
+
 /// One row that says something.
 struct Row<'r, 'a> {
     part: Part<'a>,
@@ -66,7 +94,7 @@ impl<'a> Row<'_, 'a> {
         let Self { part, header, cells } = self;
         let mut sound = true;
         for cell in *cells {
-            let raw = part.source.text.get(cell.span.start - part.base..cell.span.end - part.base);
+            let raw = part.text.get(cell.span.start - part.base..cell.span.end - part.base);
             sound &= !cells::misquoted(raw.unwrap_or_default(), cell, findings);
         }
         if !sound {
@@ -111,8 +139,13 @@ impl<'a> Row<'_, 'a> {
             let what = format!("{}` of `{}", shown(&other.text), shown(&activity.text));
             return self.twice(&what, first.span().start, other, findings);
         }
-        let mut entry = self.entry(findings);
-        match entry.remove(columns::RATE) {
+        let mut rate = None;
+        for (column, cell) in self.given() {
+            if let Some((_, value)) = value::of(column, cell, findings) {
+                rate = Some(joined(rate, column, cell, node(cell, value)));
+            }
+        }
+        match rate {
             Some(rate) => drop(rates.insert(key(other), rate)),
             // A cell that could not be read is told already.
             None if self.header.cells(self.cells, Holds::Value(columns::RATE)).all(|cell| cell.text.is_empty()) => {
@@ -136,53 +169,58 @@ impl<'a> Row<'_, 'a> {
         Some(cell)
     }
 
-    /// The cells of the row as a table. An empty cell is a key left out.
+    /// The cells of the row as a table.
     fn entry(&self, findings: &mut Findings) -> Table<'a> {
         let mut entry = Table::new();
-        for (column, cell) in self.header.columns.iter().zip(self.cells) {
-            if cell.text.is_empty() {
-                continue;
-            }
+        for (column, cell) in self.given() {
             let Some((word, value)) = value::of(column, cell, findings) else { continue };
-            put_value(&mut entry, word, column, cell, node(cell, value));
+            let value = node(cell, value);
+            match entry.get_mut(word) {
+                Some(given) => {
+                    let span = given.span();
+                    let before = std::mem::replace(given, Spanned::new(span, DeValue::Boolean(false)));
+                    *given = joined(Some(before), column, cell, value);
+                }
+                None => {
+                    let word = Spanned::new(cell.span.clone(), Cow::Borrowed(word));
+                    entry.insert(word, joined(None, column, cell, value));
+                }
+            }
         }
         entry
     }
 
+    /// The cells that hold something, with their columns. An empty cell is a key left out.
+    fn given(&self) -> impl Iterator<Item = (&Column<'a>, &Cell<'a>)> {
+        self.header.columns.iter().zip(self.cells).filter(|(_, cell)| !cell.text.is_empty())
+    }
+
     fn twice(&self, what: &str, first: usize, second: &Cell<'_>, findings: &mut Findings) {
-        let line = |at: usize| self.part.source.line(at - self.part.base);
+        let source = Source { path: Path::new(""), text: self.part.text };
+        let line = |at: usize| source.line(at - self.part.base);
         let lines = (line(first), line(second.span.start));
         let message = format!("`{what}` is given twice: on line {} and on line {}", lines.0, lines.1);
         findings.add(&second.span, "duplicate-key", message, "keep one of the two");
     }
 }
 
-/// Puts a value under its key: as it is where it is for every period, else into the table of the periods.
-fn put_value<'a>(entry: &mut Table<'a>, word: &'static str, column: &Column<'a>, cell: &Cell<'a>, value: Node<'a>) {
-    let spelt = |word: &'a str| Spanned::new(cell.span.clone(), Cow::Borrowed(word));
-    let Some(given) = entry.get_mut(word) else {
-        let value = match &column.period {
-            None => value,
-            Some(period) => {
-                let list = Table::from_iter([(Spanned::new(cell.span.clone(), period.clone()), value)]);
-                node(cell, DeValue::Table(list))
+/// What a key stands for once another of its cells is read: a number for every period, or a table of those for some.
+fn joined<'a>(given: Option<Node<'a>>, column: &Column<'a>, cell: &Cell<'a>, value: Node<'a>) -> Node<'a> {
+    let spelt = |span: &Span, period: &Cow<'a, str>| Spanned::new(span.clone(), period.clone());
+    let each = Cow::Borrowed(EACH);
+    let (mut list, span) = match (given, &column.period) {
+        (None, None) => return value,
+        (None, Some(_)) => (Table::new(), cell.span.clone()),
+        (Some(given), _) => {
+            let span = given.span();
+            match given.into_inner() {
+                DeValue::Table(list) => (list, span),
+                number => (Table::from_iter([(spelt(&span, &each), Spanned::new(span.clone(), number))]), span),
             }
-        };
-        entry.insert(spelt(word), value);
-        return;
+        }
     };
-    let period = column.period.clone().unwrap_or(Cow::Borrowed("each"));
-    if let DeValue::Table(list) = given.get_mut() {
-        list.insert(Spanned::new(cell.span.clone(), period), value);
-        return;
-    }
-    // So far there is a number for every period.
-    let span = given.span();
-    let each = std::mem::replace(given, Spanned::new(span.clone(), DeValue::Table(Table::new())));
-    if let DeValue::Table(list) = given.get_mut() {
-        list.insert(Spanned::new(span, Cow::Borrowed("each")), each);
-        list.insert(Spanned::new(cell.span.clone(), period), value);
-    }
+    list.insert(spelt(&cell.span, column.period.as_ref().unwrap_or(&each)), value);
+    Spanned::new(span, DeValue::Table(list))
 }
 
 fn key<'a>(cell: &Cell<'a>) -> Spanned<Cow<'a, str>> {

@@ -77,7 +77,7 @@ impl Listing {
 
     /// A number that differs where the lists do.
     #[must_use]
-    pub fn mark(&self) -> u128 {
+    pub fn mark(&self) -> u64 {
         let mut hasher = blake3::Hasher::new();
         for (name, seen) in &self.0 {
             hasher.update(&name.len().to_le_bytes());
@@ -90,9 +90,9 @@ impl Listing {
                 hasher.update(&nanoseconds.to_le_bytes());
             }
         }
-        let mut mark = [0; 16];
+        let mut mark = [0; 8];
         hasher.finalize_xof().fill(&mut mark);
-        u128::from_le_bytes(mark)
+        u64::from_le_bytes(mark)
     }
 
     /// The bytes of all parts together.

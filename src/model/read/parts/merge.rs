@@ -48,6 +48,9 @@ pub(super) fn merge_rates<'a>(
     };
     for (key, node) in rates {
         match activities.get_mut(key.get_ref().as_ref()).map(Spanned::get_mut) {
+            Some(DeValue::Table(activity)) if !activity.contains_key(what) => {
+                activity.insert(Spanned::new(key.span(), Cow::Borrowed(what)), node);
+            }
             Some(DeValue::Table(activity)) => {
                 merging.within = vec!["activities".to_owned(), key.get_ref().clone().into_owned()];
                 let whole = Spanned::new(key.span(), Cow::Borrowed(what));

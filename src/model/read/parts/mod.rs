@@ -3,10 +3,15 @@
 //! The merged document is walked as that of a single file is. Places tell the parts apart: their texts lie one behind the other
 //! ([`sheets`]), so that a fault found anywhere in the walk leads back to its part, line and column.
 
+mod again;
 pub(super) mod bundle;
 pub(super) mod folder;
 mod merge;
 mod sheets;
+mod traces;
+
+pub(super) use again::again;
+pub use traces::Traces;
 
 use std::ffi::{OsStr, OsString};
 use std::os::unix::ffi::OsStrExt;
@@ -16,7 +21,8 @@ use toml::Spanned;
 use toml::de::DeValue;
 
 use self::merge::{Merging, merge, merge_rates};
-use self::sheets::{Sheets, together};
+use self::sheets::{Sheet, Sheets, together};
+use super::blocks::Block;
 use super::csv::{self, Kind, Periods};
 use super::findings::Findings;
 use super::source::Places;
@@ -25,35 +31,70 @@ use super::{Reading, bytes, caps, document, oddities, syntax};
 use crate::model::fault::{Fault, Faults};
 use crate::model::near;
 use crate::model::types::Model;
+use crate::model::value::Value;
 
 /// What the model's folder must hold, for a cure.
 const CURE_EMPTY: &str = "put the model's TOML and CSV files directly into it; one of them begins with `format = 1`";
 
-/// The model that parts spell; `path` is their folder, and is only repeated in faults.
+/// Parts by name, in byte order of their names.
+pub(super) type Parts<'a> = [(OsString, &'a [u8])];
+
+/// The model that parts spell, and what is odd about it; `path` is their folder, and is only repeated in faults.
 ///
 /// # Errors
 /// All faults found, part by part. A part that is no UTF-8 text or no TOML keeps the others from being looked into further.
-pub(super) fn whole(path: &Path, parts: &[(OsString, &[u8])]) -> Result<Reading, Faults> {
-    walked(path, parts, |sheets, root, model| {
+pub(super) fn read(path: &Path, parts: &Parts<'_>) -> Result<Reading, Faults> {
+    with_document(path, parts, false, |Document { sheets, root, model, .. }| {
         let warnings = oddities::find(root, &model).finish(sheets, &model);
         Reading { model, warnings }
     })
 }
 
-/// As [`whole`], without looking for oddities.
+/// As [`read`], but for the oddities, and with what lets parts be read by what was edited in them.
 ///
 /// # Errors
-/// As [`whole`].
-pub(super) fn model(path: &Path, parts: &[(OsString, &[u8])]) -> Result<Model, Faults> {
-    walked(path, parts, |_, _, model| model)
+/// As [`read`].
+pub(super) fn read_tracing(path: &Path, parts: &Parts<'_>) -> Result<(Model, Traces), Faults> {
+    with_document(path, parts, true, |Document { sheets, model, days, tables, .. }| {
+        (model, Traces::of(sheets, tables, days))
+    })
 }
 
-/// What `of` makes of the model that parts spell, without a fault.
-fn walked<T>(
+/// A document without a fault.
+struct Document<'a> {
+    sheets: &'a Sheets<'a>,
+    root: &'a Table<'a>,
+    model: Model,
+    days: Option<Value>,
+    /// Where the tables of each TOML part lie, if that was asked for.
+    tables: Vec<Option<Vec<Block>>>,
+}
+
+fn with_document<T>(
     path: &Path,
-    parts: &[(OsString, &[u8])],
-    of: impl FnOnce(&Sheets<'_>, &Table<'_>, Model) -> T,
+    parts: &Parts<'_>,
+    tracing: bool,
+    made: impl FnOnce(Document<'_>) -> T,
 ) -> Result<T, Faults> {
+    let sheets = laid_out(path, parts)?;
+    let parsed = parsed(&sheets)?;
+    let tables =
+        parsed.iter().map(|(sheet, table)| if tracing { traces::tables(sheet.text, table) } else { None }).collect();
+    let mut findings = Findings::default();
+    let parsed = parsed.into_iter().map(|(sheet, table)| (sheet.base, table));
+    let Some(root) = merged(&sheets, parsed, &mut findings) else {
+        return Err(findings.finish(&sheets, &Model::default()));
+    };
+    let (model, days) = document::model(&root, &mut findings);
+    if findings.is_empty() {
+        Ok(made(Document { sheets: &sheets, root: &root, model, days, tables }))
+    } else {
+        Err(findings.finish(&sheets, &model))
+    }
+}
+
+/// The texts of parts, one behind the other.
+fn laid_out<'a>(path: &'a Path, parts: &Parts<'a>) -> Result<Sheets<'a>, Faults> {
     let mut sheets = Sheets::of(path);
     let mut faults = Vec::new();
     if parts.is_empty() {
@@ -66,26 +107,16 @@ fn walked<T>(
             Err(fault) => faults.push(*fault),
         }
     }
-    if !faults.is_empty() {
-        return Err(together([Faults { reported: faults, more: 0 }]));
-    }
-    let tables = parsed(&sheets)?.into_iter();
-    let mut findings = Findings::default();
-    let root = merged(&sheets, tables, &mut findings);
-    let (model, _) = root.as_ref().map(|root| document::model(root, &mut findings)).unwrap_or_default();
-    match root {
-        Some(root) if findings.is_empty() => Ok(of(&sheets, &root, model)),
-        _ => Err(findings.finish(&sheets, &model)),
-    }
+    if faults.is_empty() { Ok(sheets) } else { Err(together([Faults { reported: faults, more: 0 }])) }
 }
 
-/// The tables of the TOML parts, each with the place where its part begins.
-fn parsed<'a>(sheets: &'a Sheets<'a>) -> Result<Vec<(usize, Table<'a>)>, Faults> {
+/// The tables of the TOML parts.
+fn parsed<'a>(sheets: &'a Sheets<'a>) -> Result<Vec<(&'a Sheet<'a>, Table<'a>)>, Faults> {
     let (mut tables, mut faults) = (Vec::new(), Vec::new());
     for sheet in sheets.iter() {
         match sheet.csv {
             None => match syntax::parse(sheet.source()) {
-                Ok(table) => tables.push((sheet.base, table.into_inner())),
+                Ok(table) => tables.push((sheet, table.into_inner())),
                 Err(told) => faults.push(told),
             },
             Some(_) => faults.extend(syntax::conflict(sheet.source())),
@@ -120,7 +151,7 @@ fn unknown_csv(path: &Path, name: &str) -> Box<Fault> {
 }
 
 /// A fault where the parts together are more than is read of a model.
-fn too_much(sheets: &Sheets<'_>, parts: &[(OsString, &[u8])]) -> Option<Fault> {
+fn too_much(sheets: &Sheets<'_>, parts: &Parts<'_>) -> Option<Fault> {
     let bytes: usize = parts.iter().map(|(_, bytes)| bytes.len()).sum();
     let tokens = || parts.iter().map(|(_, part)| bytes::tokens(part)).sum::<usize>();
     let message = if parts.len() > caps::MOST_PARTS {
@@ -162,13 +193,28 @@ fn merged<'a>(
     if let Ok(one) = DeValue::parse("1") {
         root.insert(Spanned::new(0..0, "format".into()), one);
     }
-    let tables: Vec<_> = {
+    let csv = {
         let periods = Periods::of(&root);
-        let csv = sheets.iter().filter_map(|sheet| Some((sheet, sheet.csv?)));
-        let part =
-            |(sheet, kind): (&'a sheets::Sheet<'a>, Kind)| csv::Part { source: sheet.source(), base: sheet.base, kind };
-        csv.map(part).map(|part| (part.kind, csv::table(part, &periods, findings))).collect()
+        csv_tables(sheets, &periods, findings)
     };
+    merge_csv(&mut root, csv, sheets, findings);
+    Some(root)
+}
+
+/// The tables of the CSV parts.
+fn csv_tables<'a>(sheets: &'a Sheets<'a>, periods: &Periods<'_>, findings: &mut Findings) -> Vec<(Kind, Table<'a>)> {
+    let parts =
+        sheets.iter().filter_map(|sheet| Some(csv::Part { text: sheet.text, base: sheet.base, kind: sheet.csv? }));
+    parts.map(|part| (part.kind, csv::table(part, periods, findings))).collect()
+}
+
+/// Merges the tables of CSV parts into those of the TOML parts: first the entries, then what they use, draw and make.
+fn merge_csv<'a>(
+    root: &mut Table<'a>,
+    tables: Vec<(Kind, Table<'a>)>,
+    sheets: &'a Sheets<'a>,
+    findings: &mut Findings,
+) {
     let (entries, rates): (Vec<_>, Vec<_>) = tables.into_iter().partition(|(kind, _)| matches!(kind, Kind::Entries(_)));
     for (kind, table) in entries.into_iter().chain(rates) {
         let mut merging = Merging::of(sheets, findings);
@@ -176,12 +222,11 @@ fn merged<'a>(
             Kind::Entries(entries) => {
                 let section = Spanned::new(0..0, entries.section.into());
                 let table = Spanned::new(0..0, DeValue::Table(table));
-                merge(&mut root, Table::from_iter([(section, table)]), 0, &mut merging);
+                merge(root, Table::from_iter([(section, table)]), 0, &mut merging);
             }
-            Kind::Rates(rates) => merge_rates(&mut root, rates.key, table, &mut merging),
+            Kind::Rates(rates) => merge_rates(root, rates.key, table, &mut merging),
         }
     }
-    Some(root)
 }
 
 fn no_format(sheets: &Sheets<'_>, findings: &mut Findings) {
