@@ -18,6 +18,8 @@ mod limits;
 mod names;
 #[path = "faults/operating.rs"]
 mod operating;
+#[path = "faults/parts.rs"]
+mod parts;
 #[path = "faults/support.rs"]
 mod support;
 #[path = "faults/system.rs"]

@@ -20,7 +20,10 @@ struct Checked<'a> {
     faults: &'a [Fault],
     /// How many more faults there are than are told.
     more: usize,
+    /// What is odd, though no fault.
     warnings: &'a [Fault],
+    /// How many more of these there are than are told.
+    more_warnings: usize,
     /// Why the file could not be read.
     #[serde(skip_serializing_if = "Option::is_none")]
     unread: Option<String>,
@@ -29,8 +32,7 @@ struct Checked<'a> {
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf]) -> Result<Outcome, Error> {
     let mut tally = Tally::default();
     for path in paths {
-        let folder = if path.is_dir() { path } else { path.parent().unwrap_or(path) };
-        let settings = setting.for_folder(folder)?;
+        let settings = setting.for_folder(models::folder_of(path))?;
         let ignore = Ignore::new(&settings.keep.ignore).map_err(|error| Error::usage(error, ""))?;
         let found = models::under(path, &ignore)?;
         for folder in &found.unread {
@@ -43,8 +45,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
         }
     }
     if tally.models == 0 && !tally.refused {
-        let help = format!("a model is a file whose name ends in {}", models::MODEL);
-        return Err(Error::usage("there is no model to check", help));
+        return Err(Error::usage("there is no model to check", models::WHAT_A_MODEL_IS));
     }
     if screen.out_is_terminal() && !screen.json() {
         let gap = if tally.faulty > 0 { "\n" } else { "" };
@@ -90,9 +91,9 @@ pub(super) fn counted(count: usize, what: &str) -> String {
 }
 
 fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
-    let (faults, warnings, unread) = match read::file(path).map(|bytes| read::text(path, &bytes)) {
+    let (faults, warnings, unread) = match read::writing(path).map(|writing| writing.read(path)) {
         Ok(Ok(Reading { warnings, .. })) => (Faults::default(), warnings, None),
-        Ok(Err(faults)) => (faults, Vec::new(), None),
+        Ok(Err(faults)) => (faults, Faults::default(), None),
         Err(problem) => {
             let error = unreadable(&problem);
             tally.unread += 1;
@@ -100,7 +101,7 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
             if !screen.json() {
                 screen.error(&error);
             }
-            (Faults::default(), Vec::new(), Some(error.message().to_owned()))
+            (Faults::default(), Faults::default(), Some(error.message().to_owned()))
         }
     };
     let count = faults.reported.len() + faults.more;
@@ -109,7 +110,15 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
     if screen.json() {
         let model = models::stem(path).file_name().unwrap_or_default().to_string_lossy().into_owned();
         let Faults { reported, more } = &faults;
-        screen.object(&Checked { model, path: text(path), faults: reported, more: *more, warnings: &warnings, unread });
+        screen.object(&Checked {
+            model,
+            path: text(path),
+            faults: reported,
+            more: *more,
+            warnings: &warnings.reported,
+            more_warnings: warnings.more,
+            unread,
+        });
         return;
     }
     if count > 0 {
@@ -117,15 +126,18 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
         let gap = if tally.faulty > 1 { "\n" } else { "" };
         screen.say(format_args!("{gap}{}", faults.terminal(true).to_string().trim_end_matches('\n')));
     }
-    for warning in &warnings {
+    for warning in &warnings.reported {
         screen.aside(format_args!("{WARN}odd, but no fault:{WARN:#} {}\n", warning.terminal(false)));
+    }
+    if warnings.more > 0 {
+        screen.aside(format_args!("and {} more that are odd\n", warnings.more));
     }
 }
 
 /// What is wrong with a file that cannot be read: the command line where it is not there or is no file, else the system.
 pub(super) fn unreadable(problem: &FileProblem) -> Error {
     match problem {
-        FileProblem::Forbidden(_) | FileProblem::Other { .. } => Error::failure(problem, ""),
+        FileProblem::Forbidden(_) | FileProblem::Moving(_) | FileProblem::Other { .. } => Error::failure(problem, ""),
         FileProblem::Missing(_) | FileProblem::Link(_) | FileProblem::NotAFile { .. } | FileProblem::TooLarge(_) => {
             Error::usage(problem, "")
         }

@@ -9,7 +9,8 @@ use super::models::{MODEL, names_model};
 use super::screen::{Screen, WARN};
 use crate::lp::mps::{self, Warnings};
 use crate::model::escape::Plain;
-use crate::model::{Faults, Model, read, write};
+use crate::model::read::{self, Writing};
+use crate::model::{Faults, Model, write};
 use crate::store::{Durability, atomic};
 
 /// What a file holds, by the ending of its name.
@@ -42,10 +43,13 @@ pub(super) fn run(screen: &mut Screen, from: &Path, to: &Path, force: bool) -> R
     if !force && std::fs::symlink_metadata(to).is_ok() {
         return Err(Error::usage(format_args!("{} is there already", shown(to)), "--force replaces it"));
     }
-    let bytes = read::file(from).map_err(|problem| unreadable(&problem))?;
+    if to.file_name().is_some_and(read::is_folder_name) {
+        let help = format!("give a name that ends in {MODEL}; whoever divides a model into parts decides which");
+        return Err(Error::usage(format_args!("{} would be a folder of parts", shown(to)), help));
+    }
     let (content, told) = match source {
-        Kind::Mps => from_mps(screen, from, &bytes)?,
-        Kind::Model => match to_mps(screen, from, &bytes)? {
+        Kind::Mps => from_mps(screen, from, &read::file(from).map_err(|problem| unreadable(&problem))?)?,
+        Kind::Model => match to_mps(screen, from, &read::writing(from).map_err(|problem| unreadable(&problem))?)? {
             Some(converted) => converted,
             None => return Ok(Outcome::Amiss),
         },
@@ -106,8 +110,8 @@ fn from_mps(screen: &mut Screen, path: &Path, bytes: &[u8]) -> Result<(String, T
 }
 
 /// `None` where the model is faulty; its faults are told.
-fn to_mps(screen: &mut Screen, path: &Path, bytes: &[u8]) -> Result<Option<(String, Told)>, Error> {
-    let model = match read::text(path, bytes) {
+fn to_mps(screen: &mut Screen, path: &Path, writing: &Writing) -> Result<Option<(String, Told)>, Error> {
+    let model = match writing.read(path) {
         Ok(reading) => reading.model,
         Err(faults) => {
             tell(screen, &faults);

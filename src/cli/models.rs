@@ -9,9 +9,15 @@ use super::exit::{Error, shown};
 use crate::keep::path::is_model;
 use crate::keep::scan::{Scan, scan};
 use crate::keep::{Ignore, ModelPath};
+use crate::model::read;
 
 /// How the name of a model file ends.
-pub(crate) const MODEL: &str = ".model.toml";
+pub(crate) const MODEL: &str = read::FILE;
+/// How the name of a folder ends that is a model in parts.
+pub(crate) const FOLDER: &str = read::FOLDER;
+/// What a model is, for whoever named none.
+pub(crate) const WHAT_A_MODEL_IS: &str =
+    "a model is a file whose name ends in .model.toml, or a folder of parts whose name ends in .model";
 /// How the name of a plan file ends.
 pub(crate) const PLAN: &str = ".plan.toml";
 /// How the name of a release ends.
@@ -30,9 +36,14 @@ pub(crate) struct Found {
     pub(crate) unread: Vec<PathBuf>,
 }
 
-/// All models that `path` means: the file itself, or every model in the folder and those below it that `ignore` does not cover.
+/// All models that `path` means: the model itself, or every model in the folder and those below it that `ignore` does not cover.
 pub(crate) fn under(path: &Path, ignore: &Ignore) -> Result<Found, Error> {
     let about = fs::symlink_metadata(path).map_err(|error| Error::reading(path, &error))?;
+    if about.is_dir() && path.file_name().is_some_and(read::is_folder_name) {
+        // Without a slash at its end.
+        let path = path.components().collect();
+        return Ok(Found { models: BTreeSet::from([path]), ..Found::default() });
+    }
     if path.is_dir() && (about.is_dir() || !names_model(path)) {
         let root = Arc::from(path);
         let Scan { sights, odd, unread, .. } = scan(&root, ignore).map_err(|error| Error::reading(path, &error))?;
@@ -46,15 +57,25 @@ pub(crate) fn under(path: &Path, ignore: &Ignore) -> Result<Found, Error> {
         });
     }
     if !names_model(path) {
-        let help = format!("the name of a model ends in {MODEL}");
-        return Err(Error::usage(format_args!("{} is not a model", shown(path)), help));
+        return Err(Error::usage(format_args!("{} is not a model", shown(path)), WHAT_A_MODEL_IS));
     }
     Ok(Found { models: BTreeSet::from([path.to_owned()]), ..Found::default() })
 }
 
 /// Whether a path is that of a model, by its name.
 pub(crate) fn names_model(path: &Path) -> bool {
-    path.file_name().is_some_and(is_model)
+    path.file_name().is_some_and(|name| is_model(name) || read::is_folder_name(name))
+}
+
+/// The folder that `path` lies in, or `path` itself where it is one and no model: whose settings hold for it.
+pub(crate) fn folder_of(path: &Path) -> &Path {
+    if path.is_dir() && !names_model(path) { path } else { path.parent().unwrap_or(path) }
+}
+
+/// Where the model of this name lies, or would as a file.
+pub(crate) fn model_of(stem: &Path) -> PathBuf {
+    let [file, folder] = [MODEL, FOLDER].map(|ending| with_ending(stem, ending));
+    if !file.is_file() && folder.is_dir() { folder } else { file }
 }
 
 /// `path` with another ending: the model, the plan and the note of one name.
@@ -67,7 +88,7 @@ pub(crate) fn with_ending(stem: &Path, ending: &str) -> PathBuf {
 /// `path` without the ending of a model, plan, release or note, if it has one: `works/tileworks`.
 pub(crate) fn stem(path: &Path) -> PathBuf {
     let name = path.file_name().unwrap_or_default().to_string_lossy();
-    let stem = [MODEL, PLAN, RELEASE, NOTE]
+    let stem = [MODEL, FOLDER, PLAN, RELEASE, NOTE]
         .iter()
         .find_map(|ending| name.strip_suffix(ending))
         .filter(|stem| !stem.is_empty());
@@ -113,7 +134,15 @@ mod tests {
 
     #[test]
     fn every_file_of_a_model_leads_to_its_name() {
-        for path in ["w/tiles.model.toml", "w/tiles.plan.toml", "w/tiles.release.toml", "w/tiles.note.md", "w/tiles"] {
+        for path in [
+            "w/tiles.model.toml",
+            "w/tiles.model",
+            "w/tiles.model/",
+            "w/tiles.plan.toml",
+            "w/tiles.release.toml",
+            "w/tiles.note.md",
+            "w/tiles",
+        ] {
             assert_eq!(stem(Path::new(path)), Path::new("w/tiles"));
         }
         assert_eq!(stem(Path::new(".model.toml")), Path::new(".model.toml"));

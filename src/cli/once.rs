@@ -5,7 +5,7 @@ use std::path::{Path, PathBuf};
 use super::exit::{Error, Outcome, shown};
 use super::screen::Screen;
 use super::worker::planners;
-use super::{Setting, told};
+use super::{Setting, models, told};
 use crate::keep::{self, OnceError};
 use crate::store::{Folder, LockError, StoreError};
 
@@ -34,10 +34,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
     }
     if count == 0 {
         let named = paths.iter().map(|path| shown(path)).collect::<Vec<_>>().join(", ");
-        return Err(Error::usage(
-            format_args!("there is no model in {named}"),
-            "the name of a model ends in .model.toml",
-        ));
+        return Err(Error::usage(format_args!("there is no model in {named}"), models::WHAT_A_MODEL_IS));
     }
     Ok(worst)
 }

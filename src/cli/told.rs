@@ -21,7 +21,7 @@ pub(super) fn outcome(replanned: &Replanned) -> Outcome {
 /// Tells one object; for a look that gave no plan, `standing` is `vanished`, `interrupted` or `failed`.
 pub(super) fn object(screen: &mut Screen, model: &ModelPath, replanned: &Replanned) {
     let without = |standing: &str, error: Option<&str>| {
-        let mut object = json!({ "model": model.name(), "path": text(model.relative()), "standing": standing });
+        let mut object = json!({ "model": model.name(), "path": text(&model.seen()), "standing": standing });
         if let Some(error) = error {
             object["error"] = error.into();
         }

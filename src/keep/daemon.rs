@@ -146,7 +146,10 @@ impl Dispatcher {
         let status = self.claimed.and_then(|_| self.status_due.next(self.tally.is_running()));
         match self.ending {
             Some(end) => Some(end),
-            None => [scan, retry, self.settling.next_quiet(), self.sayings.next(), status].into_iter().flatten().min(),
+            None => [scan, retry, self.settling.next_quiet(), self.settling.next_due(), self.sayings.next(), status]
+                .into_iter()
+                .flatten()
+                .min(),
         }
     }
 
@@ -249,8 +252,12 @@ impl Dispatcher {
                 return;
             }
         };
-        let Some(model) = ModelPath::under(&self.root, &path) else { return };
-        if self.settling.touch(now, &model, touch) {
+        let Some((model, part)) = ModelPath::concerned(&self.root, &path) else { return };
+        if let Some(part) = part {
+            self.settling.touch_part(now, &model, &part, touch);
+            // What may be reading it now has some parts of before and some of after.
+            actions.extend(self.queue.withhold(&model).map(Action::Interrupt));
+        } else if self.settling.touch(now, &model, touch) {
             self.push(&model, What::Replan, actions);
         } else if touch == Touch::Writing {
             // An earlier save is about to be read, and would be found half overwritten by this one.
@@ -271,6 +278,9 @@ impl Dispatcher {
             if given_up {
                 self.push(&model, What::Replan, actions);
             }
+        }
+        for model in self.settling.due(now) {
+            self.push(&model, What::Replan, actions);
         }
         actions.extend(self.sayings.tick(now));
         let due = |trouble: &Trouble| trouble.again.is_some_and(|again| again <= now);

@@ -13,6 +13,7 @@ use super::watch::Followed;
 
 /// All that can happen to the daemon.
 #[derive(Debug)]
+#[expect(clippy::large_enum_variant, reason = "there are two words for each job, and none is kept")]
 pub enum Event {
     /// The system says that something may have changed.
     Hint(Hint),

@@ -11,6 +11,7 @@ use super::pool::{Factory, Job, Pool, Replanned, Stop, What, Word};
 use super::queue::Queue;
 use super::scan::scan;
 use super::settings::Settings;
+use crate::model::read::is_folder_name;
 use crate::store::error::{Step, reason, shown};
 use crate::store::{Folder, Lock, LockError, StoreError, atomic};
 
@@ -18,7 +19,7 @@ use crate::store::{Folder, Lock, LockError, StoreError, atomic};
 #[derive(Debug, thiserror::Error)]
 pub enum OnceError {
     /// A path that was named is no model.
-    #[error("{} is no model: the name of one ends in `.model.toml`", shown(.0))]
+    #[error("{} is no model: the name of one ends in `.model.toml`, or in `.model` for a folder of parts", shown(.0))]
     NotAModel(PathBuf),
     /// A folder cannot be used.
     #[error(transparent)]
@@ -90,8 +91,11 @@ fn gather(root: &Arc<Path>, paths: &[&Path], ignore: &Ignore) -> Result<Gathered
     let Gathered { mut work, mut unread } = Gathered::default();
     for &path in paths {
         let failed = || StoreError::failed(Step::Look, path);
-        if fs::symlink_metadata(path).map_err(failed())?.is_dir() {
-            let within = path.canonicalize().map_err(failed())?;
+        let is_folder = fs::symlink_metadata(path).map_err(failed())?.is_dir();
+        let within = if is_folder { path.canonicalize().map_err(failed())? } else { path.to_owned() };
+        if is_folder && let Some(model) = in_parts(root, &within) {
+            work.insert(model, What::Replan);
+        } else if is_folder {
             let found = scan(root, ignore).map_err(failed())?;
             atomic::sweep(&found.temps);
             let missed = found.unread.keys().map(|path| root.join(path));
@@ -108,6 +112,11 @@ fn gather(root: &Arc<Path>, paths: &[&Path], ignore: &Ignore) -> Result<Gathered
         }
     }
     Ok(Gathered { work, unread })
+}
+
+/// The model that a folder is, if it is one.
+fn in_parts(root: &Arc<Path>, folder: &Path) -> Option<ModelPath> {
+    folder.file_name().filter(|name| is_folder_name(name)).and_then(|_| ModelPath::under(root, folder))
 }
 
 fn run(

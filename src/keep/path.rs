@@ -1,4 +1,4 @@
-//! Which files are models, and where their plans and notes lie.
+//! Which files and folders are models, and where their plans and notes lie.
 //!
 //! Names are bytes: they need not be UTF-8 and may hold anything but `/`. Nothing inside a model ever forms a path.
 
@@ -12,20 +12,41 @@ use std::sync::Arc;
 use globset::{GlobBuilder, GlobSet, GlobSetBuilder};
 
 use crate::model::escape::Plain;
+use crate::model::read::{FILE, FOLDER, is_folder_name, is_part};
 use crate::store::folder::OWN;
 
-const MODEL: &[u8] = b".model.toml";
+const MODEL: &[u8] = FILE.as_bytes();
 const PLAN: &[u8] = b".plan.toml";
 const NOTE: &[u8] = b".note.md";
 const RELEASE: &[u8] = b".release.toml";
 
-/// A model file of a watched folder, by its path. Ordered by the bytes of the path below the folder, which come in one spelling only:
+/// A model of a watched folder, by its path. Ordered by the bytes of the path below the folder, which come in one spelling only:
 /// comparing parts of paths is what a folder of thousands would be busy with.
-#[derive(Clone, PartialEq, Eq, Hash)]
+///
+/// A model keeps its plan when it is divided into parts, so whether it is a file or a folder does not tell it from another.
+#[derive(Clone)]
 pub struct ModelPath {
     root: Arc<Path>,
     relative: Arc<Path>,
+    form: Form,
 }
+
+/// As what a model lies on disk.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Form {
+    /// As a file, `NAME.model.toml`.
+    File,
+    /// As a folder of parts, `NAME.model`.
+    Folder,
+}
+
+impl PartialEq for ModelPath {
+    fn eq(&self, other: &Self) -> bool {
+        self.cmp(other) == Ordering::Equal
+    }
+}
+
+impl Eq for ModelPath {}
 
 impl Ord for ModelPath {
     fn cmp(&self, other: &Self) -> Ordering {
@@ -46,11 +67,34 @@ impl ModelPath {
     #[must_use]
     pub fn new(root: &Arc<Path>, relative: &Path) -> Option<Self> {
         let inside = relative.components().all(|part| matches!(part, std::path::Component::Normal(_)));
-        let entered = relative.parent().is_none_or(|folder| folder.iter().all(is_entered));
-        let named = relative.file_name().is_some_and(is_model);
+        let entered = relative.parent().is_none_or(|folder| folder.iter().all(is_searched));
+        let name = relative.file_name()?;
+        let form = if is_folder_name(name) { Form::Folder } else { Form::File };
+        if !(inside && entered && (form == Form::Folder || is_model(name))) {
+            return None;
+        }
         // Put together again, so that there is one spelling of it: `a//b` and `a/./b` are `a/b`.
-        let relative = || relative.components().collect::<PathBuf>().into();
-        (inside && entered && named).then(|| Self { root: root.clone(), relative: relative() })
+        let mut relative: PathBuf = relative.components().collect();
+        if form == Form::Folder {
+            relative.as_mut_os_string().push(&FILE[FOLDER.len()..]);
+        }
+        Some(Self { root: root.clone(), relative: relative.into(), form })
+    }
+
+    /// The model that something written at an absolute path under `root` concerns, and the part of it, if it is one in parts.
+    #[must_use]
+    pub fn concerned(root: &Arc<Path>, path: &Path) -> Option<(Self, Option<OsString>)> {
+        if let Some(folder) = path.parent().filter(|folder| folder.file_name().is_some_and(is_folder_name)) {
+            let part = path.file_name().filter(|name| is_part(name))?;
+            return Some((Self::under(root, folder)?, Some(part.to_owned())));
+        }
+        Self::under(root, path).filter(|model| model.form == Form::File).map(|model| (model, None))
+    }
+
+    /// The same model in a form.
+    #[must_use]
+    pub fn lying(&self, form: Form) -> Self {
+        Self { form, ..self.clone() }
     }
 
     /// The model that an absolute path leads to, if it lies under `root`.
@@ -65,16 +109,25 @@ impl ModelPath {
         &self.root
     }
 
-    /// The path below the watched folder.
+    /// The path below the watched folder by which it is known: that of a file, whatever it lies there as.
     #[must_use]
     pub fn relative(&self) -> &Path {
         &self.relative
     }
 
+    /// The path below the watched folder as people see it.
+    #[must_use]
+    pub fn seen(&self) -> PathBuf {
+        match self.form {
+            Form::File => self.relative.to_path_buf(),
+            Form::Folder => self.relative.with_file_name(OsString::from_vec([self.stem(), FOLDER.as_bytes()].concat())),
+        }
+    }
+
     /// The whole path.
     #[must_use]
     pub fn full(&self) -> PathBuf {
-        self.root.join(&self.relative)
+        self.root.join(self.seen())
     }
 
     /// Where its plan lies.
@@ -107,19 +160,19 @@ impl ModelPath {
     }
 
     fn beside(&self, suffix: &[u8]) -> PathBuf {
-        self.full().with_file_name(OsString::from_vec([self.stem(), suffix].concat()))
+        self.root.join(&self.relative).with_file_name(OsString::from_vec([self.stem(), suffix].concat()))
     }
 }
 
 impl fmt::Display for ModelPath {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        write!(f, "{}", Plain(&self.relative.to_string_lossy()))
+        write!(f, "{}", Plain(&self.seen().to_string_lossy()))
     }
 }
 
 impl fmt::Debug for ModelPath {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        write!(f, "{:?}", self.relative)
+        write!(f, "{:?}", self.seen())
     }
 }
 
@@ -141,7 +194,26 @@ pub fn model_of_plan(name: &OsStr) -> Option<OsString> {
     stem(name, PLAN).map(|stem| OsString::from_vec([stem, MODEL].concat()))
 }
 
-/// Whether a folder of this name is looked into.
+/// The name of the file that would be the same model as a folder of this name.
+#[must_use]
+pub fn file_of_folder(name: &OsStr) -> Option<OsString> {
+    is_folder_name(name).then(|| [name, OsStr::new(&FILE[FOLDER.len()..])].into_iter().collect())
+}
+
+/// Whether something written at a path below the watched folder may concern a model.
+#[must_use]
+pub fn may_concern(below: &Path) -> bool {
+    let Some(name) = below.file_name() else { return false };
+    is_model(name) || (is_part(name) && below.parent().and_then(Path::file_name).is_some_and(is_folder_name))
+}
+
+/// Whether models are looked for in a folder of this name. A folder that is a model holds parts, and no further models.
+#[must_use]
+pub fn is_searched(name: &OsStr) -> bool {
+    is_entered(name) && !is_folder_name(name)
+}
+
+/// Whether anything in a folder of this name is heeded.
 #[must_use]
 pub fn is_entered(name: &OsStr) -> bool {
     name != OWN && name != ".git"
@@ -238,6 +310,40 @@ mod tests {
         ];
         for bad in bad {
             assert!(!is_model(OsStr::new(bad)), "{bad:?}");
+        }
+    }
+
+    #[test]
+    fn a_folder_of_parts_is_the_model_that_a_file_of_its_name_would_be() {
+        let at = |below: &str| ModelPath::new(&root(), Path::new(below));
+        let (file, folder) = (at("north/tile.model.toml").unwrap(), at("north/tile.model/").unwrap());
+        assert!(file == folder && file.cmp(&folder) == Ordering::Equal);
+        assert_eq!((folder.relative(), folder.name()), (file.relative(), file.name()));
+        assert_eq!(
+            (folder.to_string().as_str(), file.to_string().as_str()),
+            ("north/tile.model", "north/tile.model.toml")
+        );
+        assert_eq!(folder.plan(), Path::new("/works/north/tile.plan.toml"));
+        assert_eq!(folder.full(), Path::new("/works/north/tile.model"));
+        assert_eq!(folder.lying(Form::File).full(), Path::new("/works/north/tile.model.toml"));
+        for bad in [".model", "a/.x.model", "#x.model", "tile.model/inner.model.toml", "tile.model/inner.model"] {
+            assert_eq!(at(bad), None, "{bad}");
+        }
+    }
+
+    #[test]
+    fn what_is_written_concerns_the_model_or_one_of_its_parts() {
+        let told = |path: &str| {
+            let concerned = ModelPath::concerned(&root(), Path::new(path));
+            assert_eq!(may_concern(Path::new(path).strip_prefix("/works").unwrap()), concerned.is_some(), "{path}");
+            concerned.map(|(model, part)| (model.to_string(), part.map(|part| part.into_string().unwrap())))
+        };
+        let part = |model: &str, part: &str| Some((model.to_owned(), Some(part.to_owned())));
+        assert_eq!(told("/works/a/m.model.toml"), Some(("a/m.model.toml".to_owned(), None)));
+        assert_eq!(told("/works/m.model/uses.csv"), part("m.model", "uses.csv"));
+        assert_eq!(told("/works/a/m.model/x.model.toml"), part("a/m.model", "x.model.toml"));
+        for none in ["m.model", "m.model/.x.toml", "m.model/x.md", "m.model/deep/x.toml", "m.plan.toml", "x.csv"] {
+            assert_eq!(told(&format!("/works/{none}")), None, "{none}");
         }
     }
 

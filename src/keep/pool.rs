@@ -7,7 +7,7 @@ use std::sync::atomic::{AtomicBool, Ordering};
 use std::sync::{Arc, mpsc};
 use std::thread;
 
-use super::path::ModelPath;
+use super::path::{Form, ModelPath};
 use super::report::Report;
 use super::scan::{Sight, Stamp};
 
@@ -33,6 +33,14 @@ pub struct Job {
     pub what: What,
     /// The folder where the daemon's state lies.
     pub state: Arc<Path>,
+}
+
+impl Job {
+    /// The same, of a model that lies there in this form.
+    #[must_use]
+    pub fn lying(&self, form: Form) -> Self {
+        Self { path: self.path.lying(form), ..self.clone() }
+    }
 }
 
 /// Tells a planner to give up: a newer edit has made its work void, or the daemon ends.

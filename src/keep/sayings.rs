@@ -72,7 +72,8 @@ impl Sayings {
     pub fn mention(&mut self, scan: &Scan) -> Vec<Action> {
         let odd = scan.odd.difference(&self.odd).map(|model| {
             format!(
-                "{model} is a link, a pipe or a folder, not a plain file: it is left alone; put the model itself there"
+                "{model} is a link, a pipe or a folder, not a plain file: it is left alone; put the model itself there, or its parts into a \
+                 folder whose name ends in .model"
             )
         });
         let mut said = alike(odd.collect(), "are not plain files");

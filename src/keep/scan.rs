@@ -8,7 +8,8 @@ use std::os::unix::fs::MetadataExt;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use super::path::{Ignore, ModelPath, is_entered, is_model, model_of_plan};
+use super::path::{Form, Ignore, ModelPath, file_of_folder, is_entered, is_model, model_of_plan};
+use crate::model::read::{self, Listing};
 use crate::store::atomic::is_temp;
 use crate::store::error::reason;
 
@@ -22,6 +23,8 @@ pub struct Stamp {
     modified: (i64, i64),
     /// The same; moves with every write and cannot be set back.
     changed: (i64, i64),
+    /// A mark of the parts in a model's folder.
+    parts: Option<u64>,
 }
 
 impl Stamp {
@@ -29,6 +32,12 @@ impl Stamp {
     #[must_use]
     pub fn of(path: &Path) -> Option<Self> {
         fs::symlink_metadata(path).ok().filter(Metadata::is_file).map(|metadata| Self::from(&metadata))
+    }
+
+    /// The stamp of a model at a path of either form, be it a file, a folder with all its parts, or both; `None` where there is neither.
+    #[must_use]
+    pub fn of_model(path: &Path) -> Option<Self> {
+        Lying::look(path).ok().flatten().map(|lying| lying.stamp)
     }
 
     /// When the file last changed by the clock of its file system, in nanoseconds since 1970.
@@ -46,8 +55,59 @@ impl From<&Metadata> for Stamp {
             size: metadata.size(),
             modified: (metadata.mtime(), metadata.mtime_nsec()),
             changed: (metadata.ctime(), metadata.ctime_nsec()),
+            parts: None,
         }
     }
+}
+
+/// A model as it lies on disk.
+struct Lying {
+    form: Form,
+    stamp: Stamp,
+}
+
+impl Lying {
+    /// Looks at the model whose path in one of the two forms is `path`; `None` where there is none in either.
+    ///
+    /// # Errors
+    /// What the system says; [`io::ErrorKind::InvalidInput`] where what lies there is neither a plain file nor a folder.
+    fn look(path: &Path) -> io::Result<Option<Self>> {
+        let Some((file, folder)) = read::forms(path) else { return Ok(None) };
+        let parts = Self::in_parts(&folder)?;
+        match about(&file)? {
+            Some(metadata) if metadata.is_file() => {
+                // Where both are there, neither can be planned until one is gone.
+                let parts = parts.and_then(|lying| lying.stamp.parts);
+                Ok(Some(Self { form: Form::File, stamp: Stamp { parts, ..Stamp::from(&metadata) } }))
+            }
+            None if parts.is_none() && leads_to_folder(&folder) => Err(io::ErrorKind::InvalidInput.into()),
+            Some(_) if parts.is_none() => Err(io::ErrorKind::InvalidInput.into()),
+            _ => Ok(parts),
+        }
+    }
+
+    fn in_parts(folder: &Path) -> io::Result<Option<Self>> {
+        let Some(metadata) = about(folder)?.filter(Metadata::is_dir) else { return Ok(None) };
+        let parts = match Listing::of(folder) {
+            Ok(parts) => parts,
+            Err(error) if error.kind() == io::ErrorKind::NotFound => return Ok(None),
+            // Of the other models in the folder that it lies in this says nothing.
+            Err(error) => return Err(io::Error::other(reason(&error))),
+        };
+        let stamp = Stamp {
+            device: metadata.dev(),
+            inode: metadata.ino(),
+            size: parts.size(),
+            modified: (0, 0),
+            changed: parts.changed(),
+            parts: Some(parts.mark()),
+        };
+        Ok(Some(Self { form: Form::Folder, stamp }))
+    }
+}
+
+fn leads_to_folder(path: &Path) -> bool {
+    fs::symlink_metadata(path).is_ok_and(|metadata| metadata.is_symlink()) && path.is_dir()
 }
 
 /// The stamps of a model and of what was written for it.
@@ -73,7 +133,7 @@ impl Sight {
     /// Looks at what people write for one model now.
     #[must_use]
     pub fn of_inputs(model: &ModelPath) -> Self {
-        Self { model: Stamp::of(&model.full()), release: Stamp::of(&model.release()), ..Self::default() }
+        Self { model: Stamp::of_model(&model.full()), release: Stamp::of(&model.release()), ..Self::default() }
     }
 
     /// The same with plan and note as they are now.
@@ -109,11 +169,11 @@ pub struct Scan {
     pub root: FolderId,
     /// Every model, and every plan without a model.
     pub sights: BTreeMap<ModelPath, Sight>,
-    /// What is named as a model and is no plain file: links, pipes, folders.
+    /// What is named as a model and is neither a plain file nor a folder of parts: links, pipes, folders named as a file.
     pub odd: BTreeSet<ModelPath>,
     /// Temporary files of ours.
     pub temps: Vec<PathBuf>,
-    /// The folders that were looked into, relative to the root, which is the empty path. These are the ones to watch.
+    /// The folders that were looked into and those that are models, relative to the root, which is the empty path. These are to be watched.
     pub folders: BTreeSet<PathBuf>,
     /// Folders and models, relative to the root, that could not be read, and why. Nothing is known about what is in them.
     pub unread: BTreeMap<PathBuf, String>,
@@ -178,6 +238,13 @@ fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) 
         let is_folder = entry.file_type().is_ok_and(|kind| kind.is_dir());
         if is_model(&name) {
             models.insert(name);
+        } else if let Some(model) = file_of_folder(&name) {
+            let relative = folder.join(&name);
+            // A plain file of such a name is somebody else's.
+            if !ignore.covers(&relative) && (is_folder || leads_to_folder(&entry.path())) {
+                models.insert(model);
+                scan.folders.extend(is_folder.then_some(relative));
+            }
         } else if let Some(model) = model_of_plan(&name) {
             models.insert(model);
         } else if is_temp(&name) {
@@ -198,12 +265,13 @@ fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) 
 /// Looks at one model. Fails where the folder lets names be read and nothing behind them: then nothing is known of the others either.
 fn look_at(model: ModelPath, scan: &mut Scan) -> io::Result<()> {
     match look(&model) {
-        Ok(Some(sight)) => {
-            scan.sights.insert(model, sight);
+        Ok(Some((form, sight))) => {
+            scan.sights.insert(model.lying(form), sight);
         }
         Ok(None) => {}
         Err(error) if error.kind() == io::ErrorKind::InvalidInput => {
-            scan.odd.insert(model);
+            let form = if model.lying(Form::Folder).full().is_dir() { Form::Folder } else { Form::File };
+            scan.odd.insert(model.lying(form));
         }
         Err(error) if error.kind() == io::ErrorKind::PermissionDenied => return Err(error),
         Err(error) => {
@@ -217,18 +285,17 @@ fn look_at(model: ModelPath, scan: &mut Scan) -> io::Result<()> {
 ///
 /// # Errors
 /// What the system says; [`io::ErrorKind::InvalidInput`] where the model is no plain file.
-fn look(model: &ModelPath) -> io::Result<Option<Sight>> {
-    let sight = match about(&model.full())? {
-        Some(metadata) if metadata.is_file() => {
-            Sight { model: Some(Stamp::from(&metadata)), plan: Stamp::of(&model.plan()), ..Sight::default() }
+fn look(model: &ModelPath) -> io::Result<Option<(Form, Sight)>> {
+    let (form, sight) = match Lying::look(&model.full())? {
+        Some(Lying { form, stamp }) => {
+            (form, Sight { model: Some(stamp), plan: Stamp::of(&model.plan()), ..Sight::default() })
         }
-        Some(_) => return Err(io::ErrorKind::InvalidInput.into()),
         None => match about(&model.plan())?.filter(Metadata::is_file) {
-            Some(plan) => Sight { plan: Some(Stamp::from(&plan)), ..Sight::default() },
+            Some(plan) => (Form::File, Sight { plan: Some(Stamp::from(&plan)), ..Sight::default() }),
             None => return Ok(None),
         },
     };
-    Ok(Some(Sight { note: Stamp::of(&model.note()), release: Stamp::of(&model.release()), ..sight }))
+    Ok(Some((form, Sight { note: Stamp::of(&model.note()), release: Stamp::of(&model.release()), ..sight })))
 }
 
 /// What the system says of a path; `None` where nothing is.
@@ -290,6 +357,66 @@ mod tests {
         assert_eq!(scan.temps, [root.path().join(".millreeve-aB3dEf7h.tmp")]);
         assert!(scan.unread.is_empty() && !scan.is_hollow());
         assert_eq!(scan.folders.iter().collect::<Vec<_>>(), [Path::new(""), Path::new("a"), Path::new("a/b")]);
+    }
+
+    #[test]
+    fn folders_of_parts_are_models_and_are_watched_but_not_searched() {
+        let root = tempfile::tempdir().unwrap();
+        let outside = tempfile::tempdir().unwrap();
+        for folder in ["m.model/deep", "a/n.model", "both.model", "old.model", ".x.model"] {
+            fs::create_dir_all(root.path().join(folder)).unwrap();
+        }
+        let files = [
+            "m.model/works.toml",
+            "m.model/inner.model.toml",
+            "m.model/deep/far.model.toml",
+            "m.plan.toml",
+            "both.model.toml",
+            "file.model",
+            ".x.model/x.model.toml",
+        ];
+        for file in files {
+            fs::write(root.path().join(file), "").unwrap();
+        }
+        symlink(outside.path(), root.path().join("linked.model")).unwrap();
+        symlink(root.path().join("file.model"), root.path().join("lead.model")).unwrap();
+        let scan = found(root.path(), &["old.model"]);
+        assert_eq!(names(scan.sights.keys()), [".x.model/x.model.toml", "a/n.model", "both.model.toml", "m.model"]);
+        assert_eq!(names(&scan.odd), ["linked.model"]);
+        let watched = ["", ".x.model", "a", "a/n.model", "both.model", "m.model"];
+        assert_eq!(scan.folders.iter().collect::<Vec<_>>(), watched.map(Path::new));
+        let m = scan.sights.iter().find(|(model, _)| model.name() == "m").unwrap();
+        assert!(m.1.plan.is_some() && m.1.model == Stamp::of_model(&m.0.full()));
+    }
+
+    #[test]
+    fn any_change_of_a_part_changes_the_stamp_and_nothing_else_does() {
+        let root = tempfile::tempdir().unwrap();
+        let folder = root.path().join("m.model");
+        let stamp = || Stamp::of_model(&root.path().join("m.model.toml"));
+        let mut stamps = vec![stamp()];
+        let mut differs = || {
+            let now = stamp();
+            assert!(!stamps.contains(&now), "{now:?}");
+            stamps.push(now);
+        };
+        fs::create_dir(&folder).unwrap();
+        differs();
+        fs::write(folder.join("a.toml"), "one").unwrap();
+        differs();
+        fs::write(folder.join("a.toml"), "three").unwrap();
+        differs();
+        fs::rename(folder.join("a.toml"), folder.join("b.toml")).unwrap();
+        differs();
+        let whole = stamp();
+        fs::write(folder.join(".a.toml.swp"), "swap").unwrap();
+        fs::write(folder.join("notes.md"), "notes").unwrap();
+        assert_eq!(stamp(), whole);
+        fs::write(root.path().join("m.model.toml"), "both").unwrap();
+        let both = stamp();
+        assert!(both.is_some() && both != whole);
+        fs::remove_dir_all(&folder).unwrap();
+        assert!(stamp().is_some() && stamp() != both);
     }
 
     #[test]

@@ -194,7 +194,7 @@ impl Tally {
 
     /// Fills in what is known here.
     pub fn fill(&self, now: Instant, status: &mut Status) {
-        let path = |model: &ModelPath| model.relative().to_string_lossy().into_owned();
+        let path = |model: &ModelPath| model.seen().to_string_lossy().into_owned();
         for (standing, _) in self.standings.values() {
             *status.models.entry(standing.clone()).or_default() += 1;
         }

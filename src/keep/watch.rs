@@ -12,7 +12,7 @@ use notify::{Config, ErrorKind, EventKind, RecommendedWatcher, RecursiveMode, Wa
 use rustix::io::Errno;
 
 use super::hints::{Hint, HintSender};
-use super::path::{is_entered, is_model};
+use super::path::{is_entered, may_concern};
 use crate::model::escape::Plain;
 use crate::store::atomic::is_temp;
 use crate::store::error::reason;
@@ -171,7 +171,7 @@ fn hint(root: &Path, kind: EventKind, path: PathBuf) -> Option<Hint> {
     if !below.iter().all(is_entered) {
         return None;
     }
-    let model = below.file_name().is_some_and(is_model);
+    let model = may_concern(below);
     match kind {
         EventKind::Access(AccessKind::Close(AccessMode::Write)) if model => Some(Hint::Closed(path)),
         EventKind::Modify(ModifyKind::Name(RenameMode::To)) if model => Some(Hint::Arrived(path)),
@@ -250,12 +250,25 @@ mod tests {
         assert_eq!(one(from, m), [Hint::Gone(m.into())]);
         assert_eq!(one(data, m), [Hint::Writing(m.into())]);
         assert_eq!(one(EventKind::Remove(RemoveKind::File), m), [Hint::Gone(m.into())]);
+        let part = "/works/a/m.model/uses.csv";
+        assert_eq!(
+            (one(closed, part), one(to, part)),
+            (vec![Hint::Closed(part.into())], vec![Hint::Arrived(part.into())])
+        );
+        assert_eq!(
+            (one(data, part), one(from, part)),
+            (vec![Hint::Writing(part.into())], vec![Hint::Gone(part.into())])
+        );
         assert_eq!(one(EventKind::Create(CreateKind::Folder), "/works/n"), [Hint::Folder("/works/n".into())]);
         assert_eq!(one(EventKind::Modify(ModifyKind::Metadata(MetadataKind::Any)), m), []);
         assert_eq!(one(EventKind::Create(CreateKind::File), m), []);
-        for other in
-            ["/works/m.plan.toml", "/works/.m.model.toml.swp", "/works/.git/m.model.toml", "/else/m.model.toml"]
-        {
+        for other in [
+            "/works/m.plan.toml",
+            "/works/.m.model.toml.swp",
+            "/works/.git/m.model.toml",
+            "/else/m.model.toml",
+            "/works/m.model/.x.swp",
+        ] {
             assert_eq!(one(closed, other), [], "{other}");
         }
         assert_eq!(one(EventKind::Remove(RemoveKind::Folder), "/works"), [Hint::Rescan]);

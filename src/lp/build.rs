@@ -9,9 +9,9 @@
 use std::collections::{BTreeMap, HashMap};
 
 use super::keys::{activity_key, limit_key, resource_key};
-use super::products;
 use super::program::{Column, Program, Row, RowIndex, Sense};
 use crate::model::name::Name;
+use crate::model::products;
 use crate::model::{Activity, Aim, Bound, Limit, Model, Period, Term, Value};
 
 /// The program behind `model`.

@@ -88,6 +88,21 @@ impl Value {
         }
     }
 
+    /// The value of a list of one number per period: a single number where all are the same, which means the same.
+    #[must_use]
+    pub fn of(list: Vec<f64>) -> Self {
+        match list.first() {
+            Some(&first) if list.iter().all(|&number| number.total_cmp(&first).is_eq()) => Self::Every(first),
+            _ => Self::Listed(list),
+        }
+    }
+
+    /// The numbers of two values side by side, once where neither differs by period.
+    pub fn beside<'a>(&'a self, other: &'a Self) -> impl Iterator<Item = (Period, f64, f64)> + 'a {
+        let count = self.numbers().len().max(other.numbers().len());
+        (0..count).map(Period).map(|period| (period, self.at(period), other.at(period)))
+    }
+
     /// The numbers, one or one per period.
     #[must_use]
     pub fn numbers(&self) -> &[f64] {
@@ -101,5 +116,27 @@ impl Value {
 impl From<f64> for Value {
     fn from(number: f64) -> Self {
         Self::Every(number)
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_list_of_the_same_number_is_the_number() {
+        assert_eq!(Value::of(vec![2.5, 2.5, 2.5]), Value::Every(2.5));
+        assert_eq!(Value::of(vec![2.5]), Value::Every(2.5));
+        assert_eq!(Value::of(vec![f64::INFINITY; 2]), Value::Every(f64::INFINITY));
+        assert_eq!(Value::of(vec![2.5, 2.0]), Value::Listed(vec![2.5, 2.0]));
+    }
+
+    #[test]
+    fn values_side_by_side_are_as_long_as_the_longer() {
+        let (number, list) = (Value::Every(1.0), Value::Listed(vec![2.0, 3.0]));
+        let beside = |a: &Value, b: &Value| a.beside(b).collect::<Vec<_>>();
+        assert_eq!(beside(&number, &list), [(Period(0), 1.0, 2.0), (Period(1), 1.0, 3.0)]);
+        assert_eq!(beside(&list, &number), [(Period(0), 2.0, 1.0), (Period(1), 3.0, 1.0)]);
+        assert_eq!(beside(&number, &number), [(Period(0), 1.0, 1.0)]);
     }
 }

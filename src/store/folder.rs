@@ -6,6 +6,7 @@ use std::path::{Path, PathBuf};
 
 use super::atomic::{self, Durability};
 use super::error::{Step, StoreError};
+use crate::model::read::is_folder_name;
 
 /// Name of the daemon's own folder.
 pub const OWN: &str = ".millreeve";
@@ -54,7 +55,7 @@ impl Folder {
     }
 
     /// The root of the folder that `path` belongs to: the nearest folder at or above it that holds a `.millreeve/`, else `path` itself if
-    /// it is a folder, else the folder it lies in.
+    /// it is a folder of models, else the folder it lies in.
     ///
     /// # Errors
     /// `path` does not exist.
@@ -66,7 +67,11 @@ impl Folder {
         } else {
             whole.parent().unwrap_or(&whole)
         };
-        let start = start.canonicalize().map_err(failed())?;
+        let mut start = start.canonicalize().map_err(failed())?;
+        // Nothing of ours lies in a folder that is a model.
+        if start.file_name().is_some_and(is_folder_name) {
+            start.pop();
+        }
         let kept = start.ancestors().find(|folder| folder.join(OWN).is_dir());
         Ok(kept.unwrap_or(&start).to_owned())
     }
@@ -149,5 +154,12 @@ mod tests {
         let folder = Folder::open(root.path(), None).unwrap();
         assert_eq!(Folder::root_of(&deep).unwrap(), folder.root());
         assert!(Folder::root_of(&deep.join("none")).is_err());
+        let model = deep.join("tile.model");
+        fs::create_dir(&model).unwrap();
+        assert_eq!(Folder::root_of(&model).unwrap(), folder.root());
+        let alone = tempfile::tempdir().unwrap();
+        fs::create_dir(alone.path().join("tile.model")).unwrap();
+        let root = Folder::root_of(&alone.path().join("tile.model/")).unwrap();
+        assert_eq!(root, alone.path().canonicalize().unwrap());
     }
 }

@@ -216,7 +216,7 @@ fn check_plan(path: &Path) {
     assert!(written.plan.aim.is_finite(), "{path:?}");
     if written.plan.standing == Standing::Current {
         let model = beside(".model.toml");
-        let reading = read::text(&model, &fs::read(&model).unwrap()).unwrap();
+        let reading = read::writing(&model).unwrap().read(&model).unwrap();
         assert_eq!(written.plan.answers, Meaning::of(&reading.model), "{path:?}");
     }
 }

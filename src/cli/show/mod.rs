@@ -15,7 +15,7 @@ use std::path::{Path, PathBuf};
 use super::args;
 use super::check::unreadable;
 use super::exit::{Error, Outcome, shown};
-use super::models::{self, MODEL, NOTE, PLAN, RELEASE};
+use super::models::{self, NOTE, PLAN, RELEASE};
 use super::screen::Screen;
 use crate::keep::pinned::Pinned;
 use crate::model::meaning::Meaning;
@@ -69,7 +69,8 @@ impl Shown {
     /// The plan of a model that is given by any of its files, or by its name.
     pub(super) fn find(given: &Path) -> Result<Self, Error> {
         let stem = models::stem(given);
-        let [model_path, plan_path, note_path] = [MODEL, PLAN, NOTE].map(|ending| models::with_ending(&stem, ending));
+        let [plan_path, note_path] = [PLAN, NOTE].map(|ending| models::with_ending(&stem, ending));
+        let model_path = models::model_of(&stem);
         let written = match fs::symlink_metadata(&plan_path) {
             Ok(_) => read_plan(&plan_path)?,
             Err(error) if error.kind() == io::ErrorKind::NotFound => return Err(no_plan(given, &model_path)),
@@ -102,12 +103,12 @@ enum Found {
 }
 
 fn read_model(path: &Path) -> Result<Found, Error> {
-    let bytes = match read::file(path) {
-        Ok(bytes) => bytes,
+    let writing = match read::writing(path) {
+        Ok(writing) => writing,
         Err(FileProblem::Missing(_)) => return Ok(Found::Gone),
         Err(problem) => return Err(unreadable(&problem)),
     };
-    Ok(match read::text(path, &bytes) {
+    Ok(match writing.read(path) {
         Ok(reading) => {
             let meaning = Meaning::of(&reading.model);
             Found::Model(Box::new(reading.model), meaning)

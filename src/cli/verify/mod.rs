@@ -10,7 +10,7 @@ use std::path::{Path, PathBuf};
 use super::Setting;
 use super::check::counted;
 use super::exit::{Error, Outcome, shown};
-use super::models::{self, Found, MODEL, PLAN};
+use super::models::{self, Found, PLAN};
 use super::screen::{BAD, GOOD, Screen};
 use crate::keep::Ignore;
 use crate::keep::verify::{Finding, Pair, verify};
@@ -19,8 +19,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
     let mut tally = Tally::default();
     let mut seen = BTreeSet::new();
     for path in paths {
-        let folder = if path.is_dir() { path } else { path.parent().unwrap_or(path) };
-        let settings = setting.for_folder(folder)?.keep;
+        let settings = setting.for_folder(models::folder_of(path))?.keep;
         let ignore = Ignore::new(&settings.ignore).map_err(|error| Error::usage(error, ""))?;
         let Found { mut models, gone, unread } = found(path, &ignore)?;
         for folder in &unread {
@@ -41,8 +40,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
         });
     }
     if tally.plans == 0 && tally.unread_folders == 0 {
-        let help = format!("a model is a file whose name ends in {MODEL}");
-        return Err(Error::usage("there is no model to verify", help));
+        return Err(Error::usage("there is no model to verify", models::WHAT_A_MODEL_IS));
     }
     if screen.out_is_terminal() && !screen.json() {
         screen.say(format_args!("\n{}", tally.words()));
@@ -57,7 +55,7 @@ fn found(path: &Path, ignore: &Ignore) -> Result<Found, Error> {
         return models::under(path, ignore);
     }
     fs::symlink_metadata(path).map_err(|error| Error::reading(path, &error))?;
-    Ok(Found { models: BTreeSet::from([models::with_ending(&models::stem(path), MODEL)]), ..Found::default() })
+    Ok(Found { models: BTreeSet::from([models::model_of(&models::stem(path))]), ..Found::default() })
 }
 
 fn pair(model: PathBuf) -> Pair {

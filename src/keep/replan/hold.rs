@@ -4,8 +4,9 @@ use super::disk::{Disk, OnDisk};
 use super::telling::Telling;
 use super::{Read, Replanner, Stopped, Told};
 use crate::edits::Edit;
+use crate::keep::path::Form;
 use crate::keep::pool::Job;
-use crate::model::Faults;
+use crate::model::{Faults, read};
 use crate::plan::note::{Reckoning, Trouble, Verdict};
 use crate::plan::text::{self, marked};
 use crate::plan::{self, Standing};
@@ -62,6 +63,9 @@ impl Replanner {
     pub(super) fn retire(&mut self, job: &Job) -> Result<Told, Stopped> {
         let disk = Disk::of(&job.path);
         let record = self.memory.records(&job.state)?.load(job.path.relative()).ok();
+        // It is told of as what it was.
+        let was_in_parts = record.as_ref().is_some_and(|record| read::is_in_parts(&record.source));
+        let job = &job.lying(if was_in_parts { Form::Folder } else { Form::File });
         let last = self.memory.known(&job.path, || record.as_ref());
         let telling = Telling::of(job).titled(last.as_ref().map(|known| &known.model));
         let mut changed = false;

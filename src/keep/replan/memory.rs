@@ -10,7 +10,7 @@ use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 use crate::edits::{LastPlan, Renames};
 use crate::keep::path::ModelPath;
 use crate::lp::{Key, Program, build};
-use crate::model::read::{self, Before, Blocks, Reading};
+use crate::model::read::{Traced, Writing};
 use crate::model::{Model, Name};
 use crate::plan::last::last_plan;
 use crate::plan::{Plan, text};
@@ -24,7 +24,7 @@ const KEPT: usize = 256;
 /// The last accepted model and what was planned for it.
 pub(super) struct Known {
     pub(super) bytes: Vec<u8>,
-    pub(super) blocks: Blocks,
+    pub(super) traced: Traced,
     pub(super) model: Model,
     pub(super) program: Program,
     pub(super) plan: Plan,
@@ -35,15 +35,16 @@ pub(super) struct Known {
 impl Known {
     /// What a record tells, if what it holds can still be read.
     fn from(record: &Record) -> Option<Self> {
-        let (Reading { model, .. }, blocks) = read::text_and_blocks(&record.model, &record.source).ok()?;
+        let writing = Writing::of(record.source.clone());
+        let (model, traced) = writing.read_tracing(&record.model).ok()?;
         let plan = text::read(&record.plan).ok()?.plan;
-        let (bytes, basis, program) = (record.source.clone(), record.basis.clone(), build(&model));
-        Some(Self { bytes, blocks, model, program, plan, basis, cold_pivots: record.cold_pivots })
+        let (bytes, basis, program) = (writing.into_bytes(), record.basis.clone(), build(&model));
+        Some(Self { bytes, traced, model, program, plan, basis, cold_pivots: record.cold_pivots })
     }
 
-    /// The text that the model was read from.
-    pub(super) fn text(&self) -> Before<'_> {
-        Before { bytes: &self.bytes, blocks: &self.blocks, model: &self.model }
+    /// The bytes that the model was read from, where what they say lies in them, and the model.
+    pub(super) fn writing(&self) -> (&[u8], &Traced, &Model) {
+        (&self.bytes, &self.traced, &self.model)
     }
 
     /// What the solver can start from.
@@ -62,8 +63,8 @@ impl Known {
         rename(&mut plan.activities, &renames.activities, |planned| &planned.name, |planned, name| planned.name = name);
         rename(&mut plan.limits, &renames.limits, |planned| &planned.name, |planned, name| planned.name = name);
         // Under the new names the text says something else.
-        let (bytes, blocks) = (Vec::new(), Blocks::default());
-        Self { bytes, blocks, model, program, plan, basis, cold_pivots: self.cold_pivots }
+        let (bytes, traced) = (Vec::new(), Traced::default());
+        Self { bytes, traced, model, program, plan, basis, cold_pivots: self.cold_pivots }
     }
 
     /// What mattered in the plan.

@@ -19,6 +19,7 @@ use self::disk::{Disk, OnDisk, Recorded};
 use self::memory::{Known, Memory};
 use self::telling::Telling;
 use super::afresh::Planned;
+use super::path::Form;
 use super::pool::{Factory, Job, Planner, Replanned, Stop, What};
 use super::report::Report;
 use super::scan::Stamp;
@@ -28,7 +29,7 @@ use crate::edits::{Edit, Kept, Renames, compare, compare_renamed};
 use crate::lp::{Program, build};
 use crate::model::Model;
 use crate::model::meaning::Meaning;
-use crate::model::read::{self, Blocks, FileProblem};
+use crate::model::read::{self, FileProblem, Traced, Writing};
 use crate::plan::note::{Reckoning, Trouble, Verdict};
 use crate::plan::text::{self, marked};
 use crate::plan::{self, Plan, Standing};
@@ -97,7 +98,7 @@ impl From<StoreError> for Stopped {
 /// A model that was read, on its way to a plan.
 struct Read {
     bytes: Vec<u8>,
-    blocks: Blocks,
+    traced: Traced,
     model: Model,
     meaning: Meaning,
 }
@@ -105,15 +106,18 @@ struct Read {
 impl Planner for Replanner {
     fn replan(&mut self, job: &Job, stop: &Stop) -> Replanned {
         let begun = Instant::now();
-        let stamp = Stamp::of(&job.path.full());
+        let stamp = Stamp::of_model(&job.path.full());
         let done = match job.what {
             What::Retire => self.retire(job),
-            What::Replan => match read::file(&job.path.full()) {
-                Ok(bytes) => self.bring_up_to_date(job, (bytes, stamp), stop, begun),
+            What::Replan => match read::writing(&job.path.full()) {
+                Ok(writing) => {
+                    let job = job.lying(if writing.is_in_parts() { Form::Folder } else { Form::File });
+                    self.bring_up_to_date(&job, (writing, stamp), stop, begun)
+                }
                 Err(FileProblem::Missing(_) | FileProblem::Link(_) | FileProblem::NotAFile { .. }) => {
                     return Replanned::Vanished;
                 }
-                Err(FileProblem::TooLarge(_)) => self.hold_for(job, &read::too_large(job.path.relative())),
+                Err(FileProblem::TooLarge(_)) => self.hold_for(job, &read::too_large(&job.path.seen())),
                 Err(problem) => return Replanned::Failed { message: problem.to_string(), retry: true },
             },
         };
@@ -144,7 +148,7 @@ impl Replanner {
     fn bring_up_to_date(
         &mut self,
         job: &Job,
-        (bytes, stamp): (Vec<u8>, Option<Stamp>),
+        (writing, stamp): (Writing, Option<Stamp>),
         stop: &Stop,
         begun: Instant,
     ) -> Result<Told, Stopped> {
@@ -153,9 +157,9 @@ impl Replanner {
         let recorded = Recorded::of(&job.path, &records);
         let at_hand = self.memory.at_hand(&job.path);
         // The bytes of the last plan: nothing needs to be parsed to know that it stands.
-        if at_hand.as_ref().is_none_or(|known| known.bytes == bytes)
+        if at_hand.as_ref().is_none_or(|known| writing.is(&known.bytes))
             && let Some(record) = recorded.get()
-            && record.source == bytes
+            && writing.is(&record.source)
             && text::is_current(&record.plan)
         {
             let finished = disk.finish(record)?;
@@ -165,14 +169,14 @@ impl Replanner {
                 return Ok(Told { report, changed });
             }
         }
-        let again = at_hand.and_then(|known| read::again(job.path.relative(), &bytes, known.text()));
-        let whole =
-            || read::text_and_blocks(job.path.relative(), &bytes).map(|(reading, blocks)| (reading.model, blocks));
-        let (model, blocks) = match again.map_or_else(whole, Ok) {
+        let path = job.path.seen();
+        let again = at_hand.and_then(|known| writing.read_again(&path, known.writing()));
+        let whole = || writing.read_tracing(&path);
+        let (model, traced) = match again.map_or_else(whole, Ok) {
             Ok(read) => read,
             Err(faults) => {
                 // What was read may be half of a save that has begun since: then there is no fault, but another look to be had.
-                if Stamp::of(&job.path.full()) != stamp {
+                if Stamp::of_model(&job.path.full()) != stamp {
                     return Err(Stopped::Interrupted);
                 }
                 heed(stop)?;
@@ -180,7 +184,7 @@ impl Replanner {
             }
         };
         let meaning = Meaning::of(&model);
-        let read = Read { bytes, blocks, model, meaning };
+        let read = Read { bytes: writing.into_bytes(), traced, model, meaning };
         heed(stop)?;
         let known = self.memory.known(&job.path, || recorded.get());
         let on_disk = disk.plan()?;
@@ -339,8 +343,8 @@ impl Replanner {
         let mut report = telling.planned(before, &plan, Some((&solved.reckoning, &solved.account)));
         report.milliseconds.write = milliseconds(begun.elapsed());
         let Record { source: bytes, basis, cold_pivots, .. } = record;
-        let Read { blocks, model, .. } = read;
-        self.memory.keep(&job.path, Known { bytes, blocks, model, program, plan, basis, cold_pivots });
+        let Read { traced, model, .. } = read;
+        self.memory.keep(&job.path, Known { bytes, traced, model, program, plan, basis, cold_pivots });
         Ok(Told { report, changed })
     }
 }

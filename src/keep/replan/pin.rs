@@ -4,7 +4,8 @@ use super::disk::Disk;
 use super::{Replanner, Stopped};
 use crate::keep::pinned::Pinned;
 use crate::keep::pool::Job;
-use crate::model::{Model, read};
+use crate::model::Model;
+use crate::model::read::Writing;
 use crate::plan::note::{self, ReleaseTold};
 use crate::plan::{Plan, text};
 use crate::store::Record;
@@ -17,7 +18,7 @@ impl Replanner {
             return Ok(false);
         }
         let Ok(written) = text::read(&record.plan) else { return Ok(false) };
-        let model = read::text(job.path.relative(), &record.source).ok().map(|reading| reading.model);
+        let model = Writing::of(record.source.clone()).read(job.path.relative()).ok().map(|reading| reading.model);
         let told = pinned.as_ref().map(Pinned::told);
         let note = note::with_release(&record.note, told, &written.plan, model.as_ref());
         let record = Record { note, ..record.clone() };

@@ -25,7 +25,7 @@ pub(super) struct Telling<'a> {
 
 impl<'a> Telling<'a> {
     pub(super) fn of(job: &'a Job) -> Self {
-        let file = job.path.relative().file_name().unwrap_or_default().to_string_lossy().into_owned();
+        let file = job.path.seen().file_name().unwrap_or_default().to_string_lossy().into_owned();
         Self { job, file, title: None, model: None, edits: Vec::new() }
     }
 
@@ -76,7 +76,7 @@ impl<'a> Telling<'a> {
         words.dedup();
         Report {
             model: self.job.path.name(),
-            path: self.job.path.relative().to_string_lossy().into_owned(),
+            path: self.job.path.seen().to_string_lossy().into_owned(),
             standing: "none".to_owned(),
             edit: words,
             ..Report::default()

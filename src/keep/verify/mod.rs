@@ -129,13 +129,13 @@ impl Finding {
 /// Verifies one plan; one run of the solver may take `time_limit`. `None` where there is neither a model nor a plan of ours.
 #[must_use]
 pub fn examine(pair: &Pair, time_limit: Duration) -> Option<Finding> {
-    let bytes = match read::file(&pair.model) {
-        Ok(bytes) => bytes,
+    let writing = match read::writing(&pair.model) {
+        Ok(writing) => writing,
         Err(FileProblem::Missing(_)) => return without_model(&pair.plan),
         Err(FileProblem::TooLarge(_)) => return Some(Finding::Faulty(Box::new(read::too_large(&pair.model)))),
         Err(problem) => return Some(Finding::Unread(problem.to_string())),
     };
-    let model = match read::text(&pair.model, &bytes) {
+    let model = match writing.read(&pair.model) {
         Ok(reading) => reading.model,
         Err(faults) => return Some(Finding::Faulty(Box::new(faults))),
     };

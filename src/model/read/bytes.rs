@@ -3,7 +3,7 @@
 use std::path::Path;
 
 use super::caps;
-use super::source::Source;
+use super::source::{Places as _, Source};
 use crate::model::fault::Fault;
 
 /// The text that `bytes` spell, without a byte order mark.
@@ -11,6 +11,11 @@ use crate::model::fault::Fault;
 /// # Errors
 /// Where the bytes are no UTF-8 text, hold a NUL byte or a carriage return alone, or are more than is read.
 pub(super) fn text<'a>(path: &'a Path, bytes: &'a [u8]) -> Result<Source<'a>, Box<Fault>> {
+    str(path, bytes).map(|text| Source { path, text })
+}
+
+/// As [`text()`], for a text that outlives its path.
+pub(super) fn str<'a>(path: &Path, bytes: &'a [u8]) -> Result<&'a str, Box<Fault>> {
     let whole = |code, message: String, help: &str| Box::new(Source { path, text: "" }.whole(code, message, help));
     if bytes.len() > caps::MOST_BYTES {
         return Err(Box::new(too_large(path)));
@@ -34,7 +39,7 @@ pub(super) fn text<'a>(path: &'a Path, bytes: &'a [u8]) -> Result<Source<'a>, Bo
     if text.trim_ascii().is_empty() {
         return Err(whole("empty-file", "the file is empty".to_owned(), "a model begins with `format = 1`"));
     }
-    count(source).map_or(Ok(source), Err)
+    count(source).map_or(Ok(text), Err)
 }
 
 /// The fault of a file of more bytes than are read.
@@ -59,7 +64,7 @@ fn count(source: Source<'_>) -> Option<Box<Fault>> {
 }
 
 /// At least as many as the parser will see: runs of letters, runs of blanks, and every sign.
-fn tokens(bytes: &[u8]) -> usize {
+pub(super) fn tokens(bytes: &[u8]) -> usize {
     let class = |byte: u8| match byte {
         b' ' | b'\t' => 1,
         b'_' | b'-' | b'+' | 0x80.. => 2,

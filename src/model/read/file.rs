@@ -6,8 +6,10 @@ use std::path::{Path, PathBuf};
 
 use rustix::fs::{FileType, Mode, OFlags};
 
+use super::bytes;
 use super::caps::MOST_BYTES;
 use crate::model::escape::Plain;
+use crate::model::fault::Fault;
 
 /// Why a model file could not be read.
 #[derive(Debug, thiserror::Error)]
@@ -32,6 +34,9 @@ pub enum FileProblem {
     /// It is larger than [`MOST_BYTES`].
     #[error("{}: larger than the {} MiB that are read; split the model", shown(.0), MOST_BYTES >> 20)]
     TooLarge(PathBuf),
+    /// It is a folder of parts that changed whenever it was read.
+    #[error("{}: its parts change while they are read; it is read once they are at rest", shown(.0))]
+    Moving(PathBuf),
     /// Anything else the system says.
     #[error("{}: cannot be read: {source}", shown(.path))]
     Other {
@@ -43,6 +48,28 @@ pub enum FileProblem {
 }
 
 impl FileProblem {
+    /// What the system said of `path` when it was to be read.
+    pub(super) fn of(path: &Path, source: io::Error) -> Self {
+        refused(path, source)
+    }
+
+    /// The same as a fault of `path`, which is what was to be read.
+    #[must_use]
+    pub fn fault(&self, path: &Path) -> Fault {
+        let (code, message, help) = match self {
+            Self::Link(_) => {
+                ("not-a-file", "a symbolic link, which is not followed".to_owned(), "put the file itself here")
+            }
+            Self::NotAFile { what, .. } => ("not-a-file", format!("{what}, not a file"), "take it out of the folder"),
+            Self::TooLarge(_) => return bytes::too_large(path),
+            Self::Missing(_) => ("unread", "there is no such file".to_owned(), ""),
+            Self::Forbidden(_) => ("unread", "no permission to read it".to_owned(), "let this user read it"),
+            Self::Moving(_) => ("unread", "its parts change while they are read".to_owned(), ""),
+            Self::Other { source, .. } => ("unread", format!("cannot be read: {source}"), ""),
+        };
+        Fault { path: path.to_owned(), place: None, code, message, help: help.to_owned() }
+    }
+
     /// The kind of failure in the system's terms; [`NotFound`](io::ErrorKind::NotFound) where there is no such file.
     #[must_use]
     pub fn kind(&self) -> io::ErrorKind {
@@ -50,6 +77,7 @@ impl FileProblem {
             Self::Missing(_) => io::ErrorKind::NotFound,
             Self::Forbidden(_) => io::ErrorKind::PermissionDenied,
             Self::TooLarge(_) => io::ErrorKind::FileTooLarge,
+            Self::Moving(_) => io::ErrorKind::ResourceBusy,
             Self::Link(_) | Self::NotAFile { .. } => io::ErrorKind::InvalidInput,
             Self::Other { source, .. } => source.kind(),
         }

@@ -2,10 +2,11 @@
 
 use std::ops::Range;
 
-use super::near;
-use super::source::Source;
+use super::calendar::{EACH, PER_DAY};
+use super::source::Places;
 use crate::model::fault::{Fault, Faults, MOST_REPORTED};
 use crate::model::name::{LONGEST, Name, NameError};
+use crate::model::near;
 use crate::model::types::Model;
 
 /// A place in the text, as byte offsets.
@@ -53,8 +54,12 @@ pub(super) enum Among {
     Resources,
     /// The model's activities.
     Activities,
+    /// The model's materials.
+    Materials,
     /// The tags that activities carry.
     Tags,
+    /// The model's periods, and the other words that a table of numbers may have; what the periods are, in words.
+    Periods(String),
 }
 
 /// The faults found so far. Holds a bounded number of them, the first ones in the file.
@@ -84,9 +89,9 @@ impl Findings {
     }
 
     /// The faults to report, in order of place. `model` is what could be read, for the names it has.
-    pub(super) fn finish(mut self, source: Source<'_>, model: &Model) -> Faults {
+    pub(super) fn finish(mut self, places: impl Places, model: &Model) -> Faults {
         self.prune();
-        let told = |finding: Finding| tell(finding, source, model);
+        let told = |finding: Finding| tell(finding, &places, model);
         Faults { reported: self.kept.into_iter().map(told).collect(), more: self.dropped }
     }
 
@@ -97,12 +102,12 @@ impl Findings {
     }
 }
 
-fn tell(finding: Finding, source: Source<'_>, model: &Model) -> Fault {
+fn tell(finding: Finding, places: &impl Places, model: &Model) -> Fault {
     let help = match finding.cure {
         Cure::Say(text) => text,
         Cure::Nearest(wrong, among) => nearest(&wrong, among, model),
     };
-    source.fault(finding.span, finding.code, finding.message, help)
+    places.fault(finding.span, finding.code, finding.message, help)
 }
 
 fn nearest(wrong: &str, among: Among, model: &Model) -> String {
@@ -111,6 +116,11 @@ fn nearest(wrong: &str, among: Among, model: &Model) -> String {
         Among::Resources => near::help(wrong, model.resources.keys().map(Name::as_str), || declare("resources", wrong)),
         Among::Activities => {
             near::help(wrong, model.activities.keys().map(Name::as_str), || declare("activities", wrong))
+        }
+        Among::Materials => near::help(wrong, model.materials.keys().map(Name::as_str), || declare("materials", wrong)),
+        Among::Periods(told) => {
+            let labels = model.horizon.periods().filter_map(|period| model.horizon.label(period));
+            near::help(wrong, labels.chain([EACH, PER_DAY]), || format!("the model plans {told}"))
         }
         Among::Tags => {
             let tags = model.activities.values().flat_map(|activity| &activity.tags).map(Name::as_str);

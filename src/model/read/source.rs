@@ -10,6 +10,15 @@ const SHOWN_BEFORE: usize = 40;
 /// Characters of a line that an excerpt shows at most.
 const SHOWN: usize = 80;
 
+/// Where places lie: in one text, or in one of several.
+pub(super) trait Places {
+    /// A fault at a span.
+    fn fault(&self, span: Range<usize>, code: &'static str, message: String, help: String) -> Fault;
+
+    /// A fault of all of it.
+    fn whole(&self, code: &'static str, message: String, help: &str) -> Fault;
+}
+
 /// A model file's text, without byte order mark. Spans are byte offsets into it.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Source<'a> {
@@ -19,17 +28,17 @@ pub(super) struct Source<'a> {
     pub(super) text: &'a str,
 }
 
-impl<'a> Source<'a> {
-    /// A fault of the file as a whole.
-    pub(super) fn whole(self, code: &'static str, message: String, help: &str) -> Fault {
-        Fault { path: self.path.to_owned(), place: None, code, message, help: help.to_owned() }
-    }
-
-    /// A fault at a span of the text.
-    pub(super) fn fault(self, span: Range<usize>, code: &'static str, message: String, help: String) -> Fault {
+impl Places for Source<'_> {
+    fn fault(&self, span: Range<usize>, code: &'static str, message: String, help: String) -> Fault {
         Fault { path: self.path.to_owned(), place: Some(self.place(span)), code, message, help }
     }
 
+    fn whole(&self, code: &'static str, message: String, help: &str) -> Fault {
+        Fault { path: self.path.to_owned(), place: None, code, message, help: help.to_owned() }
+    }
+}
+
+impl<'a> Source<'a> {
     /// The line, from 1, that holds the byte at `offset`.
     pub(super) fn line(self, offset: usize) -> usize {
         self.upto(offset).bytes().filter(|&byte| byte == b'\n').count() + 1

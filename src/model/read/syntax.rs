@@ -90,7 +90,7 @@ fn left_open(source: Source<'_>, span: &Span, told: &str) -> bool {
 }
 
 /// The fault that two versions were merged and not reconciled.
-fn conflict(source: Source<'_>) -> Option<Faults> {
+pub(super) fn conflict(source: Source<'_>) -> Option<Faults> {
     let mark = |line: &str| line.starts_with("<<<<<<< ") || line.starts_with(">>>>>>> ");
     let at = if source.text.starts_with("<<<<<<< ") {
         0

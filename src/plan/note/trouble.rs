@@ -5,6 +5,7 @@ use super::{ROWS, Trouble};
 use crate::lp::Key;
 use crate::model::escape::{Markdown, Plain};
 use crate::model::fault::{Fault, Faults, Place};
+use crate::model::read::is_folder_name;
 use crate::model::{Bound, Model};
 use crate::solver::message::{Conflict, Growth, Rule};
 
@@ -14,7 +15,10 @@ pub fn reason(trouble: Trouble<'_>, model: Option<&Model>) -> String {
     match trouble {
         Trouble::Faults(faults) => {
             let Some(first) = faults.reported.first() else { return "the model cannot be read".to_owned() };
-            let place = first.place.as_ref().map_or(String::new(), |place| format!(" in line {}", place.line));
+            let place = first.place.as_ref().map_or(String::new(), |place| match part(first) {
+                Some(part) => format!(" in {part}, line {}", place.line),
+                None => format!(" in line {}", place.line),
+            });
             let message: String = first.message.chars().take(300).collect();
             match faults.reported.len() + faults.more {
                 1 => format!("the model has a fault{place}: {message}"),
@@ -46,6 +50,12 @@ pub(super) fn told(trouble: Trouble<'_>, model: Option<&Model>) -> String {
         Trouble::Unbounded(growth) => growth_told(growth, model),
         Trouble::Undecided(why) => format!("\n{}\n", text(why)),
     }
+}
+
+/// The name of the part that a fault is in, where the model is in parts.
+fn part(fault: &Fault) -> Option<String> {
+    let folder = fault.path.parent()?.file_name()?;
+    is_folder_name(folder).then(|| fault.path.file_name().unwrap_or_default().to_string_lossy().into_owned())
 }
 
 fn faults_told(faults: &Faults) -> String {
