@@ -4,11 +4,9 @@
 
 pub mod apply;
 pub mod build;
-pub(crate) mod decimal;
 pub mod difference;
 pub mod keys;
 pub mod mps;
-mod products;
 pub mod program;
 
 pub use build::build;

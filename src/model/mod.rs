@@ -2,10 +2,12 @@
 //!
 //! Knows no solver and no clock, and never writes.
 
+pub(crate) mod decimal;
 pub mod escape;
 pub mod fault;
 pub mod meaning;
 pub mod name;
+pub(crate) mod products;
 pub mod read;
 pub mod types;
 pub mod value;

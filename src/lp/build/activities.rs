@@ -5,7 +5,7 @@ use super::limits::{Limits, Uses};
 use super::materials::Balances;
 use super::resources::Capacities;
 use crate::lp::keys::{activity_key, change_key};
-use crate::lp::products;
+use crate::model::products;
 use crate::model::{Activity, Aim, Model, Name, Period, Resource, Value};
 
 /// What one unit of an activity adds to the aim: price less costs, or costs alone where they are to be small.

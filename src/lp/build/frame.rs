@@ -1,7 +1,7 @@
 //! What all parts of a program are built with: the periods, rows and columns on their way to their order, and the parts of entries.
 
-use crate::lp::products;
 use crate::lp::program::{Column, Key, Row, RowIndex};
+use crate::model::products;
 use crate::model::{Aim, Model, Period};
 
 /// A model, and its periods in the order in which their keys come.

@@ -5,7 +5,7 @@ use std::collections::HashMap;
 use super::frame::{Columns, Frame, Line, Part, Rows, at};
 use super::limits::Limits;
 use crate::lp::keys::{balance_key, demand_key, flow_key};
-use crate::lp::products;
+use crate::model::products;
 use crate::model::{Closing, Flow, Late, Material, Model, Name, Period, Purchase, Sale};
 
 /// The rows of materials, by name.

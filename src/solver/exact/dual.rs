@@ -14,7 +14,7 @@ use super::price::{Prices, combine, improves};
 use super::primal::PATIENCE;
 use super::vertex::{Side, Swap, Vertex};
 use super::whole::{Costs, Variable};
-use crate::lp::decimal::nearest;
+use crate::model::decimal::nearest;
 use crate::solver::basis::Position;
 
 /// Pivots until the vertex keeps all bounds.

@@ -3,7 +3,7 @@
 use dashu_int::IBig;
 use dashu_int::ops::{Abs, BitTest, DivRem};
 
-use crate::lp::decimal::nearest;
+use crate::model::decimal::nearest;
 
 /// Fractions with one positive denominator.
 #[derive(Clone, Debug)]

@@ -11,8 +11,8 @@ use super::price::Prices;
 use super::primal::{lowest, minimise};
 use super::vertex::{Budget, Side, Vertex};
 use super::whole::{Bounds, Costs, Variable, Whole};
-use crate::lp::decimal::{Decimal, nearest, ten_to};
 use crate::lp::{Program, RowIndex, Sense};
+use crate::model::decimal::{Decimal, nearest, ten_to};
 use crate::solver::basis::{Basis, Position};
 
 /// The vertex that is best for a program's aim and, among those, for a second aim to be made small.

@@ -9,8 +9,8 @@ use dashu_int::IBig;
 
 use super::Unsettled;
 use super::factor::Entries;
-use crate::lp::decimal::{Decimal, nearest, ten_to};
 use crate::lp::{Program, RowIndex};
+use crate::model::decimal::{Decimal, nearest, ten_to};
 
 /// A column of the program or the sum of a row: columns first, both in the program's order.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]

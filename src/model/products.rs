@@ -7,7 +7,7 @@ use super::decimal::{Decimal, nearest, ten_to};
 /// The double nearest to a sum of products, each factor read as the decimal that it is written as.
 ///
 /// The order of the products does not matter. Where a factor is not finite, there is no such decimal, and the sum is that of the doubles.
-pub(super) fn sum(products: impl Iterator<Item = (f64, f64)> + Clone) -> f64 {
+pub(crate) fn sum(products: impl Iterator<Item = (f64, f64)> + Clone) -> f64 {
     let mut met = products.clone().filter(|&(number, factor)| number != 0.0 && factor != 0.0);
     match (met.next(), met.next()) {
         (None, _) => 0.0,
