@@ -10,9 +10,8 @@ use crate::solver::basis::{NamedBasis, Position};
 #[must_use]
 pub fn last_plan(model: &Model, plan: &Plan, basis: &NamedBasis) -> LastPlan {
     let is_idle = |planned: &&PlannedActivity| planned.level.numbers().iter().all(|&level| level == 0.0);
-    let at_bound = |planned: &&PlannedActivity| {
-        !is_idle(planned) && matches!(planned.state, State::AtItsMost | State::AtItsLeast | State::Fixed)
-    };
+    let is_bound = |state: &State| matches!(state, State::AtItsMost | State::AtItsLeast | State::Fixed);
+    let at_bound = |planned: &&PlannedActivity| !is_idle(planned) && planned.state.all().iter().any(is_bound);
     let leaned_on = |table: &str, name: &Name| {
         let whole = format!("{table}.{name}");
         let of_it =
