@@ -74,7 +74,7 @@ fn chains_of_edits_keep_their_promises_and_come_to_the_one_plan() {
             let case =
                 || format!("seed {seed}, step {step}:\n{}\n{:?}\n{model:?}\n{edited:?}", told(&edits), answer.account);
             assert_eq!(shown(&answer.outcome), shown(&cold), "{}", case());
-            assert_eq!(edits.is_empty(), model == edited || no_number_differs(&program, &after), "{}", case());
+            assert!(!edits.is_empty() || no_number_differs(&program, &after), "{}", case());
             if let Some(before) = optimum(&outcome) {
                 let mut again = Session::remembered(program.clone(), &before.basis.named(&program), Some(1_000));
                 assert_eq!(shown(&solve(&mut again, &after).outcome), shown(&cold), "after a restart, {}", case());
