@@ -6,6 +6,8 @@
 mod again;
 #[path = "reading/faults.rs"]
 mod faults;
+#[path = "reading/faults_over_weeks.rs"]
+mod faults_over_weeks;
 #[path = "reading/files.rs"]
 mod files;
 #[path = "reading/good.rs"]
@@ -14,6 +16,10 @@ mod good;
 mod hostile;
 #[path = "reading/laws.rs"]
 mod laws;
+#[path = "reading/models.rs"]
+mod models;
+#[path = "reading/odd.rs"]
+mod odd;
 
 use std::path::Path;
 
@@ -22,6 +28,9 @@ use millreeve::model::read::{self, Reading};
 
 /// A small tileworks that has nothing wrong with it.
 const TILEWORKS: &str = include_str!("reading/tileworks.model.toml");
+
+/// The same works over three weeks, with materials, stock and overtime.
+const WEEKS: &str = include_str!("reading/weeks.model.toml");
 
 fn read(bytes: &[u8]) -> Result<Reading, Faults> {
     read::text(Path::new("works.model.toml"), bytes)
@@ -46,4 +55,10 @@ fn bad(bytes: &[u8]) -> Faults {
 fn edited(from: &str, to: &str) -> String {
     assert!(TILEWORKS.contains(from), "the tileworks has no {from:?}");
     TILEWORKS.replacen(from, to, 1)
+}
+
+/// The works over three weeks with one part replaced by another.
+fn edited_weeks(from: &str, to: &str) -> String {
+    assert!(WEEKS.contains(from), "the works has no {from:?}");
+    WEEKS.replacen(from, to, 1)
 }

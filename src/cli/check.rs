@@ -20,7 +20,10 @@ struct Checked<'a> {
     faults: &'a [Fault],
     /// How many more faults there are than are told.
     more: usize,
+    /// What is odd, though no fault.
     warnings: &'a [Fault],
+    /// How many more of these there are than are told.
+    more_warnings: usize,
     /// Why the file could not be read.
     #[serde(skip_serializing_if = "Option::is_none")]
     unread: Option<String>,
@@ -92,7 +95,7 @@ pub(super) fn counted(count: usize, what: &str) -> String {
 fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
     let (faults, warnings, unread) = match read::file(path).map(|bytes| read::text(path, &bytes)) {
         Ok(Ok(Reading { warnings, .. })) => (Faults::default(), warnings, None),
-        Ok(Err(faults)) => (faults, Vec::new(), None),
+        Ok(Err(faults)) => (faults, Faults::default(), None),
         Err(problem) => {
             let error = unreadable(&problem);
             tally.unread += 1;
@@ -100,7 +103,7 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
             if !screen.json() {
                 screen.error(&error);
             }
-            (Faults::default(), Vec::new(), Some(error.message().to_owned()))
+            (Faults::default(), Faults::default(), Some(error.message().to_owned()))
         }
     };
     let count = faults.reported.len() + faults.more;
@@ -109,7 +112,15 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
     if screen.json() {
         let model = models::stem(path).file_name().unwrap_or_default().to_string_lossy().into_owned();
         let Faults { reported, more } = &faults;
-        screen.object(&Checked { model, path: text(path), faults: reported, more: *more, warnings: &warnings, unread });
+        screen.object(&Checked {
+            model,
+            path: text(path),
+            faults: reported,
+            more: *more,
+            warnings: &warnings.reported,
+            more_warnings: warnings.more,
+            unread,
+        });
         return;
     }
     if count > 0 {
@@ -117,8 +128,11 @@ fn one(screen: &mut Screen, path: &Path, tally: &mut Tally) {
         let gap = if tally.faulty > 1 { "\n" } else { "" };
         screen.say(format_args!("{gap}{}", faults.terminal(true).to_string().trim_end_matches('\n')));
     }
-    for warning in &warnings {
+    for warning in &warnings.reported {
         screen.aside(format_args!("{WARN}odd, but no fault:{WARN:#} {}\n", warning.terminal(false)));
+    }
+    if warnings.more > 0 {
+        screen.aside(format_args!("and {} more that are odd\n", warnings.more));
     }
 }
 

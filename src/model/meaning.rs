@@ -1,17 +1,24 @@
 //! What a model means, as a hash: equal for two models that must get the same plan.
 
+mod digest;
+mod groups;
+
 use std::collections::BTreeMap;
 use std::fmt;
-use std::hash::Hash;
 
 use super::name::Name;
-use super::types::{Activity, Bound, Limit, Model, Resource, Term};
+use super::types::{
+    Activity, Bound, Closing, Discard, Late, Limit, Material, Model, Over, Purchase, Resource, Sale, Stock, Surge, Term,
+};
 use super::value::Value;
+use digest::Digest;
+use groups::Groups;
 
 /// The BLAKE3 hash of a model's meaning.
 ///
-/// Titles, labels, units, comments, layout and the order of declaration do not count; neither does the difference between a
-/// value left out and its default written out. Everything else does.
+/// Titles, labels, units, comments, layout and the order of declaration do not count; nor does what a tag is called and who carries one
+/// that no limit sums, nor the difference between a value left out and its default written out, or between a number and a list
+/// of it for every period. Everything else does.
 #[derive(Clone, Copy, PartialEq, Eq, Hash)]
 pub struct Meaning([u8; 32]);
 
@@ -19,9 +26,9 @@ impl Meaning {
     /// The hash of what `model` means.
     #[must_use]
     pub fn of(model: &Model) -> Self {
-        let mut digest = Digest::new();
-        digest.model(model);
-        Self(digest.finish())
+        let mut telling = Telling { digest: Digest::new("millreeve meaning 1\n"), groups: Groups::of(model) };
+        telling.model(model);
+        Self(telling.digest.finish())
     }
 
     /// The meaning whose text is `text`: 64 hexadecimal digits, as [`Display`](fmt::Display) writes them.
@@ -43,136 +50,124 @@ impl fmt::Debug for Meaning {
     }
 }
 
-/// Feeds a model to the hash without ambiguity: every text and list is preceded by its length, every number is its bits.
-struct Digest {
-    hasher: blake3::Hasher,
-    /// What has not been fed yet: the hash takes large pieces many times faster than small ones.
-    waiting: Vec<u8>,
+/// Feeds a model to the hash.
+struct Telling<'m> {
+    digest: Digest,
+    groups: Groups<'m>,
 }
 
-/// Bytes that wait at most.
-const PIECE: usize = 16 * 1024;
-
-impl Digest {
-    fn new() -> Self {
-        let mut digest = Self { hasher: blake3::Hasher::new(), waiting: Vec::with_capacity(2 * PIECE) };
-        digest.bytes(b"millreeve meaning 1\n");
-        digest
-    }
-
-    fn finish(mut self) -> [u8; 32] {
-        self.hasher.update(&self.waiting);
-        *self.hasher.finalize().as_bytes()
-    }
-
-    fn bytes(&mut self, bytes: &[u8]) {
-        self.waiting.extend_from_slice(bytes);
-        if self.waiting.len() >= PIECE {
-            self.hasher.update(&self.waiting);
-            self.waiting.clear();
-        }
-    }
-
+impl Telling<'_> {
     fn model(&mut self, model: &Model) {
-        self.text(model.aim.word());
-        self.text(model.currency.as_deref().unwrap_or(""));
-        self.number(model.constant);
-        let labels: Vec<_> = model.horizon.periods().filter_map(|period| model.horizon.label(period)).collect();
-        self.count(labels.len());
-        for label in labels {
-            self.text(label);
-        }
-        self.map(&model.resources, |digest, name| digest.text(name.as_str()), Self::resource);
-        self.map(&model.activities, |digest, name| digest.text(name.as_str()), Self::activity);
-        self.map(&model.limits, |digest, name| digest.text(name.as_str()), Self::limit);
+        let Model { title: _, currency, aim, constant, horizon, resources, activities, materials, limits } = model;
+        self.digest.text(aim.word());
+        self.digest.text(currency.as_deref().unwrap_or(""));
+        self.digest.number(*constant);
+        let labels: Vec<_> = horizon.periods().filter_map(|period| horizon.label(period)).collect();
+        self.list(&labels, |telling, label| telling.digest.text(label));
+        self.map(resources, Self::resource);
+        self.map(activities, Self::activity);
+        self.map(materials, Self::material);
+        self.map(limits, Self::limit);
     }
 
     fn resource(&mut self, resource: &Resource) {
-        let Resource { label: _, unit: _, capacity, at_least, cost, surge: _ } = resource;
-        self.value(capacity);
-        self.value(at_least);
-        self.value(cost);
+        let Resource { label: _, unit: _, capacity, at_least, cost, surge } = resource;
+        self.digest.values([capacity, at_least, cost]);
+        self.list(surge, |telling, Surge { at_most, cost }| telling.digest.values([at_most, cost]));
     }
 
     fn activity(&mut self, activity: &Activity) {
-        let Activity { label: _, unit: _, price, cost, uses, at_least, at_most, tags, prospect, .. } = activity;
-        for value in [price, cost, at_least, at_most] {
-            self.value(value);
+        let Activity { label: _, unit: _, price, cost, uses, draws, makes, .. } = activity;
+        let Activity { lead, at_least, at_most, change_at_most, tags: _, prospect, .. } = activity;
+        self.digest.values([price, cost, at_least, at_most, change_at_most]);
+        for rates in [uses, draws, makes] {
+            self.digest.rates(rates);
         }
-        self.map(uses, |digest, name| digest.text(name.as_str()), Self::value);
-        self.count(tags.len());
-        for tag in tags {
-            self.text(tag.as_str());
-        }
-        self.count(usize::from(*prospect));
+        self.digest.count(*lead);
+        self.digest.count(usize::from(*prospect));
+    }
+
+    fn material(&mut self, material: &Material) {
+        let Material { label: _, unit: _, opening, purchase, sale, stock, closing, discard } = material;
+        self.digest.number(*opening);
+        self.list(purchase, |telling, Purchase { price, at_least, at_most }| {
+            telling.digest.values([price, at_least, at_most]);
+        });
+        self.list(sale, |telling, Sale { price, at_least, at_most, late }| {
+            telling.digest.values([price, at_least, at_most]);
+            telling.list(late.as_slice(), |telling, Late { cost, at_most }| telling.digest.values([cost, at_most]));
+        });
+        self.list(stock.as_slice(), |telling, Stock { cost, at_least, at_most }| {
+            telling.digest.values([cost, at_least, at_most]);
+        });
+        self.list(closing.as_slice(), |telling, Closing { at_least, worth }| {
+            telling.digest.number(*at_least);
+            telling.digest.number(*worth);
+        });
+        let Discard { cost, at_most } = discard;
+        self.digest.values([cost, at_most]);
     }
 
     fn limit(&mut self, limit: &Limit) {
-        let Limit { label: _, terms, per, bound, over: _ } = limit;
-        self.map(terms, Self::term, Self::value);
-        self.count(usize::from(per.is_some()));
-        if let Some(per) = per {
-            self.map(per, Self::term, Self::value);
-        }
+        let Limit { label: _, terms, per, bound, over } = limit;
+        self.sum(terms);
+        self.list(per.as_slice(), Self::sum);
         match bound {
             Bound::Between(least, most) => {
-                self.text("between");
-                self.value(least);
-                self.value(most);
+                self.digest.text("between");
+                self.digest.values([least, most]);
             }
             Bound::Equals(value) => {
-                self.text("equals");
-                self.value(value);
+                self.digest.text("equals");
+                self.digest.value(value);
+            }
+        }
+        match over {
+            Over::Each => self.digest.text("each"),
+            Over::All => self.digest.text("all"),
+            Over::Some(periods) => {
+                self.digest.text("some");
+                self.list(periods, |telling, period| telling.digest.count(period.position()));
             }
         }
     }
 
-    fn term(&mut self, term: &Term) {
-        let (kind, name): (&str, Option<&Name>) = match term {
-            Term::Activity(name) => ("activity", Some(name)),
-            Term::Tag(name) => ("tag", Some(name)),
-            Term::All => ("all", None),
-            Term::Material(name, _) => ("material", Some(name)),
-            Term::Surge(name, _) => ("surge", Some(name)),
-        };
-        self.text(kind);
-        self.text(name.map_or("", Name::as_str));
-    }
-
-    fn map<K: Hash, V>(&mut self, map: &BTreeMap<K, V>, key: impl Fn(&mut Self, &K), value: impl Fn(&mut Self, &V)) {
-        self.count(map.len());
-        for (k, v) in map {
-            key(self, k);
-            value(self, v);
+    /// The terms of a sum. A tag is told by its activities, so that what it is called does not count.
+    fn sum(&mut self, terms: &BTreeMap<Term, Value>) {
+        self.digest.count(terms.len());
+        let mut groups = Vec::new();
+        for (term, value) in terms {
+            match term {
+                Term::Tag(tag) => {
+                    groups.push((self.groups.hash(tag), value));
+                    continue;
+                }
+                Term::Activity(name) => {
+                    self.digest.text("activity");
+                    self.digest.text(name.as_str());
+                }
+                Term::All | Term::Material(..) | Term::Surge(..) => self.digest.text(&term.to_string()),
+            }
+            self.digest.value(value);
+        }
+        groups.sort_by_cached_key(|(group, value)| (*group, digest::key(value)));
+        for (group, value) in groups {
+            self.digest.text("group");
+            self.digest.bytes(&group);
+            self.digest.value(value);
         }
     }
 
-    /// A list of equal numbers means the same as the number alone.
-    fn value(&mut self, value: &Value) {
-        let numbers = value.numbers();
-        let same = numbers.windows(2).all(|pair| bits(pair[0]) == bits(pair[1]));
-        let told = if same { &numbers[..numbers.len().min(1)] } else { numbers };
-        self.count(told.len());
-        for &number in told {
-            self.number(number);
+    fn map<T>(&mut self, map: &BTreeMap<Name, T>, tell: impl Fn(&mut Self, &T)) {
+        self.digest.count(map.len());
+        for (name, entry) in map {
+            self.digest.text(name.as_str());
+            tell(self, entry);
         }
     }
 
-    fn number(&mut self, number: f64) {
-        self.bytes(&bits(number).to_le_bytes());
+    fn list<T>(&mut self, list: &[T], tell: impl Fn(&mut Self, &T)) {
+        self.digest.count(list.len());
+        list.iter().for_each(|entry| tell(self, entry));
     }
-
-    fn text(&mut self, text: &str) {
-        self.count(text.len());
-        self.bytes(text.as_bytes());
-    }
-
-    fn count(&mut self, count: usize) {
-        self.bytes(&(count as u64).to_le_bytes());
-    }
-}
-
-/// The bits of a number, with one zero only.
-fn bits(number: f64) -> u64 {
-    (number + 0.0).to_bits()
 }

@@ -5,12 +5,16 @@
 pub(crate) mod decimal;
 pub mod escape;
 pub mod fault;
+pub(crate) mod letters;
 pub mod meaning;
 pub mod name;
+pub(crate) mod near;
+pub(crate) mod odd;
 pub(crate) mod products;
 pub mod read;
 pub mod types;
 pub mod value;
+mod values;
 pub mod write;
 
 pub use fault::{Fault, Faults};

@@ -88,6 +88,21 @@ impl Value {
         }
     }
 
+    /// The value of a list of one number per period: a single number where all are the same, which means the same.
+    #[must_use]
+    pub fn of(list: Vec<f64>) -> Self {
+        match list.first() {
+            Some(&first) if list.iter().all(|&number| number.total_cmp(&first).is_eq()) => Self::Every(first),
+            _ => Self::Listed(list),
+        }
+    }
+
+    /// The numbers of two values side by side, once where neither differs by period.
+    pub fn beside<'a>(&'a self, other: &'a Self) -> impl Iterator<Item = (Period, f64, f64)> + 'a {
+        let count = self.numbers().len().max(other.numbers().len());
+        (0..count).map(Period).map(|period| (period, self.at(period), other.at(period)))
+    }
+
     /// The numbers, one or one per period.
     #[must_use]
     pub fn numbers(&self) -> &[f64] {

@@ -1,12 +1,16 @@
 //! Writing a model as TOML text that reads back to the same model.
 
-use std::collections::BTreeMap;
-use std::fmt::{self, Display, Write as _};
+mod toml;
+
+use std::fmt::{self, Write as _};
 
 use super::escape::Toml;
 use super::name::Name;
-use super::types::{Activity, Aim, Bound, Limit, Model, Resource, Term};
-use super::value::Value;
+use super::types::{
+    Activity, Aim, Bound, Closing, Discard, Late, Limit, Material, Model, Over, Purchase, Resource, Sale, Stock, Surge,
+};
+use super::value::{Horizon, Value};
+use toml::{Inline, Key, Keys, Written, is_every};
 
 /// The text of a model, laid out as people write one. What is left at its default is left out.
 #[must_use]
@@ -26,6 +30,8 @@ fn document(text: &mut String, model: &Model) -> fmt::Result {
         keys.add("aim", Toml(model.aim.word()));
     }
     keys.value("constant", &Value::Every(model.constant), 0.0);
+    let horizon = &model.horizon;
+    keys.names("periods", horizon.periods().filter_map(|period| horizon.label(period)));
     keys.write(text)?;
     for (name, resource) in &model.resources {
         write!(text, "\n[resources.{}]\n", Key(name.as_str()))?;
@@ -35,26 +41,37 @@ fn document(text: &mut String, model: &Model) -> fmt::Result {
         write!(text, "\n[activities.{}]\n", Key(name.as_str()))?;
         activity_keys(activity).write(text)?;
     }
+    for (name, material) in &model.materials {
+        write!(text, "\n[materials.{}]\n", Key(name.as_str()))?;
+        material_keys(material).write(text)?;
+    }
     for (name, limit) in &model.limits {
         write!(text, "\n[limits.{}]\n", Key(name.as_str()))?;
-        limit_keys(limit).write(text)?;
+        limit_keys(limit, &model.horizon).write(text)?;
     }
     Ok(())
 }
 
 fn resource_keys(resource: &Resource) -> Keys {
-    let Resource { label, unit, capacity, at_least, cost, surge: _ } = resource;
+    let Resource { label, unit, capacity, at_least, cost, surge } = resource;
     let mut keys = Keys::default();
     keys.text("label", label.as_deref());
     keys.text("unit", unit.as_deref());
     keys.value("capacity", capacity, f64::INFINITY);
     keys.value("at_least", at_least, f64::NEG_INFINITY);
     keys.value("cost", cost, 0.0);
+    keys.tiers("surge", surge, |Surge { at_most, cost }| {
+        let mut keys = Keys::default();
+        keys.value("at_most", at_most, f64::INFINITY);
+        keys.value("cost", cost, 0.0);
+        keys
+    });
     keys
 }
 
 fn activity_keys(activity: &Activity) -> Keys {
-    let Activity { label, unit, price, cost, uses, at_least, at_most, tags, prospect, .. } = activity;
+    let Activity { label, unit, price, cost, uses, draws, makes, lead, .. } = activity;
+    let Activity { at_least, at_most, change_at_most, tags, prospect, .. } = activity;
     let mut keys = Keys::default();
     keys.text("label", label.as_deref());
     keys.text("unit", unit.as_deref());
@@ -63,20 +80,73 @@ fn activity_keys(activity: &Activity) -> Keys {
     }
     keys.value("price", price, 0.0);
     keys.value("cost", cost, 0.0);
-    if !uses.is_empty() {
-        keys.add("uses", Inline(uses));
+    keys.rates("uses", uses);
+    keys.rates("draws", draws);
+    keys.rates("makes", makes);
+    if *lead > 0 {
+        keys.add("lead", lead);
     }
     keys.value("at_least", at_least, 0.0);
     keys.value("at_most", at_most, f64::INFINITY);
-    if !tags.is_empty() {
-        let list: Vec<String> = tags.iter().map(|tag| Toml(tag.as_str()).to_string()).collect();
-        keys.add("tags", format_args!("[{}]", list.join(", ")));
+    keys.value("change_at_most", change_at_most, f64::INFINITY);
+    keys.names("tags", tags.iter().map(Name::as_str));
+    keys
+}
+
+fn material_keys(material: &Material) -> Keys {
+    let Material { label, unit, opening, purchase, sale, stock, closing, discard } = material;
+    let mut keys = Keys::default();
+    keys.text("label", label.as_deref());
+    keys.text("unit", unit.as_deref());
+    keys.value("opening", &Value::Every(*opening), 0.0);
+    keys.tiers("purchase", purchase, |Purchase { price, at_least, at_most }| traded(price, at_least, at_most));
+    keys.tiers("sale", sale, |Sale { price, at_least, at_most, late }| {
+        let mut keys = traded(price, at_least, at_most);
+        if let Some(Late { cost, at_most }) = late {
+            keys.add("late", spent(cost, at_most).inline());
+        }
+        keys
+    });
+    if let Some(Stock { cost, at_least, at_most }) = stock {
+        let mut stock = Keys::default();
+        stock.value("cost", cost, 0.0);
+        stock.value("at_least", at_least, 0.0);
+        stock.value("at_most", at_most, f64::INFINITY);
+        keys.add("stock", stock.inline());
+    }
+    match closing.map(|Closing { at_least, worth }| (Value::Every(at_least), Value::Every(worth))) {
+        Some((at_least, worth)) if is_every(&worth, 0.0) => keys.add("closing", Written(&at_least)),
+        Some((at_least, worth)) => {
+            let mut closing = Keys::default();
+            closing.value("at_least", &at_least, 0.0);
+            closing.value("worth", &worth, 0.0);
+            keys.add("closing", closing.inline());
+        }
+        None => {}
+    }
+    if *discard != Discard::default() {
+        keys.add("discard", spent(&discard.cost, &discard.at_most).inline());
     }
     keys
 }
 
-fn limit_keys(limit: &Limit) -> Keys {
-    let Limit { label, terms, per, bound, over: _ } = limit;
+fn traded(price: &Value, at_least: &Value, at_most: &Value) -> Keys {
+    let mut keys = Keys::default();
+    keys.value("price", price, 0.0);
+    keys.value("at_least", at_least, 0.0);
+    keys.value("at_most", at_most, f64::INFINITY);
+    keys
+}
+
+fn spent(cost: &Value, at_most: &Value) -> Keys {
+    let mut keys = Keys::default();
+    keys.value("cost", cost, 0.0);
+    keys.value("at_most", at_most, f64::INFINITY);
+    keys
+}
+
+fn limit_keys(limit: &Limit, horizon: &Horizon) -> Keys {
+    let Limit { label, terms, per, bound, over } = limit;
     let mut keys = Keys::default();
     keys.text("label", label.as_deref());
     keys.add("terms", Inline(terms));
@@ -92,112 +162,10 @@ fn limit_keys(limit: &Limit) -> Keys {
             keys.value("at_most", most, if needed { f64::NAN } else { f64::INFINITY });
         }
     }
+    match over {
+        Over::Each => {}
+        Over::All => keys.add("over", Toml("all")),
+        Over::Some(periods) => keys.names("over", periods.iter().filter_map(|&period| horizon.label(period))),
+    }
     keys
-}
-
-/// The keys of one table, written with their equals signs in one column.
-#[derive(Default)]
-struct Keys(Vec<(&'static str, String)>);
-
-impl Keys {
-    fn add(&mut self, key: &'static str, value: impl Display) {
-        self.0.push((key, value.to_string()));
-    }
-
-    fn text(&mut self, key: &'static str, text: Option<&str>) {
-        if let Some(text) = text {
-            self.add(key, Toml(text));
-        }
-    }
-
-    fn value(&mut self, key: &'static str, value: &Value, default: f64) {
-        if !is_every(value, default) {
-            self.add(key, Written(value));
-        }
-    }
-
-    fn write(&self, text: &mut String) -> fmt::Result {
-        let width = self.0.iter().map(|(key, _)| key.len()).max().unwrap_or(0);
-        self.0.iter().try_for_each(|(key, value)| writeln!(text, "{key:width$} = {value}"))
-    }
-}
-
-#[expect(clippy::float_cmp, reason = "a default is left out only where it is that very number")]
-fn is_every(value: &Value, number: f64) -> bool {
-    matches!(value, Value::Every(every) if *every == number)
-}
-
-/// A value as TOML: a number, or a list of one per period.
-struct Written<'a>(&'a Value);
-
-impl Display for Written<'_> {
-    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        match self.0 {
-            Value::Every(number) => Number(*number).fmt(f),
-            Value::Listed(list) => {
-                let list: Vec<String> = list.iter().map(|number| Number(*number).to_string()).collect();
-                write!(f, "[{}]", list.join(", "))
-            }
-        }
-    }
-}
-
-/// A number as TOML, in the shortest form that reads back exactly.
-struct Number(f64);
-
-impl Display for Number {
-    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        let number = self.0 + 0.0;
-        let magnitude = number.abs();
-        if number.is_finite() && magnitude > 0.0 && !(1e-6..1e16).contains(&magnitude) {
-            write!(f, "{number:e}")
-        } else {
-            write!(f, "{number}")
-        }
-    }
-}
-
-/// A map as an inline table.
-struct Inline<'a, K>(&'a BTreeMap<K, Value>);
-
-impl<K: Word> Display for Inline<'_, K> {
-    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        if self.0.is_empty() {
-            return f.write_str("{}");
-        }
-        for (at, (key, value)) in self.0.iter().enumerate() {
-            write!(f, "{} {} = {}", if at == 0 { "{" } else { "," }, Key(&key.word()), Written(value))?;
-        }
-        f.write_str(" }")
-    }
-}
-
-/// What can be the key of an inline table.
-trait Word {
-    fn word(&self) -> std::borrow::Cow<'_, str>;
-}
-
-impl Word for Name {
-    fn word(&self) -> std::borrow::Cow<'_, str> {
-        self.as_str().into()
-    }
-}
-
-impl Word for Term {
-    fn word(&self) -> std::borrow::Cow<'_, str> {
-        match self {
-            Self::Activity(name) => name.as_str().into(),
-            _ => self.to_string().into(),
-        }
-    }
-}
-
-/// A key of a table: bare where TOML allows that, else in quotes.
-struct Key<'a>(&'a str);
-
-impl Display for Key<'_> {
-    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        let bare = self.0.bytes().all(|byte| byte.is_ascii_alphanumeric() || matches!(byte, b'_' | b'-'));
-        if bare && !self.0.is_empty() { f.write_str(self.0) } else { Toml(self.0).fmt(f) }
-    }
 }

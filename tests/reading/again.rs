@@ -7,14 +7,14 @@ use millreeve::model::read::{Before, Blocks, again, text_and_blocks};
 use proptest::collection::vec;
 use proptest::prelude::*;
 
-use super::{TILEWORKS, edited};
+use super::{TILEWORKS, WEEKS, edited, edited_weeks};
 
 fn path() -> &'static Path {
     Path::new("works.model.toml")
 }
 
 fn whole(text: &str) -> Option<(Model, Blocks)> {
-    text_and_blocks(path(), text.as_bytes()).ok().map(|(reading, blocks)| (reading.model, blocks))
+    text_and_blocks(path(), text.as_bytes()).ok()
 }
 
 /// What reading makes of `new` by what differs from `old`.
@@ -40,6 +40,39 @@ fn edits_within_tables_are_read_alone() {
     let new = format!("\u{feff}{}", edited("price    = 21.0", "price    = 2.5").replace('\n', "\r\n"));
     assert_eq!(in_part(&windows, &new), whole(&new));
     assert!(in_part(&windows, &new).is_some());
+}
+
+#[test]
+fn edits_within_tables_of_several_periods_are_read_alone() {
+    for (from, to) in [
+        ("capacity = { per_day = 22 }", "capacity = { per_day = 21.5, \"2027-W02\" = 60 }"),
+        ("capacity = [60, 48, 54]", "capacity = [60, 48, 50]"),
+        ("lead     = 1", "lead     = 2"),
+        ("opening  = 20", "opening  = 22"),
+        ("price = 34, at_least = 5", "price = 35, at_least = 5"),
+        ("worth = 30", "worth = 0"),
+        ("\"materials.slip.purchase.1\" = 0.5", "\"materials.slip.purchase.2\" = 0.5"),
+        ("over     = \"all\"", "over     = [\"2027-W03\"]"),
+    ] {
+        let new = edited_weeks(from, to);
+        assert_eq!(in_part(WEEKS, &new), whole(&new), "{to}");
+        assert!(in_part(WEEKS, &new).is_some(), "{to}");
+    }
+}
+
+#[test]
+fn what_limits_ask_of_materials_and_resources_is_left_to_reading_the_whole() {
+    for (from, to) in [
+        ("surge    = { at_most = { per_day = 2 }, cost = [60, 70, 60] }\n", ""),
+        (", { price = [36, 37, 36], at_most = 30 }]", "]"),
+        (", late = { cost = 2, at_most = 300 }", ""),
+        ("stock    = { cost = 0.05, at_most = [1500, 1500, 1800] }\nclosing  = 400", ""),
+        ("days     = [5, 4, 4.5]", "days     = [5, 4, 5]"),
+        ("capacity = [60, 48, 54]", "capacity = [60, 48]"),
+        ("uses     = { kiln = 0.016", "uses     = { kiln = { \"2027-W04\" = 1 }"),
+    ] {
+        assert_eq!(in_part(WEEKS, &edited_weeks(from, to)), None, "{to}");
+    }
 }
 
 #[test]
@@ -139,8 +172,8 @@ proptest! {
     #![proptest_config(ProptestConfig::with_cases(2000))]
 
     #[test]
-    fn in_part_or_as_a_whole_a_text_says_the_same(slips in vec(vec(slip(), 1..3), 1..6)) {
-        let mut old = TILEWORKS.to_owned();
+    fn in_part_or_as_a_whole_a_text_says_the_same(slips in vec(vec(slip(), 1..3), 1..6), weeks: bool) {
+        let mut old = if weeks { WEEKS } else { TILEWORKS }.to_owned();
         let (mut model, mut blocks) = whole(&old).unwrap();
         for slips in slips {
             let new = slips.iter().fold(old.clone(), |text, slip| slip.made(&text));

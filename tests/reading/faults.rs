@@ -6,9 +6,14 @@ use super::{TILEWORKS, bad, edited};
 
 /// What is said when each part of the tileworks is replaced by another.
 fn told(edits: &[(&str, &str)]) -> String {
+    told_of(edits.iter().map(|(from, to)| edited(from, to)))
+}
+
+/// What is said of each text.
+pub(super) fn told_of(texts: impl Iterator<Item = String>) -> String {
     let mut told = String::new();
-    for (from, to) in edits {
-        let faults = bad(edited(from, to).as_bytes());
+    for text in texts {
+        let faults = bad(text.as_bytes());
         let codes: Vec<_> = faults.reported.iter().map(|fault| fault.code).collect();
         writeln!(told, "[{}]\n{}", codes.join(", "), faults.terminal(false)).unwrap();
     }
@@ -128,23 +133,39 @@ fn numbers() {
 #[test]
 fn what_this_version_does_not_plan() {
     let told = told(&[
-        ("currency = \"EUR\"", "periods = [\"2027-W01\", \"2027-W02\"]\ndays = [5, 4]"),
+        ("at_least = 500", "lot = 50\nnone_or_at_least = 300\nsetup = { cost = 400 }"),
+        ("[limits.small_batch]", "[variants.kiln_down]\n[steady]\n[guard]\n[limits.small_batch]"),
+    ]);
+    insta::assert_snapshot!(told);
+}
+
+#[test]
+fn periods_that_are_not_there() {
+    let told = told(&[
         ("capacity = 168", "capacity = [168, 120]"),
-        ("capacity = 168", "capacity = { per_day = 22 }"),
+        ("capacity = 168", "capacity = [168]"),
         ("capacity = 168", "capacity = { each = 168, \"2027-W02\" = 120 }"),
         ("capacity = 168", "capacity = { eech = 168 }"),
-        ("capacity = 168", "surge = [{ at_most = 16, cost = 95 }]"),
-        ("at_least = 500", "draws = { slip = 0.022 }\nmakes = { offcut = 0.001 }\nlead = 0\nchange_at_most = 800"),
-        ("at_least = 500", "lot = 50\nnone_or_at_least = 300\nsetup = { cost = 400 }"),
-        ("[limits.small_batch]", "[materials.slip]\nunit = \"t\"\n[limits.small_batch]"),
-        ("[limits.small_batch]", "[variants.kiln_down]\n[steady]\n[guard]\n[limits.small_batch]"),
-        ("over     = \"each\"", "over = \"all\""),
+        ("capacity = 168", "capacity = { per_day = 22 }"),
+        ("terms    = { wall_tile = 1.0 }", "terms = { wall_tile = [1.0, 2.0] }"),
         ("over     = \"each\"", "over = [\"2027-W01\"]"),
+        ("over     = \"each\"", "over = []"),
         ("over     = \"each\"", "over = \"every\""),
         ("over     = \"each\"", "over = 1"),
-        ("terms    = { wall_tile = 1.0 }", "terms = { \"materials.slip.purchase\" = 1.0 }"),
-        ("terms    = { wall_tile = 1.0 }", "terms = { \"resources.kiln.surge.1\" = 1.0 }"),
-        ("terms    = { wall_tile = 1.0 }", "terms = { wall_tile = [1.0, 2.0] }"),
+        ("currency = \"EUR\"", "periods = []"),
+        ("currency = \"EUR\"", "periods = \"2027-W01\""),
+        ("currency = \"EUR\"", "periods = [\"2027-W01\", 2]"),
+        ("currency = \"EUR\"", "periods = [2027-01-04]"),
+        ("currency = \"EUR\"", "periods = [\"week 1\"]"),
+        ("currency = \"EUR\"", "periods = [\"each\", \"per_day\"]"),
+        ("currency = \"EUR\"", "periods = [\"2027-W01\", \"2027-W02\", \"2027-W01\"]"),
+        (
+            "currency = \"EUR\"",
+            &format!("periods = [{}]", (0..1001).fold(String::new(), |text, at| format!("{text}\"{at}\", "))),
+        ),
+        ("currency = \"EUR\"", "days = -1"),
+        ("currency = \"EUR\"", "days = [5, 4]"),
+        ("currency = \"EUR\"", "days = \"5\""),
     ]);
     insta::assert_snapshot!(told);
 }

@@ -120,3 +120,31 @@ fn garbage_is_refused() {
         assert!(read(text.as_bytes()).is_err(), "{text:?}");
     }
 }
+
+#[test]
+fn periods_that_multiply() {
+    let periods = |count| {
+        let names = (0..count).fold(String::new(), |text, at| format!("{text}\"{at}\", "));
+        format!("format = 1\nperiods = [{names}]\n")
+    };
+    let activities =
+        |count, keys: &str| (0..count).fold(String::new(), |text, at| format!("{text}[activities.a{at}]\n{keys}"));
+    let wide = (0..60).fold(String::new(), |text, at| format!("{text}r{at} = {{ each = 1, 7 = 2 }}, "));
+    let resources = (0..60).fold(String::new(), |text, at| format!("{text}[resources.r{at}]\n"));
+    let cases = [
+        periods(1000) + &activities(300, ""),
+        periods(1000)
+            + &activities(
+                200,
+                "uses = { r = 1, s = 1, t = 1, u = 1, v = 1, w = 1, x = 1, y = 1, z = 1, q = 1, p = 1 }\n",
+            )
+            + &["r", "s", "t", "u", "v", "w", "x", "y", "z", "q", "p"]
+                .map(|name| format!("[resources.{name}]\n"))
+                .concat(),
+        periods(1000) + &(0..300).fold(String::new(), |text, at| format!("{text}[resources.a{at}]\n")),
+        // Some thousand bytes of each would become megabytes of numbers.
+        periods(1000) + &resources + &activities(150, &format!("uses = {{ {wide}}}\n")),
+    ];
+    let told: Vec<String> = cases.iter().map(|text| told(text.as_bytes())).collect();
+    insta::assert_snapshot!(told.join("\n"));
+}

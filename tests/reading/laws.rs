@@ -1,133 +1,12 @@
 //! Laws of reading, tried on models and texts made at random.
 
-use std::collections::{BTreeMap, BTreeSet};
-
 use millreeve::model::meaning::Meaning;
-use millreeve::model::{Activity, Aim, Bound, Limit, Model, Name, Resource, Term, Value, write};
-use proptest::collection::{btree_map, btree_set, vec};
-use proptest::option;
+use millreeve::model::{Model, Name, Term, write};
+use proptest::collection::vec;
 use proptest::prelude::*;
 
-use super::{TILEWORKS, good, read};
-
-fn name() -> impl Strategy<Value = Name> {
-    "[a-zA-Z0-9_é瓦-]{1,6}".prop_map(|text| Name::new(&text).unwrap())
-}
-
-fn text() -> impl Strategy<Value = Option<String>> {
-    option::of(prop_oneof![any::<String>(), Just("\u{202e}\u{e0041}\"\\\r\n\t\u{7f}".to_owned())])
-}
-
-fn amount() -> impl Strategy<Value = f64> {
-    prop_oneof![
-        (-1_000_000..1_000_000i32).prop_map(f64::from),
-        -1e15..1e15f64,
-        (-1.0..1.0f64).prop_map(|x| x * 1e-6),
-        Just(0.0),
-        Just(1e15),
-        Just(0.1 + 0.2),
-    ]
-}
-
-fn rate() -> impl Strategy<Value = Value> {
-    amount().prop_map(|x| Value::Every(if x.abs() < 1e-9 { 0.0 } else { x }))
-}
-
-fn value() -> impl Strategy<Value = Value> {
-    amount().prop_map(Value::Every)
-}
-
-fn bounds(low: f64) -> impl Strategy<Value = (Value, Value)> {
-    (option::of(amount()), option::of(amount())).prop_map(move |(a, b)| {
-        let (a, b) = match (a, b) {
-            (Some(a), Some(b)) => (a.min(b), a.max(b)),
-            (a, b) => (a.unwrap_or(low), b.unwrap_or(f64::INFINITY)),
-        };
-        (Value::Every(a), Value::Every(b.max(a)))
-    })
-}
-
-fn resource() -> impl Strategy<Value = Resource> {
-    (text(), text(), bounds(f64::NEG_INFINITY), value()).prop_map(|(label, unit, (at_least, capacity), cost)| {
-        Resource { label, unit, capacity, at_least, cost, ..Resource::default() }
-    })
-}
-
-fn activity(resources: Vec<Name>, minimise: bool) -> impl Strategy<Value = Activity> {
-    let uses = vec(rate(), resources.len()).prop_flat_map(move |rates| {
-        let all: Vec<(Name, Value)> = resources.clone().into_iter().zip(rates).collect();
-        let most = all.len();
-        proptest::sample::subsequence(all, 0..=most)
-    });
-    (text(), text(), (value(), value()), uses, bounds(0.0), btree_set(name(), 0..3), any::<(bool, bool)>()).prop_map(
-        move |(label, unit, (price, cost), uses, (at_least, at_most), tags, (prospect, free))| Activity {
-            label,
-            unit,
-            price: if minimise { Value::Every(0.0) } else { price },
-            cost,
-            uses: uses.into_iter().collect(),
-            at_least: match (prospect, free) {
-                (true, false) => Value::Every(0.0),
-                (_, true) => Value::Every(f64::NEG_INFINITY),
-                _ => at_least,
-            },
-            at_most: if prospect { Value::Every(f64::INFINITY) } else { at_most },
-            tags,
-            prospect,
-            ..Activity::default()
-        },
-    )
-}
-
-fn limit(terms: Vec<Term>) -> impl Strategy<Value = Limit> {
-    let sum = move |least: usize| {
-        let terms = terms.clone();
-        vec(rate(), terms.len()).prop_flat_map(move |rates| {
-            let all: Vec<(Term, Value)> = terms.clone().into_iter().zip(rates).collect();
-            let most = all.len();
-            proptest::sample::subsequence(all, least.min(most)..=most)
-                .prop_map(|sum| sum.into_iter().collect::<BTreeMap<_, _>>())
-        })
-    };
-    let bound = prop_oneof![
-        bounds(f64::NEG_INFINITY).prop_map(|(low, high)| Bound::Between(low, high)),
-        value().prop_map(Bound::Equals),
-    ];
-    (text(), sum(0), option::of(sum(1)), bound).prop_map(|(label, terms, per, bound)| Limit {
-        label,
-        terms,
-        per,
-        bound,
-        ..Limit::default()
-    })
-}
-
-/// Any model that reading lets through.
-fn model() -> impl Strategy<Value = Model> {
-    let head = (text(), text(), any::<bool>(), amount(), btree_map(name(), resource(), 0..4), btree_set(name(), 0..4));
-    let body = head.prop_flat_map(|(title, currency, minimise, constant, resources, names)| {
-        let used: Vec<Name> = resources.keys().cloned().collect();
-        let activities: Vec<_> = names.into_iter().map(|name| (Just(name), activity(used.clone(), minimise))).collect();
-        (Just((title, currency, minimise, constant, resources)), activities)
-    });
-    body.prop_flat_map(|(head, activities)| {
-        let tags: BTreeSet<Name> = activities.iter().flat_map(|(_, activity)| activity.tags.clone()).collect();
-        let mut terms: Vec<Term> = activities.iter().map(|(name, _)| Term::Activity(name.clone())).collect();
-        terms.extend(tags.into_iter().map(Term::Tag));
-        terms.push(Term::All);
-        (Just(head), Just(activities), btree_map(name(), limit(terms), 0..3))
-    })
-    .prop_map(|((title, currency, minimise, constant, resources), activities, limits)| Model {
-        title: title.map(|text| text.chars().take(900).collect()),
-        currency,
-        aim: if minimise { Aim::Minimise } else { Aim::Maximise },
-        constant,
-        resources,
-        activities: activities.into_iter().collect(),
-        limits,
-        ..Model::default()
-    })
-}
+use super::models::model;
+use super::{TILEWORKS, WEEKS, good, read};
 
 /// The blocks of a text: what stands before the first table, and each table.
 fn blocks(text: &str) -> Vec<String> {
@@ -160,23 +39,107 @@ fn shuffled(text: &str, order: &[usize], windows: bool) -> String {
     if windows { text.replace('\n', "\r\n") } else { text }
 }
 
-/// Every number of the tileworks, as the span of its digits.
+/// Every number behind an equals sign, as the span of its digits.
 fn numbers(text: &str) -> Vec<std::ops::Range<usize>> {
     let mut found = Vec::new();
     let mut at = 0;
     for line in text.split_inclusive('\n') {
-        if line.contains('=') && !line.contains('"') || line.contains("floor_tile\" = ") {
-            for (sign, _) in line.match_indices("= ") {
-                let rest = &line[sign + 2..];
-                let length = rest.find(|c: char| !matches!(c, '0'..='9' | '.' | '-' | '_')).unwrap_or(rest.len());
-                if length > 0 {
-                    found.push(at + sign + 2..at + sign + 2 + length);
+        let from = line.find(" = ").filter(|_| !line.starts_with('#')).unwrap_or(line.len());
+        let mut quoted = false;
+        let mut start = None;
+        for (place, sign) in line.char_indices().skip(from) {
+            quoted ^= sign == '"';
+            let digit = !quoted && matches!(sign, '0'..='9' | '.' | '-' | '_');
+            let begins = digit && line[..place].ends_with([' ', '[']);
+            match start {
+                None if begins => start = Some(place),
+                Some(first) if !digit => {
+                    found.push(at + first..at + place);
+                    start = None;
                 }
+                _ => {}
             }
         }
         at += line.len();
     }
     found
+}
+
+/// What counts of a model, to be compared.
+#[derive(Debug, PartialEq)]
+struct Sense {
+    /// Without texts and tags.
+    model: Model,
+    /// For each sum of a limit, its tags by the activities that carry them.
+    groups: Vec<Vec<String>>,
+}
+
+impl Sense {
+    fn of(model: &Model) -> Self {
+        let mut rest = wordless(model);
+        rest.activities.values_mut().for_each(|activity| activity.tags.clear());
+        let mut groups = Vec::new();
+        for sum in rest.limits.values_mut().flat_map(|limit| std::iter::once(&mut limit.terms).chain(&mut limit.per)) {
+            let mut told = Vec::new();
+            sum.retain(|term, value| {
+                let Term::Tag(tag) = term else { return true };
+                let carriers = model.activities.iter().filter(|(_, activity)| activity.tags.contains(tag));
+                told.push(format!("{value:?} {:?}", carriers.map(|(name, _)| name).collect::<Vec<_>>()));
+                false
+            });
+            told.sort();
+            groups.push(told);
+        }
+        Self { model: rest, groups }
+    }
+}
+
+/// A model without texts that decide nothing.
+fn wordless(model: &Model) -> Model {
+    let mut model = model.clone();
+    model.title = None;
+    model.currency = model.currency.filter(|text| !text.is_empty());
+    for resource in model.resources.values_mut() {
+        (resource.label, resource.unit) = (None, None);
+    }
+    for activity in model.activities.values_mut() {
+        (activity.label, activity.unit) = (None, None);
+    }
+    for material in model.materials.values_mut() {
+        (material.label, material.unit) = (None, None);
+    }
+    for limit in model.limits.values_mut() {
+        limit.label = None;
+    }
+    model
+}
+
+/// A model in which every tag is called otherwise, so that they also come in another order.
+fn tagged_otherwise(model: &Model) -> Model {
+    let otherwise = |tag: &Name| Name::new(&tag.as_str().chars().rev().collect::<String>()).unwrap();
+    let mut model = model.clone();
+    for activity in model.activities.values_mut() {
+        activity.tags = activity.tags.iter().map(otherwise).collect();
+    }
+    for sum in model.limits.values_mut().flat_map(|limit| std::iter::once(&mut limit.terms).chain(&mut limit.per)) {
+        let terms = std::mem::take(sum).into_iter();
+        *sum = terms
+            .map(|(term, value)| (if let Term::Tag(tag) = term { Term::Tag(otherwise(&tag)) } else { term }, value))
+            .collect();
+    }
+    model
+}
+
+/// A text with the value of one line from a line of the same key in another text; without the line where there is none.
+fn exchanged(text: &str, other: &str, which: usize, from: usize) -> String {
+    let key = |line: &str| line.split_once(" = ").map(|(key, _)| key.trim_end().to_owned());
+    let lines: Vec<&str> = text.lines().collect();
+    let keyed: Vec<usize> = (0..lines.len()).filter(|&at| key(lines[at]).is_some()).collect();
+    let at = keyed[which % keyed.len()];
+    let others: Vec<&str> = other.lines().filter(|line| key(line) == key(lines[at])).collect();
+    let new = if others.is_empty() { "" } else { others[from % others.len()] };
+    let lines = lines.iter().enumerate().map(|(place, &line)| if place == at { new } else { line });
+    lines.fold(String::new(), |text, line| text + line + "\n")
 }
 
 proptest! {
@@ -197,9 +160,9 @@ proptest! {
 
     #[test]
     fn a_good_model_with_bytes_changed_is_answered(
-        changes in vec((0..TILEWORKS.len(), 0..4usize, "[\\[\\]{}=.,\"'#\\n0-9a-z\u{0}-\u{1f}é]{0,3}"), 1..8),
+        changes in vec((0..WEEKS.len(), 0..4usize, "[\\[\\]{}=.,\"'#\\n0-9a-z\u{0}-\u{1f}é]{0,3}"), 1..8),
     ) {
-        let mut bytes = TILEWORKS.as_bytes().to_vec();
+        let mut bytes = WEEKS.as_bytes().to_vec();
         for (at, gone, new) in changes {
             let from = at.min(bytes.len());
             let to = (from + gone).min(bytes.len());
@@ -216,46 +179,46 @@ proptest! {
     }
 
     #[test]
-    fn order_comments_and_layout_mean_nothing(order in vec(0..1000usize, 7..60), windows: bool) {
-        let text = shuffled(TILEWORKS, &order, windows);
+    fn order_comments_and_layout_mean_nothing(order in vec(0..1000usize, 7..60), windows: bool, weeks: bool) {
+        let works = if weeks { WEEKS } else { TILEWORKS };
+        let text = shuffled(works, &order, windows);
         let reading = good(&text);
-        let first = good(TILEWORKS);
+        let first = good(works);
         prop_assert_eq!(Meaning::of(&reading.model), Meaning::of(&first.model));
         prop_assert_eq!(reading.model, first.model);
     }
 
     #[test]
-    fn every_number_means_something(which in 0..1000usize, to in 1..100_000u32) {
-        let spans = numbers(TILEWORKS);
+    fn every_number_means_something(which in 0..1000usize, to in 1..100_000u32, weeks: bool) {
+        let works = if weeks { WEEKS } else { TILEWORKS };
+        let spans = numbers(works);
         prop_assert!(spans.len() > 30);
         let span = spans[which % spans.len()].clone();
-        let old: f64 = TILEWORKS[span.clone()].replace('_', "").parse().unwrap();
+        let old: f64 = works[span.clone()].replace('_', "").parse().unwrap();
         prop_assume!((old - f64::from(to)).abs() > 0.0);
-        let text = format!("{}{to}{}", &TILEWORKS[..span.start], &TILEWORKS[span.end..]);
+        let text = format!("{}{to}{}", &works[..span.start], &works[span.end..]);
         // A bound may now contradict another, and another format is another file; then there is no meaning to compare.
         if let Ok(reading) = read(text.as_bytes()) {
-            prop_assert_ne!(Meaning::of(&reading.model), Meaning::of(&good(TILEWORKS).model));
+            prop_assert_ne!(Meaning::of(&reading.model), Meaning::of(&good(works).model));
         }
     }
 
     #[test]
     fn models_that_differ_in_more_than_words_differ_in_meaning(one in model(), other in model()) {
-        let wordless = |mut model: Model| {
-            model.title = None;
-            model.currency = model.currency.filter(|text| !text.is_empty());
-            for resource in model.resources.values_mut() {
-                (resource.label, resource.unit) = (None, None);
-            }
-            for activity in model.activities.values_mut() {
-                (activity.label, activity.unit) = (None, None);
-            }
-            for limit in model.limits.values_mut() {
-                limit.label = None;
-            }
-            model
-        };
         let same = Meaning::of(&one) == Meaning::of(&other);
-        prop_assert_eq!(same, wordless(one.clone()) == wordless(other));
-        prop_assert_eq!(Meaning::of(&one), Meaning::of(&wordless(one)));
+        prop_assert_eq!(same, Sense::of(&one) == Sense::of(&other));
+        prop_assert_eq!(Meaning::of(&one), Meaning::of(&wordless(&one)));
+        prop_assert_eq!(Meaning::of(&one), Meaning::of(&tagged_otherwise(&one)));
+    }
+
+    #[test]
+    fn one_line_that_says_something_else_means_something_else(one in model(), other in model(), which: usize, from: usize) {
+        let text = write::model(&one);
+        let edited = exchanged(&text, &write::model(&other), which, from);
+        // Most exchanges refer to what is not there, or contradict something; then there is no meaning to compare.
+        if let Ok(reading) = read(edited.as_bytes()) {
+            let same = Meaning::of(&reading.model) == Meaning::of(&one);
+            prop_assert_eq!(same, Sense::of(&reading.model) == Sense::of(&one), "{}\n{}", text, edited);
+        }
     }
 }

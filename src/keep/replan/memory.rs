@@ -10,7 +10,7 @@ use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 use crate::edits::{LastPlan, Renames};
 use crate::keep::path::ModelPath;
 use crate::lp::{Key, Program, build};
-use crate::model::read::{self, Before, Blocks, Reading};
+use crate::model::read::{self, Before, Blocks};
 use crate::model::{Model, Name};
 use crate::plan::last::last_plan;
 use crate::plan::{Plan, text};
@@ -35,7 +35,7 @@ pub(super) struct Known {
 impl Known {
     /// What a record tells, if what it holds can still be read.
     fn from(record: &Record) -> Option<Self> {
-        let (Reading { model, .. }, blocks) = read::text_and_blocks(&record.model, &record.source).ok()?;
+        let (model, blocks) = read::text_and_blocks(&record.model, &record.source).ok()?;
         let plan = text::read(&record.plan).ok()?.plan;
         let (bytes, basis, program) = (record.source.clone(), record.basis.clone(), build(&model));
         Some(Self { bytes, blocks, model, program, plan, basis, cold_pivots: record.cold_pivots })

@@ -166,8 +166,7 @@ impl Replanner {
             }
         }
         let again = at_hand.and_then(|known| read::again(job.path.relative(), &bytes, known.text()));
-        let whole =
-            || read::text_and_blocks(job.path.relative(), &bytes).map(|(reading, blocks)| (reading.model, blocks));
+        let whole = || read::text_and_blocks(job.path.relative(), &bytes);
         let (model, blocks) = match again.map_or_else(whole, Ok) {
             Ok(read) => read,
             Err(faults) => {

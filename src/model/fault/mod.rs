@@ -56,3 +56,11 @@ pub struct Faults {
     /// How many more were found.
     pub more: usize,
 }
+
+impl Faults {
+    /// Whether there is none.
+    #[must_use]
+    pub fn is_empty(&self) -> bool {
+        self.reported.is_empty() && self.more == 0
+    }
+}

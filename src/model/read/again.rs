@@ -8,12 +8,13 @@ use std::ops::Range;
 use std::path::Path;
 
 use super::blocks::{Block, Blocks, Section};
+use super::calendar::Calendar;
 use super::fields::Fields;
 use super::findings::Findings;
-use super::known::{self, Known};
+use super::known::{self, Known, Summable, Supplies};
 use super::toml_types::Table;
-use super::{activity, bytes, caps, keys, limit, resource, syntax};
-use crate::model::types::Model;
+use super::{activity, bytes, caps, limit, material, resource, syntax};
+use crate::model::types::{Material, Model};
 
 /// A text that was read before.
 #[derive(Clone, Copy, Debug)]
@@ -32,18 +33,19 @@ pub struct Before<'a> {
 #[must_use]
 pub fn again(path: &Path, bytes: &[u8], before: Before<'_>) -> Option<(Model, Blocks)> {
     let (old, new) = (bytes::text(path, before.bytes).ok()?, bytes::text(path, bytes).ok()?);
-    let edited = Edited::between(old.text, new.text, &before.blocks.0)?;
+    let edited = Edited::between(old.text, new.text, &before.blocks.tables)?;
     let piece = new.text.get(edited.text.clone())?;
     let root = syntax::parse(super::source::Source { path, text: piece }).ok()?;
-    let pieces = Blocks::of(piece, root.get_ref());
-    let known = &before.blocks.0[edited.blocks.clone()];
+    let pieces = Blocks::of(piece, root.get_ref(), None);
+    let known = &before.blocks.tables[edited.blocks.clone()];
     let same = |(old, new): (&Block, &Block)| old.section == new.section && old.name == new.name;
     // Every key of the piece lies in a block, and the blocks are those that were there.
-    let first = pieces.0.first().is_some_and(|block| block.start == 0);
-    if !first || known.len() != pieces.0.len() || !known.iter().zip(&pieces.0).all(same) {
+    let first = pieces.tables.first().is_some_and(|block| block.start == 0);
+    if !first || known.len() != pieces.tables.len() || !known.iter().zip(&pieces.tables).all(same) {
         return None;
     }
-    let model = replaced(before.model, root.get_ref(), &pieces)?;
+    let calendar = Calendar::of(before.model.horizon.clone(), before.blocks.days.clone());
+    let model = replaced(before.model, root.get_ref(), &pieces, &calendar)?;
     Some((model, edited.moved(before.blocks, pieces)))
 }
 
@@ -83,10 +85,10 @@ impl Edited {
     /// The blocks of the new text: those of `old`, with `pieces` in place of those edited.
     fn moved(&self, old: &Blocks, pieces: Blocks) -> Blocks {
         let mut blocks = old.clone();
-        for (block, piece) in blocks.0[self.blocks.clone()].iter_mut().zip(pieces.0) {
+        for (block, piece) in blocks.tables[self.blocks.clone()].iter_mut().zip(pieces.tables) {
             block.start = self.text.start + piece.start;
         }
-        for block in &mut blocks.0[self.blocks.end..] {
+        for block in &mut blocks.tables[self.blocks.end..] {
             block.start = block.start.saturating_add_signed(self.moved);
         }
         blocks
@@ -113,36 +115,48 @@ fn common<'a>(
 }
 
 /// `model` with the entries of a piece in place of what they were. `None` where what others refer to has changed, or for a fault.
-fn replaced(model: &Model, root: &Table<'_>, pieces: &Blocks) -> Option<Model> {
+fn replaced(model: &Model, root: &Table<'_>, pieces: &Blocks, calendar: &Calendar) -> Option<Model> {
     let mut findings = Findings::default();
     let mut edited = model.clone();
-    let tags = known::tags(&model.activities);
-    let resources = Known::new(None, &model.resources);
+    let supplies =
+        Supplies { resources: Known::new(None, &model.resources), materials: Known::new(None, &model.materials) };
     let activities = Known::new(None, &model.activities);
-    for Block { section, name, .. } in &pieces.0 {
+    let there = Summable { supplies, activities, tags: known::tags(&model.activities) };
+    for Block { section, name, .. } in &pieces.tables {
         let (key, node) = root.get(section.word())?.get_ref().as_table()?.get_key_value(name.as_str())?;
         let (table, span) = (node.get_ref().as_table()?, key.span());
+        let mut fields = Fields::open(table, span, section.keys(), calendar, &mut findings);
         match section {
             Section::Resources => {
-                let read = resource::read(&mut Fields::open(table, span, &keys::RESOURCE, &mut findings));
-                *edited.resources.get_mut(name)? = read;
+                let read = resource::read(&mut fields);
+                replace(edited.resources.get_mut(name)?, read, |resource| resource.surge.len())?;
             }
             Section::Activities => {
-                let mut fields = Fields::open(table, span, &keys::ACTIVITY, &mut findings);
-                let read = activity::read(&mut fields, model.aim, &resources);
-                let there = edited.activities.get_mut(name)?;
-                // Limits ask for tags.
-                if read.tags != there.tags {
-                    return None;
-                }
-                *there = read;
+                let read = activity::read(&mut fields, model.aim, &there.supplies);
+                replace(edited.activities.get_mut(name)?, read, |activity| activity.tags.clone())?;
+            }
+            Section::Materials => {
+                let read = material::read(&mut fields);
+                replace(edited.materials.get_mut(name)?, read, flows)?;
             }
             Section::Limits => {
-                let mut fields = Fields::open(table, span, &keys::LIMIT, &mut findings);
-                *edited.limits.get_mut(name)? = limit::read(&mut fields, &activities, &tags);
+                *edited.limits.get_mut(name)? = limit::read(&mut fields, &there);
             }
         }
     }
-    let fits = findings.is_empty() && caps::coefficients(&edited, &tags) <= caps::MOST_COEFFICIENTS;
+    let fits = findings.is_empty() && caps::fit(&edited, &there.tags);
     fits.then_some(edited)
+}
+
+/// Puts an entry in the place of what it was, where what limits ask of it has stayed.
+fn replace<T, A: PartialEq>(old: &mut T, new: T, asked: impl Fn(&T) -> A) -> Option<()> {
+    let same = asked(old) == asked(&new);
+    *old = new;
+    same.then_some(())
+}
+
+/// What there is of a material that a limit can sum.
+fn flows(material: &Material) -> (usize, Vec<bool>, bool) {
+    let late = material.sale.iter().map(|sale| sale.late.is_some()).collect();
+    (material.purchase.len(), late, material.stock.is_some() || material.closing.is_some())
 }

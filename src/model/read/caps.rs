@@ -3,7 +3,9 @@
 use super::findings::{Findings, Span};
 use super::known::Tags;
 use super::toml_types::Table;
-use crate::model::types::{Model, Term};
+use crate::model::types::{Flow, Material, Model, Term};
+use crate::model::value::Value;
+use crate::model::values;
 
 /// The largest file, in bytes.
 pub const MOST_BYTES: usize = 16 * 1024 * 1024;
@@ -15,43 +17,136 @@ pub const MOST_TOKENS: usize = 6_000_000;
 pub const MOST_ACTIVITIES: usize = 25_000;
 /// The most resources in a model.
 pub const MOST_RESOURCES: usize = 25_000;
+/// The most materials in a model.
+pub const MOST_MATERIALS: usize = 25_000;
 /// The most limits in a model.
 pub const MOST_LIMITS: usize = 25_000;
-/// The most coefficients in a model, every tag counted as the activities that carry it.
+/// The most periods in a model.
+pub const MOST_PERIODS: usize = 1_000;
+/// The most columns of the program behind a model: levels, tiers and stocks in every period.
+pub const MOST_COLUMNS: usize = 250_000;
+/// The most rows of the program behind a model: resources, balances and limits in every period.
+pub const MOST_ROWS: usize = 250_000;
+/// The most coefficients of the program behind a model, every tag counted as the activities that carry it, in every period.
 pub const MOST_COEFFICIENTS: usize = 2_000_000;
+/// The most numbers of a model that are listed by period: a table such as `{ each = 1, "2027-W01" = 2 }` lists as many as there are periods.
+pub const MOST_LISTED: usize = 4_000_000;
 
 /// Adds a fault for each cap that the model exceeds.
 pub(super) fn check(root: &Table<'_>, model: &Model, tags: &Tags, findings: &mut Findings) {
     let counts = [
         ("resources", model.resources.len(), MOST_RESOURCES),
         ("activities", model.activities.len(), MOST_ACTIVITIES),
+        ("materials", model.materials.len(), MOST_MATERIALS),
         ("limits", model.limits.len(), MOST_LIMITS),
     ];
+    let mut crowded = false;
     for (section, count, most) in counts {
         if count > most {
+            crowded = true;
             let message = format!("{count} {section} are more than the {most} that one model may have");
             findings.add(&span(root, section), "too-many", message, "split the model");
         }
     }
-    let count = coefficients(model, tags);
-    if count > MOST_COEFFICIENTS {
-        let message = format!("{count} coefficients are more than the {MOST_COEFFICIENTS} that one model may have");
-        findings.add(&span(root, "limits"), "too-many", message, "split the model, or sum fewer tags");
+    let Size { columns, rows, coefficients } = Size::of(model, tags);
+    let sizes = [("columns", columns, MOST_COLUMNS), ("rows", rows, MOST_ROWS)];
+    for (what, count, most) in sizes.into_iter().filter(|_| !crowded) {
+        if count > most {
+            let periods = model.horizon.count();
+            let message = format!(
+                "over {periods} periods the model has {count} {what}, more than the {most} that one model may have"
+            );
+            findings.add(&span(root, "periods"), "too-many", message, "plan fewer periods, or split the model");
+        }
     }
+    if coefficients > MOST_COEFFICIENTS {
+        let message =
+            format!("{coefficients} coefficients are more than the {MOST_COEFFICIENTS} that one model may have");
+        let (section, help) = match model.horizon.is_named() {
+            true => ("periods", "plan fewer periods, split the model, or sum fewer tags"),
+            false => ("limits", "split the model, or sum fewer tags"),
+        };
+        findings.add(&span(root, section), "too-many", message, help);
+    }
+}
+
+/// Whether an edited model exceeds none of the caps that an edit of its tables can reach.
+pub(super) fn fit(model: &Model, tags: &Tags) -> bool {
+    let Size { columns, rows, coefficients } = Size::of(model, tags);
+    let listed = if model.horizon.count() > 1 { listed(model) } else { 0 };
+    columns <= MOST_COLUMNS && rows <= MOST_ROWS && coefficients <= MOST_COEFFICIENTS && listed <= MOST_LISTED
 }
 
 fn span(root: &Table<'_>, section: &str) -> Span {
     root.get_key_value(section).map(|(key, _)| key.span()).unwrap_or_default()
 }
 
-/// The coefficients of a model, where so many activities carry each tag.
-pub(super) fn coefficients(model: &Model, tags: &Tags) -> usize {
-    let wide = |term: &Term| match term {
-        Term::Activity(_) | Term::Material(..) | Term::Surge(..) => 1,
+/// How large the program behind a model is, at most.
+struct Size {
+    columns: usize,
+    rows: usize,
+    coefficients: usize,
+}
+
+impl Size {
+    /// The size of a model in which so many activities carry each tag.
+    fn of(model: &Model, tags: &Tags) -> Self {
+        let mut size = Self { columns: 0, rows: model.resources.len() + model.limits.len(), coefficients: 0 };
+        for resource in model.resources.values() {
+            size.add(resource.surge.len(), 0, 1);
+        }
+        for activity in model.activities.values() {
+            let changes = usize::from(activity.change_at_most != Value::Every(f64::INFINITY));
+            let rates = activity.uses.len() + activity.draws.len() + activity.makes.len();
+            size.add(1, changes, rates + 2 * changes);
+        }
+        for material in model.materials.values() {
+            let Material { purchase, sale, stock, closing, .. } = material;
+            let late = sale.iter().filter(|sale| sale.late.is_some()).count();
+            let carried = usize::from(stock.is_some() || closing.is_some());
+            // A stock stands in the balance of its period and in that of the next; what is late in two demands.
+            size.add(purchase.len() + sale.len() + 1, 1, 1);
+            size.add(carried, 0, 2);
+            size.add(late, late, 3);
+        }
+        for limit in model.limits.values() {
+            let terms: usize = limit.sums().flat_map(|sum| sum.keys().map(|term| width(term, model, tags))).sum();
+            // With `per`, each bound has a row of its own.
+            let rows = if limit.per.is_some() { 2 } else { 1 };
+            size.rows += rows - 1;
+            size.coefficients += terms;
+        }
+        let periods = model.horizon.count();
+        Self { columns: size.columns * periods, rows: size.rows * periods, coefficients: size.coefficients * periods }
+    }
+
+    /// Adds columns and rows of one period, and the coefficients of each of these columns.
+    fn add(&mut self, columns: usize, rows: usize, coefficients: usize) {
+        self.columns += columns;
+        self.rows += rows;
+        self.coefficients += columns * coefficients;
+    }
+}
+
+/// How many columns a term sums in a period.
+fn width(term: &Term, model: &Model, tags: &Tags) -> usize {
+    match term {
+        Term::Activity(_) => 1,
         Term::Tag(tag) => tags.get(tag).copied().unwrap_or(0),
         Term::All => model.activities.len(),
-    };
-    let used: usize = model.activities.values().map(|activity| activity.uses.len()).sum();
-    let sums = model.limits.values().flat_map(|limit| std::iter::once(&limit.terms).chain(limit.per.as_ref()));
-    used + sums.flat_map(|sum| sum.keys().map(wide)).sum::<usize>()
+        Term::Material(name, flow) => model.materials.get(name).map_or(0, |material| match flow {
+            Flow::Purchase(None) => material.purchase.len(),
+            Flow::Sale(None) | Flow::Late(None) => material.sale.len(),
+            _ => 1,
+        }),
+        Term::Surge(name, None) => model.resources.get(name).map_or(0, |resource| resource.surge.len()),
+        Term::Surge(_, Some(_)) => 1,
+    }
+}
+
+/// How many numbers of a model are listed by period.
+fn listed(model: &Model) -> usize {
+    let mut count = 0;
+    values::each(model, &mut |value| count += if let Value::Listed(list) = value { list.len() } else { 0 });
+    count
 }

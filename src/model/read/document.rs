@@ -4,43 +4,57 @@ use std::collections::BTreeMap;
 
 use toml::de::DeValue;
 
+use super::calendar::Calendar;
 use super::fields::{Fields, name};
 use super::findings::{Findings, shown};
 use super::keys::{self, Keys};
-use super::known::{self, Known};
+use super::known::{self, Known, Summable, Supplies};
 use super::number::Role;
 use super::toml_types::{Table, kind};
-use super::{activity, caps, limit, near, resource};
+use super::{activity, caps, limit, material, resource};
 use crate::model::name::Name;
 use crate::model::types::{Aim, Model};
+use crate::model::value::Value;
 
 /// The version of the format that is read.
 const FORMAT: &str = "1";
 /// The sections of a model, each with an example of a table in it.
-const SECTIONS: [(&str, &str); 3] =
-    [("resources", "[resources.kiln]"), ("activities", "[activities.floor_tile]"), ("limits", "[limits.glazed_share]")];
+const SECTIONS: [(&str, &str); 4] = [
+    ("resources", "[resources.kiln]"),
+    ("activities", "[activities.floor_tile]"),
+    ("materials", "[materials.slip]"),
+    ("limits", "[limits.glazed_share]"),
+];
 
-/// The model in a document. Where something is faulty its default stands, so that what follows can still be checked.
-pub(super) fn model(root: &Table<'_>, findings: &mut Findings) -> Model {
+/// The model in a document, and the working days in its periods. Where something is faulty its default stands, so that what follows can
+/// still be checked.
+pub(super) fn model(root: &Table<'_>, findings: &mut Findings) -> (Model, Option<Value>) {
     let mut model = Model::default();
     if !format(root, findings) {
-        return model;
+        return (model, None);
     }
-    head(root, &mut model, findings);
-    model.resources = section(root, "resources", &keys::RESOURCE, findings, resource::read);
-    let known = Known::new(table(root, "resources"), &model.resources);
-    model.activities =
-        section(root, "activities", &keys::ACTIVITY, findings, |fields| activity::read(fields, model.aim, &known));
-    let known = Known::new(table(root, "activities"), &model.activities);
-    let tags = known::tags(&model.activities);
-    model.limits = section(root, "limits", &keys::LIMIT, findings, |fields| limit::read(fields, &known, &tags));
+    let calendar = Calendar::read(root, findings);
+    head(root, &mut model, &calendar, findings);
+    model.horizon = calendar.horizon().clone();
+    let mut walk = Walk { root, calendar: &calendar, findings };
+    model.resources = walk.section("resources", &keys::RESOURCE, resource::read);
+    model.materials = walk.section("materials", &keys::MATERIAL, material::read);
+    let resources = Known::new(table(root, "resources"), &model.resources);
+    let materials = Known::new(table(root, "materials"), &model.materials);
+    let supplies = Supplies { resources, materials };
+    let aim = model.aim;
+    model.activities = walk.section("activities", &keys::ACTIVITY, |fields| activity::read(fields, aim, &supplies));
+    let activities = Known::new(table(root, "activities"), &model.activities);
+    let there = Summable { supplies, activities, tags: known::tags(&model.activities) };
+    model.limits = walk.section("limits", &keys::LIMIT, |fields| limit::read(fields, &there));
+    let tags = there.tags;
     caps::check(root, &model, &tags, findings);
-    model
+    (model, calendar.days().cloned())
 }
 
 /// The keys of the model itself; that its sections are tables is checked as well.
-fn head(root: &Table<'_>, model: &mut Model, findings: &mut Findings) {
-    let mut fields = Fields::open(root, 0..0, &keys::MODEL, findings);
+fn head(root: &Table<'_>, model: &mut Model, calendar: &Calendar, findings: &mut Findings) {
+    let mut fields = Fields::open(root, 0..0, &keys::MODEL, calendar, findings);
     model.title = fields.text("title");
     model.currency = fields.text("currency");
     model.constant = fields.number("constant", Role::Amount).unwrap_or(0.0);
@@ -52,24 +66,6 @@ fn head(root: &Table<'_>, model: &mut Model, findings: &mut Findings) {
 
 fn table<'a, 'i>(root: &'a Table<'i>, section: &str) -> Option<&'a Table<'i>> {
     root.get(section).and_then(|node| node.get_ref().as_table())
-}
-
-/// Pairs of names that look alike, as warnings.
-pub(super) fn twins(root: &Table<'_>, model: &Model) -> Findings {
-    let mut warnings = Findings::default();
-    warn("resources", root, near::twins(model.resources.keys()), &mut warnings);
-    warn("activities", root, near::twins(model.activities.keys()), &mut warnings);
-    warn("limits", root, near::twins(model.limits.keys()), &mut warnings);
-    warnings
-}
-
-fn warn(section: &str, root: &Table<'_>, pairs: Vec<(&Name, &Name, String)>, warnings: &mut Findings) {
-    let Some(table) = table(root, section) else { return };
-    for (first, second, oddity) in pairs {
-        let Some((key, _)) = table.get_key_value(second.as_str()) else { continue };
-        let message = format!("`{second}` looks like `{first}`, but is another name");
-        warnings.add(&key.span(), "look-alike", message, format!("{oddity}; rename one of the two"));
-    }
 }
 
 /// Whether the document says it is of the format read here.
@@ -110,27 +106,35 @@ fn aim(fields: &mut Fields<'_, '_>) -> Aim {
     })
 }
 
-/// Every entry of a section, read by `read`. An entry whose name is faulty is read as well, for its own faults.
-fn section<T>(
-    root: &Table<'_>,
-    section: &str,
-    keys: &'static Keys,
-    findings: &mut Findings,
-    read: impl Fn(&mut Fields<'_, '_>) -> T,
-) -> BTreeMap<Name, T> {
-    let mut entries = BTreeMap::new();
-    for (key, node) in table(root, section).into_iter().flatten() {
-        let name = name(key.get_ref(), &key.span(), findings);
-        let Some(table) = node.get_ref().as_table() else {
-            let message = format!("`{section}` holds tables, but `{}` is {}", shown(key.get_ref()), kind(node));
-            let help = format!("write it as a table that begins with [{section}.{}]", shown(key.get_ref()));
-            findings.add(&key.span(), "wrong-type", message, help);
-            continue;
-        };
-        let entry = read(&mut Fields::open(table, key.span(), keys, findings));
-        if let Some(name) = name {
-            entries.insert(name, entry);
+/// The walk through the sections of a document.
+struct Walk<'a, 'i> {
+    root: &'a Table<'i>,
+    calendar: &'a Calendar,
+    findings: &'a mut Findings,
+}
+
+impl Walk<'_, '_> {
+    /// Every entry of a section, read by `read`. An entry whose name is faulty is read as well, for its own faults.
+    fn section<T>(
+        &mut self,
+        section: &str,
+        keys: &'static Keys,
+        read: impl Fn(&mut Fields<'_, '_>) -> T,
+    ) -> BTreeMap<Name, T> {
+        let mut entries = BTreeMap::new();
+        for (key, node) in table(self.root, section).into_iter().flatten() {
+            let name = name(key.get_ref(), &key.span(), self.findings);
+            let Some(table) = node.get_ref().as_table() else {
+                let message = format!("`{section}` holds tables, but `{}` is {}", shown(key.get_ref()), kind(node));
+                let help = format!("write it as a table that begins with [{section}.{}]", shown(key.get_ref()));
+                self.findings.add(&key.span(), "wrong-type", message, help);
+                continue;
+            };
+            let entry = read(&mut Fields::open(table, key.span(), keys, self.calendar, self.findings));
+            if let Some(name) = name {
+                entries.insert(name, entry);
+            }
         }
+        entries
     }
-    entries
 }

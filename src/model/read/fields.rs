@@ -1,11 +1,15 @@
 //! One table of a model, read key by key.
 
+use std::collections::BTreeMap;
+
 use toml::de::DeValue;
 
+use super::calendar::Calendar;
+use super::caps::MOST_PERIODS;
 use super::findings::{Findings, Span, shown};
 use super::keys::Keys;
 use super::number::{self, Role};
-use super::toml_types::{Node, Table, kind};
+use super::toml_types::{Key, Node, Table, kind};
 use crate::model::name::Name;
 use crate::model::value::Value;
 
@@ -23,22 +27,39 @@ pub(super) struct Given {
 pub(super) struct Fields<'a, 'i> {
     table: &'a Table<'i>,
     span: Span,
+    calendar: &'a Calendar,
     findings: &'a mut Findings,
 }
 
 impl<'a, 'i> Fields<'a, 'i> {
     /// Opens a table: whatever is not one of `keys` is a fault.
     /// `span` is where the table begins, for what it lacks.
-    pub(super) fn open(table: &'a Table<'i>, span: Span, keys: &'static Keys, findings: &'a mut Findings) -> Self {
+    pub(super) fn open(
+        table: &'a Table<'i>,
+        span: Span,
+        keys: &'static Keys,
+        calendar: &'a Calendar,
+        findings: &'a mut Findings,
+    ) -> Self {
         for key in table.keys() {
             keys.check(key, findings);
         }
-        Self { table, span, findings }
+        Self { table, span, calendar, findings }
+    }
+
+    /// Opens a table within this one.
+    pub(super) fn within<'b>(&'b mut self, table: &'b Table<'i>, span: Span, keys: &'static Keys) -> Fields<'b, 'i> {
+        Fields::open(table, span, keys, self.calendar, self.findings)
     }
 
     /// Where the table begins.
     pub(super) fn span(&self) -> Span {
         self.span.clone()
+    }
+
+    /// The periods that values are given for.
+    pub(super) fn calendar(&self) -> &'a Calendar {
+        self.calendar
     }
 
     /// Where faults of this table go.
@@ -79,11 +100,16 @@ impl<'a, 'i> Fields<'a, 'i> {
         }
     }
 
-    /// A number, in a role.
+    /// A number, in a role, that may differ by period.
     pub(super) fn value(&mut self, key: &str, role: Role) -> Option<Given> {
         let node = self.table.get(key)?;
-        let value = number::value(key, node, role, self.findings)?;
+        let value = number::value(key, node, role, self.calendar, self.findings)?;
         Some(Given { value, span: node.span() })
+    }
+
+    /// As [`value`](Self::value), or `default` where it is left out or faulty.
+    pub(super) fn value_or(&mut self, key: &str, role: Role, default: f64) -> Value {
+        self.value(key, role).map_or(Value::Every(default), |given| given.value)
     }
 
     /// A number that cannot differ by period.
@@ -91,10 +117,46 @@ impl<'a, 'i> Fields<'a, 'i> {
         number::number(key, self.table.get(key)?, role, self.findings)
     }
 
+    /// A whole number of periods; 0 where it is left out.
+    pub(super) fn periods(&mut self, key: &str) -> usize {
+        let Some(node) = self.table.get(key) else { return 0 };
+        let number = node.get_ref().as_integer().and_then(|integer| {
+            usize::from_str_radix(integer.as_str(), integer.radix()).ok().filter(|&number| number <= MOST_PERIODS)
+        });
+        number.unwrap_or_else(|| {
+            let message = format!("`{key}` must be a whole number of periods, from 0 to {MOST_PERIODS}");
+            self.findings.add(&node.span(), "not-whole", message, "write for example 2");
+            0
+        })
+    }
+
+    /// Numbers by name, each of which may differ by period.
+    pub(super) fn rates(
+        &mut self,
+        key: &str,
+        example: &str,
+        mut name: impl FnMut(&Key<'i>, &mut Findings) -> Option<Name>,
+    ) -> BTreeMap<Name, Value> {
+        let mut rates = BTreeMap::new();
+        for (word, node) in self.table(key, example).into_iter().flatten() {
+            let rate = number::value(word.get_ref(), node, Role::Rate, self.calendar, self.findings);
+            if let Some(name) = name(word, self.findings) {
+                rates.insert(name, rate.unwrap_or(Value::Every(0.0)));
+            }
+        }
+        rates
+    }
+
     /// A table.
     pub(super) fn table(&mut self, key: &str, example: &str) -> Option<&'a Table<'i>> {
         let node = self.table.get(key)?;
         node.get_ref().as_table().or_else(|| self.wrong(key, node, "a table", &format!("write it as {example}")))
+    }
+
+    /// A table within this one, and where it begins.
+    pub(super) fn inner(&mut self, key: &str, keys: &'static Keys) -> Option<(&'a Table<'i>, Span)> {
+        let span = self.table.get(key)?.span();
+        Some((self.table(key, &format!("{key} = {}", keys.example()))?, span))
     }
 
     /// A list of names.

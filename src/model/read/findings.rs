@@ -2,10 +2,11 @@
 
 use std::ops::Range;
 
-use super::near;
+use super::calendar::{EACH, PER_DAY};
 use super::source::Source;
 use crate::model::fault::{Fault, Faults, MOST_REPORTED};
 use crate::model::name::{LONGEST, Name, NameError};
+use crate::model::near;
 use crate::model::types::Model;
 
 /// A place in the text, as byte offsets.
@@ -53,8 +54,12 @@ pub(super) enum Among {
     Resources,
     /// The model's activities.
     Activities,
+    /// The model's materials.
+    Materials,
     /// The tags that activities carry.
     Tags,
+    /// The model's periods, and the other words that a table of numbers may have; what the periods are, in words.
+    Periods(String),
 }
 
 /// The faults found so far. Holds a bounded number of them, the first ones in the file.
@@ -111,6 +116,11 @@ fn nearest(wrong: &str, among: Among, model: &Model) -> String {
         Among::Resources => near::help(wrong, model.resources.keys().map(Name::as_str), || declare("resources", wrong)),
         Among::Activities => {
             near::help(wrong, model.activities.keys().map(Name::as_str), || declare("activities", wrong))
+        }
+        Among::Materials => near::help(wrong, model.materials.keys().map(Name::as_str), || declare("materials", wrong)),
+        Among::Periods(told) => {
+            let labels = model.horizon.periods().filter_map(|period| model.horizon.label(period));
+            near::help(wrong, labels.chain([EACH, PER_DAY]), || format!("the model plans {told}"))
         }
         Among::Tags => {
             let tags = model.activities.values().flat_map(|activity| &activity.tags).map(Name::as_str);

@@ -12,17 +12,13 @@ pub(super) struct Keys {
     later: &'static [(&'static str, Later)],
     /// What to add to a list of the keys.
     note: &'static str,
+    /// What such a table looks like, where it stands within another.
+    example: &'static str,
 }
 
 /// Why a part of the format is not read yet.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub(super) enum Later {
-    /// It speaks of several periods.
-    Periods,
-    /// It speaks of materials.
-    Materials,
-    /// It speaks of extra capacity.
-    Surge,
     /// It asks for whole numbers of things.
     Whole,
     /// It asks for more than one plan.
@@ -36,9 +32,6 @@ pub(super) enum Later {
 impl Later {
     fn reason(self) -> &'static str {
         match self {
-            Self::Periods => "this version plans a single period",
-            Self::Materials => "this version plans no materials",
-            Self::Surge => "this version plans no surge capacity",
             Self::Whole => "this version plans no whole numbers of things",
             Self::Variants => "this version plans no variants",
             Self::Steady => "this version knows no releases",
@@ -48,11 +41,6 @@ impl Later {
 
     fn cure(self) -> &'static str {
         match self {
-            Self::Periods => "take it out, and give every number for the period as a whole",
-            Self::Materials => {
-                "take it out; a scarce material can be written as a resource, with the stock as its capacity"
-            }
-            Self::Surge => "take it out, or raise `capacity` by what the surge would add",
             Self::Whole => "take it out; levels may then be any number",
             Self::Variants => "take it out, and try the change in a copy of the model",
             Self::Steady | Self::Guard => "take it out; it changes no plan of this version",
@@ -60,7 +48,7 @@ impl Later {
     }
 
     /// Adds the fault that `what` is not read yet.
-    pub(super) fn refuse(self, what: &str, span: &Span, findings: &mut Findings) {
+    fn refuse(self, what: &str, span: &Span, findings: &mut Findings) {
         let message = format!("{what} is part of the format, but {}", self.reason());
         findings.add(span, "unsupported", message, self.cure());
     }
@@ -83,6 +71,11 @@ impl Keys {
         }
     }
 
+    /// What such a table looks like within another.
+    pub(super) fn example(&self) -> &'static str {
+        self.example
+    }
+
     /// Every key that can be meant.
     fn all(&self) -> impl Iterator<Item = &'static str> {
         self.known.iter().copied().chain(self.later.iter().map(|(word, _)| *word))
@@ -97,46 +90,95 @@ impl Keys {
 /// The model itself.
 pub(super) static MODEL: Keys = Keys {
     whose: "the model",
-    known: &["format", "title", "currency", "aim", "constant", "resources", "activities", "limits"],
-    later: &[
-        ("periods", Later::Periods),
-        ("days", Later::Periods),
-        ("materials", Later::Materials),
-        ("variants", Later::Variants),
-        ("steady", Later::Steady),
-        ("guard", Later::Guard),
+    known: &[
+        "format",
+        "title",
+        "currency",
+        "aim",
+        "constant",
+        "periods",
+        "days",
+        "resources",
+        "activities",
+        "materials",
+        "limits",
     ],
-    note: "; tables begin with [resources.NAME], [activities.NAME] or [limits.NAME]",
+    later: &[("variants", Later::Variants), ("steady", Later::Steady), ("guard", Later::Guard)],
+    note: "; tables begin with [resources.NAME], [activities.NAME], [materials.NAME] or [limits.NAME]",
+    example: "",
 };
 
 /// A resource.
 pub(super) static RESOURCE: Keys = Keys {
     whose: "a resource",
-    known: &["label", "unit", "capacity", "at_least", "cost"],
-    later: &[("surge", Later::Surge)],
+    known: &["label", "unit", "capacity", "at_least", "cost", "surge"],
+    later: &[],
     note: "",
+    example: "{ capacity = 168 }",
 };
+
+/// A tier of extra capacity.
+pub(super) static SURGE: Keys = within("a tier of `surge`", &["at_most", "cost"], "{ at_most = 16, cost = 95 }");
 
 /// An activity.
 pub(super) static ACTIVITY: Keys = Keys {
     whose: "an activity",
-    known: &["label", "unit", "price", "cost", "uses", "at_least", "at_most", "tags", "prospect"],
-    later: &[
-        ("draws", Later::Materials),
-        ("makes", Later::Materials),
-        ("lead", Later::Periods),
-        ("change_at_most", Later::Periods),
-        ("lot", Later::Whole),
-        ("none_or_at_least", Later::Whole),
-        ("setup", Later::Whole),
+    known: &[
+        "label",
+        "unit",
+        "price",
+        "cost",
+        "uses",
+        "draws",
+        "makes",
+        "lead",
+        "at_least",
+        "at_most",
+        "change_at_most",
+        "tags",
+        "prospect",
     ],
+    later: &[("lot", Later::Whole), ("none_or_at_least", Later::Whole), ("setup", Later::Whole)],
     note: "",
+    example: "{ price = 21, uses = { kiln = 0.02 } }",
 };
 
+/// A material.
+pub(super) static MATERIAL: Keys = within(
+    "a material",
+    &["label", "unit", "opening", "purchase", "sale", "stock", "closing", "discard"],
+    "{ purchase = { price = 34 } }",
+);
+
+/// A tier of purchases.
+pub(super) static PURCHASE: Keys =
+    within("`purchase`", &["price", "at_least", "at_most"], "{ price = 34, at_most = 90 }");
+
+/// A tier of sales.
+pub(super) static SALE: Keys =
+    within("`sale`", &["price", "at_least", "at_most", "late"], "{ price = 5, at_most = 10 }");
+
+/// Sales that are delivered late.
+pub(super) static LATE: Keys = within("`late`", &["cost", "at_most"], "{ cost = 2, at_most = 6 }");
+
+/// What is carried from a period to the next.
+pub(super) static STOCK: Keys =
+    within("`stock`", &["cost", "at_least", "at_most"], "{ cost = 0.4, at_least = 2, at_most = 60 }");
+
+/// What is left at the end.
+pub(super) static CLOSING: Keys = within("`closing`", &["at_least", "worth"], "{ at_least = 10, worth = 30 }");
+
+/// What is thrown away.
+pub(super) static DISCARD: Keys = within("`discard`", &["cost", "at_most"], "{ cost = 8, at_most = 5 }");
+
 /// A limit.
-pub(super) static LIMIT: Keys = Keys {
-    whose: "a limit",
-    known: &["label", "terms", "per", "at_most", "at_least", "equals", "over"],
-    later: &[],
-    note: "",
-};
+pub(super) static LIMIT: Keys = within(
+    "a limit",
+    &["label", "terms", "per", "at_most", "at_least", "equals", "over"],
+    "{ terms = { floor_tile = 1.0 }, at_most = 900 }",
+);
+
+/// The keys of a table that has no keys of later versions.
+const fn within(whose: &'static str, known: &'static [&'static str], example: &'static str) -> Keys {
+    Keys { whose, known, later: &[], note: "", example }
+}

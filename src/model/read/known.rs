@@ -5,7 +5,7 @@ use std::collections::{BTreeMap, HashMap};
 
 use super::toml_types::Table;
 use crate::model::name::Name;
-use crate::model::types::Activity;
+use crate::model::types::{Activity, Material, Resource};
 
 /// What other tables may refer to: the entries that were read, and those that were declared but could not be.
 pub(super) struct Known<'a, 'i, T> {
@@ -27,10 +27,28 @@ impl<'a, 'i, T> Known<'a, 'i, T> {
         by_text.get(text).map(|&name| name.clone())
     }
 
+    /// The entry of that name, if it was read.
+    pub(super) fn get(&self, name: &Name) -> Option<&'a T> {
+        self.names.get(name)
+    }
+
     /// Whether it is there, though faulty: then its own fault says enough.
     pub(super) fn declares(&self, text: &str) -> bool {
         self.table.is_some_and(|table| table.contains_key(text))
     }
+}
+
+/// What activities live on.
+pub(super) struct Supplies<'a, 'i> {
+    pub(super) resources: Known<'a, 'i, Resource>,
+    pub(super) materials: Known<'a, 'i, Material>,
+}
+
+/// What limits may sum.
+pub(super) struct Summable<'a, 'i> {
+    pub(super) supplies: Supplies<'a, 'i>,
+    pub(super) activities: Known<'a, 'i, Activity>,
+    pub(super) tags: Tags,
 }
 
 /// How many activities carry each tag.

@@ -2,29 +2,26 @@
 
 use std::collections::BTreeMap;
 
-use toml::de::DeValue;
-
 use super::bounds;
 use super::fields::{Fields, Given};
 use super::findings::shown;
-use super::keys::Later;
-use super::known::{Known, Tags};
+use super::known::Summable;
 use super::number::{self, Role};
-use super::term;
 use super::toml_types::Key;
-use crate::model::types::{Activity, Bound, Limit, Term};
+use super::{over, term};
+use crate::model::types::{Bound, Limit, Over, Term};
 use crate::model::value::Value;
 
 /// The limit in a table.
-pub(super) fn read(fields: &mut Fields<'_, '_>, activities: &Known<'_, '_, Activity>, tags: &Tags) -> Limit {
-    over(fields);
-    let bound = bound(fields);
+pub(super) fn read(fields: &mut Fields<'_, '_>, there: &Summable<'_, '_>) -> Limit {
+    let over = over::read(fields);
+    let bound = bound(fields, &over);
     Limit {
         label: fields.text("label"),
-        terms: sum(fields, "terms", activities, tags).unwrap_or_else(|| missing(fields)),
-        per: sum(fields, "per", activities, tags),
+        terms: sum(fields, "terms", there).unwrap_or_else(|| missing(fields)),
+        per: sum(fields, "per", there),
         bound,
-        ..Limit::default()
+        over,
     }
 }
 
@@ -37,28 +34,10 @@ fn missing(fields: &mut Fields<'_, '_>) -> BTreeMap<Term, Value> {
     BTreeMap::new()
 }
 
-fn over(fields: &mut Fields<'_, '_>) {
-    let Some(node) = fields.node("over") else { return };
-    match node.get_ref() {
-        DeValue::String(text) if text == "each" => {}
-        DeValue::String(text) if text != "all" => {
-            let message = format!("`over` is \"each\" or \"all\", not `{}`", shown(text));
-            fields.findings().add(&node.span(), "bad-over", message, "take it out: this version plans a single period");
-        }
-        DeValue::String(_) | DeValue::Array(_) => {
-            Later::Periods.refuse("`over` several periods", &node.span(), fields.findings());
-        }
-        _ => {
-            let message = "`over` is \"each\", \"all\" or a list of periods".to_owned();
-            fields.findings().add(&node.span(), "bad-over", message, "take it out: this version plans a single period");
-        }
-    }
-}
-
-fn bound(fields: &mut Fields<'_, '_>) -> Bound {
-    let at_least = fields.value("at_least", Role::Least);
-    let at_most = fields.value("at_most", Role::Most);
-    let equals = fields.value("equals", Role::Amount);
+fn bound(fields: &mut Fields<'_, '_>, over: &Over) -> Bound {
+    let at_least = over::bound(fields, "at_least", Role::Least, over);
+    let at_most = over::bound(fields, "at_most", Role::Most, over);
+    let equals = over::bound(fields, "equals", Role::Amount, over);
     if let Some(span) = fields.key_span("equals") {
         for other in ["at_least", "at_most"] {
             if let Some(other_span) = fields.key_span(other) {
@@ -70,7 +49,7 @@ fn bound(fields: &mut Fields<'_, '_>) -> Bound {
         return Bound::Equals(equals.map_or(Value::Every(0.0), |given| given.value));
     }
     if let (Some(least), Some(most)) = (&at_least, &at_most) {
-        bounds::ordered(("at_least", least), ("at_most", most), fields.findings());
+        bounds::ordered(("at_least", least), ("at_most", most), fields);
     }
     if fields.key_span("at_least").is_none() && fields.key_span("at_most").is_none() {
         let message = "a limit needs a bound".to_owned();
@@ -82,12 +61,7 @@ fn bound(fields: &mut Fields<'_, '_>) -> Bound {
 }
 
 /// The sum written under `key`.
-fn sum(
-    fields: &mut Fields<'_, '_>,
-    key: &str,
-    activities: &Known<'_, '_, Activity>,
-    tags: &Tags,
-) -> Option<BTreeMap<Term, Value>> {
+fn sum(fields: &mut Fields<'_, '_>, key: &str, there: &Summable<'_, '_>) -> Option<BTreeMap<Term, Value>> {
     let table = fields.table(key, &format!("{key} = {{ floor_tile = 1.0 }}"))?;
     if key == "per" && table.is_empty() {
         let message = "`per` is empty, so the bounds would be multiplied by nothing".to_owned();
@@ -100,8 +74,8 @@ fn sum(
         if term::refuse_dotted(word, node, fields.findings()) {
             continue;
         }
-        let value = number::value(word.get_ref(), node, Role::Rate, fields.findings());
-        let Some(term) = term::read(word, activities, tags, fields.findings()) else { continue };
+        let value = number::value(word.get_ref(), node, Role::Rate, fields.calendar(), fields.findings());
+        let Some(term) = term::read(word, there, fields.findings()) else { continue };
         if let Some(other) = spelt.insert(term.clone(), word) {
             let (first, second) = if other.span().start < word.span().start { (other, word) } else { (word, other) };
             let message = format!("`{}` and `{}` are the same term", shown(first.get_ref()), shown(second.get_ref()));

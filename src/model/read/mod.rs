@@ -8,7 +8,9 @@ mod activity;
 mod again;
 mod blocks;
 mod bounds;
+mod by_period;
 mod bytes;
+mod calendar;
 mod caps;
 mod complaints;
 mod document;
@@ -16,37 +18,50 @@ mod duplicate;
 mod fields;
 mod file;
 mod findings;
+mod flow;
 mod keys;
 mod known;
 mod limit;
-mod near;
+mod material;
 mod number;
+mod oddities;
+mod over;
 mod resource;
 mod source;
 mod syntax;
 mod term;
+mod tiers;
 mod toml_types;
 
 use std::path::Path;
 
 pub use again::{Before, again};
 pub use blocks::Blocks;
-pub use caps::{MOST_ACTIVITIES, MOST_BYTES, MOST_COEFFICIENTS, MOST_LIMITS, MOST_LINES, MOST_RESOURCES, MOST_TOKENS};
+pub use caps::{
+    MOST_ACTIVITIES, MOST_BYTES, MOST_COEFFICIENTS, MOST_COLUMNS, MOST_LIMITS, MOST_LINES, MOST_LISTED, MOST_MATERIALS,
+    MOST_PERIODS, MOST_RESOURCES, MOST_ROWS, MOST_TOKENS,
+};
 pub use fields::LONGEST_TEXT;
 pub use file::{FileProblem, file};
 pub use number::{LARGEST, SMALLEST_RATE};
 
-use super::fault::{Fault, Faults};
+use toml::Spanned;
+
+use super::fault::Faults;
 use super::types::Model;
+use super::value::Value;
 use findings::Findings;
+use source::Source;
+use toml_types::Table;
 
 /// A model that was read, and what is odd about it though nothing is wrong.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Reading {
     /// The model.
     pub model: Model,
-    /// Oddities: names that look alike. At most [`MOST_REPORTED`](super::fault::MOST_REPORTED).
-    pub warnings: Vec<Fault>,
+    /// Oddities, such as names that look alike or a resource that nobody uses: in the order of the file, the first
+    /// [`MOST_REPORTED`](super::fault::MOST_REPORTED), and how many more there are.
+    pub warnings: Faults,
 }
 
 /// What is wrong with a file that [`file()`] finds too large to be read: the fault that [`text`] would report.
@@ -61,21 +76,33 @@ pub fn too_large(path: &Path) -> Faults {
 /// All faults found, in the order of the file; the first [`MOST_REPORTED`](super::fault::MOST_REPORTED) are told and the rest
 /// counted. A file that is no UTF-8 text or no TOML is not looked into further.
 pub fn text(path: &Path, bytes: &[u8]) -> Result<Reading, Faults> {
-    Ok(text_and_blocks(path, bytes)?.0)
+    let Parsed { source, root, model, .. } = parsed(path, bytes)?;
+    let warnings = oddities::find(root.get_ref(), &model).finish(source, &model);
+    Ok(Reading { model, warnings })
 }
 
-/// As [`text`], and where the tables of the text lie, so that [`again`] can read it once it is edited.
+/// The model that the bytes of a file spell, and where the tables of the text lie, so that [`again`] can read it once it is edited.
+/// Does not look for oddities.
 ///
 /// # Errors
 /// As [`text`].
-pub fn text_and_blocks(path: &Path, bytes: &[u8]) -> Result<(Reading, Blocks), Faults> {
+pub fn text_and_blocks(path: &Path, bytes: &[u8]) -> Result<(Model, Blocks), Faults> {
+    let Parsed { source, root, model, days } = parsed(path, bytes)?;
+    Ok((model, Blocks::of(source.text, root.get_ref(), days)))
+}
+
+/// A text without a fault.
+struct Parsed<'a> {
+    source: Source<'a>,
+    root: Spanned<Table<'a>>,
+    model: Model,
+    days: Option<Value>,
+}
+
+fn parsed<'a>(path: &'a Path, bytes: &'a [u8]) -> Result<Parsed<'a>, Faults> {
     let source = bytes::text(path, bytes).map_err(|fault| Faults { reported: vec![*fault], more: 0 })?;
     let root = syntax::parse(source)?;
     let mut findings = Findings::default();
-    let model = document::model(root.get_ref(), &mut findings);
-    if !findings.is_empty() {
-        return Err(findings.finish(source, &model));
-    }
-    let warnings = document::twins(root.get_ref(), &model).finish(source, &model).reported;
-    Ok((Reading { model, warnings }, Blocks::of(source.text, root.get_ref())))
+    let (model, days) = document::model(root.get_ref(), &mut findings);
+    if findings.is_empty() { Ok(Parsed { source, root, model, days }) } else { Err(findings.finish(source, &model)) }
 }

@@ -2,9 +2,10 @@
 
 use toml::de::{DeFloat, DeInteger, DeValue};
 
+use super::by_period::ByPeriod;
+use super::calendar::Calendar;
 use super::findings::{Findings, Span, shown};
-use super::keys::Later;
-use super::toml_types::{Node, Table, kind};
+use super::toml_types::{Node, kind};
 use crate::model::value::Value;
 
 /// The largest magnitude a model may hold.
@@ -27,45 +28,38 @@ pub(super) enum Role {
     Least,
     /// The lower bound of a level: `-inf` frees it.
     Level,
+    /// An upper bound of what is never below 0: `inf` for no limit.
+    Room,
+    /// A lower bound of what is never below 0: finite.
+    Floor,
+    /// Working days: finite and not below 0.
+    Days,
 }
 
-/// The value of `key`: a number, or a table that gives one for each period.
-pub(super) fn value(key: &str, node: &Node<'_>, role: Role, findings: &mut Findings) -> Option<Value> {
+impl Role {
+    /// Whether it may be given per working day.
+    pub(super) fn is_bound(self) -> bool {
+        matches!(self, Self::Most | Self::Least | Self::Level | Self::Room | Self::Floor)
+    }
+
+    fn is_never_below_0(self) -> bool {
+        matches!(self, Self::Room | Self::Floor | Self::Days)
+    }
+}
+
+/// The value of `key`: a number, a list of one per period, or a table of numbers by period.
+pub(super) fn value(
+    key: &str,
+    node: &Node<'_>,
+    role: Role,
+    calendar: &Calendar,
+    findings: &mut Findings,
+) -> Option<Value> {
     match node.get_ref() {
-        DeValue::Table(table) => each(key, table, &node.span(), role, findings),
-        DeValue::Array(_) => {
-            let message = format!(
-                "a list for `{}` gives one number per period, but this version plans a single period",
-                shown(key)
-            );
-            findings.add(&node.span(), "unsupported", message, "give one number");
-            None
-        }
+        DeValue::Table(table) => ByPeriod { key, role, calendar }.table(table, &node.span(), findings),
+        DeValue::Array(list) => ByPeriod { key, role, calendar }.list(list, &node.span(), findings),
         _ => number(key, node, role, findings).map(Value::Every),
     }
-}
-
-fn each(key: &str, table: &Table<'_>, span: &Span, role: Role, findings: &mut Findings) -> Option<Value> {
-    let mut found = None;
-    for (word, node) in table {
-        match word.get_ref().as_ref() {
-            "each" => found = number(key, node, role, findings).map(Value::Every),
-            "per_day" => Later::Periods.refuse("`per_day`", &word.span(), findings),
-            other => {
-                let message = format!(
-                    "`{}` is not `each`, so it would be a period, but this version plans a single period",
-                    shown(other)
-                );
-                let help = format!("give one number, or {{ each = … }}, for `{}`", shown(key));
-                findings.add(&word.span(), "unsupported", message, help);
-            }
-        }
-    }
-    if table.is_empty() {
-        let message = format!("`{}` has an empty table where a number is meant", shown(key));
-        findings.add(span, "wrong-type", message, "give a number, such as 168");
-    }
-    found
 }
 
 /// The number that `node` holds, if it may stand there.
@@ -77,17 +71,25 @@ pub(super) fn number(key: &str, node: &Node<'_>, role: Role, findings: &mut Find
     };
     match number.and_then(|number| allowed(key, number, role)) {
         Ok(number) => Some(number + 0.0),
-        Err(Refusal { code, message, help }) => {
-            findings.add(&node.span(), code, message, help);
+        Err(refusal) => {
+            refusal.tell(&node.span(), findings);
             None
         }
     }
 }
 
-struct Refusal {
+/// Why a number may not stand where it does.
+pub(super) struct Refusal {
     code: &'static str,
     message: String,
     help: String,
+}
+
+impl Refusal {
+    /// Adds it as a fault.
+    pub(super) fn tell(self, span: &Span, findings: &mut Findings) {
+        findings.add(span, self.code, self.message, self.help);
+    }
 }
 
 fn refusal(code: &'static str, message: String, help: impl Into<String>) -> Refusal {
@@ -140,20 +142,25 @@ fn too_large(text: &str) -> Refusal {
     refusal("too-large", format!("{} is too large", shown(text)), help)
 }
 
-fn allowed(key: &str, number: f64, role: Role) -> Result<f64, Refusal> {
+/// The number, if `key` may have it.
+pub(super) fn allowed(key: &str, number: f64, role: Role) -> Result<f64, Refusal> {
     if number.is_infinite() {
         let key = shown(key);
         let upward = number > 0.0;
         return match role {
-            Role::Most if upward => Ok(number),
+            Role::Most | Role::Room if upward => Ok(number),
             Role::Level if !upward => Ok(number),
-            Role::Most => Err(refusal("not-finite", format!("`{key}` cannot be -inf"), "give a number")),
+            Role::Most | Role::Room => Err(refusal("not-finite", format!("`{key}` cannot be -inf"), "give a number")),
             Role::Least if !upward => {
-                let help = "leave the key out where there is no limit";
+                let help =
+                    "leave the key out where there is no limit; among numbers by period, write one that is far below";
                 Err(refusal("not-finite", format!("`{key}` cannot be -inf here"), help))
             }
             _ => Err(refusal("not-finite", format!("`{key}` must be a finite number"), "give a number")),
         };
+    }
+    if number < 0.0 && role.is_never_below_0() {
+        return Err(refusal("below-0", format!("`{}` cannot be below 0", shown(key)), "give 0 or more"));
     }
     if number.abs() > LARGEST {
         return Err(too_large(&format!("{number:e}")));

@@ -1,21 +1,16 @@
-//! Terms of a limit: an activity, a tag, or an address of activities.
+//! Terms of a limit: an activity, a tag, or an address of something that is planned.
 
 use super::findings::{Among, Cure, Findings, shown};
-use super::keys::Later;
-use super::known::{Known, Tags};
+use super::flow;
+use super::known::Summable;
 use super::toml_types::{Key, Node};
-use crate::model::types::{Activity, Term};
+use crate::model::types::Term;
 
 /// What a key of `terms` or `per` stands for; `None` with a fault added where it stands for nothing that is there.
-pub(super) fn read(
-    key: &Key<'_>,
-    activities: &Known<'_, '_, Activity>,
-    tags: &Tags,
-    findings: &mut Findings,
-) -> Option<Term> {
+pub(super) fn read(key: &Key<'_>, there: &Summable<'_, '_>, findings: &mut Findings) -> Option<Term> {
     let word: &str = key.get_ref();
     match word.split_once('.') {
-        None => plain(key, word, activities, tags, findings),
+        None => plain(key, word, there, findings),
         Some(("activities", "*")) => Some(Term::All),
         Some(("activities", rest)) if rest.contains('.') => {
             let help = "a term is the level of an activity: \"activities.NAME\"";
@@ -23,44 +18,38 @@ pub(super) fn read(
             findings.add(&key.span(), "bad-term", message, help);
             None
         }
-        Some(("activities", rest)) => plain(key, rest, activities, tags, findings),
-        Some(("materials", _)) => refused(key, Later::Materials, findings),
-        Some(("resources", rest)) if rest.contains(".surge") => refused(key, Later::Surge, findings),
+        Some(("activities", rest)) => plain(key, rest, there, findings),
+        Some(("materials", rest)) => flow::of_material(key, rest, &there.supplies.materials, findings),
+        Some(("resources", rest)) if rest.contains(".surge") => {
+            flow::of_resource(key, rest, &there.supplies.resources, findings)
+        }
         Some(_) => {
             let message = format!("`{}` is not a term", shown(word));
-            let help = "a term is an activity, \"tag:NAME\", or an address such as \"activities.*\"";
+            let help = "a term is an activity, \"tag:NAME\", or an address such as \"activities.*\" or \"materials.slip.purchase\"";
             findings.add(&key.span(), "bad-term", message, help);
             None
         }
     }
 }
 
-fn refused(key: &Key<'_>, later: Later, findings: &mut Findings) -> Option<Term> {
-    later.refuse(&format!("the address `{}`", shown(key.get_ref())), &key.span(), findings);
-    None
-}
-
-fn plain(
-    key: &Key<'_>,
-    word: &str,
-    activities: &Known<'_, '_, Activity>,
-    tags: &Tags,
-    findings: &mut Findings,
-) -> Option<Term> {
+fn plain(key: &Key<'_>, word: &str, there: &Summable<'_, '_>, findings: &mut Findings) -> Option<Term> {
     if let Some(tag) = word.strip_prefix("tag:") {
-        let Some((name, _)) = tags.get_key_value(tag) else {
+        let Some((name, _)) = there.tags.get_key_value(tag) else {
             let message = format!("no activity has the tag `{}`", shown(tag));
             findings.add(&key.span(), "unknown-tag", message, Cure::Nearest(shown(tag), Among::Tags));
             return None;
         };
         return Some(Term::Tag(name.clone()));
     }
-    let found = activities.find(word);
-    if found.is_none() && !activities.declares(word) {
+    let found = there.activities.find(word);
+    if found.is_none() && !there.activities.declares(word) {
         let message = format!("no activity `{}`", shown(word));
         let cure = match word {
             "*" => Cure::from("for all activities write \"activities.*\""),
-            tag if tags.contains_key(tag) => Cure::Say(format!("for the tag write \"tag:{tag}\"")),
+            tag if there.tags.contains_key(tag) => Cure::Say(format!("for the tag write \"tag:{tag}\"")),
+            material if there.supplies.materials.find(material).is_some() => Cure::Say(format!(
+                "for the material write what of it is summed, as in \"materials.{material}.purchase\""
+            )),
             _ => Cure::Nearest(shown(word), Among::Activities),
         };
         findings.add(&key.span(), "unknown-activity", message, cure);

@@ -23,6 +23,13 @@ pub struct Limit {
     pub over: Over,
 }
 
+impl Limit {
+    /// What it sums: its terms, and what its bounds are multiplied by.
+    pub fn sums(&self) -> impl Iterator<Item = &BTreeMap<Term, Value>> {
+        std::iter::once(&self.terms).chain(&self.per)
+    }
+}
+
 impl Default for Limit {
     fn default() -> Self {
         let bound = Bound::Between(Value::Every(f64::NEG_INFINITY), Value::Every(f64::INFINITY));

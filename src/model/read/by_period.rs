@@ -1,0 +1,143 @@
+//! Values that are written by period: a list of one number per period, or a table of numbers by the names of periods.
+
+use toml::de::DeArray;
+
+use super::calendar::{Calendar, EACH, PER_DAY};
+use super::findings::{Among, Cure, Findings, Span, shown};
+use super::number::{self, Role};
+use super::toml_types::{Key, Node, Table};
+use crate::model::value::{Period, Value};
+
+/// One value that is written by period.
+pub(super) struct ByPeriod<'a> {
+    pub(super) key: &'a str,
+    pub(super) role: Role,
+    pub(super) calendar: &'a Calendar,
+}
+
+impl ByPeriod<'_> {
+    /// The value in a list.
+    pub(super) fn list(&self, list: &DeArray<'_>, span: &Span, findings: &mut Findings) -> Option<Value> {
+        let horizon = self.calendar.horizon();
+        if self.calendar.is_faulty() {
+        } else if !horizon.is_named() {
+            let message =
+                format!("a list for `{}` gives one number per period, but the model names no periods", shown(self.key));
+            findings.add(span, "no-periods", message, NAME_THEM);
+        } else if list.len() != horizon.count() {
+            let numbers = if list.len() == 1 { "number" } else { "numbers" };
+            let message =
+                format!("`{}` lists {} {numbers}, but {} are wanted", shown(self.key), list.len(), horizon.count());
+            let each = if horizon.count() == 1 { "" } else { "each of " };
+            let help = format!("give one number for {each}{}", self.calendar.told());
+            findings.add(span, "wrong-length", message, help);
+        }
+        let numbers: Vec<_> = list.iter().map(|item| number::number(self.key, item, self.role, findings)).collect();
+        self.calendar.value(numbers.into_iter().collect::<Option<_>>()?, span, findings)
+    }
+
+    /// The value in a table.
+    pub(super) fn table(&self, table: &Table<'_>, span: &Span, findings: &mut Findings) -> Option<Value> {
+        if table.is_empty() {
+            let message = format!("`{}` has an empty table where a number is meant", shown(self.key));
+            findings.add(span, "wrong-type", message, "give a number, such as 168");
+            return None;
+        }
+        let rest = self.rest(table, findings);
+        let named = table.iter().filter(|(word, _)| ![EACH, PER_DAY].contains(&word.get_ref().as_ref()));
+        let named: Vec<_> = named.map(|(word, node)| self.of_one(word, node, findings)).collect();
+        let (rest, named) = (rest?, named.into_iter().collect::<Option<Vec<_>>>()?);
+        match rest {
+            Some(value) if named.is_empty() => Some(value),
+            rest => self.filled(rest.as_ref(), &named, span, findings),
+        }
+    }
+
+    /// What `each` or `per_day` gives for the periods that are not named. The outer `None` is for what is faulty.
+    fn rest(&self, table: &Table<'_>, findings: &mut Findings) -> Option<Option<Value>> {
+        match (table.get_key_value(EACH), table.get_key_value(PER_DAY)) {
+            (None, None) => Some(None),
+            (Some((_, node)), None) => {
+                number::number(self.key, node, self.role, findings).map(|number| Some(Value::Every(number)))
+            }
+            (None, Some((word, node))) => self.per_day(word, node, findings).map(Some),
+            (Some((each, _)), Some((per_day, _))) => {
+                let (each, per_day) = (each.span(), per_day.span());
+                let later = if each.start > per_day.start { each } else { per_day };
+                let message = format!("`each` and `per_day` cannot stand together for `{}`", shown(self.key));
+                findings.add(&later, "each-and-per-day", message, "keep one of the two");
+                None
+            }
+        }
+    }
+
+    fn per_day(&self, word: &Key<'_>, node: &Node<'_>, findings: &mut Findings) -> Option<Value> {
+        if !self.role.is_bound() {
+            let message = format!("`{}` cannot be given `per_day`: only capacities and bounds can", shown(self.key));
+            findings.add(&word.span(), "not-per-day", message, "give the number itself, for each period");
+            return None;
+        }
+        let per_day = number::number(PER_DAY, node, Role::Amount, findings)?;
+        let Some(numbers) = self.calendar.of_days(per_day) else {
+            if !self.calendar.is_faulty() {
+                let message = "`per_day` asks for the working days in each period, but the model has no `days`";
+                let help = match self.calendar.horizon().is_named() {
+                    true => "add `days` to the model, one number per period, as in days = [5, 4]",
+                    false => "add `days` to the model, as in days = 10",
+                };
+                findings.add(&word.span(), "no-days", message.to_owned(), help);
+            }
+            return None;
+        };
+        for &number in &numbers {
+            if let Err(refusal) = number::allowed(self.key, number, self.role) {
+                refusal.tell(&node.span(), findings);
+                return None;
+            }
+        }
+        self.calendar.value(numbers, &node.span(), findings)
+    }
+
+    fn of_one(&self, word: &Key<'_>, node: &Node<'_>, findings: &mut Findings) -> Option<(Period, f64)> {
+        let number = number::number(self.key, node, self.role, findings);
+        let label: &str = word.get_ref();
+        let period = self.calendar.period(label);
+        if period.is_none() && !self.calendar.is_faulty() {
+            if self.calendar.horizon().is_named() {
+                let cure = Cure::Nearest(shown(label), Among::Periods(self.calendar.told()));
+                findings.add(&word.span(), "unknown-period", format!("no period `{}`", shown(label)), cure);
+            } else {
+                let message =
+                    format!("`{}` is not `each`, so it would be a period, but the model names none", shown(label));
+                findings.add(&word.span(), "no-periods", message, NAME_THEM);
+            }
+        }
+        Some((period?, number?))
+    }
+
+    /// The numbers of the periods that are named, and of the others from the rest.
+    fn filled(
+        &self,
+        rest: Option<&Value>,
+        named: &[(Period, f64)],
+        span: &Span,
+        findings: &mut Findings,
+    ) -> Option<Value> {
+        let horizon = self.calendar.horizon();
+        let mut numbers: Vec<_> = horizon.periods().map(|period| rest.map(|rest| rest.at(period))).collect();
+        for (period, number) in named {
+            numbers[period.position()] = Some(*number);
+        }
+        if let Some(left_out) = horizon.periods().find(|period| numbers[period.position()].is_none()) {
+            let label = horizon.label(left_out).unwrap_or_default();
+            let message = format!("`{}` has no number for period `{label}`", shown(self.key));
+            findings.add(span, "period-missing", message, "add one, or `each` for all periods that are not named");
+            return None;
+        }
+        self.calendar.value(numbers.into_iter().flatten().collect(), span, findings)
+    }
+}
+
+/// The cure where a value is given by period and there are none.
+const NAME_THEM: &str =
+    "name the periods in the model, as in periods = [\"2027-W01\", \"2027-W02\"], or give one number";
