@@ -358,7 +358,7 @@ fn edits_come_to_what_is_published() {
         let edits = compare(model, &edited);
         assert_eq!(edits.iter().map(|edit| edit.kind).collect::<Vec<_>>(), kinds, "{what}");
         assert!(starts.contains(&account.start), "{what}: {account:?}");
-        let kept = last::last_plan(model, &plan(model, &before, &first), &first.basis.named(&before)).kept(&edits);
+        let kept = last::last_plan(&model.horizon, &before, &first.basis.named(&before)).kept(&edits);
         assert!(kept.expected().contains(account.start.word()), "{what}: {kept:?}, {account:?}");
     }
 }

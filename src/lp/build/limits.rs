@@ -75,11 +75,14 @@ pub fn groups(limit: &Limit, horizon: &Horizon) -> Vec<Group> {
     }
 }
 
+/// The rows of a limit by period, each with the bound that multiplies `per`.
+type Rule = Vec<Option<(Made, f64)>>;
+
 /// What columns must know of limits.
 #[derive(Default)]
 pub(super) struct Limits<'m> {
-    /// One for each limit, or for each bound of one with `per`: its rows by period, each with the bound that multiplies `per`.
-    rules: Vec<Vec<Option<(Made, f64)>>>,
+    /// One for each limit, or for each bound of one with `per`.
+    rules: Vec<Rule>,
     activities: HashMap<&'m Name, Uses<'m>>,
     tags: HashMap<&'m Name, Uses<'m>>,
     all: Uses<'m>,
@@ -102,7 +105,7 @@ pub(super) fn rows<'m>(frame: &Frame<'m>, rows: &mut Rows) -> Limits<'m> {
     let Model { horizon, limits, .. } = frame.model;
     let mut all = Limits::default();
     for (name, limit) in limits {
-        let mut rules: BTreeMap<Option<&str>, Vec<Option<(Made, f64)>>> = BTreeMap::new();
+        let mut rules: BTreeMap<Option<&str>, Rule> = BTreeMap::new();
         for group in groups(limit, horizon) {
             let Some(first) = group.first() else { continue };
             for side in sides(limit, first) {
