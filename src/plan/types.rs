@@ -139,15 +139,22 @@ impl State {
 }
 
 impl Each<State> {
-    /// The words for it: of the one state, or how often there is which.
+    /// The words for it: of the one state, or in how many periods there is which, most first.
     #[must_use]
     pub fn words(&self) -> String {
         if let Some(state) = self.one() {
             return state.words().to_owned();
         }
         let many = |state: State| self.all().iter().filter(|&&other| other == state).count();
-        let told = State::ALL.into_iter().map(|state| (state, many(state))).filter(|(_, many)| *many > 0);
-        told.map(|(state, many)| format!("{} in {many}", state.words())).collect::<Vec<_>>().join(", ")
+        let mut told: Vec<(State, usize)> = State::ALL.map(|state| (state, many(state))).into();
+        told.retain(|(_, many)| *many > 0);
+        told.sort_by_key(|&(_, many)| std::cmp::Reverse(many));
+        let one = |(at, (state, many)): (usize, (State, usize))| match (at, many) {
+            (0, 1) => format!("{} in 1 period", state.words()),
+            (0, many) => format!("{} in {many} periods", state.words()),
+            (_, many) => format!("{} in {many}", state.words()),
+        };
+        told.into_iter().enumerate().map(one).collect::<Vec<_>>().join(", ")
     }
 }
 

@@ -5,6 +5,7 @@
 mod hostile;
 mod notes;
 mod tileworks;
+mod weeks;
 
 use millreeve::plan::compare::{Event, compare, events};
 use millreeve::plan::{Standing, text};

@@ -11,7 +11,7 @@ impl Maker<'_> {
         activities.map(|(position, (name, activity))| self.activity(position, name, activity)).collect()
     }
 
-    /// `position` is that in the model, which in a single period is that in the program too.
+    /// `position` is that in the model.
     fn activity(&self, position: usize, name: &Name, activity: &Activity) -> Result<PlannedActivity, MakeError> {
         let columns = self.columns_of(position, name)?;
         let mut levels = Vec::with_capacity(columns.len());
@@ -76,14 +76,17 @@ impl Maker<'_> {
     }
 
     fn columns_of(&self, position: usize, name: &Name) -> Result<Vec<(Period, ColumnIndex)>, MakeError> {
-        let mut columns = Vec::with_capacity(1);
-        for period in self.model.horizon.periods() {
-            let guessed = self.program.columns.get(position);
-            if guessed.is_some_and(|column| keys::is_activity_key(&column.key, name, &self.model.horizon, period)) {
-                columns.push((period, ColumnIndex(position)));
+        let horizon = &self.model.horizon;
+        let mut columns = Vec::with_capacity(horizon.count());
+        for period in horizon.periods() {
+            // Mostly levels come first and in this order: then nothing need be looked up.
+            let guess = position * horizon.count() + period.position();
+            let guessed = self.program.columns.get(guess);
+            if guessed.is_some_and(|column| keys::is_activity_key(&column.key, name, horizon, period)) {
+                columns.push((period, ColumnIndex(guess)));
                 continue;
             }
-            let key = keys::activity_key(name, &self.model.horizon, period);
+            let key = keys::activity_key(name, horizon, period);
             columns.push((period, self.program.column(&key).ok_or(MakeError::Missing(key))?));
         }
         Ok(columns)

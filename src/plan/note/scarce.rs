@@ -3,7 +3,7 @@
 use super::tables::{few, section, table};
 use super::words::{amount, amounts, labelled, per_unit, total, unit_of_resource, value, with_unit};
 use super::{Report, periods};
-use crate::model::{Name, Value};
+use crate::model::{Name, Over, Value};
 use crate::plan::compare::{Comparison, find, greatest, is_scarce, is_scarce_in, moved};
 use crate::plan::each::Span;
 use crate::plan::types::{Plan, PlannedLimit, PlannedResource};
@@ -28,7 +28,7 @@ pub(super) fn scarce(report: &Report<'_>, plan: &Plan, comparison: Option<&Compa
         let binds = |worth: &&Value| worth.numbers().iter().any(|worth| worth.abs() > 0.0);
         let Some(worth) = planned.worth_of_more.as_ref().filter(binds) else { continue };
         let label = report.model.and_then(|model| model.limits.get(&planned.name)?.label.as_deref());
-        binding.push(of_limit(plan, planned, worth, format!("limit {}", labelled(&planned.name, label))));
+        binding.push(of_limit(report, plan, (planned, worth), format!("limit {}", labelled(&planned.name, label))));
     }
     binding.sort_by(|a, b| b.weight.total_cmp(&a.weight).then_with(|| a.row.cmp(&b.row)));
     let rows: Vec<_> = binding.into_iter().map(|binding| binding.row).collect();
@@ -67,7 +67,7 @@ fn of_resource(report: &Report<'_>, plan: &Plan, planned: &PlannedResource, name
     Binding { weight, row: over_periods(name, planned.worth_of_more.as_ref(), &binds, plan, rate) }
 }
 
-fn of_limit(plan: &Plan, planned: &PlannedLimit, worth: &Value, name: String) -> Binding {
+fn of_limit(report: &Report<'_>, plan: &Plan, (planned, worth): (&PlannedLimit, &Value), name: String) -> Binding {
     let rate = |worth: f64| per_unit(worth, plan.currency.as_deref(), None);
     let weight = planned.value.as_ref().map_or(0.0, |value| by_period(worth, value));
     if plan.periods.is_empty() {
@@ -81,7 +81,7 @@ fn of_limit(plan: &Plan, planned: &PlannedLimit, worth: &Value, name: String) ->
         return Binding { weight, row };
     }
     let row = match worth {
-        Value::Every(worth) => vec![name, rate(*worth), String::new(), "several periods together".to_owned()],
+        Value::Every(worth) => vec![name, rate(*worth), String::new(), together(report, planned, plan)],
         Value::Listed(worths) => {
             let numbers = worths.iter().enumerate();
             let binds: Vec<usize> = numbers.filter(|(_, worth)| worth.abs() > 0.0).map(|(place, _)| place).collect();
@@ -89,6 +89,16 @@ fn of_limit(plan: &Plan, planned: &PlannedLimit, worth: &Value, name: String) ->
         }
     };
     Binding { weight, row }
+}
+
+/// The periods over which a limit binds as one: `all 8 periods together`.
+fn together(report: &Report<'_>, planned: &PlannedLimit, plan: &Plan) -> String {
+    let places: Vec<usize> = match report.model.and_then(|model| Some(&model.limits.get(&planned.name)?.over)) {
+        Some(Over::All) => (0..plan.periods.len()).collect(),
+        Some(Over::Some(periods)) => periods.iter().map(|period| period.position()).collect(),
+        Some(Over::Each) | None => return "several periods together".to_owned(),
+    };
+    format!("{} together", periods::which(&places, &plan.periods))
 }
 
 /// A row of what binds in several periods: the worth that is farthest from nothing, where that is, and where it binds.

@@ -4,6 +4,7 @@ use super::super::Shown;
 use super::super::number::short;
 use super::{Sheet, plain};
 use crate::model::{Name, Value};
+use crate::plan::State;
 
 pub(super) fn sheets(shown: &Shown) -> [(&'static str, Sheet); 4] {
     [
@@ -22,8 +23,7 @@ fn sheet(shown: &Shown, first: &[(&str, bool)], last: &[(&str, bool)]) -> Sheet 
 }
 
 fn activities(shown: &Shown) -> Sheet {
-    let mut sheet =
-        sheet(shown, &[("name", false)], &[("in all", true), ("unit", false), ("state", false), ("label", false)]);
+    let mut sheet = sheet(shown, &[("name", false)], &[("in all", true), ("unit", false), ("state", false)]);
     for activity in &shown.plan.activities {
         let known = shown.model.as_ref().and_then(|model| model.activities.get(&activity.name));
         let mut row = vec![activity.name.to_string()];
@@ -31,8 +31,7 @@ fn activities(shown: &Shown) -> Sheet {
         row.extend([
             short(sum(&activity.level)),
             plain(known.and_then(|known| known.unit.as_deref())),
-            activity.state.words(),
-            plain(known.and_then(|known| known.label.as_deref())),
+            activity.state.one().map_or("differs", State::words).to_owned(),
         ]);
         sheet.rows.push(row);
     }
