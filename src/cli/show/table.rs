@@ -73,6 +73,8 @@ fn remarks(shown: &Shown) -> Vec<String> {
         let as_good = if plan.minimise { "cost as little" } else { "earn as much" };
         let how_far = if plan.may_vary_left_out > 0 {
             "levels can differ without loss; how far is not worked out for a model of this size"
+        } else if !plan.periods.is_empty() {
+            "levels can differ without loss; --why NAME says how far"
         } else if plan.activities.iter().any(|planned| planned.may_vary.is_some()) {
             "levels may be anything in the ranges shown, each as the others allow"
         } else {

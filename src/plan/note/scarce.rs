@@ -109,7 +109,7 @@ fn over_periods(
     plan: &Plan,
     rate: impl Fn(f64) -> String,
 ) -> Vec<String> {
-    let (most, most_in) = match worth.and_then(|worth| farthest(worth)) {
+    let (most, most_in) = match worth.and_then(farthest) {
         Some((places, most)) => (rate(most), periods::which(&places, &plan.periods)),
         None => ("not told".to_owned(), String::new()),
     };
