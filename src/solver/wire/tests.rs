@@ -262,7 +262,9 @@ fn who_is_no_worker_of_this_release_is_told_apart() {
     assert!(matches!(meet(&mut b"".as_slice()), Err(WireError::Stranger)));
     assert!(matches!(meet(&mut b"usage: something else".as_slice()), Err(WireError::Stranger)));
     let newer = greeted(&[MAGIC, &(VERSION + 1).to_le_bytes(), b"9.9.9"].concat());
-    let told = format!("what answered is millreeve 9.9.9 and speaks version 2; this is {BUILD} and speaks 1");
+    let theirs = VERSION + 1;
+    let told =
+        format!("what answered is millreeve 9.9.9 and speaks version {theirs}; this is {BUILD} and speaks {VERSION}");
     assert_eq!(newer.to_string(), told);
     let same_words = greeted(&[MAGIC, &VERSION.to_le_bytes(), b"0.0.1"].concat());
     assert!(matches!(same_words, WireError::OtherVersion { version: VERSION, .. }));
