@@ -2,6 +2,8 @@
 #![expect(clippy::disallowed_methods, reason = "tests lay out files as other programs would")]
 #![expect(clippy::unwrap_used, clippy::panic, reason = "helpers outside test functions")]
 
+#[path = "cli/periods.rs"]
+mod periods;
 #[path = "cli/show.rs"]
 mod show;
 #[path = "cli/why.rs"]
@@ -21,7 +23,11 @@ fn millreeve(folder: &Path) -> Command {
     command.current_dir(folder);
     for (name, _) in std::env::vars_os() {
         let name_text = name.to_string_lossy();
-        if name_text.starts_with("MILLREEVE_") || name_text.starts_with("CLICOLOR") || name_text == "NO_COLOR" {
+        if name_text.starts_with("MILLREEVE_")
+            || name_text.starts_with("CLICOLOR")
+            || name_text == "NO_COLOR"
+            || name_text == "COLUMNS"
+        {
             command.env_remove(&name);
         }
     }

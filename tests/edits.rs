@@ -2,6 +2,8 @@
 
 #![expect(clippy::unwrap_used, clippy::panic, reason = "helpers of tests fail the test")]
 
+#[path = "support/promise.rs"]
+mod promise;
 #[path = "support/random.rs"]
 mod random;
 #[path = "support/random_edit.rs"]
@@ -13,37 +15,19 @@ mod support;
 #[path = "support/tileworks.rs"]
 mod tileworks;
 
-use millreeve::edits::{Edit, Kept, LastPlan, Renames, compare};
+use millreeve::edits::{LastPlan, Renames, compare};
 use millreeve::lp::{Program, build};
-use millreeve::model::meaning::Meaning;
 use millreeve::model::{Activity, Bound, Limit, Model, Name, Term};
-use millreeve::plan::{self, last};
-use millreeve::solver::message::{Account, Optimum, Outcome, Start};
+use millreeve::plan::last;
+use millreeve::solver::message::{Optimum, Outcome};
 use millreeve::solver::session::Session;
+use promise::{promise_kept, told};
 use rng::Rng;
 use support::{least, same, size, solve};
 use tileworks::{ROWS, Row, tileworks};
 
 fn last_plan(model: &Model, program: &Program, optimum: &Optimum) -> LastPlan {
-    let plan = plan::make(model, Meaning::of(model), program, optimum).unwrap();
-    last::last_plan(model, &plan, &optimum.basis.named(program))
-}
-
-/// Whether what was promised of the last basis was found of it.
-fn promise_kept(kept: Kept, account: &Account) -> bool {
-    let primal = account.primal_infeasible == Some(0);
-    let dual = account.dual_infeasible == Some(0);
-    match kept {
-        Kept::Both => primal && dual && account.start == Start::None,
-        Kept::Primal => primal && account.start != Start::Dual,
-        Kept::Dual => dual && account.start != Start::Primal,
-        Kept::Neither => true,
-    }
-}
-
-fn told(edits: &[Edit]) -> String {
-    let lines = edits.iter().map(|e| format!("  {} {:?} -> {:?} ({:?})", e.address, e.old, e.new, e.kind));
-    lines.collect::<Vec<_>>().join("\n")
+    last::last_plan(&model.horizon, program, &optimum.basis.named(program))
 }
 
 /// Each row of the table of kinds, on a small tileworks.

@@ -235,7 +235,11 @@ fn what_earns_as_much_on_paper_ties() {
     let plan = plan::make(&model, Meaning::of(&model), &program, &optimum).unwrap();
     assert!(plan.exact && plan.ties);
     assert_eq!(plan.aim.to_bits(), 1460.0_f64.to_bits());
-    assert!(plan.activities.iter().all(|planned| planned.may_vary == Some((0.0, 100.0))), "{:?}", plan.activities);
+    assert!(
+        plan.activities.iter().all(|planned| planned.may_vary == Some(plan::Each::One((0.0, 100.0)))),
+        "{:?}",
+        plan.activities
+    );
 }
 
 #[test]

@@ -16,7 +16,7 @@ use expected::{Example, Expected, Told, examples};
 use millreeve::edits::{Kind, compare};
 use millreeve::lp::{Key, Program, Sense, build};
 use millreeve::model::meaning::Meaning;
-use millreeve::model::{Activity, Bound, Limit, Model, Name, Term};
+use millreeve::model::{Activity, Bound, Limit, Model, Name, Term, Value};
 use millreeve::plan::{self, Plan, State, last};
 use millreeve::solver::message::{Answer, Conflict, Optimum, Outcome, Start};
 use millreeve::solver::session::Session;
@@ -100,20 +100,25 @@ fn answer(id: &str, program: &Program, expected: &Expected, optimum: &Optimum) {
     }
 }
 
+/// The number of a single period.
+fn one(value: Option<&Value>) -> Option<f64> {
+    value.map(|value| value.numbers()[0])
+}
+
 /// What the plan tells planners: break-evens of what is idle, and of one-sided worths the right side or nothing.
 fn told(id: &str, program: &Program, expected: &Expected, plan: &Plan) {
     let sign = -program.sense.sign();
     assert!(plan.exact && plan.ties != expected.levels_unique && plan.may_vary_left_out == 0, "{id}");
     for activity in &plan.activities {
-        match (expected.levels.get(activity.name.as_str()), activity.may_vary) {
+        match (expected.levels.get(activity.name.as_str()), activity.may_vary.as_ref().and_then(plan::Each::one)) {
             (Some(range @ Told::Range(..)), Some(ends)) => assert!(range.is(ends), "{id}: {} {ends:?}", activity.name),
             (Some(Told::Range(..)), None) => panic!("{id}: {} may vary", activity.name),
             (Some(Told::One(_)), Some(ends)) => panic!("{id}: {} is {ends:?}", activity.name),
             (Some(Told::One(_)) | None, _) => {}
         }
     }
-    for activity in plan.activities.iter().filter(|activity| activity.state == State::Idle) {
-        let Some(break_even) = activity.break_even else {
+    for activity in plan.activities.iter().filter(|activity| activity.state.is(State::Idle)) {
+        let Some(break_even) = one(activity.break_even.as_ref()) else {
             assert!(!expected.levels_unique || !expected.worths_unique, "{id}: no break-even of {}", activity.name);
             continue;
         };
@@ -122,14 +127,19 @@ fn told(id: &str, program: &Program, expected: &Expected, plan: &Plan) {
         // Of what is earned the most at which it stays out, of what is spent the least. Costs count down where prices count up.
         let own = program.columns[column(program, activity.name.as_str())].aim;
         let loses = if program.sense == Sense::Maximise { most - own } else { own - least };
-        assert!(near(activity.loses.unwrap(), loses), "{id}: {} loses {:?}", activity.name, activity.loses);
+        assert!(
+            near(one(activity.loses.as_ref()).unwrap(), loses),
+            "{id}: {} loses {:?}",
+            activity.name,
+            activity.loses
+        );
         assert!(break_even.is_finite(), "{id}");
     }
     for resource in &plan.resources {
         let worth = &expected.worths[&format!("resources.{}", resource.name)];
         let (less, more) = worth.sides();
-        for (told, truth) in [(resource.worth_of_more, more), (resource.loss_of_less, less)] {
-            match told {
+        for (told, truth) in [(&resource.worth_of_more, more), (&resource.loss_of_less, less)] {
+            match one(told.as_ref()) {
                 Some(told) => assert!(near(told, sign * truth), "{id}: {} is told as {told}", resource.name),
                 None => assert!(!expected.worths_unique || !expected.levels_unique, "{id}: {} untold", resource.name),
             }
@@ -348,7 +358,7 @@ fn edits_come_to_what_is_published() {
         let edits = compare(model, &edited);
         assert_eq!(edits.iter().map(|edit| edit.kind).collect::<Vec<_>>(), kinds, "{what}");
         assert!(starts.contains(&account.start), "{what}: {account:?}");
-        let kept = last::last_plan(model, &plan(model, &before, &first), &first.basis.named(&before)).kept(&edits);
+        let kept = last::last_plan(&model.horizon, &before, &first.basis.named(&before)).kept(&edits);
         assert!(kept.expected().contains(account.start.word()), "{what}: {kept:?}, {account:?}");
     }
 }

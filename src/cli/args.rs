@@ -169,7 +169,7 @@ pub(crate) struct Show {
     /// Write the plan as CSV, for a spreadsheet
     #[arg(long, conflicts_with_all = ["why", "json"])]
     pub(crate) csv: bool,
-    /// Explain one activity, resource or limit as a sum anyone can check
+    /// Explain one activity, resource, limit or material as a sum anyone can check: NAME, or NAME.PERIOD
     #[arg(long, value_name = "NAME")]
     pub(crate) why: Option<String>,
 }

@@ -64,6 +64,13 @@ impl Screen {
         self.out_is_terminal
     }
 
+    /// How many columns fit on a line of results: those of the terminal, else what `COLUMNS` says; `None` where nothing limits them.
+    pub(crate) fn width(&self) -> Option<usize> {
+        let of_terminal = || rustix::termios::tcgetwinsize(io::stdout()).ok().map(|size| usize::from(size.ws_col));
+        let told = || std::env::var("COLUMNS").ok()?.trim().parse().ok();
+        of_terminal().filter(|_| self.out_is_terminal).or_else(told).filter(|&width| width > 0)
+    }
+
     /// One or several lines of results for people; the last line's end is added.
     pub(crate) fn say(&mut self, text: impl fmt::Display) {
         self.clear_progress();

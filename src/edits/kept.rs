@@ -6,8 +6,9 @@
 
 use std::collections::BTreeSet;
 
-use super::edit::{Edit, Kind, Subject};
-use crate::model::Name;
+use super::edit::{Edit, Kind, Planned, Subject};
+use crate::lp::{Key, keys};
+use crate::model::{Flow, Horizon, Name, Period};
 
 /// What of the last basis is sure to stay.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -49,14 +50,14 @@ impl Kept {
 /// What mattered in the last plan: enough to say what an edit leaves standing.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
 pub struct LastPlan {
-    /// Activities at level 0.
-    pub idle: BTreeSet<Name>,
-    /// Activities that stand at a bound other than 0.
-    pub bounded: BTreeSet<Name>,
-    /// Resources used up to a bound.
-    pub scarce: BTreeSet<Name>,
-    /// Limits that bind.
-    pub binding: BTreeSet<Name>,
+    /// The periods it planned.
+    pub horizon: Horizon,
+    /// Columns in the basis, or at a level other than 0: all but those that are idle.
+    pub busy: BTreeSet<Key>,
+    /// Columns out of the basis, at any level.
+    pub resting: BTreeSet<Key>,
+    /// Rows that bind.
+    pub binding: BTreeSet<Key>,
 }
 
 impl LastPlan {
@@ -73,7 +74,11 @@ impl LastPlan {
             Kind::Wording => Kept::Both,
             Kind::Price | Kind::Aim | Kind::NewActivity => Kept::Primal,
             Kind::Capacity | Kind::NewConstraint => Kept::Dual,
-            Kind::NewCommitment => Kept::Neither,
+            Kind::NewCommitment
+            | Kind::NewBalance
+            | Kind::WithdrawnBalance
+            | Kind::HorizonRolled
+            | Kind::HorizonReplaced => Kept::Neither,
             Kind::BoundRemoved | Kind::WithdrawnConstraint => {
                 if self.leans_on(&edit.subject) {
                     Kept::Primal
@@ -100,20 +105,56 @@ impl LastPlan {
         }
     }
 
+    /// Whether anything of a subject stands at a bound, in any period.
     fn leans_on(&self, subject: &Subject) -> bool {
         match subject {
             Subject::Model => false,
-            Subject::Resource(name) => self.scarce.contains(name),
-            Subject::Activity(name) => self.bounded.contains(name) || self.idle.contains(name),
-            Subject::Limit(name, _) => self.binding.contains(name),
+            Subject::Resource(name) => self.binds(|period| keys::resource_key(name, &self.horizon, period)),
+            Subject::Change(name) => self.binds(|period| keys::change_key(name, &self.horizon, period)),
+            Subject::Material(name) => self.binds(|period| keys::balance_key(name, &self.horizon, period)),
+            Subject::Activity(name) => self.rests(&Planned::Activity(name.clone())),
+            Subject::Planned(planned) => self.rests(planned) || self.demand_binds(planned),
+            Subject::Limit(name, _) => self.limit_binds(name),
         }
     }
 
+    fn binds(&self, key: impl Fn(Period) -> Key) -> bool {
+        self.horizon.periods().any(|period| self.binding.contains(&key(period)))
+    }
+
+    fn limit_binds(&self, name: &Name) -> bool {
+        [None, Some("at_least"), Some("at_most"), Some("equals")].into_iter().any(|side| {
+            self.binding.contains(&keys::limit_over_key(name, side))
+                || self.binds(|period| keys::limit_key(name, side, &self.horizon, period))
+        })
+    }
+
+    /// Whether sales that may be late stand at a bound.
+    fn demand_binds(&self, planned: &Planned) -> bool {
+        let Planned::Flow(name, Flow::Sale(Some(tier))) = planned else { return false };
+        self.binds(|period| keys::demand_key(name, *tier, &self.horizon, period))
+    }
+
+    fn rests(&self, planned: &Planned) -> bool {
+        self.columns(planned).any(|key| self.resting.contains(&key))
+    }
+
+    /// Whether all of a subject is idle, in all periods.
     fn is_idle(&self, subject: &Subject) -> bool {
+        let idle = |planned: &Planned| !self.columns(planned).any(|key| self.busy.contains(&key));
         match subject {
-            Subject::Model | Subject::Resource(_) => false,
-            Subject::Activity(name) => self.idle.contains(name),
-            Subject::Limit(_, concerned) => concerned.iter().all(|name| self.idle.contains(name)),
+            Subject::Model | Subject::Resource(_) | Subject::Change(_) | Subject::Material(_) => false,
+            Subject::Activity(name) => idle(&Planned::Activity(name.clone())),
+            Subject::Planned(planned) => idle(planned),
+            Subject::Limit(_, concerned) => concerned.iter().all(idle),
         }
+    }
+
+    fn columns(&self, planned: &Planned) -> impl Iterator<Item = Key> {
+        self.horizon.periods().map(move |period| match planned {
+            Planned::Activity(name) => keys::activity_key(name, &self.horizon, period),
+            Planned::Flow(name, flow) => keys::flow_key(name, *flow, &self.horizon, period),
+            Planned::Surge(name, tier) => keys::surge_key(name, *tier, &self.horizon, period),
+        })
     }
 }

@@ -11,6 +11,6 @@ mod side_by_side;
 
 pub use apply::apply;
 pub use compare::{compare, compare_renamed};
-pub use edit::{Edit, Kind, Subject};
+pub use edit::{Edit, Kind, Planned, Subject};
 pub use kept::{Kept, LastPlan};
 pub use rename::Renames;

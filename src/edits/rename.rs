@@ -3,7 +3,7 @@
 use std::collections::BTreeMap;
 
 use super::side_by_side::side_by_side;
-use crate::model::{Activity, Limit, Model, Name, Resource, Term, Value};
+use crate::model::{Activity, Flow, Limit, Material, Model, Name, Resource, Term, Value};
 
 /// What was renamed from one model to the next: new names by old ones.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
@@ -12,6 +12,8 @@ pub struct Renames {
     pub resources: BTreeMap<Name, Name>,
     /// Activities.
     pub activities: BTreeMap<Name, Name>,
+    /// Materials.
+    pub materials: BTreeMap<Name, Name>,
     /// Limits.
     pub limits: BTreeMap<Name, Name>,
 }
@@ -20,14 +22,26 @@ impl Renames {
     /// The renames that turn things of `old` into things of `new`. A thing that could be several is none.
     #[must_use]
     pub fn between(old: &Model, new: &Model) -> Self {
+        let same_terms = |table, was: &Name, is: &Name| counts(old, table, was) == counts(new, table, is);
         Self {
             resources: matches(&old.resources, &new.resources, |was, is| {
-                same_resource(was.1, is.1) && same_use(old, was.0, new, is.0)
+                *is.1 == Resource { label: is.1.label.clone(), unit: is.1.unit.clone(), ..was.1.clone() }
+                    && rates(old, was.0, |activity| &activity.uses) == rates(new, is.0, |activity| &activity.uses)
+                    && same_terms(Table::Resources, was.0, is.0)
             }),
             activities: matches(&old.activities, &new.activities, |was, is| {
-                same_activity(was.1, is.1) && same_terms(old, was.0, new, is.0)
+                *is.1 == Activity { label: is.1.label.clone(), unit: is.1.unit.clone(), ..was.1.clone() }
+                    && same_terms(Table::Activities, was.0, is.0)
             }),
-            limits: matches(&old.limits, &new.limits, |was, is| same_limit(was.1, is.1)),
+            materials: matches(&old.materials, &new.materials, |was, is| {
+                *is.1 == Material { label: is.1.label.clone(), unit: is.1.unit.clone(), ..was.1.clone() }
+                    && rates(old, was.0, |activity| &activity.draws) == rates(new, is.0, |activity| &activity.draws)
+                    && rates(old, was.0, |activity| &activity.makes) == rates(new, is.0, |activity| &activity.makes)
+                    && same_terms(Table::Materials, was.0, is.0)
+            }),
+            limits: matches(&old.limits, &new.limits, |was, is| {
+                *is.1 == Limit { label: is.1.label.clone(), ..was.1.clone() }
+            }),
         }
     }
 
@@ -43,9 +57,12 @@ impl Renames {
         let mut renamed = model.clone();
         renamed.resources = rekeyed(renamed.resources, &self.resources);
         renamed.activities = rekeyed(renamed.activities, &self.activities);
+        renamed.materials = rekeyed(renamed.materials, &self.materials);
         renamed.limits = rekeyed(renamed.limits, &self.limits);
         for activity in renamed.activities.values_mut() {
             activity.uses = rekeyed(std::mem::take(&mut activity.uses), &self.resources);
+            activity.draws = rekeyed(std::mem::take(&mut activity.draws), &self.materials);
+            activity.makes = rekeyed(std::mem::take(&mut activity.makes), &self.materials);
         }
         for limit in renamed.limits.values_mut() {
             limit.terms = self.terms(std::mem::take(&mut limit.terms));
@@ -55,9 +72,12 @@ impl Renames {
     }
 
     fn terms(&self, terms: BTreeMap<Term, Value>) -> BTreeMap<Term, Value> {
+        let new = |names: &BTreeMap<Name, Name>, name: Name| names.get(&name).cloned().unwrap_or(name);
         let renamed = |term| match term {
-            Term::Activity(name) => Term::Activity(self.activities.get(&name).cloned().unwrap_or(name)),
-            other => other,
+            Term::Activity(name) => Term::Activity(new(&self.activities, name)),
+            Term::Material(name, flow) => Term::Material(new(&self.materials, name), flow),
+            Term::Surge(name, tier) => Term::Surge(new(&self.resources, name), tier),
+            Term::Tag(_) | Term::All => term,
         };
         terms.into_iter().map(|(term, value)| (renamed(term), value)).collect()
     }
@@ -93,33 +113,41 @@ fn matches<T>(
     pairs
 }
 
-fn same_resource(was: &Resource, is: &Resource) -> bool {
-    *is == Resource { label: is.label.clone(), unit: is.unit.clone(), ..was.clone() }
+/// The rates of one thing, by activity.
+fn rates<'m>(
+    model: &'m Model,
+    of: &Name,
+    rates: impl Fn(&'m Activity) -> &'m BTreeMap<Name, Value>,
+) -> Vec<(&'m Name, &'m Value)> {
+    model.activities.iter().filter_map(|(name, activity)| Some((name, rates(activity).get(of)?))).collect()
 }
 
-fn same_activity(was: &Activity, is: &Activity) -> bool {
-    *is == Activity { label: is.label.clone(), unit: is.unit.clone(), ..was.clone() }
+/// Tables whose things limits count.
+#[derive(Clone, Copy)]
+enum Table {
+    Resources,
+    Activities,
+    Materials,
 }
 
-fn same_limit(was: &Limit, is: &Limit) -> bool {
-    *is == Limit { label: is.label.clone(), ..was.clone() }
-}
+/// Where a limit counts something: in which limit, whether by `per`, in which way, by how much.
+type Count<'m> = (&'m Name, bool, Option<Flow>, Option<usize>, &'m Value);
 
-/// Whether every activity uses `was` in the old model as it uses `is` in the new one.
-fn same_use(old: &Model, was: &Name, new: &Model, is: &Name) -> bool {
-    fn uses<'m>(model: &'m Model, resource: &Name) -> Vec<(&'m Name, &'m Value)> {
-        model.activities.iter().filter_map(|(name, activity)| Some((name, activity.uses.get(resource)?))).collect()
+/// Where limits count a thing by its name.
+fn counts<'m>(model: &'m Model, table: Table, of: &Name) -> Vec<Count<'m>> {
+    let way = |term: &Term| match (table, term) {
+        (Table::Activities, Term::Activity(name)) if name == of => Some((None, None)),
+        (Table::Materials, Term::Material(name, flow)) if name == of => Some((Some(*flow), None)),
+        (Table::Resources, Term::Surge(name, tier)) if name == of => Some((None, *tier)),
+        _ => None,
+    };
+    let mut counts = Vec::new();
+    for (limit, Limit { terms, per, .. }) in &model.limits {
+        let both = terms.iter().map(|term| (false, term)).chain(per.iter().flatten().map(|term| (true, term)));
+        counts.extend(both.filter_map(|(by_per, (term, value))| {
+            let (flow, tier) = way(term)?;
+            Some((limit, by_per, flow, tier, value))
+        }));
     }
-    uses(old, was) == uses(new, is)
-}
-
-/// Whether every limit counts `was` in the old model as it counts `is` in the new one.
-fn same_terms(old: &Model, was: &Name, new: &Model, is: &Name) -> bool {
-    fn counts<'m>(model: &'m Model, activity: &Name) -> Vec<(&'m Name, Option<&'m Value>, Option<&'m Value>)> {
-        let term = Term::Activity(activity.clone());
-        let of = |limit: &'m Limit| (limit.terms.get(&term), limit.per.as_ref().and_then(|per| per.get(&term)));
-        let counted = model.limits.iter().map(|(name, limit)| (name, of(limit).0, of(limit).1));
-        counted.filter(|(_, terms, per)| terms.is_some() || per.is_some()).collect()
-    }
-    counts(old, was) == counts(new, is)
+    counts
 }

@@ -37,6 +37,12 @@ pub fn limit_key(name: &Name, side: Option<&str>, horizon: &Horizon, period: Per
     key("limits", name, side, horizon.label(period))
 }
 
+/// The key of the row of a limit over several periods together; `side` as in [`limit_key`].
+#[must_use]
+pub fn limit_over_key(name: &Name, side: Option<&str>) -> Key {
+    key("limits", name, side, None)
+}
+
 /// The key of a tier of extra capacity, counted from 1, in a period.
 #[must_use]
 pub fn surge_key(name: &Name, tier: usize, horizon: &Horizon, period: Period) -> Key {

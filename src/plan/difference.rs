@@ -1,6 +1,7 @@
 //! What differs between a plan as it lies in its file and as it was worked out afresh, told as a difference of plans.
 
 use super::compare::{Comparison, compare, find, moved};
+use super::each::Each;
 use super::types::{Plan, State};
 use crate::model::Name;
 
@@ -10,7 +11,7 @@ pub struct Difference {
     /// Aim and levels, what entered and what left.
     pub comparison: Comparison,
     /// Activities that both have and that stand otherwise.
-    pub states: Vec<(Name, State, State)>,
+    pub states: Vec<(Name, Each<State>, Each<State>)>,
     /// The first lines that differ.
     pub lines: Vec<LinePair>,
     /// How many more lines differ.
@@ -55,11 +56,11 @@ impl Difference {
     }
 }
 
-fn states(written: &Plan, afresh: &Plan) -> Vec<(Name, State, State)> {
+fn states(written: &Plan, afresh: &Plan) -> Vec<(Name, Each<State>, Each<State>)> {
     let other = |name: &Name| find(&afresh.activities, name, |planned| &planned.name);
     let states = written.activities.iter().filter_map(|planned| Some((planned, other(&planned.name)?)));
     let differing = states.filter(|(before, after)| before.state != after.state);
-    differing.map(|(before, after)| (before.name.clone(), before.state, after.state)).collect()
+    differing.map(|(before, after)| (before.name.clone(), before.state.clone(), after.state.clone())).collect()
 }
 
 /// The first lines that differ, and how many more do. Line ends count.

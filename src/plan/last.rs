@@ -1,29 +1,30 @@
 //! What mattered in a plan: enough to say what an edit leaves standing of its basis.
 
-use super::types::{Plan, PlannedActivity, State};
 use crate::edits::LastPlan;
-use crate::lp::Key;
-use crate::model::{Model, Name};
+use crate::lp::Program;
+use crate::model::Horizon;
 use crate::solver::basis::{NamedBasis, Position};
 
-/// What mattered in `plan`, the plan of `model` that `basis` gave.
+/// What mattered in the plan that `basis` gave for `program`, over the periods of `horizon`.
 #[must_use]
-pub fn last_plan(model: &Model, plan: &Plan, basis: &NamedBasis) -> LastPlan {
-    let is_idle = |planned: &&PlannedActivity| planned.level.numbers().iter().all(|&level| level == 0.0);
-    let at_bound = |planned: &&PlannedActivity| {
-        !is_idle(planned) && matches!(planned.state, State::AtItsMost | State::AtItsLeast | State::Fixed)
-    };
-    let leaned_on = |table: &str, name: &Name| {
-        let whole = format!("{table}.{name}");
-        let of_it =
-            |key: &Key| key.as_str().strip_prefix(&whole).is_some_and(|rest| rest.is_empty() || rest.starts_with('.'));
-        basis.rows.iter().any(|(key, position)| *position != Position::Basic && of_it(key))
-    };
-    let names = |planned: &PlannedActivity| planned.name.clone();
-    LastPlan {
-        idle: plan.activities.iter().filter(is_idle).map(names).collect(),
-        bounded: plan.activities.iter().filter(at_bound).map(names).collect(),
-        scarce: model.resources.keys().filter(|name| leaned_on("resources", name)).cloned().collect(),
-        binding: model.limits.keys().filter(|name| leaned_on("limits", name)).cloned().collect(),
+pub fn last_plan(horizon: &Horizon, program: &Program, basis: &NamedBasis) -> LastPlan {
+    let mut last = LastPlan { horizon: horizon.clone(), ..LastPlan::default() };
+    for column in &program.columns {
+        let position = basis.column(&column.key);
+        let stands_at = match position {
+            Some(Position::AtLower) => Some(column.lower),
+            Some(Position::AtUpper) => Some(column.upper),
+            Some(Position::AtZero) => Some(0.0),
+            Some(Position::Basic) | None => None,
+        };
+        if stands_at.is_some() {
+            last.resting.insert(column.key.clone());
+        }
+        if stands_at != Some(0.0) {
+            last.busy.insert(column.key.clone());
+        }
     }
+    let binding = basis.rows.iter().filter(|(_, position)| *position != Position::Basic);
+    last.binding = binding.map(|(key, _)| key.clone()).collect();
+    last
 }

@@ -3,11 +3,14 @@
 //! What depends on which of several optimal bases the solver ended in is left out, never told as if it were the only truth.
 
 mod activities;
+mod flows;
 mod limits;
+mod materials;
 mod resources;
 
-use super::types::{Plan, PlannedActivity, PlannedLimit, PlannedResource, Standing, State};
-use crate::lp::{Key, Program, RowIndex};
+use super::each::{Each, Span};
+use super::types::{Plan, PlannedActivity, PlannedLimit, PlannedMaterial, PlannedResource, Standing, State};
+use crate::lp::{ColumnIndex, Key, Program, RowIndex};
 use crate::model::meaning::Meaning;
 use crate::model::{Aim, Model, Name, Value};
 use crate::solver::message::{Optimum, Ranges};
@@ -55,15 +58,18 @@ pub fn make(model: &Model, meaning: Meaning, program: &Program, optimum: &Optimu
     let activities = maker.activities()?;
     let resources = maker.resources()?;
     let limits = maker.limits(&activities)?;
+    let materials = maker.materials(&activities)?;
     let complete = activities.iter().all(activity_is_complete)
         && resources.iter().all(resource_is_complete)
-        && limits.iter().all(|limit| maker.limit_is_complete(limit));
+        && limits.iter().all(|limit| maker.limit_is_complete(limit))
+        && materials.iter().all(|material| material.worth_of_more.is_some());
     Ok(Plan {
         answers: meaning,
         standing: Standing::Current,
         aim: maker.aim()?,
         minimise: model.aim == Aim::Minimise,
         currency: model.currency.clone(),
+        periods: maker.periods(),
         exact: optimum.exact,
         ties: !optimum.levels_unique,
         may_vary_left_out: maker.may_vary_left_out(&activities),
@@ -71,14 +77,15 @@ pub fn make(model: &Model, meaning: Meaning, program: &Program, optimum: &Optimu
         activities,
         resources,
         limits,
+        materials,
     })
 }
 
 fn activity_is_complete(activity: &PlannedActivity) -> bool {
-    match activity.state {
-        State::Idle | State::Prospect => activity.break_even.is_some(),
-        _ => activity.price_range.is_some(),
-    }
+    let states = activity.state.all();
+    let breaks_even = |state: &State| matches!(state, State::Idle | State::Prospect);
+    (activity.break_even.is_some() || !states.iter().any(breaks_even))
+        && (activity.price_range.is_some() || states.iter().all(breaks_even))
 }
 
 fn resource_is_complete(resource: &PlannedResource) -> bool {
@@ -90,8 +97,6 @@ struct Maker<'a> {
     model: &'a Model,
     program: &'a Program,
     optimum: &'a Optimum,
-    /// Whether worths may be told.
-    worths: bool,
     /// Ranges, where they may be told.
     ranges: Option<&'a Ranges>,
     /// Per column how far its level may vary without loss, where that may be told.
@@ -110,6 +115,9 @@ impl<'a> Maker<'a> {
         if let Some(spans) = &optimum.spans {
             shapes.push(("spans", spans.len(), columns));
         }
+        if let Some(known) = &optimum.known {
+            shapes.extend([("known gains", known.gains.len(), columns), ("known worths", known.worths.len(), rows)]);
+        }
         if let Some(ranges) = &optimum.ranges {
             shapes.extend([
                 ("ranges of aims", ranges.aims.len(), columns),
@@ -119,12 +127,9 @@ impl<'a> Maker<'a> {
         if let Some(&(what, found, expected)) = shapes.iter().find(|(_, found, expected)| found != expected) {
             return Err(MakeError::Shape { what, found, expected });
         }
-        // A rate of a plan is one number; over several periods there would be one for each.
-        let single = model.horizon.periods().count() == 1;
-        let worths = optimum.worths_unique && single;
-        let ranges = optimum.ranges.as_ref().filter(|_| worths && optimum.levels_unique);
-        let spans = optimum.spans.as_ref().filter(|_| single && !optimum.levels_unique);
-        Ok(Self { model, program, optimum, worths, ranges, spans })
+        let ranges = optimum.ranges.as_ref().filter(|_| optimum.worths_unique && optimum.levels_unique);
+        let spans = optimum.spans.as_ref().filter(|_| !optimum.levels_unique);
+        Ok(Self { model, program, optimum, ranges, spans })
     }
 
     /// The aim, where a sum whose terms cancel to the last digits is 0.
@@ -141,17 +146,46 @@ impl<'a> Maker<'a> {
         0.0 - self.program.sense.sign() * rate
     }
 
+    /// The names of the periods; none where the horizon is a single nameless one.
+    fn periods(&self) -> Vec<Name> {
+        let horizon = &self.model.horizon;
+        let labels = horizon.periods().filter_map(|period| horizon.label(period));
+        // A label has been a name once.
+        labels.filter_map(|label| Name::new(label).ok()).collect()
+    }
+
     /// One number for each period, or one alone where the horizon is a single nameless period.
-    fn value(&self, mut numbers: Vec<f64>) -> Value {
-        let named = self.model.horizon.periods().any(|period| self.model.horizon.label(period).is_some());
-        match numbers.pop() {
-            Some(number) if numbers.is_empty() && !named => Value::Every(number),
-            Some(number) => {
-                numbers.push(number);
-                Value::Listed(numbers)
-            }
-            None => Value::Every(0.0),
+    fn value(&self, numbers: Vec<f64>) -> Value {
+        match numbers.as_slice() {
+            &[number] if !self.model.horizon.is_named() => Value::Every(number),
+            _ => Value::Listed(numbers),
         }
+    }
+
+    /// As [`Maker::value`], where there is a number for every period.
+    fn value_of_all(&self, numbers: impl Iterator<Item = Option<f64>>) -> Option<Value> {
+        Some(self.value(numbers.collect::<Option<_>>()?))
+    }
+
+    /// One range for each period, or one alone where the horizon is a single nameless period.
+    fn spans_of_all(&self, spans: impl Iterator<Item = Option<Span>>) -> Option<Each<Span>> {
+        let spans = spans.collect::<Option<Vec<_>>>()?;
+        match spans.as_slice() {
+            &[span] if !self.model.horizon.is_named() => Some(Each::One(span)),
+            _ => Some(Each::Listed(spans)),
+        }
+    }
+
+    /// Whether the worth of a row is the only one that is optimal.
+    fn knows_worth(&self, row: RowIndex) -> bool {
+        let known = || self.optimum.known.as_ref().is_some_and(|known| known.worths[row.0]);
+        self.optimum.worths_unique || known()
+    }
+
+    /// Whether the gain of a column is the only one that is optimal.
+    fn knows_gain(&self, column: ColumnIndex) -> bool {
+        let known = || self.optimum.known.as_ref().is_some_and(|known| known.gains[column.0]);
+        self.optimum.worths_unique || known()
     }
 
     fn row(&self, key: Key) -> Result<RowIndex, MakeError> {
@@ -184,7 +218,7 @@ impl Side {
 struct Rates {
     worth_of_more: f64,
     loss_of_less: f64,
-    holds_between: Option<(f64, f64)>,
+    holds_between: Option<Span>,
 }
 
 /// A number of the answer, taken to the bound it means.
@@ -218,7 +252,7 @@ fn rate(number: f64, what: &'static str, name: &Name) -> Result<f64, MakeError> 
 }
 
 /// A range, either end of which may have no limit.
-fn range(least: f64, most: f64, what: &'static str, name: &Name) -> Result<(f64, f64), MakeError> {
+fn range(least: f64, most: f64, what: &'static str, name: &Name) -> Result<Span, MakeError> {
     let wrong = least.is_nan() || most.is_nan() || least == f64::INFINITY || most == f64::NEG_INFINITY;
     if wrong {
         let number = format!("{least} to {most}");

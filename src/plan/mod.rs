@@ -4,13 +4,16 @@
 
 pub mod compare;
 pub mod difference;
+pub mod each;
 pub mod last;
 pub mod make;
 pub mod note;
 pub mod number;
+pub mod overlap;
 pub mod release;
 pub mod text;
 pub mod types;
 
+pub use each::{Each, Span};
 pub use make::make;
-pub use types::{Plan, PlannedActivity, PlannedLimit, PlannedResource, Standing, State};
+pub use types::{Plan, PlannedActivity, PlannedLimit, PlannedMaterial, PlannedResource, Standing, State};

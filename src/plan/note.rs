@@ -2,6 +2,12 @@
 
 mod account;
 mod lead;
+mod materials;
+mod moves;
+mod periods;
+mod prospects;
+mod rules;
+mod scarce;
 mod since;
 mod tables;
 mod ties;
@@ -107,9 +113,6 @@ pub struct Reckoning {
     /// The worst relative breach of any law of optimality.
     pub worst: f64,
 }
-
-/// The most rows of any table; the rest are counted.
-const ROWS: usize = 15;
 
 /// The text of the note. It is a pure function of what is reported.
 #[must_use]

@@ -29,7 +29,7 @@ impl Release {
         let pinned = |planned: &PlannedActivity| PlannedActivity {
             name: planned.name.clone(),
             level: planned.level.clone(),
-            state: planned.state,
+            state: planned.state.clone(),
             may_vary: None,
             price_range: None,
             break_even: None,
@@ -40,6 +40,7 @@ impl Release {
             activities,
             resources: Vec::new(),
             limits: Vec::new(),
+            materials: Vec::new(),
             may_vary_left_out: 0,
             complete: false,
             ..plan.clone()
@@ -48,7 +49,9 @@ impl Release {
     }
 }
 
-/// What differs between a release and a plan, as far as both know the same names.
+/// What differs between a release and a plan, as far as both know the same names and plan the same periods.
+///
+/// Which periods those are is told by the comparison's overlap; the aims of other periods are not compared.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Since {
     /// Aim and levels: `before` is the release. What is scarce is not compared, as a release does not say.

@@ -1,5 +1,6 @@
 //! The plan as the text of `NAME.plan.toml`: writing it, reading it, and telling whether it is ours and unharmed.
 
+pub(super) mod entry;
 mod mark;
 pub(super) mod read;
 pub(super) mod write;

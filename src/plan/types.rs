@@ -1,7 +1,12 @@
 //! The plan as a value: what `NAME.plan.toml` says.
 
+mod material;
+
+pub use material::PlannedMaterial;
+
+use super::each::{Each, Span};
 use crate::model::meaning::Meaning;
-use crate::model::{Name, Value};
+use crate::model::{Horizon, Name, Value};
 
 /// Version of the plan file's layout.
 pub const FORMAT: u32 = 1;
@@ -10,6 +15,9 @@ pub const FORMAT: u32 = 1;
 pub const RULES: u32 = 1;
 
 /// A plan. Lists are in byte order of names.
+///
+/// Where the periods have names, numbers are lists of one per period, also where they are equal; of what is one for several periods
+/// together (a limit over all of them) there is one number. Where something is not known for every period, it is left out for all.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Plan {
     /// The meaning of the model that it answers.
@@ -22,6 +30,8 @@ pub struct Plan {
     pub minimise: bool,
     /// Unit of the aim.
     pub currency: Option<String>,
+    /// The names of the periods, first to last; empty where the model names none.
+    pub periods: Vec<Name>,
     /// Whether nothing was decided by a tolerance; if not, the plan is proven within 1e-9 only.
     pub exact: bool,
     /// Whether other plans earn as much.
@@ -36,6 +46,16 @@ pub struct Plan {
     pub resources: Vec<PlannedResource>,
     /// What the limits come to.
     pub limits: Vec<PlannedLimit>,
+    /// What becomes of the materials.
+    pub materials: Vec<PlannedMaterial>,
+}
+
+impl Plan {
+    /// The periods it plans.
+    #[must_use]
+    pub fn horizon(&self) -> Horizon {
+        Horizon::of(self.periods.clone())
+    }
 }
 
 /// Whether a plan may be worked to.
@@ -68,17 +88,18 @@ pub struct PlannedActivity {
     pub name: Name,
     /// Its level.
     pub level: Value,
-    /// How it stands.
-    pub state: State,
+    /// How it stands: once where it stands alike in all periods.
+    pub state: Each<State>,
     /// The least and the most that its level is in any plan that earns as much, in the unit of the level; infinite where there is no
-    /// limit. `None` where no other level is as good, or where it was not worked out.
-    pub may_vary: Option<(f64, f64)>,
-    /// Prices (costs, where the aim is to be small) between which these levels stay optimal. Infinite where there is no limit.
-    pub price_range: Option<(f64, f64)>,
-    /// Idle or prospect: the price above which (the cost below which) it would enter.
-    pub break_even: Option<f64>,
-    /// Idle or prospect: what making one unit would cost the aim; negative for a prospect that would pay.
-    pub loses: Option<f64>,
+    /// limit. `None` where no other level is as good in any period, or where it was not worked out.
+    pub may_vary: Option<Each<Span>>,
+    /// Prices (costs, where the aim is to be small) between which these levels stay optimal, where the price of that one period moves
+    /// alone. Infinite where there is no limit. `None` where it is idle or a prospect in every period.
+    pub price_range: Option<Each<Span>>,
+    /// Idle or prospect in some period: the price above which (the cost below which) one unit more would pay.
+    pub break_even: Option<Value>,
+    /// Idle or prospect in some period: what making one unit more would cost the aim; negative where it would pay.
+    pub loses: Option<Value>,
 }
 
 /// How an activity stands in a plan.
@@ -117,6 +138,26 @@ impl State {
     }
 }
 
+impl Each<State> {
+    /// The words for it: of the one state, or in how many periods there is which, most first.
+    #[must_use]
+    pub fn words(&self) -> String {
+        if let Some(state) = self.one() {
+            return state.words().to_owned();
+        }
+        let many = |state: State| self.all().iter().filter(|&&other| other == state).count();
+        let mut told: Vec<(State, usize)> = State::ALL.map(|state| (state, many(state))).into();
+        told.retain(|(_, many)| *many > 0);
+        told.sort_by_key(|&(_, many)| std::cmp::Reverse(many));
+        let one = |(at, (state, many)): (usize, (State, usize))| match (at, many) {
+            (0, 1) => format!("{} in 1 period", state.words()),
+            (0, many) => format!("{} in {many} periods", state.words()),
+            (_, many) => format!("{} in {many}", state.words()),
+        };
+        told.into_iter().enumerate().map(one).collect::<Vec<_>>().join(", ")
+    }
+}
+
 /// One resource of a plan.
 #[derive(Clone, Debug, PartialEq)]
 pub struct PlannedResource {
@@ -124,17 +165,19 @@ pub struct PlannedResource {
     pub name: Name,
     /// How much is used.
     pub used: Value,
-    /// What is left of its capacity; `None` where it has no limit.
+    /// How much of that is extra capacity; `None` where the model has none.
+    pub surge: Option<Value>,
+    /// What is left of its capacity and of all extra capacity; `None` where they have no limit in any period.
     pub spare: Option<Value>,
-    /// What one unit more would add to the aim, as a rate (positive is better, under either aim).
-    pub worth_of_more: Option<f64>,
+    /// What one unit more of its capacity would add to the aim, as a rate (positive is better, under either aim).
+    pub worth_of_more: Option<Value>,
     /// What one unit less would take away; infinite where there would be no plan.
-    pub loss_of_less: Option<f64>,
-    /// Capacities between which those rates hold. Infinite where there is no limit.
-    pub holds_between: Option<(f64, f64)>,
+    pub loss_of_less: Option<Value>,
+    /// Capacities between which those rates hold, where that of the one period moves alone. Infinite where there is no limit.
+    pub holds_between: Option<Each<Span>>,
 }
 
-/// One limit of a plan.
+/// One limit of a plan. One over several periods together has one number of each kind.
 #[derive(Clone, Debug, PartialEq)]
 pub struct PlannedLimit {
     /// Its name.
@@ -145,9 +188,9 @@ pub struct PlannedLimit {
     pub spare: Option<Value>,
     /// What one unit more of its binding bound, in the unit of the terms, would add to the aim (positive is better); negative
     /// where `at_least` binds, 0 where nothing does.
-    pub worth_of_more: Option<f64>,
+    pub worth_of_more: Option<Value>,
     /// What one unit less of it would take away.
-    pub loss_of_less: Option<f64>,
+    pub loss_of_less: Option<Value>,
     /// Numbers of the binding bound (where none binds: of the nearest) between which those rates hold; left out with `per`.
-    pub holds_between: Option<(f64, f64)>,
+    pub holds_between: Option<Each<Span>>,
 }

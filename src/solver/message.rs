@@ -99,10 +99,21 @@ pub struct Optimum {
     pub spans: Option<Vec<(f64, f64)>>,
     /// Whether no other worths are optimal.
     pub worths_unique: bool,
+    /// Where others are: which of them are the only ones all the same, as far as it was worked out.
+    pub known: Option<Known>,
     /// Ranges, where they were worked out.
     pub ranges: Option<Ranges>,
     /// The proof of all this.
     pub proof: Proof,
+}
+
+/// Which worths and gains are the only optimal ones.
+#[derive(Clone, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
+pub struct Known {
+    /// Per row.
+    pub worths: Vec<bool>,
+    /// Per column.
+    pub gains: Vec<bool>,
 }
 
 /// How far numbers of the program can move, one at a time, before the basis changes.

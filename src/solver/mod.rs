@@ -15,6 +15,7 @@ pub mod findings;
 mod free;
 mod inherit;
 pub mod instance;
+pub mod known;
 mod let_go;
 pub mod live;
 pub mod look;

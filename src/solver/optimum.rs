@@ -5,7 +5,7 @@ use super::instance::Instance;
 use super::live::Refusal;
 use super::message::Optimum;
 use super::stop::Stop;
-use super::{ranging, ties};
+use super::{known, ranging, ties};
 use crate::lp::Program;
 
 /// Ranges are worked out where rows times entries are at most so many: the model alone decides, never a clock.
@@ -26,6 +26,8 @@ pub fn of(instance: &mut Instance, program: &Program, plan: &Canonical, stop: &S
     };
     let small = program.rows.len().saturating_mul(program.entries()) <= RANGED;
     let ranges = (levels_unique && worths_unique && small).then(|| ranging::ranges(instance, program, look).ok());
+    let known =
+        if levels_unique && !worths_unique { known::known(instance, program, look).ok().flatten() } else { None };
     Ok(Optimum {
         aim: look.checked.aim,
         levels: look.vertex.levels.clone(),
@@ -37,6 +39,7 @@ pub fn of(instance: &mut Instance, program: &Program, plan: &Canonical, stop: &S
         levels_unique,
         spans,
         worths_unique,
+        known,
         ranges: ranges.flatten(),
         proof: look.checked.proof,
     })

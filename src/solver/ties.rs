@@ -36,7 +36,8 @@ pub fn worths_unique(program: &Program, look: &Look) -> bool {
     !column_at_bound && !row_at_bound
 }
 
-fn at_bound(position: Position, value: f64, scale: f64, lower: f64, upper: f64) -> bool {
+/// Whether something basic stands at a bound of its own.
+pub(super) fn at_bound(position: Position, value: f64, scale: f64, lower: f64, upper: f64) -> bool {
     let near = TOLERANCE * value.abs().max(scale).max(1.0);
     position == Position::Basic && ((value - lower).abs() <= near || (upper - value).abs() <= near)
 }

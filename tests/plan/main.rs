@@ -1,10 +1,11 @@
 //! Plans and notes of a small tileworks, as their readers see them.
 
-#![expect(clippy::unwrap_used, reason = "a test that cannot go on fails")]
+#![expect(clippy::unwrap_used, clippy::panic, reason = "a test that cannot go on fails")]
 
 mod hostile;
 mod notes;
 mod tileworks;
+mod weeks;
 
 use millreeve::plan::compare::{Event, compare, events};
 use millreeve::plan::{Standing, text};

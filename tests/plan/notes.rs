@@ -7,7 +7,7 @@ use millreeve::lp::Key;
 use millreeve::model::fault::{Excerpt, Place};
 use millreeve::model::{Fault, Faults, Model};
 use millreeve::plan::note::{EditTold, Reckoning, Report, Trouble, Verdict, reason, speaks_of, write};
-use millreeve::plan::{Plan, PlannedActivity, Standing};
+use millreeve::plan::{Each, Plan, PlannedActivity, Standing};
 use millreeve::solver::message::{Conflict, Growth, Rule, Start};
 
 use crate::tileworks::{activity, model, name, planned};
@@ -133,7 +133,7 @@ fn of_plans_that_earn_as_much() {
         note.lines().find(|line| line.contains("Other plans")).map(str::to_owned)
     };
     let floor = plan.activities.iter().position(|planned| planned.name == name("floor_tile")).unwrap();
-    plan.activities[floor].may_vary = Some((0.0, 4180.25));
+    plan.activities[floor].may_vary = Some(Each::One((0.0, 4180.25)));
     let mut expected = "Other plans earn as much: floor_tile may be anything from 0 to 4 180.25 m2; \
         the one shown is always the same for the same model.";
     assert_eq!(told(&model, &plan).as_deref(), Some(expected));
@@ -141,7 +141,7 @@ fn of_plans_that_earn_as_much() {
     // The unit is somebody's text, the name has passed for one.
     model.activities.get_mut("floor_tile").unwrap().unit = Some("m2 <b>*".to_owned());
     (plan.minimise, plan.exact) = (true, false);
-    plan.activities[floor].may_vary = Some((f64::NEG_INFINITY, 5.0));
+    plan.activities[floor].may_vary = Some(Each::One((f64::NEG_INFINITY, 5.0)));
     expected =
         "Other plans cost as little: floor_tile may be anything up to 5 m2 &lt;b&gt;\\*; the one shown is one of them.";
     assert_eq!(told(&model, &plan).as_deref(), Some(expected));
@@ -149,7 +149,8 @@ fn of_plans_that_earn_as_much() {
     // Of many, the first are told. None of these has an end, so they come by name.
     let template = plan.activities[floor].clone();
     for number in 0..9 {
-        let may_vary = Some(if number == 0 { (f64::NEG_INFINITY, f64::INFINITY) } else { (1.0, f64::INFINITY) });
+        let span = if number == 0 { (f64::NEG_INFINITY, f64::INFINITY) } else { (1.0, f64::INFINITY) };
+        let may_vary = Some(Each::One(span));
         plan.activities.push(PlannedActivity { name: name(&format!("x{number}")), may_vary, ..template.clone() });
     }
     expected = "Other plans cost as little: floor_tile may be anything up to 5 m2 &lt;b&gt;\\*, x0 anything, \

@@ -127,6 +127,7 @@ pub(crate) fn optimum(model: &Model, program: &Program) -> Optimum {
         levels_unique: true,
         spans: None,
         worths_unique: true,
+        known: None,
         proof: Proof::default(),
     }
 }

@@ -6,9 +6,9 @@ use super::super::exit::text;
 use super::{Shown, Standing};
 use crate::keep::pinned::Pinned;
 use crate::model::{Name, Value};
-use crate::plan::Plan;
 use crate::plan::number::rounded;
 use crate::plan::release::since;
+use crate::plan::{Each, Plan, Span, State};
 
 /// The object. A number that has no limit is the text `"inf"` or `"-inf"`; what the plan does not say is left out.
 pub(super) fn of(shown: &Shown) -> Json {
@@ -25,6 +25,8 @@ pub(super) fn of(shown: &Shown) -> Json {
     object.insert("aim".into(), number(plan.aim));
     object.insert("minimise".into(), json!(plan.minimise));
     put(&mut object, "currency", plan.currency.as_ref().map(|currency| json!(currency)));
+    let periods = Some(&plan.periods).filter(|periods| !periods.is_empty());
+    put(&mut object, "periods", periods.map(|periods| names(periods)));
     object.insert("exact".into(), json!(plan.exact));
     object.insert("ties".into(), json!(plan.ties));
     put(
@@ -37,6 +39,7 @@ pub(super) fn of(shown: &Shown) -> Json {
     object.insert("activities".into(), activities(shown));
     object.insert("resources".into(), resources(shown));
     object.insert("limits".into(), limits(shown));
+    put(&mut object, "materials", Some(materials(shown)).filter(|_| !plan.materials.is_empty()));
     Json::Object(object)
 }
 
@@ -48,12 +51,11 @@ pub(in crate::cli) fn since_release(pinned: &Pinned, plan: &Plan) -> Json {
     };
     let since = since(release, plan);
     let told = &since.comparison;
-    let names = |names: &[Name]| names.iter().map(|name| json!(name.as_str())).collect::<Json>();
     let moved = told.moved.iter().map(|one| {
         let side = |level: &Option<Value>| level.as_ref().map_or(Json::Null, value);
         json!({ "name": one.name.as_str(), "released": side(&one.before), "now": side(&one.after) })
     });
-    json!({
+    let mut object = json!({
         "aim": told.aim.map(|(before, after)| {
             json!({ "released": number(before), "now": number(after), "change": number(rounded(after - before)) })
         }),
@@ -62,7 +64,17 @@ pub(in crate::cli) fn since_release(pinned: &Pinned, plan: &Plan) -> Json {
         "left": names(&told.left),
         "new": since.new,
         "gone": since.gone,
-    })
+    });
+    if !told.overlap.is_whole()
+        && let Some(object) = object.as_object_mut()
+    {
+        object.insert("periods".into(), names(&told.overlap.shared));
+    }
+    object
+}
+
+fn names(names: &[Name]) -> Json {
+    names.iter().map(|name| json!(name.as_str())).collect()
 }
 
 fn activities(shown: &Shown) -> Json {
@@ -70,11 +82,11 @@ fn activities(shown: &Shown) -> Json {
         let mut object = Map::new();
         object.insert("name".into(), json!(activity.name.as_str()));
         object.insert("level".into(), value(&activity.level));
-        object.insert("state".into(), json!(activity.state.words()));
-        put(&mut object, "may_vary", activity.may_vary.map(range));
-        put(&mut object, "price_range", activity.price_range.map(range));
-        put(&mut object, "break_even", activity.break_even.map(number));
-        put(&mut object, "loses", activity.loses.map(number));
+        object.insert("state".into(), state(&activity.state));
+        put(&mut object, "may_vary", activity.may_vary.as_ref().map(spans));
+        put(&mut object, "price_range", activity.price_range.as_ref().map(spans));
+        put(&mut object, "break_even", activity.break_even.as_ref().map(value));
+        put(&mut object, "loses", activity.loses.as_ref().map(value));
         Json::Object(object)
     });
     of.collect()
@@ -85,10 +97,11 @@ fn resources(shown: &Shown) -> Json {
         let mut object = Map::new();
         object.insert("name".into(), json!(resource.name.as_str()));
         object.insert("used".into(), value(&resource.used));
+        put(&mut object, "surge", resource.surge.as_ref().map(value));
         put(&mut object, "spare", resource.spare.as_ref().map(value));
-        put(&mut object, "worth_of_more", resource.worth_of_more.map(number));
-        put(&mut object, "loss_of_less", resource.loss_of_less.map(number));
-        put(&mut object, "holds_between", resource.holds_between.map(range));
+        put(&mut object, "worth_of_more", resource.worth_of_more.as_ref().map(value));
+        put(&mut object, "loss_of_less", resource.loss_of_less.as_ref().map(value));
+        put(&mut object, "holds_between", resource.holds_between.as_ref().map(spans));
         Json::Object(object)
     });
     of.collect()
@@ -100,9 +113,27 @@ fn limits(shown: &Shown) -> Json {
         object.insert("name".into(), json!(limit.name.as_str()));
         put(&mut object, "value", limit.value.as_ref().map(value));
         put(&mut object, "spare", limit.spare.as_ref().map(value));
-        put(&mut object, "worth_of_more", limit.worth_of_more.map(number));
-        put(&mut object, "loss_of_less", limit.loss_of_less.map(number));
-        put(&mut object, "holds_between", limit.holds_between.map(range));
+        put(&mut object, "worth_of_more", limit.worth_of_more.as_ref().map(value));
+        put(&mut object, "loss_of_less", limit.loss_of_less.as_ref().map(value));
+        put(&mut object, "holds_between", limit.holds_between.as_ref().map(spans));
+        Json::Object(object)
+    });
+    of.collect()
+}
+
+fn materials(shown: &Shown) -> Json {
+    let of = shown.plan.materials.iter().map(|material| {
+        let mut object = Map::new();
+        object.insert("name".into(), json!(material.name.as_str()));
+        put(&mut object, "purchase", material.purchase.as_ref().map(value));
+        put(&mut object, "sale", material.sale.as_ref().map(value));
+        put(&mut object, "late", material.late.as_ref().map(value));
+        put(&mut object, "stock", material.stock.as_ref().map(value));
+        put(&mut object, "discard", material.discard.as_ref().map(value));
+        object.insert("made".into(), value(&material.made));
+        object.insert("drawn".into(), value(&material.drawn));
+        put(&mut object, "worth_of_more", material.worth_of_more.as_ref().map(value));
+        put(&mut object, "loss_of_less", material.loss_of_less.as_ref().map(value));
         Json::Object(object)
     });
     of.collect()
@@ -123,6 +154,20 @@ fn value(value: &Value) -> Json {
     match value {
         Value::Every(one) => number(*one),
         Value::Listed(list) => list.iter().copied().map(number).collect(),
+    }
+}
+
+fn state(state: &Each<State>) -> Json {
+    match state {
+        Each::One(state) => json!(state.words()),
+        Each::Listed(states) => states.iter().map(|state| json!(state.words())).collect(),
+    }
+}
+
+fn spans(spans: &Each<Span>) -> Json {
+    match spans {
+        Each::One(span) => range(*span),
+        Each::Listed(list) => list.iter().copied().map(range).collect(),
     }
 }
 

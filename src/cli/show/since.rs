@@ -1,6 +1,6 @@
 //! How a plan stands to the release.
 
-use super::number::{short, signed, value};
+use super::number::{short, signed};
 use crate::keep::pinned::Pinned;
 use crate::model::Value;
 use crate::model::escape::Plain;
@@ -22,9 +22,19 @@ pub(super) fn remark(pinned: &Pinned, plan: &Plan) -> String {
 /// What has become of the aim and the levels since a release: `+1240 EUR; floor_tile 4180 → 3900, wall_tile 1200 → 1439.2`.
 pub(in crate::cli) fn told(release: &Release, plan: &Plan) -> String {
     let since = since(release, plan);
+    let overlap = &since.comparison.overlap;
+    if overlap.is_empty() {
+        return "it plans none of these periods".to_owned();
+    }
     let moves = &since.comparison.moved;
     let mut parts = Vec::new();
     match since.comparison.aim {
+        None if !overlap.is_whole() => {
+            let many = overlap.shared.len();
+            let stay = if many == 1 { "period that both plan" } else { "periods that both plan" };
+            let nothing = if moves.is_empty() { " nothing moves" } else { "" };
+            parts.push(format!("it is of another horizon; in the {many} {stay}{nothing}"));
+        }
         None => parts.push("the aim cannot be compared, as it or its currency was changed".to_owned()),
         Some((before, after))
             if short(before) != short(after) || (moves.is_empty() && before.to_bits() != after.to_bits()) =>
@@ -54,9 +64,18 @@ pub(in crate::cli) fn aim(plan: &Plan) -> String {
     format!("{verb} {}", with_currency(short(plan.aim), plan))
 }
 
+/// `floor_tile 4180 → 3900`; over several periods the sums.
 fn one_move(told: &Move) -> String {
-    let side = |level: &Option<Value>| level.as_ref().map_or("none".to_owned(), value);
-    format!("{} {} → {}", told.name, side(&told.before), side(&told.after))
+    let side = |level: &Option<Value>| {
+        let sum = |level: &Value| short(level.numbers().iter().sum());
+        level.as_ref().map_or("none".to_owned(), sum)
+    };
+    let (before, after) = (side(&told.before), side(&told.after));
+    match told.periods.len() {
+        0 => format!("{} {before} → {after}", told.name),
+        1 => format!("{} {before} → {after} in one period", told.name),
+        many => format!("{} {before} → {after} in {many} periods", told.name),
+    }
 }
 
 fn with_currency(number: String, plan: &Plan) -> String {

@@ -10,7 +10,7 @@ use crate::keep::verify::{Finding, Pair};
 use crate::model::escape::Plain;
 use crate::model::{Name, Value};
 use crate::plan::Standing;
-use crate::plan::compare::Comparison;
+use crate::plan::compare::{Comparison, Move};
 use crate::plan::difference::Difference;
 use crate::plan::number;
 use crate::plan::types::RULES;
@@ -135,8 +135,7 @@ fn difference_told(difference: &Difference) -> Vec<String> {
         None => lines.push("aim: another sense or currency than afresh".to_owned()),
     }
     for told in moved.iter().take(ROWS) {
-        let side = |level: &Option<Value>| level.as_ref().map_or("none".to_owned(), levels);
-        lines.push(format!("{}: {} in the file, {} afresh", told.name, side(&told.before), side(&told.after)));
+        lines.push(level_told(told));
     }
     more(&mut lines, moved.len(), "level");
     for (name, before, after) in difference.states.iter().take(ROWS) {
@@ -177,6 +176,17 @@ fn listed(names: &[Name]) -> String {
         told.push(&rest);
     }
     told.join(", ")
+}
+
+/// A level that differs: with all digits that a plan has, in the first period in which it does.
+fn level_told(told: &Move) -> String {
+    if let [first, more @ ..] = told.periods.as_slice() {
+        let more = if more.is_empty() { String::new() } else { format!(" (and {} more periods)", more.len()) };
+        let (file, afresh) = (digits(first.before), digits(first.after));
+        return format!("{} in {}: {file} in the file, {afresh} afresh{more}", told.name, first.period);
+    }
+    let side = |level: &Option<Value>| level.as_ref().map_or("none".to_owned(), levels);
+    format!("{}: {} in the file, {} afresh", told.name, side(&told.before), side(&told.after))
 }
 
 /// A level: its number, or its numbers one after the other, with all digits that a plan has.

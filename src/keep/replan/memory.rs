@@ -69,7 +69,7 @@ impl Known {
 
     /// What mattered in the plan.
     pub(super) fn last_plan(&self) -> LastPlan {
-        self.basis.as_ref().map(|basis| last_plan(&self.model, &self.plan, basis)).unwrap_or_default()
+        self.basis.as_ref().map(|basis| last_plan(&self.model.horizon, &self.program, basis)).unwrap_or_default()
     }
 }
 
@@ -89,6 +89,7 @@ fn renamed_key(renames: &Renames, key: &Key) -> Option<Key> {
     let names = match table {
         "resources" => &renames.resources,
         "activities" => &renames.activities,
+        "materials" => &renames.materials,
         _ => &renames.limits,
     };
     let name = names.get(name)?;

@@ -102,7 +102,8 @@ impl<'a> Telling<'a> {
     ) -> Box<Report> {
         let mut report = self.report();
         stand(&mut report, plan);
-        report.aim_before = before.filter(|before| before.minimise == plan.minimise).map(|before| rounded(before.aim));
+        let comparable = |before: &&Plan| before.minimise == plan.minimise && before.periods == plan.periods;
+        report.aim_before = before.filter(comparable).map(|before| rounded(before.aim));
         worked_out(&mut report, solved);
         tell(&mut report, events(before, plan, SHARE));
         Box::new(report)

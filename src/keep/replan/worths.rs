@@ -31,7 +31,10 @@ pub(super) fn of_each(
 ) -> Vec<Option<f64>> {
     let untold = vec![None; edits.len()];
     let Some(known) = known else { return untold };
-    if known.model.aim != model.aim || known.model.currency != model.currency {
+    // The aims of other periods, or of another aim, are not compared.
+    let comparable =
+        known.model.aim == model.aim && known.model.currency == model.currency && known.model.horizon == model.horizon;
+    if !comparable {
         return untold;
     }
     let small = edits.len() <= TOLD_APART && edits.len().saturating_mul(known.program.entries()) <= EFFORT;

@@ -17,9 +17,6 @@ use crate::model::{Model, Name};
 /// Why a model cannot be written as an MPS file.
 #[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
 pub enum WriteError {
-    /// The model plans several periods.
-    #[error("a model of {0} periods cannot be written as MPS, only one of a single period")]
-    Periods(usize),
     /// A sum or product of the model's numbers is too large for a number.
     #[error("a number of `{0}` is too large to be written")]
     Number(Key),
@@ -28,16 +25,12 @@ pub enum WriteError {
 /// The MPS file that says what `model` means, in free layout.
 ///
 /// A column is named after its activity, a row after its limit; both get back the name that another program gave them, if
-/// their label holds it. Rows of resources are named `resources.NAME`, those of a limit with `per`
-/// `limits.NAME.at_least` and the like.
+/// their label holds it. Everything else goes by its [key](crate::lp::keys), as do all columns and rows of a model that names periods:
+/// `resources.NAME`, `limits.NAME.at_least`, `activities.NAME.PERIOD`.
 ///
 /// # Errors
-/// If the model plans several periods, or some number overflowed while the program was built.
+/// If some number overflowed while the program was built.
 pub fn write(model: &Model) -> Result<String, WriteError> {
-    let periods = model.horizon.periods().count();
-    if periods != 1 {
-        return Err(WriteError::Periods(periods));
-    }
     let program = build(model);
     check_numbers(&program)?;
     let sides: Vec<_> = program.rows.iter().map(sides).collect();

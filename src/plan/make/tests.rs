@@ -68,6 +68,7 @@ fn molder_optimum() -> Optimum {
         levels_unique: true,
         spans: None,
         worths_unique: true,
+        known: None,
         ranges: Some(Ranges {
             aims: vec![(-INF, 4600.0 / 7.0), (5100.0 / 11.0, 540.0), (1250.0 / 3.0, 650.0)],
             bounds: vec![(45.0 / 7.0, INF), (37.5, 65.5), (128.0, 240.0)],
@@ -80,41 +81,58 @@ fn made(model: &Model, optimum: &Optimum) -> Plan {
     make(model, Meaning::of(model), &build(model), optimum).unwrap()
 }
 
-fn close(told: Option<f64>, expected: f64) {
-    let told = told.unwrap();
+/// The one number that is told of a single period.
+fn close(told: impl Into<Told>, expected: f64) {
+    let Told(told) = told.into();
     assert!(
         told.total_cmp(&expected).is_eq() || (told - expected).abs() <= 1e-9 * expected.abs(),
         "{told} is not {expected}"
     );
 }
 
-fn between(told: Option<(f64, f64)>, least: f64, most: f64) {
-    close(told.map(|range| range.0), least);
-    close(told.map(|range| range.1), most);
+struct Told(f64);
+
+impl From<&Option<Value>> for Told {
+    fn from(value: &Option<Value>) -> Self {
+        let Some(Value::Every(number)) = value else { panic!("{value:?}") };
+        Self(*number)
+    }
+}
+
+impl From<f64> for Told {
+    fn from(number: f64) -> Self {
+        Self(number)
+    }
+}
+
+fn between(told: &Option<Each<Span>>, least: f64, most: f64) {
+    let (told_least, told_most) = told.as_ref().and_then(Each::one).unwrap();
+    close(told_least, least);
+    close(told_most, most);
 }
 
 #[test]
 fn the_molder_gets_the_plan_of_the_book() {
     let plan = made(&molder(0.0), &molder_optimum());
     let [champagne, six, ten] = plan.activities.as_slice() else { panic!("three activities") };
-    assert_eq!(champagne.state, State::Idle);
-    close(champagne.break_even, 4600.0 / 7.0);
-    close(champagne.loses, 400.0 / 7.0);
+    assert_eq!(champagne.state, Each::One(State::Idle));
+    close(&champagne.break_even, 4600.0 / 7.0);
+    close(&champagne.loses, 400.0 / 7.0);
     assert_eq!(champagne.price_range, None);
-    assert_eq!((six.state, ten.state), (State::InTheMix, State::InTheMix));
-    between(six.price_range, 5100.0 / 11.0, 540.0);
-    between(ten.price_range, 1250.0 / 3.0, 650.0);
+    assert!(six.state.is(State::InTheMix) && ten.state.is(State::InTheMix));
+    between(&six.price_range, 5100.0 / 11.0, 540.0);
+    between(&ten.price_range, 1250.0 / 3.0, 650.0);
     let [hours, storage] = plan.resources.as_slice() else { panic!("two resources") };
     assert_eq!((&hours.used, &hours.spare), (&60.0.into(), &Some(0.0.into())));
-    close(hours.worth_of_more, 550.0 / 7.0);
-    close(hours.loss_of_less, 550.0 / 7.0);
-    between(hours.holds_between, 37.5, 65.5);
-    close(storage.worth_of_more, 20.0 / 7.0);
-    between(storage.holds_between, 128.0, 240.0);
+    close(&hours.worth_of_more, 550.0 / 7.0);
+    close(&hours.loss_of_less, 550.0 / 7.0);
+    between(&hours.holds_between, 37.5, 65.5);
+    close(&storage.worth_of_more, 20.0 / 7.0);
+    between(&storage.holds_between, 128.0, 240.0);
     let [demand] = plan.limits.as_slice() else { panic!("one limit") };
-    close(demand.worth_of_more, 0.0);
-    close(demand.spare.as_ref().map(|spare| spare.numbers()[0]), 11.0 / 7.0);
-    between(demand.holds_between, 45.0 / 7.0, INF);
+    close(&demand.worth_of_more, 0.0);
+    close(&demand.spare, 11.0 / 7.0);
+    between(&demand.holds_between, 45.0 / 7.0, INF);
     assert!(plan.complete && !plan.ties && plan.exact && !plan.minimise);
     assert!(!made(&molder(0.0), &Optimum { exact: false, ..molder_optimum() }).exact);
 }
@@ -122,9 +140,9 @@ fn the_molder_gets_the_plan_of_the_book() {
 #[test]
 fn ranges_and_break_even_speak_of_the_price_itself() {
     let plan = made(&molder(2.0), &molder_optimum());
-    close(plan.activities[0].break_even, 4600.0 / 7.0 + 16.0);
-    close(plan.activities[0].loses, 400.0 / 7.0);
-    between(plan.activities[1].price_range, 5100.0 / 11.0 + 12.0, 552.0);
+    close(&plan.activities[0].break_even, 4600.0 / 7.0 + 16.0);
+    close(&plan.activities[0].loses, 400.0 / 7.0);
+    between(&plan.activities[1].price_range, 5100.0 / 11.0 + 12.0, 552.0);
 }
 
 #[test]
@@ -136,7 +154,7 @@ fn what_is_not_unique_is_left_out() {
     assert_eq!(plan.may_vary_left_out, 3);
     assert_eq!(plan.activities[1].price_range, None);
     assert_eq!(plan.limits[0].holds_between, None);
-    close(plan.resources[0].worth_of_more, 550.0 / 7.0);
+    close(&plan.resources[0].worth_of_more, 550.0 / 7.0);
 
     let mut optimum = molder_optimum();
     optimum.worths_unique = false;
@@ -156,7 +174,7 @@ fn levels_that_may_vary_say_how_far() {
         spans: Some(vec![champagne, (six, six + 1e-12), ten]),
         ..molder_optimum()
     };
-    let vary = |plan: &Plan| [0, 1, 2].map(|at| plan.activities[at].may_vary);
+    let vary = |plan: &Plan| [0, 1, 2].map(|at| plan.activities[at].may_vary.as_ref().and_then(Each::one));
     let plan = made(&molder(0.0), &spans((-1e-10, 4.0), (1.0, INF)));
     assert!(plan.ties);
     assert_eq!((vary(&plan), plan.may_vary_left_out), ([Some((0.0, 4.0)), None, Some((1.0, INF))], 0));
@@ -195,14 +213,14 @@ fn where_costs_are_to_be_small_positive_is_still_better() {
     };
     let plan = made(&model, &optimum);
     assert!(plan.minimise && plan.complete);
-    close(plan.activities[2].break_even, 5.0);
-    close(plan.activities[2].loses, 1.0);
-    between(plan.activities[1].price_range, 3.0, 6.0);
-    close(plan.resources[0].worth_of_more, 2.0);
-    close(plan.limits[0].worth_of_more, -5.0);
-    close(plan.limits[0].loss_of_less, -5.0);
+    close(&plan.activities[2].break_even, 5.0);
+    close(&plan.activities[2].loses, 1.0);
+    between(&plan.activities[1].price_range, 3.0, 6.0);
+    close(&plan.resources[0].worth_of_more, 2.0);
+    close(&plan.limits[0].worth_of_more, -5.0);
+    close(&plan.limits[0].loss_of_less, -5.0);
     assert_eq!(plan.limits[0].spare, None);
-    assert_eq!((&plan.resources[1].spare, plan.resources[1].worth_of_more), (&None, None));
+    assert_eq!((&plan.resources[1].spare, &plan.resources[1].worth_of_more), (&None, &None));
 }
 
 /// One activity of each state. By hand: nothing is scarce, so each level is where its own bounds and price put it.
@@ -231,7 +249,8 @@ fn every_state_is_told() {
         ..molder_optimum()
     };
     let plan = made(&model, &optimum);
-    let told: Vec<_> = plan.activities.iter().map(|a| (a.state, a.level.numbers()[0].to_string())).collect();
+    let told: Vec<_> =
+        plan.activities.iter().map(|a| (a.state.one().unwrap(), a.level.numbers()[0].to_string())).collect();
     let expected = [
         (State::Fixed, "4"),
         (State::Idle, "0"),
@@ -241,8 +260,8 @@ fn every_state_is_told() {
         (State::Prospect, "0"),
     ];
     assert_eq!(told, expected.map(|(state, level)| (state, level.to_owned())));
-    close(plan.activities[5].break_even, 0.0);
-    close(plan.activities[5].loses, -7.0);
+    close(&plan.activities[5].break_even, 0.0);
+    close(&plan.activities[5].loses, -7.0);
     // A level that its bounds fix, and that of a prospect, cannot vary.
     assert_eq!(plan.may_vary_left_out, 4);
 }
@@ -271,7 +290,7 @@ fn a_share_is_told_as_a_ratio() {
     let plan = made(&model, &optimum);
     let [share] = plan.limits.as_slice() else { panic!("one limit") };
     assert_eq!((&share.value, &share.spare), (&Some((2.0 / 3.0).into()), &Some(0.0.into())));
-    close(share.worth_of_more, 2.0);
+    close(&share.worth_of_more, 2.0);
     assert_eq!(share.holds_between, None);
     assert!(plan.complete);
 }

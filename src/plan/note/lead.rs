@@ -3,7 +3,7 @@
 use super::words::{
     amount, amounts, count, difference, listed, per_cent, text, total, unit_of_activity, value, values, with_unit,
 };
-use super::{Report, Trouble, Verdict, reason, tables, was_held};
+use super::{Report, Trouble, Verdict, moves, periods, reason, was_held};
 use crate::edits::Kind;
 use crate::model::Value;
 use crate::model::escape::Markdown;
@@ -41,8 +41,8 @@ fn no_plan(report: &Report<'_>, trouble: Trouble<'_>) -> String {
 fn first(report: &Report<'_>, plan: &Plan) -> String {
     let aim = aim_told(plan, &amount(plan.aim.abs()));
     let made = plan.activities.iter().filter(|planned| is_made(planned));
-    let weight = |planned: &PlannedActivity| tables::weight(report.model, &planned.name, total(Some(&planned.level)));
-    let made = tables::heaviest_first(made.map(|planned| (weight(planned), &planned.name, planned)).collect());
+    let weight = |planned: &PlannedActivity| moves::weight(report.model, &planned.name, &planned.level);
+    let made = moves::heaviest_first(made.map(|planned| (weight(planned), &planned.name, planned)).collect());
     let mut told: Vec<String> = made
         .iter()
         .take(3)
@@ -60,15 +60,22 @@ fn first(report: &Report<'_>, plan: &Plan) -> String {
         number if number > 3 => told.push(format!("{} more", number - 3)),
         _ => {}
     }
-    format!("The first plan {aim}: {}.", listed(&told))
+    format!("The first plan {aim}{}: {}.", over(plan), listed(&told))
 }
 
 fn planned_again(report: &Report<'_>, plan: &Plan, comparison: &Comparison) -> String {
     let subject = if was_held(report) { "There is a plan again: it" } else { "The plan" };
     let Some((before, after)) = comparison.aim else {
         let aim = aim_told(plan, &amount(plan.aim.abs()));
-        let why = "which cannot be compared with before, as the aim or its currency was changed";
-        return format!("{subject} now {aim}, {why}; {}.", moves(report, comparison));
+        let why = "which cannot be compared with before, as";
+        return if comparison.overlap.is_whole() {
+            format!(
+                "{subject} now {aim}, {why} the aim or its currency was changed; {}.",
+                moved_most(report, comparison)
+            )
+        } else {
+            format!("{subject} now {aim}{}, {why} {}.", over(plan), horizon(report, comparison))
+        };
     };
     if !moved(before, after) {
         return stands(report, plan, comparison, subject);
@@ -78,13 +85,17 @@ fn planned_again(report: &Report<'_>, plan: &Plan, comparison: &Comparison) -> S
     let share = if before.abs() > 0.0 { format!(" ({})", per_cent(gained / before)) } else { String::new() };
     let by = with_unit(&amount(gained.abs()), plan.currency.as_deref());
     let direction = direction(plan, before, after);
-    format!("{subject} {}, {by}{share} {direction} than before; {}.", aim_told(plan, &shown), moves(report, comparison))
+    format!(
+        "{subject} {}, {by}{share} {direction} than before; {}.",
+        aim_told(plan, &shown),
+        moved_most(report, comparison)
+    )
 }
 
 fn stands(report: &Report<'_>, plan: &Plan, comparison: &Comparison, subject: &str) -> String {
     let aim = aim_told(plan, &amount(plan.aim.abs()));
     if !comparison.moved.is_empty() {
-        return format!("{subject} {aim}, as before; {}.", moves(report, comparison));
+        return format!("{subject} {aim}, as before; {}.", moved_most(report, comparison));
     }
     if was_held(report) {
         return format!("There is a plan again: nothing moves, and it {aim} as before.");
@@ -92,6 +103,37 @@ fn stands(report: &Report<'_>, plan: &Plan, comparison: &Comparison, subject: &s
     let only_wording = !report.edits.is_empty() && report.edits.iter().all(|told| told.edit.kind == Kind::Wording);
     let why = if only_wording { "only wording was edited" } else { "nothing moves" };
     format!("The plan stands: {why}, and it {aim} as before.")
+}
+
+/// What became of the horizon, and of the levels in the periods that stay.
+fn horizon(report: &Report<'_>, comparison: &Comparison) -> String {
+    let overlap = &comparison.overlap;
+    if overlap.is_empty() {
+        return "it planned none of these periods".to_owned();
+    }
+    let ways = [(overlap.dropped.as_slice(), "dropped"), (overlap.added.as_slice(), "new")];
+    let told: Vec<String> = ways
+        .into_iter()
+        .filter(|(names, _)| !names.is_empty())
+        .map(|(names, way)| match names.len() {
+            1 | 2 => format!(
+                "{} {way}",
+                listed(&names.iter().map(|name| Markdown(name.as_str()).to_string()).collect::<Vec<_>>())
+            ),
+            many => format!("{} {way}", count(many, "period")),
+        })
+        .collect();
+    let stay = match overlap.shared.len() {
+        1 => "period that stays",
+        _ => "periods that stay",
+    };
+    let moves = moved_most(report, comparison);
+    format!("its horizon has changed ({}); in the {} {stay}, {moves}", told.join(", "), overlap.shared.len())
+}
+
+/// ` over 2027-W01 to 2027-W08`; empty where there is a single nameless period.
+fn over(plan: &Plan) -> String {
+    if plan.periods.is_empty() { String::new() } else { format!(" over {}", periods::from_to(&plan.periods)) }
 }
 
 /// `earns 43 265.1 EUR`, with `size` as the number without its sign.
@@ -116,8 +158,8 @@ fn direction(plan: &Plan, before: f64, after: f64) -> &'static str {
 }
 
 /// The one or two moves that matter most, and how many more there are.
-fn moves(report: &Report<'_>, comparison: &Comparison) -> String {
-    let ordered = tables::by_weight(report.model, &comparison.moved);
+fn moved_most(report: &Report<'_>, comparison: &Comparison) -> String {
+    let ordered = moves::by_weight(report.model, &comparison.moved);
     match ordered.as_slice() {
         [] => "no level moves".to_owned(),
         [only] => one_move(report, only),
@@ -146,6 +188,10 @@ fn one_move(report: &Report<'_>, told: &Move) -> String {
     let before = told.before.as_ref().filter(|value| !is_nil(value));
     let after = told.after.as_ref().filter(|value| !is_nil(value));
     match (before, after) {
+        // What is shifted from one period to another comes to the same.
+        (Some(before), Some(after)) if !moved(total(Some(before)), total(Some(after))) => {
+            format!("{name} stays at {} and shifts between periods", with_unit(&value(after), unit))
+        }
         (Some(before), Some(after)) => {
             let (before, after) = values(before, after);
             format!("{name} goes from {before} to {}", with_unit(&after, unit))

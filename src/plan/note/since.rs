@@ -1,7 +1,9 @@
 //! What a note says of the release.
 
 use super::ReleaseTold;
-use super::tables::{move_table, section};
+use super::moves::move_table;
+use super::periods::from_to;
+use super::tables::section;
 use super::words::{amount, count, counted, difference, signed, text, with_unit};
 use crate::model::Model;
 use crate::plan::compare::moved;
@@ -63,7 +65,19 @@ fn compared(since: &Since, plan: &Plan, model: Option<&Model>) -> String {
 fn lead(since: &Since, plan: &Plan) -> String {
     let moves = since.comparison.moved.len();
     let moves_told = counted(moves, "move");
+    let overlap = &since.comparison.overlap;
+    if overlap.is_empty() {
+        return "Nothing is compared with it: it plans none of these periods".to_owned();
+    }
     match since.comparison.aim {
+        None if !overlap.is_whole() => {
+            let shared = match overlap.shared.len() {
+                1 => format!("in {}, the one period that both plan", from_to(&overlap.shared)),
+                many => format!("in {}, the {many} periods that both plan", from_to(&overlap.shared)),
+            };
+            let told = if moves == 0 { "nothing moves".to_owned() } else { moves_told };
+            format!("It is of another horizon, so aims are not compared; {shared}, {told}")
+        }
         None => format!("The aim cannot be compared, as it or its currency was changed; {moves_told}"),
         Some((before, after)) if moved(before, after) => {
             let by = difference(before, after);

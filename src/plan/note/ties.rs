@@ -1,9 +1,11 @@
 //! What a note says of other plans that are as good.
 
-use super::tables::{heaviest_first, weight};
+use super::moves::{heaviest_first, weight};
+use super::periods;
 use super::words::{amount, amounts, count, listed, unit_of_activity, with_unit};
 use crate::model::escape::Markdown;
-use crate::model::{Model, Name};
+use crate::model::{Model, Name, Value};
+use crate::plan::each::{Each, Span};
 use crate::plan::types::Plan;
 
 /// The most activities told by name.
@@ -36,20 +38,24 @@ pub(super) fn told(plan: &Plan, model: Option<&Model>) -> String {
 
 /// How far levels may go, those first where that weighs most in the aim.
 fn varying(plan: &Plan, model: Option<&Model>) -> Vec<String> {
-    let ends = plan.activities.iter().filter_map(|planned| Some((&planned.name, planned.may_vary?)));
-    let weighed = ends.map(|(name, ends)| (weight(model, name, ends.1 - ends.0), name, (name, ends)));
+    let spans = plan.activities.iter().filter_map(|planned| Some((&planned.name, planned.may_vary.as_ref()?)));
+    let widths = |spans: &Each<Span>| Value::Listed(spans.all().iter().map(|(least, most)| most - least).collect());
+    let weighed = spans.map(|(name, spans)| (weight(model, name, &widths(spans)), name, (name, spans)));
     let ordered = heaviest_first(weighed.collect());
     let named = ordered.iter().take(NAMED).enumerate();
-    let mut told: Vec<String> = named.map(|(at, &(name, ends))| one(name, ends, model, at == 0)).collect();
+    let mut told: Vec<String> = named.map(|(at, &(name, spans))| one(name, spans, plan, model, at == 0)).collect();
     if ordered.len() > NAMED {
         told.push(count(ordered.len() - NAMED, "other level"));
     }
     told
 }
 
-/// `floor_tile may be anything from 0 to 40 m2`.
-fn one(name: &Name, (least, most): (f64, f64), model: Option<&Model>, first: bool) -> String {
+/// `floor_tile may be anything from 0 to 40 m2`; over several periods, in the one where it may go farthest.
+fn one(name: &Name, spans: &Each<Span>, plan: &Plan, model: Option<&Model>, first: bool) -> String {
     let united = |amount: &str| with_unit(amount, unit_of_activity(model, name));
+    let width = |span: &Span| span.1 - span.0;
+    let widest = spans.all().iter().enumerate().rev().max_by(|a, b| width(a.1).total_cmp(&width(b.1)));
+    let (place, (least, most)) = widest.map_or((0, (0.0, 0.0)), |(place, &span)| (place, span));
     let anything = match (least.is_finite(), most.is_finite()) {
         (true, true) => {
             let (least, most) = amounts(least, most);
@@ -59,6 +65,12 @@ fn one(name: &Name, (least, most): (f64, f64), model: Option<&Model>, first: boo
         (false, true) => format!("anything up to {}", united(&amount(most))),
         (false, false) => "anything".to_owned(),
     };
+    let others = spans.all().iter().filter(|span| width(span) > 0.0).count().saturating_sub(1);
+    let others = if others > 0 { format!(" and differ in {}", count(others, "other period")) } else { String::new() };
+    let period = match plan.periods.len() {
+        0 | 1 => String::new(),
+        _ => format!(" in {}{others}", periods::name(place, &plan.periods)),
+    };
     let may_be = if first { " may be" } else { "" };
-    format!("{}{may_be} {anything}", Markdown(name.as_str()))
+    format!("{}{may_be} {anything}{period}", Markdown(name.as_str()))
 }

@@ -1,12 +1,13 @@
 //! Why there is no plan, in a planner's words.
 
+use super::Trouble;
+use super::rules::{self, Place};
+use super::tables::ROWS;
 use super::words::{amount, count, listed, text, with_unit};
-use super::{ROWS, Trouble};
-use crate::lp::Key;
+use crate::model::Model;
 use crate::model::escape::{Markdown, Plain};
-use crate::model::fault::{Fault, Faults, Place};
+use crate::model::fault::{self, Fault, Faults};
 use crate::model::read::is_folder_name;
-use crate::model::{Bound, Model};
 use crate::solver::message::{Conflict, Growth, Rule};
 
 /// Why a plan is held, in one plain sentence without a full stop. Not escaped.
@@ -27,15 +28,21 @@ pub fn reason(trouble: Trouble<'_>, model: Option<&Model>) -> String {
         }
         Trouble::Infeasible(conflict) if conflict.rules.is_empty() => "the rules contradict each other".to_owned(),
         Trouble::Infeasible(conflict) => {
-            let stated = stated(conflict, model);
-            let rules: Vec<String> = stated.iter().take(ROWS).map(|rule| rule_told(rule, model)).collect();
-            let more = stated.len().saturating_sub(ROWS);
+            let mut rules = rules::told(&stated(conflict, model), model);
+            let more = rules.len().saturating_sub(ROWS);
+            rules.truncate(ROWS);
             let more = if more > 0 { format!(" and {more} more") } else { String::new() };
             format!("these cannot all be kept: {}{more}", rules.join(", "))
         }
         Trouble::Unbounded(growth) if growth.rates.is_empty() => "nothing limits the aim".to_owned(),
         Trouble::Unbounded(growth) => {
-            let names: Vec<String> = growth.rates.iter().take(ROWS).map(|(key, _)| parts(key).1.to_owned()).collect();
+            let mut names: Vec<String> = Vec::new();
+            for name in growth.rates.iter().map(|(key, _)| Place::of(key, model).level()) {
+                // What can grow in one period mostly can in others.
+                if names.len() < ROWS && !names.contains(&name) {
+                    names.push(name);
+                }
+            }
             format!("nothing limits {}", listed(&names))
         }
         Trouble::Undecided(why) => format!("the solver cannot tell: {}", why.trim_end_matches('.')),
@@ -90,7 +97,7 @@ fn fault_told(fault: &Fault) -> String {
 }
 
 /// The line and a caret, as an indented code block: one line of text cannot break out of it.
-fn excerpt(place: &Place) -> String {
+fn excerpt(place: &fault::Place) -> String {
     let shown = &place.excerpt;
     let characters = |from: usize, number: usize| shown.text.chars().skip(from).take(number).collect::<String>();
     let width = |text: &str| unicode_width::UnicodeWidthStr::width(Plain(text).to_string().as_str());
@@ -105,12 +112,12 @@ fn conflict_told(conflict: &Conflict, model: Option<&Model>) -> String {
         return "\nWhich rules they are could not be told.\n".to_owned();
     }
     let mut out = "\n## These cannot all be kept\n\n".to_owned();
-    let stated = stated(conflict, model);
-    for rule in stated.iter().take(ROWS) {
-        out.push_str(&format!("- {}\n", Markdown(&rule_told(rule, model))));
+    let rules = rules::told(&stated(conflict, model), model);
+    for rule in rules.iter().take(ROWS) {
+        out.push_str(&format!("- {}\n", Markdown(rule)));
     }
-    if stated.len() > ROWS {
-        out.push_str(&format!("- … and {} more\n", stated.len() - ROWS));
+    if rules.len() > ROWS {
+        out.push_str(&format!("- … and {} more\n", rules.len() - ROWS));
     }
     out.push_str(if conflict.minimal {
         "\nEach of them is needed for the contradiction: give way in any one, and look again.\n"
@@ -126,8 +133,7 @@ fn conflict_told(conflict: &Conflict, model: Option<&Model>) -> String {
 /// The rules that people have stated: not that a level is at least 0, or that a prospect is not made, as long as there are others.
 fn stated<'c>(conflict: &'c Conflict, model: Option<&Model>) -> Vec<&'c Rule> {
     let goes_without_saying = |rule: &&Rule| {
-        let is_prospect =
-            || model.and_then(|model| Some(model.activities.get(parts(&rule.key).1)?.prospect)) == Some(true);
+        let is_prospect = || Place::of(&rule.key, model).is_prospect(model);
         !rule.is_row && rule.bound.abs() <= 0.0 && (!rule.upper || is_prospect())
     };
     let (silent, stated): (Vec<&Rule>, Vec<&Rule>) = conflict.rules.iter().partition(goes_without_saying);
@@ -140,10 +146,11 @@ fn growth_told(growth: &Growth, model: Option<&Model>) -> String {
     }
     let mut out = "\n## These can grow together without end\n\n".to_owned();
     for (key, rate) in growth.rates.iter().take(ROWS) {
-        let (_, name, _) = parts(key);
-        let unit = model.and_then(|model| model.activities.get(name)?.unit.as_deref());
+        let place = Place::of(key, model);
         let way = if *rate < 0.0 { "falls" } else { "grows" };
-        out.push_str(&format!("- {} {way} by {}\n", Markdown(name), with_unit(&amount(rate.abs()), unit)));
+        let by = with_unit(&amount(rate.abs()), place.unit(model));
+        let period = place.period.map_or(String::new(), |period| format!(" in {}", Markdown(period)));
+        out.push_str(&format!("- {} {way} by {by}{period}\n", Markdown(&place.level())));
     }
     if growth.rates.len() > ROWS {
         out.push_str(&format!("- … and {} more\n", growth.rates.len() - ROWS));
@@ -153,47 +160,4 @@ fn growth_told(growth: &Growth, model: Option<&Model>) -> String {
         out.push_str("This comes from the solver alone and has not been confirmed.\n");
     }
     out
-}
-
-/// A rule in words: `capacity of kiln (at most 84 h)`, `floor_tile at least 5 000 m2`. Not escaped.
-fn rule_told(rule: &Rule, model: Option<&Model>) -> String {
-    let (table, name, side) = parts(&rule.key);
-    let way = if rule.upper { "at most" } else { "at least" };
-    match table {
-        "resources" => {
-            let unit = model.and_then(|model| model.resources.get(name)?.unit.as_deref());
-            let what = if rule.upper { "capacity" } else { "minimum load" };
-            format!("{what} of {name} ({way} {})", with_plain_unit(rule.bound, unit))
-        }
-        "limits" => {
-            let limit = model.and_then(|model| model.limits.get(name));
-            let own = limit.filter(|limit| limit.per.is_some()).map(|limit| &limit.bound);
-            let first = |value: &crate::model::Value| value.numbers().first().copied().unwrap_or_default();
-            let (way, bound) = match (own, limit.map(|limit| &limit.bound)) {
-                (Some(Bound::Between(least, _)), _) if side == Some("at_least") => ("at least", first(least)),
-                (Some(Bound::Between(_, most)), _) => ("at most", first(most)),
-                (_, Some(Bound::Equals(value))) => ("exactly", first(value)),
-                _ => (way, rule.bound),
-            };
-            let ratio = if own.is_some() { ", as a ratio" } else { "" };
-            format!("limit {name} ({way} {}{ratio})", amount(bound))
-        }
-        _ => {
-            let unit = model.and_then(|model| model.activities.get(name)?.unit.as_deref());
-            format!("{name} {way} {}", with_plain_unit(rule.bound, unit))
-        }
-    }
-}
-
-fn with_plain_unit(number: f64, unit: Option<&str>) -> String {
-    match unit {
-        Some(unit) if !unit.is_empty() => format!("{} {unit}", amount(number)),
-        _ => amount(number),
-    }
-}
-
-/// The table, the name and, for one of two rows of a limit, the side that a key spells. Names have no dots.
-fn parts(key: &Key) -> (&str, &str, Option<&str>) {
-    let mut parts = key.as_str().splitn(3, '.');
-    (parts.next().unwrap_or_default(), parts.next().unwrap_or_default(), parts.next())
 }

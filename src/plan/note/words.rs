@@ -106,23 +106,26 @@ pub(super) fn per_unit(rate: f64, currency: Option<&str>, unit: Option<&str>) ->
     }
 }
 
-/// The number of a value, or those of its periods.
+/// The number of a value; where it has one per period, what they come to.
 pub(super) fn value(value: &Value) -> String {
-    let texts: Vec<String> = value.numbers().iter().map(|&number| amount(number)).collect();
-    texts.join(" / ")
+    amount(total(Some(value)))
 }
 
 /// Two values, with as many digits as it takes to tell them apart.
 pub(super) fn values(before: &Value, after: &Value) -> (String, String) {
-    match (before, after) {
-        (Value::Every(before), Value::Every(after)) => amounts(*before, *after),
-        _ => (value(before), value(after)),
-    }
+    amounts(total(Some(before)), total(Some(after)))
 }
 
 /// What all periods come to.
 pub(super) fn total(value: Option<&Value>) -> f64 {
-    value.map_or(0.0, |value| value.numbers().iter().sum())
+    let numbers = match value {
+        None => return 0.0,
+        Some(Value::Every(number)) => return *number,
+        Some(Value::Listed(numbers)) => numbers,
+    };
+    let sum: f64 = numbers.iter().sum();
+    // Below the digits of the largest there is but noise.
+    rounded_to(sum, numbers.iter().fold(sum.abs(), |most, number| most.max(number.abs())))
 }
 
 /// A name with the label that stands beside it.

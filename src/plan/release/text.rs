@@ -4,8 +4,9 @@ use serde::Deserialize;
 
 use super::{FORMAT, Release};
 use crate::plan::number;
-use crate::plan::text::read::{ActivityEntry, PlanError, meaning_of, message_of};
-use crate::plan::text::write::{line, quoted, seal_line, value};
+use crate::plan::text::entry::{ActivityEntry, all, periods_of};
+use crate::plan::text::read::{PlanError, meaning_of, message_of};
+use crate::plan::text::write::{line, periods, quoted, seal_line, state, value};
 use crate::plan::text::{seal_for, version};
 use crate::plan::types::{Plan, Standing};
 
@@ -56,11 +57,12 @@ pub fn write(release: &Release) -> String {
     if let Some(currency) = &plan.currency {
         line(&mut out, "currency", |out| quoted(out, currency));
     }
+    periods(&mut out, &plan.periods);
     for planned in &plan.activities {
         out.push_str("\n[[activities]]\n");
         line(&mut out, "name ", |out| quoted(out, planned.name.as_str()));
         line(&mut out, "level", |out| value(out, &planned.level));
-        line(&mut out, "state", |out| quoted(out, planned.state.words()));
+        line(&mut out, "state", |out| state(out, &planned.state));
     }
     let seal = seal_line(&seal_for(&out));
     out.insert_str(sealed_from, &seal);
@@ -101,6 +103,8 @@ struct File {
     minimise: bool,
     currency: Option<String>,
     #[serde(default)]
+    periods: Vec<String>,
+    #[serde(default)]
     activities: Vec<ActivityEntry>,
 }
 
@@ -111,20 +115,24 @@ impl File {
             other => ReleaseError::Broken(other.to_string()),
         };
         let answers = meaning_of(&self.answers).map_err(broken)?;
-        let activities = self.activities.into_iter().map(ActivityEntry::planned).collect::<Result<Vec<_>, _>>();
+        let periods = periods_of(&self.periods).map_err(broken)?;
+        let count = periods.len();
+        let activities = all(self.activities, |entry| entry.planned(count)).map_err(broken)?;
         let plan = Plan {
             answers,
             standing: Standing::Current,
             aim: self.aim,
             minimise: self.minimise,
             currency: self.currency,
+            periods,
             exact: false,
             ties: false,
             may_vary_left_out: 0,
             complete: false,
-            activities: activities.map_err(broken)?,
+            activities,
             resources: Vec::new(),
             limits: Vec::new(),
+            materials: Vec::new(),
         };
         Ok(Release { pins: self.pins, plan })
     }
@@ -135,21 +143,22 @@ mod tests {
     use super::*;
     use crate::model::meaning::Meaning;
     use crate::model::{Name, Value};
+    use crate::plan::each::Each;
     use crate::plan::release::since;
     use crate::plan::types::{PlannedActivity, State};
 
     fn activity(name: &str, level: Value) -> PlannedActivity {
         let state = if level.numbers().iter().any(|&number| number > 0.0) { State::InTheMix } else { State::Idle };
         let name = Name::new(name).unwrap();
-        let ranges = Some((1.0, 2.0));
+        let ranges = Some(Each::One((1.0, 2.0)));
         PlannedActivity {
             name,
             level,
-            state,
-            may_vary: ranges,
+            state: Each::One(state),
+            may_vary: ranges.clone(),
             price_range: ranges,
             break_even: None,
-            loses: Some(3.0),
+            loses: Some(3.0.into()),
         }
     }
 
@@ -160,6 +169,7 @@ mod tests {
             aim,
             minimise: false,
             currency: Some("EU\"R".to_owned()),
+            periods: vec![],
             exact: true,
             ties: true,
             may_vary_left_out: 0,
@@ -167,18 +177,26 @@ mod tests {
             activities,
             resources: vec![],
             limits: vec![],
+            materials: vec![],
         }
     }
 
     fn sample() -> Release {
-        let activities =
-            vec![activity("floor_tile", 4180.5.into()), activity("plaque", Value::Listed(vec![0.0, 12.0]))];
+        let activities = vec![activity("floor_tile", 4180.5.into()), activity("plaque", 12.0.into())];
         Release::of(&plan(-43265.1, activities), &"5e".repeat(32))
+    }
+
+    fn over(periods: &str, level: &[f64]) -> Plan {
+        let periods = periods.split_whitespace().map(|label| Name::new(label).unwrap()).collect();
+        Plan { periods, ..plan(100.0, vec![activity("floor_tile", Value::Listed(level.to_vec()))]) }
     }
 
     #[test]
     fn a_release_reads_back_and_says_the_same_each_time() {
-        for release in [sample(), Release::of(&Plan { minimise: true, currency: None, ..plan(0.0, vec![]) }, "5e")] {
+        let bare = Plan { minimise: true, currency: None, ..plan(0.0, vec![]) };
+        for release in
+            [sample(), Release::of(&bare, "5e"), Release::of(&over("2027-W01 瓦", &[3.0, 0.0]), &"5e".repeat(32))]
+        {
             let text = write(&release);
             assert!(is_ours(text.as_bytes()));
             let back = read(&text).unwrap();
@@ -188,6 +206,7 @@ mod tests {
                 (release.pins, release.plan.aim, release.plan.minimise)
             );
             assert_eq!(back.plan.activities, release.plan.activities);
+            assert_eq!(back.plan.periods, release.plan.periods);
             assert_eq!(read(&text.replace('\n', "\r\n")).unwrap().plan.currency, release.plan.currency);
         }
     }
@@ -216,5 +235,20 @@ mod tests {
         let names: Vec<_> = since.comparison.moved.iter().map(|told| told.name.as_str()).collect();
         assert_eq!(names, ["floor_tile", "plaque"]);
         assert_eq!(since.comparison.left.len(), 1);
+    }
+
+    #[test]
+    fn a_release_of_another_horizon_is_compared_where_the_two_overlap() {
+        let released = Release::of(&over("w1 w2 w3", &[1.0, 2.0, 3.0]), "5e");
+        let told = since(&released, &over("w2 w3 w4", &[2.0, 5.0, 9.0])).comparison;
+        assert_eq!((told.aim, told.overlap.shared.len()), (None, 2));
+        let [moved] = told.moved.as_slice() else { panic!("{told:?}") };
+        assert_eq!(moved.before, Some(Value::Listed(vec![2.0, 3.0])));
+        let periods: Vec<_> = moved.periods.iter().map(|one| (one.period.as_str(), one.before, one.after)).collect();
+        assert_eq!(periods, [("w3", 3.0, 5.0)]);
+        // Nothing in common, so nothing moves.
+        let told = since(&released, &over("w5", &[4.0])).comparison;
+        assert!(told.overlap.is_empty() && told.moved.is_empty() && told.aim.is_none());
+        assert!(since(&sample(), &over("w1", &[4.0])).comparison.overlap.is_empty());
     }
 }

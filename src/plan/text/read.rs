@@ -2,11 +2,11 @@
 
 use serde::Deserialize;
 
+use super::entry::{ActivityEntry, LimitEntry, MaterialEntry, ResourceEntry, all, periods_of};
 use super::{HEADER, VERSIONS, seal, seal_for, version};
 use crate::model::escape::Plain;
 use crate::model::meaning::Meaning;
-use crate::model::{Name, Value};
-use crate::plan::types::{Plan, PlannedActivity, PlannedLimit, PlannedResource, Standing, State};
+use crate::plan::types::{Plan, Standing};
 
 /// A plan that was read from a file.
 #[derive(Clone, Debug, PartialEq)]
@@ -147,6 +147,8 @@ struct File {
     #[serde(default)]
     minimise: bool,
     currency: Option<String>,
+    #[serde(default)]
+    periods: Vec<String>,
     exact: bool,
     ties: bool,
     #[serde(default)]
@@ -158,124 +160,30 @@ struct File {
     resources: Vec<ResourceEntry>,
     #[serde(default)]
     limits: Vec<LimitEntry>,
-}
-
-/// One activity as a plan or a release has it.
-#[derive(Deserialize)]
-#[serde(deny_unknown_fields)]
-pub(in crate::plan) struct ActivityEntry {
-    name: String,
-    level: Numbers,
-    state: String,
-    may_vary: Option<(f64, f64)>,
-    #[serde(alias = "cost_range")]
-    price_range: Option<(f64, f64)>,
-    break_even: Option<f64>,
-    loses: Option<f64>,
-}
-
-#[derive(Deserialize)]
-#[serde(deny_unknown_fields)]
-struct ResourceEntry {
-    name: String,
-    used: Numbers,
-    spare: Option<Numbers>,
-    worth_of_more: Option<f64>,
-    loss_of_less: Option<f64>,
-    holds_between: Option<(f64, f64)>,
-}
-
-#[derive(Deserialize)]
-#[serde(deny_unknown_fields)]
-struct LimitEntry {
-    name: String,
-    value: Option<Numbers>,
-    spare: Option<Numbers>,
-    worth_of_more: Option<f64>,
-    loss_of_less: Option<f64>,
-    holds_between: Option<(f64, f64)>,
-}
-
-#[derive(Deserialize)]
-#[serde(untagged)]
-enum Numbers {
-    One(f64),
-    Several(Vec<f64>),
-}
-
-impl From<Numbers> for Value {
-    fn from(numbers: Numbers) -> Self {
-        match numbers {
-            Numbers::One(number) => Self::Every(number),
-            Numbers::Several(list) => Self::Listed(list),
-        }
-    }
+    #[serde(default)]
+    materials: Vec<MaterialEntry>,
 }
 
 impl File {
     fn plan(self) -> Result<Plan, PlanError> {
         let (standing, answers) = (standing_of(&self.standing, self.held)?, meaning_of(&self.answers)?);
-        let activities = self.activities.into_iter().map(ActivityEntry::planned).collect::<Result<Vec<_>, _>>()?;
-        let resources = self.resources.into_iter().map(ResourceEntry::planned).collect::<Result<Vec<_>, _>>()?;
-        let limits = self.limits.into_iter().map(LimitEntry::planned).collect::<Result<Vec<_>, _>>()?;
+        let periods = periods_of(&self.periods)?;
+        let count = periods.len();
         Ok(Plan {
             answers,
             standing,
             aim: self.aim,
             minimise: self.minimise,
             currency: self.currency,
+            periods,
             exact: self.exact,
             ties: self.ties,
             may_vary_left_out: self.may_vary_left_out,
             complete: self.complete,
-            activities,
-            resources,
-            limits,
-        })
-    }
-}
-
-fn name(text: &str) -> Result<Name, PlanError> {
-    Name::new(text).map_err(|error| PlanError::Broken(format!("a name is wrong: {error}")))
-}
-
-impl ActivityEntry {
-    pub(in crate::plan) fn planned(self) -> Result<PlannedActivity, PlanError> {
-        let state = State::ALL.into_iter().find(|state| state.words() == self.state);
-        Ok(PlannedActivity {
-            name: name(&self.name)?,
-            level: self.level.into(),
-            state: state.ok_or_else(|| PlanError::Broken(format!("no state is called `{}`", Plain(&self.state))))?,
-            may_vary: self.may_vary,
-            price_range: self.price_range,
-            break_even: self.break_even,
-            loses: self.loses,
-        })
-    }
-}
-
-impl ResourceEntry {
-    fn planned(self) -> Result<PlannedResource, PlanError> {
-        Ok(PlannedResource {
-            name: name(&self.name)?,
-            used: self.used.into(),
-            spare: self.spare.map(Value::from),
-            worth_of_more: self.worth_of_more,
-            loss_of_less: self.loss_of_less,
-            holds_between: self.holds_between,
-        })
-    }
-}
-
-impl LimitEntry {
-    fn planned(self) -> Result<PlannedLimit, PlanError> {
-        Ok(PlannedLimit {
-            name: name(&self.name)?,
-            value: self.value.map(Value::from),
-            spare: self.spare.map(Value::from),
-            worth_of_more: self.worth_of_more,
-            loss_of_less: self.loss_of_less,
-            holds_between: self.holds_between,
+            activities: all(self.activities, |entry| entry.planned(count))?,
+            resources: all(self.resources, |entry| entry.planned(count))?,
+            limits: all(self.limits, |entry| entry.planned(count))?,
+            materials: all(self.materials, |entry| entry.planned(count))?,
         })
     }
 }

@@ -3,19 +3,23 @@
 use std::fmt::Write as _;
 
 use super::{HEADER, seal_for};
-use crate::model::Value;
 use crate::model::escape::Toml;
+use crate::model::{Name, Value};
+use crate::plan::each::{Each, Span};
 use crate::plan::number;
-use crate::plan::types::{FORMAT, Plan, PlannedActivity, PlannedLimit, PlannedResource, RULES, Standing};
+use crate::plan::types::{
+    FORMAT, Plan, PlannedActivity, PlannedLimit, PlannedMaterial, PlannedResource, RULES, Standing, State,
+};
 
-/// Bytes that one entry takes, more or less.
+/// Bytes that one entry takes, more or less, and each of its periods beyond the first.
 const ENTRY: usize = 192;
+const PERIOD: usize = 48;
 
 /// The text of `plan`, sealed, in byte order of names.
 #[must_use]
 pub fn write(plan: &Plan) -> String {
-    let entries = plan.activities.len() + plan.resources.len() + plan.limits.len();
-    let mut out = String::with_capacity(512 + ENTRY * entries);
+    let entries = plan.activities.len() + plan.resources.len() + plan.limits.len() + plan.materials.len();
+    let mut out = String::with_capacity(512 + (ENTRY + PERIOD * plan.periods.len()) * entries);
     out.push_str(HEADER);
     out.push('\n');
     line(&mut out, "format  ", |out| number::push(out, f64::from(FORMAT)));
@@ -30,6 +34,7 @@ pub fn write(plan: &Plan) -> String {
     if let Some(currency) = &plan.currency {
         line(&mut out, "currency", |out| quoted(out, currency));
     }
+    periods(&mut out, &plan.periods);
     flag(&mut out, "exact   ", plan.exact);
     flag(&mut out, "ties    ", plan.ties);
     if plan.may_vary_left_out > 0 {
@@ -44,6 +49,9 @@ pub fn write(plan: &Plan) -> String {
     }
     for planned in &plan.limits {
         limit(&mut out, planned);
+    }
+    for planned in &plan.materials {
+        material(&mut out, planned);
     }
     let seal = seal_line(&seal_for(&out));
     out.insert_str(sealed_from, &seal);
@@ -63,41 +71,57 @@ pub(super) fn standing(out: &mut String, standing: &Standing) {
     }
 }
 
+/// The line that names the periods, where they have names.
+pub(in crate::plan) fn periods(out: &mut String, periods: &[Name]) {
+    if !periods.is_empty() {
+        line(out, "periods ", |out| list(out, periods, |out, name| quoted(out, name.as_str())));
+    }
+}
+
 fn activity(out: &mut String, planned: &PlannedActivity, minimise: bool) {
     out.push_str("\n[[activities]]\n");
     line(out, "name       ", |out| quoted(out, planned.name.as_str()));
     line(out, "level      ", |out| value(out, &planned.level));
-    line(out, "state      ", |out| quoted(out, planned.state.words()));
-    pair(out, "may_vary   ", planned.may_vary);
-    pair(out, if minimise { "cost_range " } else { "price_range" }, planned.price_range);
-    single(out, "break_even ", planned.break_even);
-    single(out, "loses      ", planned.loses);
+    line(out, "state      ", |out| state(out, &planned.state));
+    spans(out, "may_vary   ", planned.may_vary.as_ref());
+    spans(out, if minimise { "cost_range " } else { "price_range" }, planned.price_range.as_ref());
+    values(out, "break_even ", planned.break_even.as_ref());
+    values(out, "loses      ", planned.loses.as_ref());
 }
 
 fn resource(out: &mut String, planned: &PlannedResource) {
     out.push_str("\n[[resources]]\n");
     line(out, "name         ", |out| quoted(out, planned.name.as_str()));
     line(out, "used         ", |out| value(out, &planned.used));
-    if let Some(spare) = &planned.spare {
-        line(out, "spare        ", |out| value(out, spare));
-    }
-    single(out, "worth_of_more", planned.worth_of_more);
-    single(out, "loss_of_less ", planned.loss_of_less);
-    pair(out, "holds_between", planned.holds_between);
+    values(out, "surge        ", planned.surge.as_ref());
+    values(out, "spare        ", planned.spare.as_ref());
+    values(out, "worth_of_more", planned.worth_of_more.as_ref());
+    values(out, "loss_of_less ", planned.loss_of_less.as_ref());
+    spans(out, "holds_between", planned.holds_between.as_ref());
 }
 
 fn limit(out: &mut String, planned: &PlannedLimit) {
     out.push_str("\n[[limits]]\n");
     line(out, "name         ", |out| quoted(out, planned.name.as_str()));
-    if let Some(numbers) = &planned.value {
-        line(out, "value        ", |out| value(out, numbers));
-    }
-    if let Some(spare) = &planned.spare {
-        line(out, "spare        ", |out| value(out, spare));
-    }
-    single(out, "worth_of_more", planned.worth_of_more);
-    single(out, "loss_of_less ", planned.loss_of_less);
-    pair(out, "holds_between", planned.holds_between);
+    values(out, "value        ", planned.value.as_ref());
+    values(out, "spare        ", planned.spare.as_ref());
+    values(out, "worth_of_more", planned.worth_of_more.as_ref());
+    values(out, "loss_of_less ", planned.loss_of_less.as_ref());
+    spans(out, "holds_between", planned.holds_between.as_ref());
+}
+
+fn material(out: &mut String, planned: &PlannedMaterial) {
+    out.push_str("\n[[materials]]\n");
+    line(out, "name         ", |out| quoted(out, planned.name.as_str()));
+    values(out, "purchase     ", planned.purchase.as_ref());
+    values(out, "sale         ", planned.sale.as_ref());
+    values(out, "late         ", planned.late.as_ref());
+    values(out, "stock        ", planned.stock.as_ref());
+    values(out, "discard      ", planned.discard.as_ref());
+    values(out, "made         ", Some(&planned.made));
+    values(out, "drawn        ", Some(&planned.drawn));
+    values(out, "worth_of_more", planned.worth_of_more.as_ref());
+    values(out, "loss_of_less ", planned.loss_of_less.as_ref());
 }
 
 /// One line: `key = value`.
@@ -112,15 +136,27 @@ fn flag(out: &mut String, key: &str, holds: bool) {
     line(out, key, |out| out.push_str(if holds { "true" } else { "false" }));
 }
 
-fn single(out: &mut String, key: &str, number: Option<f64>) {
-    if let Some(number) = number {
-        line(out, key, |out| number::push(out, number));
+/// A line with the numbers of a value, where there are any.
+fn values(out: &mut String, key: &str, numbers: Option<&Value>) {
+    if let Some(numbers) = numbers {
+        line(out, key, |out| value(out, numbers));
     }
 }
 
-fn pair(out: &mut String, key: &str, range: Option<(f64, f64)>) {
-    if let Some((least, most)) = range {
-        line(out, key, |out| list(out, &[least, most]));
+fn spans(out: &mut String, key: &str, told: Option<&Each<Span>>) {
+    let pair = |out: &mut String, &(least, most): &Span| list(out, &[least, most], |out, &end| number::push(out, end));
+    match told {
+        None => {}
+        Some(Each::One(span)) => line(out, key, |out| pair(out, span)),
+        Some(Each::Listed(spans)) => line(out, key, |out| list(out, spans, pair)),
+    }
+}
+
+/// A state, or a list of one per period.
+pub(in crate::plan) fn state(out: &mut String, told: &Each<State>) {
+    match told {
+        Each::One(state) => quoted(out, state.words()),
+        Each::Listed(states) => list(out, states, |out, state| quoted(out, state.words())),
     }
 }
 
@@ -128,17 +164,17 @@ fn pair(out: &mut String, key: &str, range: Option<(f64, f64)>) {
 pub(in crate::plan) fn value(out: &mut String, value: &Value) {
     match value {
         Value::Every(number) => number::push(out, *number),
-        Value::Listed(numbers) => list(out, numbers),
+        Value::Listed(numbers) => list(out, numbers, |out, &number| number::push(out, number)),
     }
 }
 
-fn list(out: &mut String, numbers: &[f64]) {
+fn list<T>(out: &mut String, items: &[T], push: impl Fn(&mut String, &T)) {
     out.push('[');
-    for (position, &number) in numbers.iter().enumerate() {
+    for (position, item) in items.iter().enumerate() {
         if position > 0 {
             out.push_str(", ");
         }
-        number::push(out, number);
+        push(out, item);
     }
     out.push(']');
 }

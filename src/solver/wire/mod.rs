@@ -19,7 +19,7 @@ use crate::lp::Program;
 use frame::FrameError;
 
 /// Version of what is said. Raise it whenever a type that crosses changes.
-pub const VERSION: u32 = 1;
+pub const VERSION: u32 = 2;
 
 /// The release that this side was built from.
 pub const BUILD: &str = env!("CARGO_PKG_VERSION");

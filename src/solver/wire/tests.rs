@@ -9,7 +9,7 @@ use super::*;
 use crate::lp::difference::AddedColumn;
 use crate::lp::{Column, Difference, Key, Row, RowIndex, Sense};
 use crate::solver::basis::{Basis, NamedBasis, Position};
-use crate::solver::message::{Account, Conflict, Growth, Last, ModelKey, Optimum, Outcome, Ranges, Rule, Start};
+use crate::solver::message::{Account, Conflict, Growth, Known, Last, ModelKey, Optimum, Outcome, Ranges, Rule, Start};
 use crate::solver::proof::Proof;
 
 /// Any number by its bits: infinities, −0, the smallest and every NaN as well.
@@ -105,9 +105,16 @@ fn order() -> impl Strategy<Value = Order> {
 fn optimum() -> impl Strategy<Value = Optimum> {
     let basis = (prop::collection::vec(position(), 0..4), prop::collection::vec(position(), 0..4))
         .prop_map(|(columns, rows)| Basis { columns, rows });
-    let told = (basis, any::<[bool; 3]>(), prop::option::of(pairs()), prop::option::of((pairs(), pairs())));
+    let flags = || prop::collection::vec(any::<bool>(), 0..4);
+    let known = prop::option::of((flags(), flags()).prop_map(|(worths, gains)| Known { worths, gains }));
+    let told = (basis, any::<[bool; 3]>(), known, prop::option::of(pairs()), prop::option::of((pairs(), pairs())));
     (number(), [numbers(), numbers(), numbers(), numbers()], told, [number(), number(), number(), number()]).prop_map(
-        |(aim, [levels, sums, gains, worths], (basis, [exact, levels_unique, worths_unique], spans, ranges), proof)| {
+        |(
+            aim,
+            [levels, sums, gains, worths],
+            (basis, [exact, levels_unique, worths_unique], known, spans, ranges),
+            proof,
+        )| {
             let [primal, dual, slackness, gap] = proof;
             Optimum {
                 aim,
@@ -120,6 +127,7 @@ fn optimum() -> impl Strategy<Value = Optimum> {
                 levels_unique,
                 spans,
                 worths_unique,
+                known,
                 ranges: ranges.map(|(aims, bounds)| Ranges { aims, bounds }),
                 proof: Proof { primal, dual, slackness, gap },
             }
@@ -254,7 +262,9 @@ fn who_is_no_worker_of_this_release_is_told_apart() {
     assert!(matches!(meet(&mut b"".as_slice()), Err(WireError::Stranger)));
     assert!(matches!(meet(&mut b"usage: something else".as_slice()), Err(WireError::Stranger)));
     let newer = greeted(&[MAGIC, &(VERSION + 1).to_le_bytes(), b"9.9.9"].concat());
-    let told = format!("what answered is millreeve 9.9.9 and speaks version 2; this is {BUILD} and speaks 1");
+    let theirs = VERSION + 1;
+    let told =
+        format!("what answered is millreeve 9.9.9 and speaks version {theirs}; this is {BUILD} and speaks {VERSION}");
     assert_eq!(newer.to_string(), told);
     let same_words = greeted(&[MAGIC, &VERSION.to_le_bytes(), b"0.0.1"].concat());
     assert!(matches!(same_words, WireError::OtherVersion { version: VERSION, .. }));

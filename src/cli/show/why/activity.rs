@@ -3,36 +3,37 @@
 use serde_json::{Value as Json, json};
 
 use super::super::super::screen::{HEAD, Screen};
-use super::super::number::{align, short, signed, value};
+use super::super::number::short;
 use super::super::object::{self, number};
-use super::sum::{self, Line, NoSum, Sum, What};
-use super::{Subject, titled, unit_or, with_unit};
+use super::sum::{self, Line, NoSum, Sum, Untold, What};
+use super::{Subject, account, titled, unit_or, with_unit};
+use crate::model::Name;
 use crate::model::escape::Plain;
 use crate::plan::{PlannedActivity, State};
 
 pub(super) fn tell(screen: &mut Screen, subject: &Subject<'_>, planned: &PlannedActivity) {
     let Some(activity) = subject.model.activities.get(&planned.name) else { return };
-    let sum = sum::of(subject.model, &subject.shown.plan, planned, activity);
+    let Some(state) = planned.state.at(subject.period) else { return };
+    let sum = sum::of(subject.model, &subject.shown.plan, planned, activity, subject.period);
     if screen.json() {
-        screen.object(&object(subject, planned, &sum));
+        screen.object(&object(subject, planned, state, &sum));
         return;
     }
     let unit = unit_or(activity.unit.as_deref(), "unit");
-    let level = activity
-        .unit
-        .as_deref()
-        .map_or_else(|| value(&planned.level), |unit| format!("{} {}", value(&planned.level), Plain(unit)));
+    let level = short(planned.level.at(subject.period));
+    let level = activity.unit.as_deref().map_or_else(|| level.clone(), |unit| format!("{level} {}", Plain(unit)));
     let title = titled(&planned.name, activity.label.as_deref());
-    screen.say(format_args!("{HEAD}{title}{HEAD:#}: {}, {level}", planned.state.words()));
+    screen.say(format_args!("{HEAD}{title}{HEAD:#}{}: {}, {level}", subject.in_period(), state.words()));
     match sum {
         Ok(sum) => {
             screen.say(format_args!("\nWhat one {unit} earns and takes{}:\n", in_currency(subject.currency)));
             screen.say(lines(subject, &sum, &unit));
-            screen.say(format_args!("\n{}", meaning(subject, planned, &sum, &unit)));
+            screen.say(format_args!("\n{}", meaning(subject, planned, state, &sum, &unit)));
         }
         Err(reason) => screen.say(format_args!("\n{}", without(&reason))),
     }
-    if let Some(ends) = planned.may_vary {
+    let varies = planned.may_vary.as_ref().and_then(|spans| spans.at(subject.period));
+    if let Some(ends) = varies.filter(|(least, most)| least < most) {
         screen.say(format_args!("\n{}", elsewhere(subject, ends, activity.unit.as_deref())));
     }
 }
@@ -56,45 +57,13 @@ fn in_currency(currency: &str) -> String {
 
 /// The lines, a rule and the total, with amounts flush right.
 fn lines(subject: &Subject<'_>, sum: &Sum, unit: &str) -> String {
-    let mut rows: Vec<(String, String)> =
-        sum.lines.iter().map(|line| (line_name(&line.what), line_sum(subject, line))).collect();
     let total = match sum.gain {
         gain if gain > 0.0 => format!("one {unit} more gains"),
         gain if gain < 0.0 => format!("one {unit} more loses"),
         _ => format!("one {unit} more makes no difference"),
     };
-    let mut amounts: Vec<String> = sum.lines.iter().map(|line| signed(line.amount)).collect();
-    amounts.push(signed(sum.gain));
-    align(&mut amounts);
-    rows.push((total, String::new()));
-
-    let names = rows[..rows.len() - 1].iter().map(|(name, _)| width(name)).max().unwrap_or(0);
-    let texts: Vec<String> = rows
-        .into_iter()
-        .map(
-            |(name, sum)| {
-                if sum.is_empty() { name } else { format!("{name}{}  {sum}", " ".repeat(names - width(&name))) }
-            },
-        )
-        .collect();
-    let (left, right) = (longest(&texts), longest(&amounts));
-    let mut out = String::new();
-    for (at, (text, amount)) in texts.iter().zip(&amounts).enumerate() {
-        if at + 1 == texts.len() {
-            out.push_str(&format!("  {}\n", "-".repeat(left + 2 + right)));
-        }
-        let gap = " ".repeat(left - width(text) + 2 + right - width(amount));
-        out.push_str(&format!("  {text}{gap}{}\n", amount));
-    }
-    out.lines().map(str::trim_end).collect::<Vec<_>>().join("\n")
-}
-
-fn width(text: &str) -> usize {
-    unicode_width::UnicodeWidthStr::width(text)
-}
-
-fn longest(texts: &[String]) -> usize {
-    texts.iter().map(|text| width(text)).max().unwrap_or(0)
+    let lines = sum.lines.iter().map(|line| (line_name(&line.what), line_sum(subject, line), line.amount));
+    account::drawn(lines.collect(), (total, sum.gain))
 }
 
 fn line_name(what: &What) -> String {
@@ -102,17 +71,37 @@ fn line_name(what: &What) -> String {
         What::Price => "price".to_owned(),
         What::Cost => "cost".to_owned(),
         What::Resource { name, .. } | What::Limit { name, .. } => name.to_string(),
-        What::Loads { names } => {
-            let names: Vec<_> = names.iter().map(ToString::to_string).collect();
-            format!("minimum load of {}", names.join(", "))
+        What::Draws { name, .. } => format!("draws {name}"),
+        What::Makes { name, .. } => format!("makes {name}"),
+        What::Left(bounds) => {
+            let loads: Vec<&str> = bounds.iter().filter_map(load).map(Name::as_str).collect();
+            let mut told = Vec::new();
+            if !loads.is_empty() {
+                told.push(format!("minimum load of {}", loads.join(", ")));
+            }
+            if loads.len() < bounds.len() {
+                told.push("how far the level may change".to_owned());
+            }
+            told.join(" and ")
         }
     }
+}
+
+fn load(bound: &Untold) -> Option<&Name> {
+    if let Untold::Load(name) = bound { Some(name) } else { None }
 }
 
 /// How the amount of a line comes about.
 fn line_sum(subject: &Subject<'_>, line: &Line) -> String {
     match &line.what {
-        What::Price | What::Cost | What::Loads { .. } => String::new(),
+        What::Price | What::Cost | What::Left(_) => String::new(),
+        What::Draws { name, rate, worth } => at_worth(subject, name, 0.0 - *rate, *worth, ""),
+        What::Makes { arrives: None, .. } => "there after the last period, so it is lost".to_owned(),
+        What::Makes { name, rate, worth, arrives: Some(period) } => {
+            let label = subject.model.horizon.label(*period).filter(|_| *period != subject.period);
+            let there = label.map(|label| format!(" in {}", Plain(label))).unwrap_or_default();
+            at_worth(subject, name, *rate, *worth, &there)
+        }
         What::Resource { name, rate, worth, cost } => {
             let unit = subject.model.resources.get(name).and_then(|resource| resource.unit.as_deref());
             if *worth == 0.0 && *cost == 0.0 {
@@ -131,11 +120,22 @@ fn line_sum(subject: &Subject<'_>, line: &Line) -> String {
     }
 }
 
+/// So much of a material, at what it is worth where it is at hand.
+fn at_worth(subject: &Subject<'_>, name: &Name, rate: f64, worth: f64, there: &str) -> String {
+    let unit = subject.model.materials.get(name).and_then(|material| material.unit.as_deref());
+    let amount = with_unit(rate, unit);
+    if worth == 0.0 {
+        format!("{amount}; more{there} would be worth nothing")
+    } else {
+        format!("{amount} x {} worth{there}", short(worth))
+    }
+}
+
 /// What the sum says of the state.
-fn meaning(subject: &Subject<'_>, planned: &PlannedActivity, sum: &Sum, unit: &str) -> String {
+fn meaning(subject: &Subject<'_>, planned: &PlannedActivity, state: State, sum: &Sum, unit: &str) -> String {
     let minimise = subject.shown.plan.minimise;
     let size = subject.money(sum.gain.abs());
-    match planned.state {
+    match state {
         State::InTheMix => "It earns exactly what it takes of scarce things, so its level stands between its bounds."
             .replacen("earns", if minimise { "saves" } else { "earns" }, 1),
         State::AtItsMost => format!("Every {unit} allowed above its at_most would gain {size}, as a rate."),
@@ -144,8 +144,8 @@ fn meaning(subject: &Subject<'_>, planned: &PlannedActivity, sum: &Sum, unit: &s
             format!("Its bounds leave one level only; one {unit} less would gain {size}.")
         }
         State::Fixed => format!("Its bounds leave one level only; one {unit} more would gain {size}."),
-        State::Idle | State::Prospect => match planned.break_even {
-            Some(even) if sum.gain > 0.0 => pays(planned, even, minimise, subject),
+        State::Idle | State::Prospect => match planned.break_even.as_ref().map(|even| even.at(subject.period)) {
+            Some(even) if sum.gain > 0.0 => pays(state, even, minimise, subject),
             Some(even) if minimise => format!("It would enter at a cost below {}.", subject.money(even)),
             Some(even) => format!("It would enter at a price above {}.", subject.money(even)),
             None => format!("Making one {unit} would lose {size}."),
@@ -153,10 +153,10 @@ fn meaning(subject: &Subject<'_>, planned: &PlannedActivity, sum: &Sum, unit: &s
     }
 }
 
-fn pays(planned: &PlannedActivity, even: f64, minimise: bool, subject: &Subject<'_>) -> String {
+fn pays(state: State, even: f64, minimise: bool, subject: &Subject<'_>) -> String {
     let (side, what) = if minimise { ("below", "cost") } else { ("above", "price") };
     let even = subject.money(even);
-    match planned.state {
+    match state {
         State::Prospect => format!(
             "It would pay: its {what} is {side} the break-even of {even}. Take `prospect` away to have it planned."
         ),
@@ -169,31 +169,39 @@ fn without(reason: &NoSum) -> String {
         NoSum::Worth(name) => format!(
             "There is no sum to show: several sets of worths are equally good here, so the plan leaves out that of {name}."
         ),
-        NoSum::Load(name) => {
+        NoSum::Untold(Untold::Load(name)) => {
             format!(
                 "There is no sum to show: the minimum load of {name} binds, and the plan does not say what that is worth."
             )
         }
-        NoSum::Periods => "There is no sum to show: the plan has several periods.".to_owned(),
+        NoSum::Untold(Untold::Change) => {
+            "There is no sum to show: its level changes as far as it may, and the plan does not say what that is worth."
+                .to_owned()
+        }
     }
 }
 
-fn object(subject: &Subject<'_>, planned: &PlannedActivity, sum: &Result<Sum, NoSum>) -> Json {
-    let lines: Vec<Json> = sum.iter().flat_map(|sum| &sum.lines).map(line_object).collect();
-    json!({
+fn object(subject: &Subject<'_>, planned: &PlannedActivity, state: State, sum: &Result<Sum, NoSum>) -> Json {
+    let lines: Vec<Json> = sum.iter().flat_map(|sum| &sum.lines).map(|line| line_object(subject, line)).collect();
+    let mut object = json!({
         "model": subject.shown.name,
         "standing": subject.shown.standing.key(),
         "kind": "activity",
         "name": planned.name.as_str(),
-        "state": planned.state.words(),
-        "may_vary": planned.may_vary.map(object::range),
+        "state": state.words(),
+        "may_vary": planned.may_vary.as_ref().and_then(|spans| spans.at(subject.period)).map(object::range),
         "lines": lines,
         "gain": sum.as_ref().ok().map(|sum| sum.gain),
-        "break_even": planned.break_even.map(number),
-    })
+        "break_even": planned.break_even.as_ref().map(|even| number(even.at(subject.period))),
+    });
+    if let Some(label) = subject.label() {
+        object["period"] = json!(label);
+        object["level"] = json!(planned.level.at(subject.period));
+    }
+    object
 }
 
-fn line_object(line: &Line) -> Json {
+fn line_object(subject: &Subject<'_>, line: &Line) -> Json {
     let amount = line.amount;
     match &line.what {
         What::Price => json!({ "what": "price", "amount": amount }),
@@ -204,9 +212,17 @@ fn line_object(line: &Line) -> Json {
         What::Limit { name, rate, worth } => {
             json!({ "what": "limit", "name": name.as_str(), "rate": rate, "worth": worth, "amount": amount })
         }
-        What::Loads { names } => {
-            let names: Vec<_> = names.iter().map(crate::model::Name::as_str).collect();
-            json!({ "what": "minimum load", "names": names, "amount": amount })
+        What::Draws { name, rate, worth } => {
+            json!({ "what": "draws", "name": name.as_str(), "rate": rate, "worth": worth, "amount": amount })
+        }
+        What::Makes { name, rate, worth, arrives } => {
+            let arrives = arrives.and_then(|period| subject.model.horizon.label(period));
+            json!({ "what": "makes", "name": name.as_str(), "rate": rate, "worth": worth, "arrives": arrives, "amount": amount })
+        }
+        What::Left(bounds) => {
+            let names: Vec<_> = bounds.iter().filter_map(load).map(Name::as_str).collect();
+            let what = if names.len() < bounds.len() { "change" } else { "minimum load" };
+            json!({ "what": what, "names": names, "amount": amount })
         }
     }
 }

@@ -1,0 +1,326 @@
+//! A tileworks of three weeks, and edits of it, one for each key of the language that plans several periods.
+
+use millreeve::edits::Kept;
+use millreeve::model::{
+    Activity, Bound, Closing, Discard, Flow, Horizon, Late, Limit, Material, Model, Name, Over, Purchase, Resource,
+    Sale, Stock, Surge, Term, Value,
+};
+
+const INF: f64 = f64::INFINITY;
+
+/// One edit: how it is told, and what of the last basis it leaves standing.
+pub(crate) struct Row {
+    pub(crate) what: &'static str,
+    pub(crate) edit: fn(&mut Model),
+    pub(crate) told: &'static [&'static str],
+    pub(crate) kept: Kept,
+}
+
+fn name(text: &str) -> Name {
+    Name::new(text).unwrap()
+}
+
+fn listed(numbers: [f64; 3]) -> Value {
+    Value::Listed(numbers.to_vec())
+}
+
+/// Its plan, by week: 90, 100 and 100 tiles are made; the kiln's 90 hours are used up, and so are the ten of its overtime in the last
+/// two weeks. Slip is bought as it is drawn and kept at its safety stock.
+pub(crate) fn weeks() -> Model {
+    let mut model = Model { horizon: Horizon::of(["w1", "w2", "w3"].map(name).to_vec()), ..Model::default() };
+    model.resources.insert(
+        name("kiln"),
+        Resource {
+            capacity: 90.0.into(),
+            cost: 0.5.into(),
+            surge: vec![Surge { at_most: 10.0.into(), cost: 1.0.into() }],
+            ..Resource::default()
+        },
+    );
+    model.activities.insert(
+        name("press"),
+        Activity {
+            uses: [(name("kiln"), 1.0.into())].into(),
+            draws: [(name("slip"), 2.0.into())].into(),
+            makes: [(name("tile"), 1.0.into())].into(),
+            at_most: 150.0.into(),
+            change_at_most: 40.0.into(),
+            ..Activity::default()
+        },
+    );
+    model.activities.insert(
+        name("vase"),
+        Activity {
+            price: 2.0.into(),
+            cost: 1.0.into(),
+            uses: [(name("kiln"), 1.0.into())].into(),
+            tags: [name("glazed")].into(),
+            ..Activity::default()
+        },
+    );
+    model.materials.insert(
+        name("slip"),
+        Material {
+            opening: 10.0,
+            purchase: vec![
+                Purchase { price: 1.0.into(), at_least: 0.0.into(), at_most: 300.0.into() },
+                Purchase { price: 4.0.into(), at_least: 0.0.into(), at_most: INF.into() },
+            ],
+            stock: Some(Stock { cost: 0.1.into(), at_least: 1.0.into(), at_most: 50.0.into() }),
+            closing: Some(Closing { at_least: 2.0, worth: 0.5 }),
+            ..Material::default()
+        },
+    );
+    let late = Late { cost: 1.0.into(), at_most: 20.0.into() };
+    model.materials.insert(
+        name("tile"),
+        Material {
+            sale: vec![
+                Sale {
+                    price: 10.0.into(),
+                    at_least: 50.0.into(),
+                    at_most: listed([60.0, 70.0, 130.0]),
+                    late: Some(late),
+                },
+                Sale { price: 6.0.into(), at_least: 0.0.into(), at_most: 15.0.into(), late: None },
+            ],
+            stock: Some(Stock { cost: 0.2.into(), at_least: 0.0.into(), at_most: 100.0.into() }),
+            discard: Discard { cost: 1.0.into(), at_most: 5.0.into() },
+            ..Material::default()
+        },
+    );
+    let most = |most: f64| Bound::Between((-INF).into(), most.into());
+    let glazed = (Term::Tag(name("glazed")), 1.0.into());
+    model.limits.insert(name("glazed"), Limit { terms: [glazed].into(), bound: most(20.0), ..Limit::default() });
+    let bought = (Term::Material(name("slip"), Flow::Purchase(None)), 1.0.into());
+    let limit = Limit { terms: [bought].into(), bound: most(900.0), over: Over::All, ..Limit::default() };
+    model.limits.insert(name("bought"), limit);
+    model
+}
+
+fn kiln(model: &mut Model) -> &mut Resource {
+    model.resources.get_mut("kiln").unwrap()
+}
+
+fn press(model: &mut Model) -> &mut Activity {
+    model.activities.get_mut("press").unwrap()
+}
+
+fn slip(model: &mut Model) -> &mut Material {
+    model.materials.get_mut("slip").unwrap()
+}
+
+fn tile(model: &mut Model) -> &mut Material {
+    model.materials.get_mut("tile").unwrap()
+}
+
+fn stock(material: &mut Material) -> &mut Stock {
+    material.stock.as_mut().unwrap()
+}
+
+fn limit<'m>(model: &'m mut Model, limit: &str) -> &'m mut Limit {
+    model.limits.get_mut(limit).unwrap()
+}
+
+fn late(model: &mut Model) -> &mut Late {
+    tile(model).sale[0].late.as_mut().unwrap()
+}
+
+const fn row(what: &'static str, edit: fn(&mut Model), told: &'static [&'static str], kept: Kept) -> Row {
+    Row { what, edit, told, kept }
+}
+
+/// What is done, how it is told, what it leaves standing.
+pub(crate) const ROWS: [Row; 66] = [
+    row("capacity, one week", |m| kiln(m).capacity = listed([90.0, 95.0, 90.0]), &[], Kept::Dual),
+    row("capacity, most weeks", |m| kiln(m).capacity = listed([90.0, 95.0, 96.0]), &[], Kept::Dual),
+    row("capacity, every week", |m| kiln(m).capacity = 95.0.into(), &[], Kept::Dual),
+    row("capacity taken away in a week", |m| kiln(m).capacity = listed([90.0, INF, 90.0]), &[], Kept::Primal),
+    row("minimum load", |m| kiln(m).at_least = listed([-INF, 80.0, -INF]), &[], Kept::Dual),
+    row("cost of a resource", |m| kiln(m).cost = listed([0.5, 0.5, 0.75]), &[], Kept::Primal),
+    row("width of overtime", |m| kiln(m).surge[0].at_most = listed([10.0, 16.0, 10.0]), &[], Kept::Dual),
+    row("no overtime", |m| kiln(m).surge[0].at_most = 0.0.into(), &[], Kept::Dual),
+    row("cost of overtime", |m| kiln(m).surge[0].cost = 2.0.into(), &[], Kept::Primal),
+    row(
+        "another tier of overtime",
+        |m| kiln(m).surge.push(Surge { at_most: 5.0.into(), cost: 3.0.into() }),
+        &[],
+        Kept::Primal,
+    ),
+    row("overtime withdrawn", |m| drop(kiln(m).surge.pop()), &[], Kept::Dual),
+    row("price in a week", |m| press(m).price = listed([0.0, 0.0, 1.0]), &[], Kept::Primal),
+    row("cost", |m| press(m).cost = 0.25.into(), &[], Kept::Primal),
+    row("a rate of use", |m| drop(press(m).uses.insert(name("kiln"), listed([1.0, 0.9, 1.0]))), &[], Kept::Neither),
+    row("a rate at which it draws", |m| drop(press(m).draws.insert(name("slip"), 2.1.into())), &[], Kept::Neither),
+    row(
+        "a rate at which it makes",
+        |m| drop(press(m).makes.insert(name("tile"), listed([1.0, 1.0, 1.1]))),
+        &[],
+        Kept::Neither,
+    ),
+    row("it draws something else", |m| drop(press(m).draws.remove("slip")), &[], Kept::Neither),
+    row("the lead", |m| press(m).lead = 1, &[], Kept::Neither),
+    row(
+        "an idle one draws",
+        |m| drop(m.activities.get_mut("vase").unwrap().draws.insert(name("slip"), 0.5.into())),
+        &[],
+        Kept::Primal,
+    ),
+    row("a commitment of a week", |m| press(m).at_least = listed([0.0, 95.0, 0.0]), &[], Kept::Dual),
+    row("a market of a week", |m| press(m).at_most = listed([150.0, 95.0, 150.0]), &[], Kept::Dual),
+    row("changes held closer", |m| press(m).change_at_most = 5.0.into(), &[], Kept::Dual),
+    row("changes let go", |m| press(m).change_at_most = INF.into(), &[], Kept::Both),
+    row("changes held", |m| m.activities.get_mut("vase").unwrap().change_at_most = 3.0.into(), &[], Kept::Dual),
+    row("opening", |m| slip(m).opening = 20.0, &[], Kept::Dual),
+    row("price of a purchase", |m| slip(m).purchase[0].price = listed([1.0, 1.5, 1.0]), &[], Kept::Primal),
+    row("least of a purchase", |m| slip(m).purchase[1].at_least = 1.0.into(), &[], Kept::Dual),
+    row("most of a purchase", |m| slip(m).purchase[0].at_most = 150.0.into(), &[], Kept::Dual),
+    row("no most of a purchase", |m| slip(m).purchase[0].at_most = INF.into(), &[], Kept::Both),
+    row("a dearer tier withdrawn", |m| drop(slip(m).purchase.pop()), &[], Kept::Both),
+    row(
+        "a tier more",
+        |m| slip(m).purchase.push(Purchase { price: 5.0.into(), at_least: 0.0.into(), at_most: INF.into() }),
+        &[],
+        Kept::Primal,
+    ),
+    row(
+        "a tier that must be bought",
+        |m| slip(m).purchase.push(Purchase { price: 5.0.into(), at_least: 2.0.into(), at_most: INF.into() }),
+        &[],
+        Kept::Neither,
+    ),
+    row("price of a sale", |m| tile(m).sale[1].price = listed([6.0, 6.0, 7.0]), &[], Kept::Primal),
+    row("firm sales", |m| tile(m).sale[0].at_least = listed([60.0, 50.0, 50.0]), &[], Kept::Dual),
+    row("most of a sale", |m| tile(m).sale[1].at_most = listed([15.0, 15.0, 20.0]), &[], Kept::Dual),
+    row("most of late sales taken away", |m| tile(m).sale[0].at_most = INF.into(), &[], Kept::Primal),
+    row(
+        "a tier of sales",
+        |m| tile(m).sale.push(Sale { price: 4.0.into(), at_least: 0.0.into(), at_most: 5.0.into(), late: None }),
+        &[],
+        Kept::Primal,
+    ),
+    row("a tier of sales withdrawn", |m| drop(tile(m).sale.pop()), &[], Kept::Dual),
+    row("cost of being late", |m| late(m).cost = 0.1.into(), &[], Kept::Primal),
+    row("most that is late", |m| late(m).at_most = 0.0.into(), &[], Kept::Dual),
+    row("late no more", |m| tile(m).sale[0].late = None, &[], Kept::Neither),
+    row(
+        "late now",
+        |m| tile(m).sale[1].late = Some(Late { cost: 1.0.into(), at_most: INF.into() }),
+        &[],
+        Kept::Neither,
+    ),
+    row("cost of stock", |m| stock(tile(m)).cost = listed([0.2, 0.3, 0.2]), &[], Kept::Primal),
+    row("safety stock", |m| stock(slip(m)).at_least = 3.0.into(), &[], Kept::Dual),
+    row("most of a stock", |m| stock(tile(m)).at_most = 10.0.into(), &[], Kept::Dual),
+    row("stock without most", |m| stock(tile(m)).at_most = INF.into(), &[], Kept::Primal),
+    row("stock withdrawn", |m| tile(m).stock = None, &[], Kept::Dual),
+    row("stock withdrawn, what is left stays", |m| slip(m).stock = None, &[], Kept::Neither),
+    row("left at the end", |m| slip(m).closing = Some(Closing { at_least: 12.0, worth: 0.5 }), &[], Kept::Dual),
+    row("worth of what is left", |m| slip(m).closing = Some(Closing { at_least: 2.0, worth: 2.0 }), &[], Kept::Primal),
+    row("nothing said of the end", |m| slip(m).closing = None, &[], Kept::Neither),
+    row(
+        "something said of the end",
+        |m| tile(m).closing = Some(Closing { at_least: 5.0, worth: 0.0 }),
+        &[],
+        Kept::Dual,
+    ),
+    row("cost of discarding", |m| tile(m).discard.cost = 0.0.into(), &[], Kept::Primal),
+    row("nothing discarded", |m| tile(m).discard.at_most = 0.0.into(), &[], Kept::Dual),
+    row(
+        "a new material",
+        |m| {
+            m.materials.insert(
+                name("glaze"),
+                Material {
+                    purchase: vec![Purchase { price: 1.0.into(), at_least: 0.0.into(), at_most: INF.into() }],
+                    ..Material::default()
+                },
+            );
+            press(m).draws.insert(name("glaze"), 0.1.into());
+        },
+        &[],
+        Kept::Neither,
+    ),
+    row(
+        "a material withdrawn",
+        |m| {
+            m.materials.remove("slip");
+            m.limits.remove("bought");
+            press(m).draws.clear();
+        },
+        &[],
+        Kept::Neither,
+    ),
+    row(
+        "a material renamed",
+        |m| {
+            let slip = m.materials.remove("slip").unwrap();
+            m.materials.insert(name("clay"), slip);
+            press(m).draws = [(name("clay"), 2.0.into())].into();
+            limit(m, "bought").terms = [(Term::Material(name("clay"), Flow::Purchase(None)), 1.0.into())].into();
+        },
+        &[],
+        Kept::Both,
+    ),
+    row(
+        "a limit over all weeks",
+        |m| limit(m, "bought").bound = Bound::Between((-INF).into(), 550.0.into()),
+        &[],
+        Kept::Dual,
+    ),
+    row(
+        "a limit of a week",
+        |m| limit(m, "glazed").bound = Bound::Between((-INF).into(), listed([20.0, 0.0, 20.0])),
+        &[],
+        Kept::Dual,
+    ),
+    row("a limit over some weeks now", |m| limit(m, "bought").over = Over::Some(m_weeks(1)), &[], Kept::Dual),
+    row(
+        "a term of a limit",
+        |m| drop(limit(m, "bought").terms.insert(Term::Material(name("slip"), Flow::Stock), 1.0.into())),
+        &[],
+        Kept::Neither,
+    ),
+    row(
+        "a term of overtime",
+        |m| drop(limit(m, "glazed").terms.insert(Term::Surge(name("kiln"), Some(1)), listed([0.0, 1.0, 0.0]))),
+        &[],
+        Kept::Neither,
+    ),
+    row(
+        "a resource with overtime withdrawn",
+        |m| {
+            m.resources.clear();
+            m.activities.values_mut().for_each(|activity| activity.uses.clear());
+        },
+        &[],
+        Kept::Neither,
+    ),
+    row("the horizon rolled", |m| roll(m, ["w2", "w3", "w4"]), &[], Kept::Neither),
+    row(
+        "the horizon rolled with an edit",
+        |m| {
+            roll(m, ["w2", "w3", "w4"]);
+            kiln(m).capacity = listed([90.0, 80.0, 60.0]);
+            slip(m).opening = 4.0;
+        },
+        &[],
+        Kept::Neither,
+    ),
+    row("other periods", |m| roll(m, ["w2", "w1", "w3"]), &[], Kept::Neither),
+];
+
+fn m_weeks(from: usize) -> Vec<millreeve::model::Period> {
+    Horizon::of(["w1", "w2", "w3"].map(name).to_vec()).periods().skip(from).collect()
+}
+
+/// Other weeks; the numbers of the market go with them.
+fn roll(model: &mut Model, labels: [&str; 3]) {
+    model.horizon = Horizon::of(labels.map(name).to_vec());
+    let of = |label: &str| match label {
+        "w1" => 60.0,
+        "w2" => 70.0,
+        _ => 130.0,
+    };
+    tile(model).sale[0].at_most = listed(labels.map(of));
+}
