@@ -14,6 +14,8 @@ mod rng;
 mod support;
 #[path = "support/tileworks.rs"]
 mod tileworks;
+#[path = "support/told.rs"]
+mod told;
 
 use millreeve::edits::{LastPlan, Renames, compare};
 use millreeve::lp::{Program, build};
@@ -21,10 +23,11 @@ use millreeve::model::{Activity, Bound, Limit, Model, Name, Term};
 use millreeve::plan::last;
 use millreeve::solver::message::{Optimum, Outcome};
 use millreeve::solver::session::Session;
-use promise::{promise_kept, told};
+use promise::promise_kept;
 use rng::Rng;
 use support::{least, same, size, solve};
 use tileworks::{ROWS, Row, tileworks};
+use told::told;
 
 fn last_plan(model: &Model, program: &Program, optimum: &Optimum) -> LastPlan {
     last::last_plan(&model.horizon, program, &optimum.basis.named(program))

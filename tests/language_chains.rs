@@ -12,6 +12,8 @@ mod random_language_edit;
 mod rng;
 #[path = "support/solve.rs"]
 mod support;
+#[path = "support/told.rs"]
+mod told;
 
 use std::fmt::Write as _;
 
@@ -21,11 +23,12 @@ use millreeve::model::{Bound, Limit, Model};
 use millreeve::plan::last::last_plan;
 use millreeve::solver::message::{Optimum, Outcome};
 use millreeve::solver::session::Session;
-use promise::{promise_kept, told};
+use promise::promise_kept;
 use rng::Rng;
 use support::{least, same, size, solve};
+use told::told;
 
-const CHAINS: u64 = 600;
+const CHAINS: u64 = 250;
 const EDITS: usize = 8;
 
 /// What a plan shows of an outcome: aim and levels in 10 digits, whether it is exact, whether there are ties.
@@ -97,7 +100,7 @@ fn chains_of_edits_keep_their_promises_and_come_to_the_one_plan() {
     }
     assert!(promised.iter().all(|&count| count >= 50), "too few of a kind: {promised:?}");
     assert!(starts[..3].iter().all(|&count| count >= 50), "too few of a start: {starts:?}");
-    assert!(rolled >= 50, "only {rolled} rolled horizons were started from the last basis");
+    assert!(rolled >= 30, "only {rolled} rolled horizons were started from the last basis");
     assert!(detours * 20 < starts.iter().sum::<usize>(), "{detours} detours, starts {starts:?}");
 }
 
@@ -129,7 +132,7 @@ fn edits_made_one_by_one_lead_to_the_edited_model() {
             model = edited;
         }
     }
-    assert!(made >= 5_000, "{made} edits only");
+    assert!(made >= 2_000, "{made} edits only");
 }
 
 /// One unit more of a material at hand is worth what its balance says: the worth of its row turned round, as the row counts what is
@@ -159,7 +162,7 @@ fn a_unit_more_at_hand_is_worth_what_the_balance_says() {
             }
         }
     }
-    assert!(told >= 200, "only {told} cases say anything");
+    assert!(told >= 80, "only {told} cases say anything");
 }
 
 /// A limit that counts a number twice, by name and by tag, adds the decimals as they are written.

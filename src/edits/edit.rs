@@ -71,7 +71,8 @@ pub enum Kind {
     NewConstraint,
     /// A limit or resource withdrawn.
     WithdrawnConstraint,
-    /// A new constraint that brings columns of its own: a material, a resource with extra capacity, sales that may be late.
+    /// A new constraint that brings columns of its own, or stands in for others: a material, a resource with extra capacity, sales that may
+    /// be late, a limit over other periods.
     NewBalance,
     /// The same withdrawn.
     WithdrawnBalance,

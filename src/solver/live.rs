@@ -491,7 +491,7 @@ fn status_of(position: Position) -> HighsInt {
 
 fn position_of(status: HighsInt) -> Result<Position, Refusal> {
     match status {
-        0 => Ok(Position::AtLower),
+        0 | 4 => Ok(Position::AtLower), // 4: on no side in particular, taken out by the solver to mend what was singular.
         1 => Ok(Position::Basic),
         2 => Ok(Position::AtUpper),
         3 => Ok(Position::AtZero),

@@ -169,6 +169,8 @@ pub struct Account {
     pub primal_infeasible: Option<usize>,
     /// The last basis under the new data: how many would still improve the aim; `None` where there was none.
     pub dual_infeasible: Option<usize>,
+    /// Whether the last basis was carried over by name alone, as too much has gone at once to be withdrawn softly.
+    pub by_name: bool,
     /// Whether a warm run was given up for taking more iterations than a fresh solve is worth.
     pub capped: bool,
     /// Iterations of the last solve from nothing.

@@ -4,6 +4,7 @@
 
 pub mod basis;
 pub mod batch;
+mod by_name;
 pub mod canonical;
 pub mod certificate;
 pub mod change;

@@ -112,14 +112,18 @@ fn rows_on_the_way(old: &Program, basis: &Basis, vertex: &Vertex, new: &Program)
 
 /// Which rows of `old` have a column that is done and that `new` has no more.
 fn robbed_rows(old: &Program, basis: &Basis, new: &Program) -> Vec<bool> {
-    let mut robbed = vec![false; old.rows.len()];
-    for (at, column) in old.columns.iter().enumerate() {
-        let idle = bound_at(basis.columns[at], column.lower, column.upper) == Some(0.0);
-        if !idle && new.column(&column.key).is_none() {
-            column.entries.iter().for_each(|&(row, _)| robbed[row.0] = true);
+    rows_of(old, |at, column| !is_idle(old, basis, at) && new.column(&column.key).is_none())
+}
+
+/// Which rows of a program have an entry in one of these columns.
+pub(super) fn rows_of(program: &Program, asked: impl Fn(usize, &Column) -> bool) -> Vec<bool> {
+    let mut rows = vec![false; program.rows.len()];
+    for (at, column) in program.columns.iter().enumerate() {
+        if asked(at, column) {
+            column.entries.iter().for_each(|&(row, _)| rows[row.0] = true);
         }
     }
-    robbed
+    rows
 }
 
 fn moved(entries: &[(RowIndex, f64)], map: &[Option<RowIndex>]) -> Vec<(RowIndex, f64)> {

@@ -15,7 +15,7 @@ use super::message::{Account, Outcome, Start};
 use super::soft::on_the_way;
 use super::stop::Stop;
 use super::vertex::Vertex;
-use super::{certificate, inherit, opened};
+use super::{by_name, certificate, inherit, opened};
 use crate::lp::{Difference, Program};
 
 /// The reason given where a run met its cap.
@@ -60,12 +60,18 @@ pub(super) fn warm(
         opened::stay(&mut instance, &anchor.program, program, &difference).map_err(lost)?;
         return finish(anchor, instance, program, &difference, run, account);
     };
+    if by_name::is_needed(&way, &difference) {
+        return start_by_name(anchor, program, run, account);
+    }
     let way = Arc::new(way);
     let first = step(&mut instance, &anchor.program, &anchor.vertex, &way).map_err(lost)?;
     let look = match begin(anchor, &mut instance, &way, first, run, account)? {
         Settled::Optimal(look) => look,
         // The way is narrower than the program: that it leads nowhere says nothing of the program.
-        Settled::Other(Outcome::Infeasible(_)) => return Err("a contradiction on the way"),
+        Settled::Other(Outcome::Infeasible(_)) => {
+            account.detours.push("a contradiction on the way".into());
+            return start_by_name(anchor, program, run, account);
+        }
         Settled::Other(outcome) => return Ok(Reached::Other(outcome)),
     };
     let look = let_go(&mut instance, &way, *look, program).map_err(|_| "what was withdrawn could not be let go")?;
@@ -99,6 +105,26 @@ fn finish(
             Look::near(&mut instance, program, guess).map_err(lost)?
         }
     };
+    match begin(anchor, &mut instance, program, first, run, account)? {
+        Settled::Optimal(look) => Ok(Reached::Optimal(instance, look)),
+        Settled::Other(outcome) => Ok(Reached::Other(outcome)),
+    }
+}
+
+/// A solve from what of the last basis the program has by name, where there is no way between the two.
+fn start_by_name(
+    anchor: &mut Anchor,
+    program: &Arc<Program>,
+    run: &Run<'_>,
+    account: &mut Account,
+) -> Result<Reached, &'static str> {
+    let lost = |_| "the last basis did not survive the edit";
+    let mut instance = Box::new(cold::ready(program).map_err(lost)?);
+    instance.set_basis(&by_name::carried(&anchor.program, &anchor.basis, program)).map_err(lost)?;
+    let mended = by_name::fitted(&instance.basis().map_err(lost)?, program);
+    instance.set_basis(&mended).map_err(lost)?;
+    let first = Look::at(&mut instance, program).map_err(lost)?;
+    account.by_name = true;
     match begin(anchor, &mut instance, program, first, run, account)? {
         Settled::Optimal(look) => Ok(Reached::Optimal(instance, look)),
         Settled::Other(outcome) => Ok(Reached::Other(outcome)),

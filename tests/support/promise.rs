@@ -1,6 +1,6 @@
 //! What kinds of edit promise of the last basis, held against what was found.
 
-use millreeve::edits::{Edit, Kept};
+use millreeve::edits::Kept;
 use millreeve::solver::message::{Account, Start};
 
 /// Whether what was promised of the last basis was found of it.
@@ -13,10 +13,4 @@ pub(crate) fn promise_kept(kept: Kept, account: &Account) -> bool {
         Kept::Dual => dual && account.start != Start::Primal,
         Kept::Neither => true,
     }
-}
-
-/// The edits, one a line.
-pub(crate) fn told(edits: &[Edit]) -> String {
-    let lines = edits.iter().map(|e| format!("  {} {:?} -> {:?} ({:?})", e.address, e.old, e.new, e.kind));
-    lines.collect::<Vec<_>>().join("\n")
 }

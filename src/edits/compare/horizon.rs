@@ -12,7 +12,8 @@ impl Edits {
     /// One edit where other periods are planned than before.
     pub(super) fn periods(&mut self, old: &Horizon, new: &Horizon) {
         if old != new {
-            let kind = if is_rolled(old, new) { Kind::HorizonRolled } else { Kind::HorizonReplaced };
+            let (kind, told): (_, fn(&Horizon) -> Option<String>) =
+                if is_rolled(old, new) { (Kind::HorizonRolled, range) } else { (Kind::HorizonReplaced, list) };
             self.push("periods".to_owned(), &Subject::Model, kind, told(old), told(new));
         }
     }
@@ -32,8 +33,13 @@ fn labels(horizon: &Horizon) -> Vec<&str> {
     horizon.periods().filter_map(|period| horizon.label(period)).collect()
 }
 
-/// The periods as a range; `None` where they have no names.
-fn told(horizon: &Horizon) -> Option<String> {
+/// All periods; `None` where they have no names.
+fn list(horizon: &Horizon) -> Option<String> {
+    horizon.is_named().then(|| format!("[{}]", labels(horizon).join(", ")))
+}
+
+/// The periods from first to last; `None` where they have no names.
+fn range(horizon: &Horizon) -> Option<String> {
     match labels(horizon)[..] {
         [] => None,
         [one] => Some(one.to_owned()),

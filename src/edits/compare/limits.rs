@@ -20,9 +20,8 @@ impl Edits {
             }
             // So it does where it sums over other periods.
             (Some(old), Some(new)) if old.over != new.over => {
-                let address = format!("{address}.over");
-                self.push(address.clone(), &whole, Kind::WithdrawnConstraint, Some(self.over(&old.over)), None);
-                self.push(address, &whole, Kind::NewConstraint, None, Some(self.over(&new.over)));
+                let (was, is) = (self.over(&old.over), self.over(&new.over));
+                self.push(format!("{address}.over"), &whole, Kind::NewBalance, Some(was), Some(is));
                 self.limit_changed(name, old, new, concerned);
             }
             (Some(old), Some(new)) => self.limit_changed(name, old, new, concerned),

@@ -163,6 +163,7 @@ fn word() -> impl Strategy<Value = Word> {
         primal_infeasible: counts[0],
         dual_infeasible: counts[1],
         capped,
+        by_name: !capped,
         cold_pivots: counts[2],
         detours: vec!["numerical trouble".into(); usize::from(capped)],
         exact_pivots,
