@@ -99,7 +99,7 @@ fn a_part_broken_and_mended() {
         (&fault["path"], &fault["line"], &fault["column"]),
         (&"m.model/sales.toml".into(), &2.into(), &9.into())
     );
-    assert!(works.note_text("m").contains("m.model/sales.toml:2:9"), "{}", works.note_text("m"));
+    assert!(works.note_text("m").contains("sales.toml, line 2, column 9"), "{}", works.note_text("m"));
     write(&part(&works, "sales.toml"), price(3));
     daemon.wait_current("m", 30.0);
     assert_eq!(works.plan_text("m"), before);
