@@ -21,6 +21,7 @@ use std::time::Duration;
 
 use instances::netlib;
 use millreeve::lp::{Key, Program, Sense, build, mps};
+use millreeve::plan::number;
 use millreeve::solver::basis::Position;
 use millreeve::solver::message::{Optimum, Outcome};
 use millreeve::solver::session::Session;
@@ -46,7 +47,11 @@ fn solve(session: &mut Session, program: &Program) -> Outcome {
 
 /// What a plan shows of an outcome: aim and levels in 10 digits, whether it is exact, whether there are ties.
 fn shown(outcome: &Outcome) -> String {
-    let digits = |number: f64| if number.abs() <= 1e-9 { "0".to_owned() } else { format!("{number:.9e}") };
+    let digits = |number: f64| {
+        let mut text = String::new();
+        number::push(&mut text, if number.abs() <= 1e-9 { 0.0 } else { number });
+        text
+    };
     match outcome {
         Outcome::Optimal(optimum) => {
             let mut text = format!("{} {} {}", digits(optimum.aim), optimum.exact, optimum.levels_unique);

@@ -8,6 +8,12 @@ pub const DIGITS: usize = 10;
 /// Digits after the first, as the formatter counts them.
 const AFTER_FIRST: usize = DIGITS - 1;
 
+/// Digits after the first in which a number is taken before it is rounded to those of a plan.
+///
+/// Numbers of a plan are often short decimals that end in a 5 just behind the last digit kept, and what is computed lies on either side
+/// of it by its own rounding. Taken in thirteen digits first it is that decimal again, so that both sides round alike.
+const TAKEN: usize = 12;
+
 /// Exponents of ten that are written out; others take the form `1.5e20`.
 const WRITTEN_OUT: std::ops::RangeInclusive<i32> = -5..=14;
 
@@ -33,7 +39,10 @@ fn push_digits(out: &mut String, number: f64, after_first: usize) {
         return;
     }
     let quick = if after_first == AFTER_FIRST { taken_apart_quickly(number) } else { None };
-    let (digits, exponent) = quick.unwrap_or_else(|| taken_apart(&format!("{number:.after_first$e}")));
+    let (digits, exponent) = quick.unwrap_or_else(|| {
+        let number = if after_first == AFTER_FIRST { taken(number) } else { number };
+        taken_apart(&format!("{number:.after_first$e}"))
+    });
     if number < 0.0 {
         out.push('-');
     }
@@ -108,8 +117,8 @@ fn taken_apart_quickly(number: f64) -> Option<(Significant, i32)> {
             (size * POWERS[AFTER_FIRST + behind], -i32::try_from(behind).ok()?)
         }
     };
-    // The product is wrong by less than 2e-6, so a half is the only place where it could matter.
-    if (scaled.fract() - 0.5).abs() < 1e-5 {
+    // The product is wrong by less than 2e-6, and thirteen digits are within 5e-4: a half is the only place where either could matter.
+    if (scaled.fract() - 0.5).abs() < 1e-3 {
         return None;
     }
     let mut rounded = scaled.round();
@@ -146,13 +155,18 @@ fn taken_apart(scientific: &str) -> (Significant, i32) {
     (digits, exponent.parse().unwrap_or(0))
 }
 
+/// `number` in thirteen digits.
+fn taken(number: f64) -> f64 {
+    format!("{number:.TAKEN$e}").parse().unwrap_or(number)
+}
+
 /// `number` as a plan keeps it: rounded to ten significant digits.
 #[must_use]
 pub fn rounded(number: f64) -> f64 {
     if is_short(number) {
         return number + 0.0;
     }
-    format!("{number:.AFTER_FIRST$e}").parse().unwrap_or(number)
+    format!("{:.AFTER_FIRST$e}", taken(number)).parse().unwrap_or(number)
 }
 
 /// `number`, the difference of numbers as large as `scale`, rounded to the decimal place where the tenth digit of `scale` stands:
@@ -164,7 +178,12 @@ pub fn rounded_to(number: f64, scale: f64) -> f64 {
     }
     let (_, exponent) = taken_apart(&format!("{scale:.AFTER_FIRST$e}"));
     match usize::try_from(9 - exponent) {
-        Ok(places) => format!("{number:.places$}").parse().unwrap_or(number) + 0.0,
+        Ok(places) => {
+            // First to three places more, for what lies next to a half.
+            let further = places + TAKEN - AFTER_FIRST;
+            let number: f64 = format!("{number:.further$}").parse().unwrap_or(number);
+            format!("{number:.places$}").parse().unwrap_or(number) + 0.0
+        }
         Err(_) => {
             let unit = 10_f64.powi(exponent - 9);
             (number / unit).round() * unit + 0.0
@@ -235,10 +254,20 @@ mod tests {
         }
 
         #[test]
+        fn what_ends_in_a_half_rounds_alike_from_either_side(whole in 1_000_000_000..9_999_999_999_u64, exponent in -20..5_i32) {
+            let half: f64 = format!("{whole}5e{exponent}").parse().unwrap();
+            let (below, above) = (half * (1.0 - 1e-14), half * (1.0 + 1e-14));
+            prop_assert_eq!(written(below), written(half));
+            prop_assert_eq!(written(above), written(half));
+            prop_assert_eq!(rounded(below).to_bits(), rounded(above).to_bits());
+            prop_assert_eq!(rounded_to(below, half).to_bits(), rounded_to(above, half).to_bits());
+        }
+
+        #[test]
         fn the_quick_way_rounds_as_the_exact_one(exponent in -6..16_i32, mantissa in 1.0..10.0_f64, places in 0..14_i32) {
             let shortened = (mantissa * 10_f64.powi(places)).round() / 10_f64.powi(places);
             for number in [mantissa, shortened, shortened + 0.5 * 10_f64.powi(-9)].map(|m| m * 10_f64.powi(exponent)) {
-                let (exact, exact_exponent) = taken_apart(&format!("{number:.AFTER_FIRST$e}"));
+                let (exact, exact_exponent) = taken_apart(&format!("{:.AFTER_FIRST$e}", taken(number)));
                 if let Some((quick, exponent)) = taken_apart_quickly(number) {
                     prop_assert_eq!((quick.as_str(), exponent), (exact.as_str(), exact_exponent));
                 }

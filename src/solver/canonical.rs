@@ -8,6 +8,7 @@ use super::free;
 use super::instance::Instance;
 use super::live::Refusal;
 use super::look::Look;
+use super::mend;
 use super::proof::{self, Checked, TOLERANCE};
 use super::sharp::Sharp;
 use super::stop::Stop;
@@ -57,7 +58,13 @@ pub struct Canonical {
 /// # Errors
 /// When the solver refuses a basis or a program.
 pub fn of(instance: &mut Instance, program: &Program, look: Look, stop: &Stop) -> Result<Canonical, Refusal> {
-    let mut sharp = Sharp::of(instance, program, &look)?;
+    let large = program.rows.len() > MOST_EXACT;
+    let (look, mut sharp) = if large {
+        mend::gains(instance, program, look, NIL_IF_LARGE)?
+    } else {
+        let sharp = Sharp::of(instance, program, &look)?;
+        (look, sharp)
+    };
     let clear = sharp.margins.iter().all(|&margin| margin > CLEAR);
     let mut look = sharpened(look, &sharp);
     // Every bound and every gain may be kept by so much that rounding has no say: the vertex is the only optimal one.
@@ -67,7 +74,6 @@ pub fn of(instance: &mut Instance, program: &Program, look: Look, stop: &Stop) -
         return Ok(plan(look, true));
     }
     let weights = weights(program);
-    let large = program.rows.len() > MOST_EXACT;
     let right = |sharp: &Sharp| sharp.margins.iter().all(|&margin| margin >= -NIL_IF_LARGE);
     // Where nothing exact follows, what twice the digits tell from 0 is not a tie.
     let nil = if large && right(&sharp) { NIL_IF_LARGE } else { TOLERANCE };

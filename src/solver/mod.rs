@@ -20,6 +20,7 @@ pub mod known;
 mod let_go;
 pub mod live;
 pub mod look;
+mod mend;
 pub mod message;
 pub mod minimal;
 pub mod opened;
