@@ -109,6 +109,12 @@ impl ModelPath {
         &self.root
     }
 
+    /// The same, shared.
+    #[must_use]
+    pub fn shared_root(&self) -> Arc<Path> {
+        self.root.clone()
+    }
+
     /// The path below the watched folder by which it is known: that of a file, whatever it lies there as.
     #[must_use]
     pub fn relative(&self) -> &Path {

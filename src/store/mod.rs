@@ -6,6 +6,7 @@ pub mod atomic;
 pub mod error;
 pub mod folder;
 pub mod lock;
+mod place;
 pub mod publish;
 pub mod reading;
 pub mod state;
