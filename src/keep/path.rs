@@ -188,6 +188,12 @@ pub fn is_model(name: &OsStr) -> bool {
     stem(name, MODEL).is_some()
 }
 
+/// Whether a file of this name is a note or a release.
+#[must_use]
+pub fn is_beside(name: &OsStr) -> bool {
+    stem(name, NOTE).is_some() || stem(name, RELEASE).is_some()
+}
+
 /// Whether a file of this name is a plan or a note.
 #[must_use]
 pub fn is_output(name: &OsStr) -> bool {
