@@ -8,10 +8,12 @@ use tracing::level_filters::LevelFilter;
 use super::exit::{Error, Outcome, shown};
 use super::logging::Log;
 use super::once::locked;
+use super::outbox::Outbox;
 use super::screen::Screen;
 use super::worker::planners;
 use super::{Setting, logging, status, told};
 use crate::keep::{self, KeepError, Manager, Operating, Replanned};
+use crate::store::error::reason;
 
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path, asked: bool) -> Result<Outcome, Error> {
     let about = std::fs::metadata(dir).map_err(|error| Error::reading(dir, &error))?;
@@ -31,13 +33,20 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path, asked:
     tracing::info!("keeping {}", shown(dir));
     let reread = || reread(setting, dir, log.as_ref());
     let operating = Operating { reread: Some(Box::new(reread)), manager };
+    let outbox = screen.json().then(Outbox::to_stdout).transpose();
+    let outbox = outbox.map_err(|error| Error::failure(format_args!("cannot start: {}", reason(&error)), ""))?;
     let kept = keep::keep(dir, &settings.keep, planners(&settings.keep), operating, |model, replanned| {
         // A look that found all as it was is told too, without a start, so that a reader knows from the beginning where each model
         // stands. What was given up or has vanished is looked at again, and told then.
-        if screen.json() && !matches!(replanned, Replanned::Interrupted | Replanned::Vanished) {
-            told::object(screen, model, replanned);
+        if let Some(outbox) = &outbox
+            && !matches!(replanned, Replanned::Interrupted | Replanned::Vanished)
+        {
+            outbox.send(told::object_line(model, replanned));
         }
     });
+    if let Some(outbox) = outbox {
+        screen.note(outbox.finish());
+    }
     match kept {
         Ok(()) => {
             tracing::info!("stopped");

@@ -11,6 +11,7 @@ mod keep;
 mod logging;
 mod models;
 mod once;
+mod outbox;
 mod release;
 mod screen;
 mod settings;

@@ -80,7 +80,12 @@ impl Screen {
 
     /// One object of results for programs.
     pub(crate) fn object(&mut self, value: &impl Serialize) {
-        self.say(json::line(value));
+        self.line(json::line(value));
+    }
+
+    /// The same, already a line of JSON.
+    pub(crate) fn line(&mut self, line: String) {
+        self.say(line);
         let flushed = self.out.flush();
         self.note(flushed);
     }
@@ -138,7 +143,8 @@ impl Screen {
         }
     }
 
-    fn note(&mut self, written: io::Result<()>) {
+    /// Takes note of how results were written elsewhere.
+    pub(crate) fn note(&mut self, written: io::Result<()>) {
         if let Err(error) = written
             && error.kind() != io::ErrorKind::BrokenPipe
         {

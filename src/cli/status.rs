@@ -47,6 +47,10 @@ fn words(status: &Status, holder: &str) -> String {
         done.interrupted,
         done.failed,
     );
+    if status.waiting > 0 {
+        let models = if status.waiting == 1 { "model" } else { "models" };
+        text.push_str(&format!("  waiting   {} {models}, for {}\n", status.waiting, lasting(status.waiting_seconds)));
+    }
     for running in &status.running {
         text.push_str(&format!("  running   {}, for {}\n", Plain(&running.path), lasting(running.seconds)));
     }
@@ -92,7 +96,14 @@ mod tests {
 
     #[test]
     fn a_status_is_told_line_by_line_and_escaped() {
-        let mut status = Status { folder: "/works\u{1b}".into(), seconds: 7, waiting: 2, more: 3, ..Status::default() };
+        let mut status = Status {
+            folder: "/works\u{1b}".into(),
+            seconds: 7,
+            waiting: 2,
+            waiting_seconds: 61,
+            more: 3,
+            ..Status::default()
+        };
         status.watching.words = "edits are noticed by file events".into();
         status.models = [("current", 4), ("held", 1)].map(|(standing, count)| (standing.to_owned(), count)).into();
         status.running = vec![Running { path: "a.model.toml".into(), seconds: 3 }];
@@ -104,7 +115,7 @@ mod tests {
             "/works\\u{1b}\n  kept by   process 7 on host mill\n  as of     7 s after its start, when something last \
              happened\n  watching  edits are noticed by file events\n  \
              models    5: 4 current, 1 held, 2 waiting\n  done      0 replanned, 0 unchanged, 0 given up for a newer edit, \
-             0 failed\n  running   a.model.toml, for 3 s\n  held      b.model.toml: line 2:\\u{a}no such key\n  and 3 more\n"
+             0 failed\n  waiting   2 models, for 1 min 1 s\n  running   a.model.toml, for 3 s\n  held      b.model.toml: line 2:\\u{a}no such key\n  and 3 more\n"
         );
     }
 }

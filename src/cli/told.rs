@@ -3,6 +3,7 @@
 use serde_json::json;
 
 use super::exit::{Outcome, text};
+use super::json;
 use super::screen::{BAD, Screen, WARN};
 use crate::keep::{ModelPath, Replanned, Report};
 use crate::model::escape::Plain;
@@ -18,20 +19,25 @@ pub(super) fn outcome(replanned: &Replanned) -> Outcome {
     }
 }
 
-/// Tells one object; for a look that gave no plan, `standing` is `vanished`, `interrupted` or `failed`.
+/// Tells one object.
 pub(super) fn object(screen: &mut Screen, model: &ModelPath, replanned: &Replanned) {
+    screen.line(object_line(model, replanned));
+}
+
+/// One object as a line of JSON; for a look that gave no plan, `standing` is `vanished`, `interrupted` or `failed`.
+pub(super) fn object_line(model: &ModelPath, replanned: &Replanned) -> String {
     let without = |standing: &str, error: Option<&str>| {
         let mut object = json!({ "model": model.name(), "path": text(&model.seen()), "standing": standing });
         if let Some(error) = error {
             object["error"] = error.into();
         }
-        object
+        json::line(&object)
     };
     match replanned {
-        Replanned::Done(report) | Replanned::Unchanged(report) => screen.object(report),
-        Replanned::Vanished => screen.object(&without("vanished", None)),
-        Replanned::Interrupted => screen.object(&without("interrupted", None)),
-        Replanned::Failed { message, .. } => screen.object(&without("failed", Some(message))),
+        Replanned::Done(report) | Replanned::Unchanged(report) => json::line(report),
+        Replanned::Vanished => without("vanished", None),
+        Replanned::Interrupted => without("interrupted", None),
+        Replanned::Failed { message, .. } => without("failed", Some(message)),
     }
 }
 

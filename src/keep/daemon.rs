@@ -57,6 +57,8 @@ pub struct Dispatcher {
     tally: Tally,
     status_due: Due,
     watching: Watching,
+    /// Since when there has always been a model that waits.
+    behind: Option<Instant>,
     /// The folder that is ours; none while another one stands in its place or the lock is lost, and then nothing is planned.
     claimed: Option<FolderId>,
     begun_at: Instant,
@@ -89,6 +91,7 @@ impl Dispatcher {
             tally: Tally::default(),
             status_due: Due::default(),
             watching: Watching::Events,
+            behind: None,
             claimed: None,
             begun_at: now,
             started,
@@ -171,6 +174,7 @@ impl Dispatcher {
         {
             actions.push(Action::Run(worker, Job { path, what, state: self.state.clone() }));
         }
+        self.behind = (self.queue.waiting() > 0).then(|| self.behind.unwrap_or(now));
         // Where another daemon keeps the folder, the status there is that one's.
         if self.claimed.is_some() && self.status_due.take(now, self.tally.is_running()) {
             actions.push(Action::Note(Box::new(self.status(now))));
@@ -187,6 +191,7 @@ impl Dispatcher {
             watching: (&self.watching).into(),
             trouble: self.sayings.about_folder(),
             waiting: self.queue.waiting(),
+            waiting_seconds: self.behind.map_or(0, |since| now.saturating_duration_since(since).as_secs()),
             ..Status::default()
         };
         self.tally.fill(now, &mut status);
@@ -342,6 +347,7 @@ impl Dispatcher {
     /// Compares what a scan saw with what was dealt with.
     fn compare(&mut self, now: Instant, began: Instant, scan: &Scan, actions: &mut Vec<Action>) {
         let rested = self.started.take().map(|started| started - self.settle.as_nanos().cast_signed());
+        let mut ready = Vec::new();
         for (model, sight) in &scan.sights {
             let in_hand = match self.begun.get(model) {
                 Some(&stamp) => stamp == sight.model,
@@ -355,8 +361,13 @@ impl Dispatcher {
             let at_rest = rested.zip(sight.model).is_some_and(|(rested, stamp)| stamp.changed() < rested);
             let what = if at_rest { Some(What::Replan) } else { self.settling.look(began, now, model, *sight) };
             if let Some(what) = what {
-                self.push(model, what, actions);
+                ready.push((sight.model.map(|stamp| stamp.changed()), model, what));
             }
+        }
+        // What was touched last is what somebody waits for.
+        ready.sort_by_key(|&(changed, ..)| std::cmp::Reverse(changed));
+        for (_, model, what) in ready {
+            self.push(model, what, actions);
         }
         self.settling.forget_unseen(|model| scan.sights.contains_key(model));
         let queue = &mut self.queue;

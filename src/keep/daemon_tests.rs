@@ -478,3 +478,34 @@ fn a_status_tells_what_runs_and_what_is_amiss() {
     bench.pass(60 * SECOND);
     assert_eq!(bench.statuses.len(), written, "nothing has happened");
 }
+
+#[test]
+fn d8_a_first_scan_plans_first_what_was_touched_last_and_the_status_tells_how_far_it_is() {
+    let mut bench = Bench::new(1);
+    let mut last = 0;
+    for name in ["b", "c", "a"] {
+        // Until the clock of the file system has moved on.
+        while Stamp::of(&bench.model(name).full()).is_none_or(|stamp| stamp.changed() <= last) {
+            bench.write(&format!("{name}.model.toml"), "1");
+        }
+        last = Stamp::of(&bench.model(name).full()).unwrap().changed();
+    }
+    bench.pass(5 * SECOND);
+    let status = bench.statuses.last().unwrap();
+    assert_eq!((status.waiting, status.running.len()), (2, 1));
+    bench.pass(60 * SECOND);
+    let status = bench.statuses.last().unwrap();
+    assert_eq!((status.waiting, &status.running[0].path[..]), (2, "a.model.toml"));
+    assert!(status.waiting_seconds >= 50 && status.running[0].seconds >= 50, "{status:?}");
+    let order: Vec<_> = (0..3)
+        .map(|_| {
+            let name = bench.in_hand()[0].0.clone();
+            bench.end(done());
+            name
+        })
+        .collect();
+    assert_eq!(order, ["a", "c", "b"]);
+    bench.pass(10 * SECOND);
+    let status = bench.statuses.last().unwrap();
+    assert_eq!((status.waiting, status.waiting_seconds, status.running.len()), (0, 0, 0));
+}

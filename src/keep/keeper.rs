@@ -19,7 +19,7 @@ use super::scan::{FolderId, scan};
 use super::settings::{By, Settings};
 use super::watch::{Followed, Watcher, Watching};
 use crate::store::error::reason;
-use crate::store::{Folder, Lock, LockError, Step, StoreError, atomic};
+use crate::store::{Folder, Lock, LockError, Step, StoreError, Watched, atomic};
 
 /// What the loop holds.
 pub(super) struct Keeper<R> {
@@ -28,6 +28,8 @@ pub(super) struct Keeper<R> {
     root: Arc<Path>,
     ignore: Arc<Ignore>,
     lock: Option<Arc<Lock>>,
+    /// What was seen of other hosts that may keep the folder.
+    watched: Watched,
     watcher: Option<Watcher>,
     scans: mpsc::Sender<ScanJob>,
     pool: Pool,
@@ -67,10 +69,27 @@ impl<R: FnMut(&ModelPath, &Replanned)> Keeper<R> {
         let scans = scanner(events.clone())?;
         let root = Arc::from(folder.root());
         let stops = vec![Stop::new(); workers];
-        let (lock, watcher) = (None, None);
-        let mut keeper =
-            Self { settings, folder, root, ignore, lock, watcher, scans, pool, stops, events, hints, on_report };
-        keeper.claim()?;
+        let (lock, watcher, watched) = (None, None, Watched::default());
+        let mut keeper = Self {
+            settings,
+            folder,
+            root,
+            ignore,
+            lock,
+            watched,
+            watcher,
+            scans,
+            pool,
+            stops,
+            events,
+            hints,
+            on_report,
+        };
+        match keeper.claim() {
+            // It asks again with every scan, until it is sure.
+            Err(error @ KeepError::Lock(LockError::Unsure { .. })) => keeper.send(Event::Unclaimed(error.to_string())),
+            claimed => claimed?,
+        }
         Ok(keeper)
     }
 
@@ -87,7 +106,11 @@ impl<R: FnMut(&ModelPath, &Replanned)> Keeper<R> {
         allow_state(&self.root, self.settings.state_dir.as_deref())?;
         self.folder = Folder::open(&self.root, self.settings.state_dir.as_deref())?;
         let id = FolderId::of(&self.root).map_err(StoreError::failed(Step::Look, &self.root))?;
-        self.lock = Some(Arc::new(Lock::take(&self.folder)?));
+        let lock = match remote::terms(&self.root) {
+            Some(terms) => Lock::take_among_hosts(&self.folder, &terms, &mut self.watched)?,
+            None => Lock::take(&self.folder)?,
+        };
+        self.lock = Some(Arc::new(lock));
         // Folders within it are watched when a scan has found them.
         self.follow(&BTreeSet::from([PathBuf::new()]));
         // What was written before the watch began is found by the scan that follows.

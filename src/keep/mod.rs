@@ -24,6 +24,7 @@ pub mod settings;
 pub mod settle;
 mod signals;
 pub mod status;
+mod twins;
 pub mod verify;
 pub mod watch;
 pub mod workers;

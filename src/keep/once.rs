@@ -9,6 +9,7 @@ use std::sync::{Arc, mpsc};
 use super::path::{Ignore, IgnoreError, ModelPath};
 use super::pool::{Factory, Job, Pool, Replanned, Stop, What, Word};
 use super::queue::Queue;
+use super::remote;
 use super::scan::scan;
 use super::settings::Settings;
 use crate::model::read::is_folder_name;
@@ -75,7 +76,10 @@ pub fn once(
     let mut unread = Vec::new();
     for (root, paths) in roots {
         let folder = Folder::open(&root, settings.state_dir.as_deref())?;
-        let _lock = Lock::take(&folder)?;
+        let _lock = match remote::terms(folder.root()) {
+            Some(terms) => Lock::await_among_hosts(&folder, &terms)?,
+            None => Lock::take(&folder)?,
+        };
         let gathered = gather(&Arc::from(folder.root()), &paths, &ignore)?;
         run(gathered.work, settings.workers.max(1), &Arc::from(folder.state()), factory, &mut on_report)?;
         unread.extend(gathered.unread);

@@ -109,6 +109,12 @@ impl ModelPath {
         &self.root
     }
 
+    /// The same, shared.
+    #[must_use]
+    pub fn shared_root(&self) -> Arc<Path> {
+        self.root.clone()
+    }
+
     /// The path below the watched folder by which it is known: that of a file, whatever it lies there as.
     #[must_use]
     pub fn relative(&self) -> &Path {
@@ -180,6 +186,12 @@ impl fmt::Debug for ModelPath {
 #[must_use]
 pub fn is_model(name: &OsStr) -> bool {
     stem(name, MODEL).is_some()
+}
+
+/// Whether a file of this name is a note or a release.
+#[must_use]
+pub fn is_beside(name: &OsStr) -> bool {
+    stem(name, NOTE).is_some() || stem(name, RELEASE).is_some()
 }
 
 /// Whether a file of this name is a plan or a note.

@@ -3,6 +3,8 @@
 use std::io;
 use std::path::Path;
 
+use crate::store::Terms;
+
 /// File systems over a network, or made by another program, by the number that `statfs` gives: from `linux/magic.h`, and from the
 /// sources of those that are not in it.
 const REMOTE: [(u32, &str); 16] = [
@@ -31,6 +33,12 @@ const REMOTE: [(u32, &str); 16] = [
 pub fn kind(path: &Path) -> io::Result<Option<&'static str>> {
     let about = rustix::fs::statfs(path)?;
     Ok(known(i128::from(about.f_type)))
+}
+
+/// The terms on which a folder is kept that other hosts may use too; none where it is this host's alone.
+#[must_use]
+pub fn terms(folder: &Path) -> Option<Terms> {
+    Terms::pretended().or_else(|| matches!(kind(folder), Ok(Some(_))).then(Terms::of_this_host))
 }
 
 /// The name of a number; the system's type for it differs from machine to machine, in width and in sign.

@@ -7,6 +7,7 @@ use std::time::{Duration, Instant};
 use super::event::{Action, Weight};
 use super::path::ModelPath;
 use super::scan::Scan;
+use super::twins;
 use crate::model::escape::Plain;
 
 /// Of several messages alike at one time, so many are said.
@@ -34,6 +35,9 @@ pub struct Sayings {
     standing: BTreeMap<Cause, (String, String)>,
     odd: BTreeSet<ModelPath>,
     unread: BTreeMap<PathBuf, String>,
+    /// The models of the last scan, and what was said of those whose names are hard to tell apart.
+    models: Vec<ModelPath>,
+    twins: BTreeSet<String>,
     window: Option<Window>,
 }
 
@@ -80,9 +84,22 @@ impl Sayings {
         let new = |&(path, why): &(&PathBuf, &String)| self.unread.get(path) != Some(why);
         let unread = scan.unread.iter().filter(new).map(|(path, why)| unread(path, why));
         said.extend(alike(unread.collect(), "cannot be read"));
+        said.extend(self.mention_twins(scan));
         self.odd.clone_from(&scan.odd);
         self.unread.clone_from(&scan.unread);
         said
+    }
+
+    /// Mentions models whose names are twins. Names are looked at only where there are others than before.
+    fn mention_twins(&mut self, scan: &Scan) -> Vec<Action> {
+        if self.models.iter().eq(scan.sights.keys()) {
+            return Vec::new();
+        }
+        self.models = scan.sights.keys().cloned().collect();
+        let twins: BTreeSet<_> = twins::find(self.models.iter()).into_iter().collect();
+        let new = twins.difference(&self.twins).cloned().collect();
+        self.twins = twins;
+        alike(new, "are hard to tell from others by their names")
     }
 
     /// A message about a model that could not be planned, unless there have been too many of late; those are counted.

@@ -1,6 +1,6 @@
 //! Looking at the whole folder: what correctness rests on.
 
-use std::collections::{BTreeMap, BTreeSet};
+use std::collections::{BTreeMap, BTreeSet, HashSet};
 use std::ffi::OsString;
 use std::fs::{self, Metadata};
 use std::io;
@@ -8,7 +8,7 @@ use std::os::unix::fs::MetadataExt;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use super::path::{Form, Ignore, ModelPath, file_of_folder, is_entered, is_model, model_of_plan};
+use super::path::{Form, Ignore, ModelPath, file_of_folder, is_beside, is_entered, is_model, model_of_plan};
 use crate::model::read::{self, Listing};
 use crate::store::atomic::is_temp;
 use crate::store::error::reason;
@@ -72,15 +72,22 @@ impl Lying {
     /// # Errors
     /// What the system says; [`io::ErrorKind::InvalidInput`] where what lies there is neither a plain file nor a folder.
     fn look(path: &Path) -> io::Result<Option<Self>> {
+        Self::look_for(path, true)
+    }
+
+    /// The same; where it is known that there is no folder of that name, none is looked for.
+    fn look_for(path: &Path, may_be_in_parts: bool) -> io::Result<Option<Self>> {
         let Some((file, folder)) = read::forms(path) else { return Ok(None) };
-        let parts = Self::in_parts(&folder)?;
+        let parts = if may_be_in_parts { Self::in_parts(&folder)? } else { None };
         match about(&file)? {
             Some(metadata) if metadata.is_file() => {
                 // Where both are there, neither can be planned until one is gone.
                 let parts = parts.and_then(|lying| lying.stamp.parts);
                 Ok(Some(Self { form: Form::File, stamp: Stamp { parts, ..Stamp::from(&metadata) } }))
             }
-            None if parts.is_none() && leads_to_folder(&folder) => Err(io::ErrorKind::InvalidInput.into()),
+            None if parts.is_none() && may_be_in_parts && leads_to_folder(&folder) => {
+                Err(io::ErrorKind::InvalidInput.into())
+            }
             Some(_) if parts.is_none() => Err(io::ErrorKind::InvalidInput.into()),
             _ => Ok(parts),
         }
@@ -228,43 +235,54 @@ pub fn scan(root: &Arc<Path>, ignore: &Ignore) -> io::Result<Scan> {
     Ok(scan)
 }
 
+/// What a folder's list of names says of one model: only what is on it need be looked at.
+#[derive(Clone, Copy, Debug, Default)]
+struct Listed {
+    file: bool,
+    folder: bool,
+    plan: bool,
+}
+
 /// Looks into one folder, and returns the folders in it.
 fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) -> io::Result<Vec<PathBuf>> {
     let mut inner = Vec::new();
-    let mut models: BTreeSet<OsString> = BTreeSet::new();
+    let mut models: BTreeMap<OsString, Listed> = BTreeMap::new();
+    let mut beside = HashSet::new();
     for entry in fs::read_dir(root.join(folder))? {
         let entry = entry?;
         let name = entry.file_name();
         let is_folder = entry.file_type().is_ok_and(|kind| kind.is_dir());
         if is_model(&name) {
-            models.insert(name);
+            models.entry(name).or_default().file = true;
         } else if let Some(model) = file_of_folder(&name) {
             let relative = folder.join(&name);
             // A plain file of such a name is somebody else's.
             if !ignore.covers(&relative) && (is_folder || leads_to_folder(&entry.path())) {
-                models.insert(model);
+                models.entry(model).or_default().folder = true;
                 scan.folders.extend(is_folder.then_some(relative));
             }
         } else if let Some(model) = model_of_plan(&name) {
-            models.insert(model);
+            models.entry(model).or_default().plan = true;
+        } else if is_beside(&name) {
+            beside.insert(name);
         } else if is_temp(&name) {
             scan.temps.push(entry.path());
         } else if is_folder && is_entered(&name) && !ignore.covers(&folder.join(&name)) {
             inner.push(folder.join(&name));
         }
     }
-    for name in models {
+    for (name, listed) in models {
         let relative = folder.join(name);
         if let Some(model) = ModelPath::new(root, &relative).filter(|_| !ignore.covers(&relative)) {
-            look_at(model, scan)?;
+            look_at(model, listed, &beside, scan)?;
         }
     }
     Ok(inner)
 }
 
 /// Looks at one model. Fails where the folder lets names be read and nothing behind them: then nothing is known of the others either.
-fn look_at(model: ModelPath, scan: &mut Scan) -> io::Result<()> {
-    match look(&model) {
+fn look_at(model: ModelPath, listed: Listed, beside: &HashSet<OsString>, scan: &mut Scan) -> io::Result<()> {
+    match look(&model, listed, beside) {
         Ok(Some((form, sight))) => {
             scan.sights.insert(model.lying(form), sight);
         }
@@ -285,17 +303,24 @@ fn look_at(model: ModelPath, scan: &mut Scan) -> io::Result<()> {
 ///
 /// # Errors
 /// What the system says; [`io::ErrorKind::InvalidInput`] where the model is no plain file.
-fn look(model: &ModelPath) -> io::Result<Option<(Form, Sight)>> {
-    let (form, sight) = match Lying::look(&model.full())? {
+fn look(model: &ModelPath, listed: Listed, beside: &HashSet<OsString>) -> io::Result<Option<(Form, Sight)>> {
+    let is_there = listed.file || listed.folder;
+    let lying = if is_there { Lying::look_for(&model.full(), listed.folder)? } else { None };
+    let (form, sight) = match lying {
         Some(Lying { form, stamp }) => {
-            (form, Sight { model: Some(stamp), plan: Stamp::of(&model.plan()), ..Sight::default() })
+            let plan = if listed.plan { Stamp::of(&model.plan()) } else { None };
+            (form, Sight { model: Some(stamp), plan, ..Sight::default() })
         }
         None => match about(&model.plan())?.filter(Metadata::is_file) {
             Some(plan) => (Form::File, Sight { plan: Some(Stamp::from(&plan)), ..Sight::default() }),
             None => return Ok(None),
         },
     };
-    Ok(Some((form, Sight { note: Stamp::of(&model.note()), release: Stamp::of(&model.release()), ..sight })))
+    let listed = |path: PathBuf| path.file_name().is_some_and(|name| beside.contains(name)).then(|| Stamp::of(&path));
+    Ok(Some((
+        form,
+        Sight { note: listed(model.note()).flatten(), release: listed(model.release()).flatten(), ..sight },
+    )))
 }
 
 /// What the system says of a path; `None` where nothing is.

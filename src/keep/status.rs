@@ -40,6 +40,9 @@ pub struct Status {
     pub models: BTreeMap<String, usize>,
     /// How many models wait to be planned.
     pub waiting: usize,
+    /// For how many seconds there has always been one that waits.
+    #[serde(default)]
+    pub waiting_seconds: u64,
     /// What is being planned.
     pub running: Vec<Running>,
     /// What was done since the daemon began.

@@ -5,23 +5,21 @@ use std::io::{self, Read, Write};
 use std::os::unix::fs::{MetadataExt, OpenOptionsExt, PermissionsExt};
 use std::path::{Path, PathBuf};
 
-use rustix::fs::OFlags;
-use tempfile::NamedTempFile;
+use rustix::fs::{FileType, OFlags};
 
 use super::error::{Step, StoreError};
+use super::place::Place;
 
-const TEMP_PREFIX: &str = ".millreeve-";
-const TEMP_SUFFIX: &str = ".tmp";
-const TEMP_RANDOM: usize = 8;
+pub(super) const TEMP_PREFIX: &str = ".millreeve-";
+pub(super) const TEMP_SUFFIX: &str = ".tmp";
+pub(super) const TEMP_RANDOM: usize = 8;
 
 /// How much of the file that stands there is shown to the caller's `ours`, in bytes.
 pub const HEAD: usize = 1024;
 
-/// The mode of a new file, before the process's umask.
-const NEW_MODE: u32 = 0o644;
-
-/// What the owner of a new file may do, whatever the umask.
-const OWNERS: u32 = 0o600;
+const A_FOLDER: &str = "a folder";
+const A_LINK: &str = "a symbolic link";
+const NO_FILE: &str = "not a plain file";
 
 /// What a write came to.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -57,12 +55,27 @@ pub fn write(
     ours: fn(&[u8]) -> bool,
     durability: Durability,
 ) -> Result<Written, StoreError> {
-    write_checked(path, bytes, ours, durability, &mut |_| Ok(()))
+    write_checked((None, path), bytes, ours, durability, &mut |_| Ok(()))
 }
 
-/// As [`write`], asking `permit` before each step; tests let steps fail there.
-fn write_checked(
+/// As [`write`], and no link below `root`, which is the beginning of `path`, is followed on the way to the file: nothing is written through
+/// one, be it put there at the last moment.
+///
+/// # Errors
+/// As [`write`]; a link on the way, or another folder in the place of the one that the write began in, fails it.
+pub fn write_below(
+    root: &Path,
     path: &Path,
+    bytes: &[u8],
+    ours: fn(&[u8]) -> bool,
+    durability: Durability,
+) -> Result<Written, StoreError> {
+    write_checked((Some(root), path), bytes, ours, durability, &mut |_| Ok(()))
+}
+
+/// As [`write_below`], asking `permit` before each step; tests let steps fail there.
+fn write_checked(
+    (root, path): (Option<&Path>, &Path),
     bytes: &[u8],
     ours: fn(&[u8]) -> bool,
     durability: Durability,
@@ -70,25 +83,23 @@ fn write_checked(
 ) -> Result<Written, StoreError> {
     let failed = |step| StoreError::failed(step, path);
     permit(Step::Look).map_err(failed(Step::Look))?;
-    let old = look(path, bytes, ours)?;
+    let place = Place::open(root, path).map_err(failed(Step::Look))?;
+    let old = look(&place, path, bytes, ours)?;
     if let Some(Old { same: true, .. }) = old {
         return Ok(Written::Same);
     }
-    let folder = folder_of(path);
-    let mut temp = permit(Step::Create).and_then(|()| create(folder)).map_err(failed(Step::Create))?;
-    permit(Step::Write).and_then(|()| temp.write_all(bytes)).map_err(failed(Step::Write))?;
+    let mut temp = permit(Step::Create).and_then(|()| place.create()).map_err(failed(Step::Create))?;
+    permit(Step::Write).and_then(|()| temp.file.write_all(bytes)).map_err(failed(Step::Write))?;
     if let Some(old) = &old {
-        permit(Step::Mode).and_then(|()| old.dress(temp.as_file())).map_err(failed(Step::Mode))?;
+        permit(Step::Mode).and_then(|()| old.dress(&temp.file)).map_err(failed(Step::Mode))?;
     }
     if durability == Durability::Synced {
         // A failed sync leaves the fate of the pages unknown: the file is dropped, never synced a second time.
-        permit(Step::Sync).and_then(|()| temp.as_file().sync_all()).map_err(failed(Step::Sync))?;
+        permit(Step::Sync).and_then(|()| temp.file.sync_all()).map_err(failed(Step::Sync))?;
     }
-    permit(Step::Rename)
-        .and_then(|()| temp.persist(path).map_err(|error| error.error))
-        .map_err(failed(Step::Rename))?;
+    permit(Step::Rename).and_then(|()| place.put(temp)).map_err(failed(Step::Rename))?;
     if durability == Durability::Synced {
-        permit(Step::SyncFolder).and_then(|()| File::open(folder)?.sync_all()).map_err(failed(Step::SyncFolder))?;
+        permit(Step::SyncFolder).and_then(|()| place.folder().sync_all()).map_err(failed(Step::SyncFolder))?;
     }
     Ok(if old.is_some() { Written::Replaced } else { Written::New })
 }
@@ -111,21 +122,20 @@ impl Old {
     }
 }
 
-/// Looks at what stands at `path`: `None` where nothing does.
-fn look(path: &Path, bytes: &[u8], ours: fn(&[u8]) -> bool) -> Result<Option<Old>, StoreError> {
+/// Looks at what stands at a place: `None` where nothing does.
+fn look(place: &Place<'_>, path: &Path, bytes: &[u8], ours: fn(&[u8]) -> bool) -> Result<Option<Old>, StoreError> {
     let failed = || StoreError::failed(Step::Look, path);
-    match fs::symlink_metadata(path) {
-        Ok(metadata) if metadata.is_file() => {}
-        Ok(metadata) => {
-            return Err(StoreError::InTheWay { path: path.to_owned(), what: kind(metadata.file_type()) });
-        }
-        Err(error) if error.kind() == io::ErrorKind::NotFound => {
-            let folder = fs::metadata(folder_of(path)).map_err(failed())?;
-            return if folder.is_dir() { Ok(None) } else { Err(failed()(error)) };
-        }
-        Err(error) => return Err(failed()(error)),
+    let what = match place.kind().map_err(failed())? {
+        None => return Ok(None),
+        Some(FileType::RegularFile) => None,
+        Some(FileType::Directory) => Some(A_FOLDER),
+        Some(FileType::Symlink) => Some(A_LINK),
+        Some(_) => Some(NO_FILE),
+    };
+    if let Some(what) = what {
+        return Err(StoreError::InTheWay { path: path.to_owned(), what });
     }
-    let file = open_plain(path).map_err(failed())?;
+    let file = place.read().and_then(plain).map_err(failed())?;
     let metadata = file.metadata().map_err(failed())?;
     let most = bytes.len().max(HEAD);
     let mut there = Vec::with_capacity(most + 1);
@@ -144,11 +154,11 @@ fn look(path: &Path, bytes: &[u8], ours: fn(&[u8]) -> bool) -> Result<Option<Old
 pub fn open_plain(path: &Path) -> io::Result<File> {
     let flags = OFlags::NOFOLLOW | OFlags::NONBLOCK | OFlags::CLOEXEC;
     let file = OpenOptions::new().read(true).custom_flags(flags.bits().cast_signed()).open(path)?;
-    if file.metadata()?.is_file() {
-        Ok(file)
-    } else {
-        Err(io::Error::new(io::ErrorKind::InvalidInput, "not a plain file"))
-    }
+    plain(file)
+}
+
+fn plain(file: File) -> io::Result<File> {
+    if file.metadata()?.is_file() { Ok(file) } else { Err(io::Error::new(io::ErrorKind::InvalidInput, NO_FILE)) }
 }
 
 /// An empty buffer with room for what a file holds now, up to a limit: without it a small file takes a handful of reads.
@@ -160,41 +170,11 @@ pub(super) fn room_for(file: &File, most: u64) -> Vec<u8> {
 /// The words for what is not a plain file.
 pub(crate) fn kind(kind: fs::FileType) -> &'static str {
     if kind.is_dir() {
-        "a folder"
+        A_FOLDER
     } else if kind.is_symlink() {
-        "a symbolic link"
+        A_LINK
     } else {
-        "not a plain file"
-    }
-}
-
-/// Creates a temporary file in `folder`, locked so that no sweep takes it for an orphan.
-fn create(folder: &Path) -> io::Result<NamedTempFile> {
-    loop {
-        let temp = tempfile::Builder::new()
-            .prefix(TEMP_PREFIX)
-            .suffix(TEMP_SUFFIX)
-            .rand_bytes(TEMP_RANDOM)
-            .permissions(Permissions::from_mode(NEW_MODE))
-            .tempfile_in(folder)?;
-        // Where the file system knows no locks the name alone protects it.
-        let _ = temp.as_file().lock();
-        let about = temp.as_file().metadata()?;
-        // A umask may have taken away what the owner needs in order to read the file again.
-        if about.mode() & OWNERS != OWNERS {
-            temp.as_file().set_permissions(Permissions::from_mode(about.mode() & 0o7777 | OWNERS))?;
-        }
-        // A sweep may have come upon it before the lock; it holds the lock itself until the file is gone.
-        if about.nlink() > 0 {
-            return Ok(temp);
-        }
-    }
-}
-
-fn folder_of(path: &Path) -> &Path {
-    match path.parent() {
-        Some(folder) if !folder.as_os_str().is_empty() => folder,
-        _ => Path::new("."),
+        NO_FILE
     }
 }
 
@@ -317,7 +297,7 @@ mod tests {
             put(&path, "ours, old").unwrap();
             let mut permit =
                 |step| if step == broken { Err(io::Error::from(io::ErrorKind::StorageFull)) } else { Ok(()) };
-            let error = write_checked(&path, b"ours, new", ours, Durability::Synced, &mut permit).unwrap_err();
+            let error = write_checked((None, &path), b"ours, new", ours, Durability::Synced, &mut permit).unwrap_err();
             assert!(matches!(&error, StoreError::Failed { step, .. } if *step == broken), "{error}");
             assert!(error.may_pass() && error.to_string().contains("the disk is full"), "{error}");
             let expected = if broken == Step::SyncFolder { "ours, new" } else { "ours, old" };
@@ -325,6 +305,39 @@ mod tests {
             assert_eq!(names(folder.path()), ["p"], "{broken:?}");
             put(&path, "ours, new").unwrap();
             assert_eq!(fs::read_to_string(&path).unwrap(), "ours, new");
+        }
+    }
+
+    /// Someone who may write there swaps the folder for a link, just before any of the steps.
+    #[test]
+    fn h4_a_folder_swapped_for_a_link_is_not_written_through() {
+        let steps = [Step::Look, Step::Create, Step::Write, Step::Mode, Step::Sync, Step::Rename];
+        for swapped in steps {
+            let works = tempfile::tempdir().unwrap();
+            let [root, trap, moved] = ["root", "trap", "moved"].map(|name| works.path().join(name));
+            for folder in [&root.join("deep"), &trap] {
+                fs::create_dir_all(folder).unwrap();
+                fs::write(folder.join("p"), "ours, old").unwrap();
+            }
+            let mut permit = |step| {
+                if step == swapped {
+                    fs::rename(root.join("deep"), &moved)?;
+                    symlink(&trap, root.join("deep"))?;
+                }
+                Ok(())
+            };
+            let path = root.join("deep/p");
+            let below = (Some(root.as_path()), path.as_path());
+            let error = write_checked(below, b"ours, new", ours, Durability::Synced, &mut permit).unwrap_err();
+            assert!(error.may_pass(), "{error}");
+            for folder in [&trap, &moved] {
+                assert_eq!(names(folder), ["p"], "{swapped:?}");
+                assert_eq!(fs::read_to_string(folder.join("p")).unwrap(), "ours, old", "{swapped:?}");
+            }
+            // Put back, it is written to again.
+            fs::remove_file(root.join("deep")).unwrap();
+            fs::rename(&moved, root.join("deep")).unwrap();
+            assert_eq!(write_below(&root, &path, b"ours, new", ours, Durability::Synced).unwrap(), Written::Replaced);
         }
     }
 
@@ -351,10 +364,13 @@ mod tests {
         let other = folder.path().join(".millreeve-notes.tmp");
         fs::write(&orphan, "half").unwrap();
         fs::write(&other, "somebody's").unwrap();
-        let live = create(folder.path()).unwrap();
+        let target = folder.path().join("p");
+        let place = Place::open(None, &target).unwrap();
+        let _live = place.create().unwrap();
         let all: Vec<_> = fs::read_dir(folder.path()).unwrap().map(|entry| entry.unwrap().path()).collect();
         assert_eq!(sweep(&all), 1);
-        assert!(!orphan.exists() && other.exists() && live.path().exists());
+        assert!(!orphan.exists() && other.exists());
+        assert_eq!(names(folder.path()).len(), 2, "the other and the live one");
     }
 
     #[test]

@@ -12,6 +12,7 @@ use rustix::fs::OFlags;
 use super::atomic::open_plain;
 use super::error::{reason, shown};
 use super::folder::Folder;
+use super::lease::{Asked, Lease, Terms, Watched};
 use crate::model::escape::Plain;
 
 const NAME: &str = "lock";
@@ -31,6 +32,8 @@ const LOOK_EVERY: Duration = Duration::from_millis(2);
 pub struct Lock {
     file: File,
     path: PathBuf,
+    /// On a network, a sign of life for other hosts.
+    lease: Option<Lease>,
 }
 
 /// Why the lock was not taken.
@@ -42,6 +45,14 @@ pub enum LockError {
         /// The watched folder.
         root: PathBuf,
         /// Who has it, as that process wrote: "process 4711 on host mill". Escaped.
+        holder: String,
+    },
+    /// A process on another host may have it.
+    #[error("{} may be kept by {holder}, where this host cannot look; it is kept from here once that has given no sign of life for half a minute", shown(.root))]
+    Unsure {
+        /// The watched folder.
+        root: PathBuf,
+        /// Who may have it. Escaped.
         holder: String,
     },
     /// The lock file cannot be opened or locked.
@@ -60,7 +71,41 @@ impl Lock {
     /// # Errors
     /// Another process has it, or the lock file cannot be used.
     pub fn take(folder: &Folder) -> Result<Self, LockError> {
-        let path = folder.own().join(NAME);
+        Self::take_named(folder, NAME)
+    }
+
+    /// The same in a folder that other hosts may use too. `watched` is what was seen of their signs of life when this was asked before.
+    ///
+    /// # Errors
+    /// As [`Lock::take`]; [`LockError::Unsure`] where another host had the folder and may be alive: to be asked again a little later.
+    pub fn take_among_hosts(folder: &Folder, terms: &Terms, watched: &mut Watched) -> Result<Self, LockError> {
+        let lock = Self::take_named(folder, terms.own_lock().as_deref().unwrap_or(NAME))?;
+        let root = || folder.root().to_owned();
+        let holder = |holder: String| Plain(&holder).to_string();
+        let failed = |source| LockError::Failed { path: lock.path.clone(), source };
+        match Lease::ask(folder.own(), terms, watched, Instant::now()).map_err(failed)? {
+            Asked::Taken(lease) => Ok(Self { lease: Some(lease), ..lock }),
+            Asked::Held(who) => Err(LockError::Held { root: root(), holder: holder(who) }),
+            Asked::Unsure(who) => Err(LockError::Unsure { root: root(), holder: holder(who) }),
+        }
+    }
+
+    /// The same, waiting until it is known whether another host is alive.
+    ///
+    /// # Errors
+    /// As [`Lock::take`].
+    pub fn await_among_hosts(folder: &Folder, terms: &Terms) -> Result<Self, LockError> {
+        let mut watched = Watched::default();
+        loop {
+            match Self::take_among_hosts(folder, terms, &mut watched) {
+                Err(LockError::Unsure { .. }) => thread::park_timeout(terms.look_every()),
+                taken => return taken,
+            }
+        }
+    }
+
+    fn take_named(folder: &Folder, name: &str) -> Result<Self, LockError> {
+        let path = folder.own().join(name);
         let failed = |source| LockError::Failed { path: path.clone(), source };
         let flags = OFlags::NOFOLLOW | OFlags::NONBLOCK | OFlags::CLOEXEC;
         let mut file = OpenOptions::new()
@@ -76,7 +121,7 @@ impl Lock {
         }
         // For the message only: a full disk must not keep the daemon from its work.
         let _ = file.set_len(0).and_then(|()| writeln!(file, "process {} on host {}", std::process::id(), host()));
-        Ok(Self { file, path })
+        Ok(Self { file, path, lease: None })
     }
 
     /// Who holds the lock on a watched folder now, as that process wrote, escaped; none where nobody does.
@@ -99,12 +144,14 @@ impl Lock {
         }
     }
 
-    /// Whether the lock file is still the one that is held: false once somebody has removed it or the folder, so that a second daemon could start.
+    /// Whether the lock file is still the one that is held: false once somebody has removed it or the folder, so that a second daemon could
+    /// start, and once another host has taken over.
     #[must_use]
     pub fn stands(&self) -> bool {
         let held = self.file.metadata().map(|metadata| (metadata.dev(), metadata.ino()));
         let there = std::fs::symlink_metadata(&self.path).map(|metadata| (metadata.dev(), metadata.ino()));
-        matches!((held, there), (Ok(held), Ok(there)) if held == there)
+        let is_there = matches!((held, there), (Ok(held), Ok(there)) if held == there);
+        is_there && self.lease.as_ref().is_none_or(Lease::stands)
     }
 
     /// When the lock was taken by the clock of the file system, in nanoseconds since 1970: what the stamps of files there compare with.
@@ -138,7 +185,7 @@ fn holder(file: &File) -> String {
 }
 
 /// The name of this host, for messages.
-fn host() -> String {
+pub(super) fn host() -> String {
     let known = ["/proc/sys/kernel/hostname", "/etc/hostname"];
     let name = known.iter().find_map(|path| std::fs::read_to_string(Path::new(path)).ok());
     name.map_or_else(|| "unknown".to_owned(), |name| name.trim().to_owned())

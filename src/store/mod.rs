@@ -5,7 +5,9 @@
 pub mod atomic;
 pub mod error;
 pub mod folder;
+pub mod lease;
 pub mod lock;
+mod place;
 pub mod publish;
 pub mod reading;
 pub mod state;
@@ -14,6 +16,7 @@ pub mod tries;
 pub use atomic::{Durability, Written};
 pub use error::{Step, StoreError};
 pub use folder::Folder;
+pub use lease::{Terms, Watched};
 pub use lock::{Lock, LockError};
 pub use publish::{Finished, Output, Outputs, Published};
 pub use state::{Lost, Record, Records};

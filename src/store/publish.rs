@@ -10,10 +10,22 @@ use super::state::{Record, Records};
 /// A file that Millreeve writes, and how it knows its own.
 #[derive(Clone, Copy, Debug)]
 pub struct Output<'a> {
-    /// Where it lies.
+    /// The watched folder, below which no link is followed.
+    pub root: &'a Path,
+    /// Where it lies, below that.
     pub path: &'a Path,
     /// Whether a file that begins so is one of ours, and may be replaced.
     pub ours: fn(&[u8]) -> bool,
+}
+
+impl Output<'_> {
+    /// Puts a text there, whole or not at all.
+    ///
+    /// # Errors
+    /// As [`atomic::write_below`].
+    pub fn put(&self, text: &str) -> Result<Written, StoreError> {
+        atomic::write_below(self.root, self.path, text.as_bytes(), self.ours, Durability::Synced)
+    }
 }
 
 /// The two files written for a model.
@@ -53,10 +65,8 @@ pub enum Finished {
 /// The first write that failed. Before the plan is in place the old pair stands; after it, [`finish`] or another call completes it.
 pub fn publish(records: &Records, record: &Record, outputs: &Outputs<'_>) -> Result<Published, StoreError> {
     records.save(record)?;
-    let put =
-        |output: &Output<'_>, text: &str| atomic::write(output.path, text.as_bytes(), output.ours, Durability::Synced);
-    let plan = put(&outputs.plan, &record.plan)?;
-    let note = put(&outputs.note, &record.note)?;
+    let plan = outputs.plan.put(&record.plan)?;
+    let note = outputs.note.put(&record.note)?;
     Ok(Published { plan, note })
 }
 
@@ -68,8 +78,7 @@ pub fn finish(record: &Record, outputs: &Outputs<'_>) -> Result<Finished, StoreE
     if !holds(&outputs.plan, &record.plan) {
         return Ok(Finished::AnotherPlan);
     }
-    let note = outputs.note;
-    match atomic::write(note.path, record.note.as_bytes(), note.ours, Durability::Synced)? {
+    match outputs.note.put(&record.note)? {
         Written::Same => Ok(Finished::Agreed),
         Written::New | Written::Replaced => Ok(Finished::NoteWritten),
     }
@@ -113,8 +122,8 @@ mod tests {
         let records = Records::open(folder.path()).unwrap();
         let [plan, note] = ["m.plan.toml", "m.note.md"].map(|name| folder.path().join(name));
         let outputs = Outputs {
-            plan: Output { path: &plan, ours: plan_is_ours },
-            note: Output { path: &note, ours: note_is_ours },
+            plan: Output { root: folder.path(), path: &plan, ours: plan_is_ours },
+            note: Output { root: folder.path(), path: &note, ours: note_is_ours },
         };
         let published = |plan, note| Published { plan, note };
         assert_eq!(publish(&records, &record(1), &outputs).unwrap(), published(Written::New, Written::New));
@@ -144,8 +153,8 @@ mod tests {
         let [plan, note] = ["m.plan.toml", "m.note.md"].map(|name| folder.path().join(name));
         fs::write(&note, "minutes of a meeting\n").unwrap();
         let outputs = Outputs {
-            plan: Output { path: &plan, ours: plan_is_ours },
-            note: Output { path: &note, ours: note_is_ours },
+            plan: Output { root: folder.path(), path: &plan, ours: plan_is_ours },
+            note: Output { root: folder.path(), path: &note, ours: note_is_ours },
         };
         assert!(matches!(publish(&records, &record(1), &outputs), Err(StoreError::NotOurs { .. })));
         assert_eq!(fs::read_to_string(&note).unwrap(), "minutes of a meeting\n");

@@ -1,5 +1,7 @@
 //! Models that have no plan, and models of nothing.
 
+use millreeve::plan::text;
+
 use crate::support::{Works, aim, tiles};
 
 #[test]
@@ -62,5 +64,50 @@ fn k9_models_of_nothing() {
     daemon.wait_current("m", 0.0);
     works.save("m", &tiles(3));
     daemon.wait_current("m", aim(3));
+    works.check();
+}
+
+/// Two resources that are nearly one: the second takes a billionth more for each board, which earns a tenth of that more. Worked out by
+/// hand, with e = 1e-9: on the second resource one board less lets 1 + e tiles more be made, which earn more than the board's 1 + e/10.
+#[test]
+fn k4_resources_that_are_nearly_the_same() {
+    let works = Works::new(&[]);
+    let mut daemon = works.keep();
+    works.save(
+        "m",
+        "format = 1\n[resources.kiln]\ncapacity = 1\n[resources.press]\ncapacity = 1\n\
+         [activities.tile]\nprice = 1\nuses = { kiln = 1, press = 1 }\n\
+         [activities.board]\nprice = 1.0000000001\nuses = { kiln = 1, press = 1.000000001 }\n",
+    );
+    let told = daemon.wait_standing("m", "current");
+    assert_eq!(told["aim"], 1.0, "{told}");
+    let plan = text::read(&works.plan_text("m")).unwrap().plan;
+    let level =
+        |name: &str| plan.activities.iter().find(|planned| planned.name.as_str() == name).unwrap().level.numbers()[0];
+    assert_eq!((level("tile"), level("board")), (1.0, 0.0));
+    works.check();
+}
+
+/// Numbers from 1e-6 to 1e9 in one model whose optimum can be told at sight: each thing has a resource of its own, and is made as far as
+/// that reaches.
+#[test]
+fn k4_numbers_of_very_different_sizes() {
+    let works = Works::new(&[]);
+    let mut daemon = works.keep();
+    let things = [("grain", 1e9, 1e-3), ("tile", 4096.0, 8.0), ("kiln", 1e-3, 1e3), ("spark", 1e3, 1e6)];
+    let mut model = "format = 1\n".to_owned();
+    for (name, capacity, uses) in things {
+        model.push_str(&format!(
+            "[resources.for_{name}]\ncapacity = {capacity}\n[activities.{name}]\nprice = {}\nuses = {{ for_{name} = {uses} }}\n",
+            uses / capacity
+        ));
+    }
+    works.save("m", &model);
+    daemon.wait_standing("m", "current");
+    let plan = text::read(&works.plan_text("m")).unwrap().plan;
+    for (name, capacity, uses) in things {
+        let level = plan.activities.iter().find(|planned| planned.name.as_str() == name).unwrap().level.numbers()[0];
+        assert!((level / (capacity / uses) - 1.0).abs() < 1e-9, "{name}: {level}");
+    }
     works.check();
 }

@@ -3,6 +3,7 @@
 use std::cell::OnceCell;
 use std::io;
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
 
 use rustix::io::Errno;
 
@@ -10,10 +11,11 @@ use crate::keep::path::ModelPath;
 use crate::plan::text::{self, Head, is_ours};
 use crate::plan::{Plan, Standing};
 use crate::store::publish::{self, Finished};
-use crate::store::{Durability, Output, Outputs, Record, Records, Step, StoreError, Written, atomic, reading};
+use crate::store::{Output, Outputs, Record, Records, Step, StoreError, Written, reading};
 
 /// Where the plan and the note of a model lie.
 pub(super) struct Disk {
+    root: Arc<Path>,
     plan: PathBuf,
     note: PathBuf,
 }
@@ -75,11 +77,12 @@ impl OnDisk {
 
 impl Disk {
     pub(super) fn of(path: &ModelPath) -> Self {
-        Self { plan: path.plan(), note: path.note() }
+        Self { root: path.shared_root(), plan: path.plan(), note: path.note() }
     }
 
     fn outputs(&self) -> Outputs<'_> {
-        Outputs { plan: Output { path: &self.plan, ours: is_ours }, note: Output { path: &self.note, ours: is_ours } }
+        let output = |path| Output { root: &self.root, path, ours: is_ours };
+        Outputs { plan: output(&self.plan), note: output(&self.note) }
     }
 
     /// The plan on disk, if it can be gone by. What is no plain file or no text counts as nothing; writing will say why.
@@ -115,11 +118,11 @@ impl Disk {
     }
 
     pub(super) fn write_plan(&self, text: &str) -> Result<Written, StoreError> {
-        atomic::write(&self.plan, text.as_bytes(), is_ours, Durability::Synced)
+        self.outputs().plan.put(text)
     }
 
     pub(super) fn write_note(&self, text: &str) -> Result<Written, StoreError> {
-        atomic::write(&self.note, text.as_bytes(), is_ours, Durability::Synced)
+        self.outputs().note.put(text)
     }
 }
 
