@@ -190,11 +190,11 @@ fn the_demo_is_laid_out_once_and_is_without_fault() {
     let folder = tempfile::tempdir().unwrap();
     assert_eq!(run(folder.path(), &["demo", "works"]).0, 0);
     assert_eq!(run(folder.path(), &["check", "works"]).0, 0);
-    let model = folder.path().join("works/tileworks.model.toml");
-    fs::write(&model, GOOD).unwrap();
+    let part = folder.path().join("works/tileworks.model/sales.toml");
+    fs::write(&part, GOOD).unwrap();
     fs::remove_dir_all(folder.path().join("works/clay")).unwrap();
     assert_eq!(run(folder.path(), &["demo", "works"]).0, 2);
-    assert_eq!(fs::read_to_string(&model).unwrap(), GOOD, "what is there is left alone");
+    assert_eq!(fs::read_to_string(&part).unwrap(), GOOD, "what is there is left alone");
     assert!(!folder.path().join("works/clay").exists(), "and nothing is laid out beside it");
 }
 

@@ -1,4 +1,4 @@
-//! `demo`: lays out the model of a small works to try things on.
+//! `demo`: lays out the models of a small works to try things on.
 
 use std::fs;
 use std::path::Path;
@@ -9,9 +9,14 @@ use crate::model::escape::Plain;
 use crate::store::{Durability, StoreError, atomic};
 
 /// The files of the works: where each goes, and what it says.
-const FILES: [(&str, &str); 2] = [
-    ("tileworks.model.toml", include_str!("../../examples/tileworks/tileworks.model.toml")),
+const FILES: [(&str, &str); 7] = [
+    ("fortnight.model.toml", include_str!("../../examples/tileworks/fortnight.model.toml")),
     ("clay/body_mix.model.toml", include_str!("../../examples/tileworks/clay/body_mix.model.toml")),
+    ("tileworks.model/works.toml", include_str!("../../examples/tileworks/tileworks.model/works.toml")),
+    ("tileworks.model/sales.toml", include_str!("../../examples/tileworks/tileworks.model/sales.toml")),
+    ("tileworks.model/maintenance.toml", include_str!("../../examples/tileworks/tileworks.model/maintenance.toml")),
+    ("tileworks.model/uses.csv", include_str!("../../examples/tileworks/tileworks.model/uses.csv")),
+    ("tileworks.model/draws.csv", include_str!("../../examples/tileworks/tileworks.model/draws.csv")),
 ];
 
 pub(super) fn run(screen: &mut Screen, dir: &Path) -> Result<Outcome, Error> {
