@@ -189,7 +189,10 @@ fn a_model_goes_to_mps_and_back_and_nothing_is_replaced_unasked() {
 fn the_demo_is_laid_out_once_and_is_without_fault() {
     let folder = tempfile::tempdir().unwrap();
     assert_eq!(run(folder.path(), &["demo", "works"]).0, 0);
-    assert_eq!(run(folder.path(), &["check", "works"]).0, 0);
+    assert_eq!(run(folder.path(), &["check", "works"]), (0, String::new(), String::new()));
+    let (status, _, err) = run(folder.path(), &["check", "works/tileworks.model/sales.toml"]);
+    assert_eq!(status, 2);
+    assert!(err.contains("the model is the folder `works/tileworks.model`"), "{err}");
     let part = folder.path().join("works/tileworks.model/sales.toml");
     fs::write(&part, GOOD).unwrap();
     fs::remove_dir_all(folder.path().join("works/clay")).unwrap();
