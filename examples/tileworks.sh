@@ -121,7 +121,7 @@ show_essence
 edit "renamed" works.toml "a week later: the first week is dropped, a ninth is planned, the stores are counted" \
     '/^periods/ { sub(/"2027-W01", /, ""); sub(/\]/, ", \"2027-W09\"]") }
     /^days/ { sub(/\[4, /, "["); sub(/\]/, ", 5]") }
-    /^opening/ { sub(/= 18$/, "= 15.2"); sub(/= 900$/, "= 364"); sub(/= 600$/, "= 640"); sub(/= 1000 /, "= 1280 ") } 1'
+    /^opening/ { sub(/= 18$/, "= 15.2"); sub(/= 900$/, "= 364"); sub(/= 600$/, "= 640"); sub(/= 1000/, "= 1280") } 1'
 edit "in place" maintenance.toml "a mistake: a week that there is not" \
     '{ sub(/"2027-W07" = 12/, "\"2027-W70\" = 12") } 1'
 edit "in place" maintenance.toml "the mistake mended" \

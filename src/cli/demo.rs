@@ -8,7 +8,10 @@ use super::screen::{HINT, Screen};
 use crate::model::escape::Plain;
 use crate::store::{Durability, StoreError, atomic};
 
-/// The files of the works: where each goes, and what it says.
+/// The models of the works.
+const MODELS: [&str; 3] = ["fortnight.model.toml", "clay/body_mix.model.toml", "tileworks.model"];
+
+/// Their files: where each goes, and what it says.
 const FILES: [(&str, &str); 7] = [
     ("fortnight.model.toml", include_str!("../../examples/tileworks/fortnight.model.toml")),
     ("clay/body_mix.model.toml", include_str!("../../examples/tileworks/clay/body_mix.model.toml")),
@@ -20,10 +23,11 @@ const FILES: [(&str, &str); 7] = [
 ];
 
 pub(super) fn run(screen: &mut Screen, dir: &Path) -> Result<Outcome, Error> {
-    for (name, _) in FILES {
+    // A folder of parts is all or nothing: ours would mix with those of another.
+    for name in MODELS {
         let path = dir.join(name);
         if fs::symlink_metadata(&path).is_ok() {
-            let help = "nothing was written; name another folder, or move that file away";
+            let help = "nothing was written; name another folder, or move that away";
             return Err(Error::usage(format_args!("{} is there already", shown(&path)), help));
         }
     }
