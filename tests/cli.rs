@@ -189,13 +189,19 @@ fn a_model_goes_to_mps_and_back_and_nothing_is_replaced_unasked() {
 fn the_demo_is_laid_out_once_and_is_without_fault() {
     let folder = tempfile::tempdir().unwrap();
     assert_eq!(run(folder.path(), &["demo", "works"]).0, 0);
-    assert_eq!(run(folder.path(), &["check", "works"]).0, 0);
-    let model = folder.path().join("works/tileworks.model.toml");
-    fs::write(&model, GOOD).unwrap();
-    fs::remove_dir_all(folder.path().join("works/clay")).unwrap();
-    assert_eq!(run(folder.path(), &["demo", "works"]).0, 2);
-    assert_eq!(fs::read_to_string(&model).unwrap(), GOOD, "what is there is left alone");
-    assert!(!folder.path().join("works/clay").exists(), "and nothing is laid out beside it");
+    assert_eq!(run(folder.path(), &["check", "works"]), (0, String::new(), String::new()));
+    let (status, _, err) = run(folder.path(), &["check", "works/tileworks.model/sales.toml"]);
+    assert_eq!(status, 2);
+    assert!(err.contains("the model is the folder `works/tileworks.model`"), "{err}");
+    let works = folder.path().join("works");
+    for name in ["fortnight.model.toml", "clay/body_mix.model.toml", "tileworks.model/mine.toml"] {
+        fs::remove_dir_all(&works).unwrap();
+        fs::create_dir_all(works.join(name).parent().unwrap()).unwrap();
+        fs::write(works.join(name), GOOD).unwrap();
+        assert_eq!(run(folder.path(), &["demo", "works"]).0, 2, "{name}");
+        assert_eq!(fs::read_to_string(works.join(name)).unwrap(), GOOD, "what is there is left alone");
+        assert_eq!(fs::read_dir(&works).unwrap().count(), 1, "and nothing is laid out beside {name}");
+    }
 }
 
 #[test]

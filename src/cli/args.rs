@@ -18,6 +18,7 @@ Examples:
 
 Files:
   NAME.model.toml   a model, written by people
+  NAME.model/       or a folder of parts: every *.toml and *.csv in it, one for each team
   NAME.plan.toml    its plan, written by millreeve next to the model
   NAME.note.md      what the last edit did to the plan, and why
   NAME.release.toml the plan that the floor works to, pinned by `millreeve release`
@@ -124,7 +125,7 @@ pub(crate) enum Command {
     /// Writes NAME.release.toml. From then on every note, and `show`, says what has moved since. Only a plan that is current and
     /// unharmed is released.
     Release {
-        /// The model: NAME.model.toml, its plan NAME.plan.toml, or NAME alone
+        /// The model: NAME.model.toml or NAME.model, its plan NAME.plan.toml, or NAME alone
         #[arg(value_hint = ValueHint::FilePath)]
         model: PathBuf,
     },
@@ -132,8 +133,8 @@ pub(crate) enum Command {
     Show(Show),
     /// Turn an MPS file into a model, or a model into an MPS file
     ///
-    /// The ending of each name tells which is which: `.mps` (fixed or free) or `.model.toml`. Names that MPS or a model cannot
-    /// hold are changed so that they can be told apart, and kept as labels.
+    /// The ending of each name tells which is which: `.mps` (fixed or free), `.model.toml` or, to read, `.model`. Names that MPS
+    /// or a model cannot hold are changed so that they can be told apart, and kept as labels.
     Convert {
         /// The file to read
         #[arg(value_hint = ValueHint::FilePath)]
@@ -145,7 +146,7 @@ pub(crate) enum Command {
         #[arg(long)]
         force: bool,
     },
-    /// Lay out the model of a small works to try things on
+    /// Lay out the models of a small works to try things on
     Demo {
         /// Where to; made if it is not there
         #[arg(default_value = "tileworks", value_hint = ValueHint::DirPath)]
@@ -163,7 +164,7 @@ pub(crate) enum Command {
 /// What `show` is asked.
 #[derive(Args, Debug)]
 pub(crate) struct Show {
-    /// The model: NAME.model.toml, its plan NAME.plan.toml, or NAME alone
+    /// The model: NAME.model.toml or NAME.model, its plan NAME.plan.toml, or NAME alone
     #[arg(value_hint = ValueHint::FilePath)]
     pub(crate) model: PathBuf,
     /// Write the plan as CSV, for a spreadsheet

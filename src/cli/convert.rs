@@ -5,7 +5,7 @@ use std::path::Path;
 use super::check::unreadable;
 use super::demo::failed;
 use super::exit::{Error, Outcome, shown, text};
-use super::models::{MODEL, names_model};
+use super::models::{FOLDER, MODEL, names_model};
 use super::screen::{Screen, WARN};
 use crate::lp::mps::{self, Warnings};
 use crate::model::escape::Plain;
@@ -27,7 +27,7 @@ impl Kind {
             (true, _) => Ok(Self::Mps),
             (false, true) => Ok(Self::Model),
             (false, false) => {
-                let help = format!("its name must end in .mps or {MODEL}");
+                let help = format!("its name must end in .mps, {MODEL} or {FOLDER}");
                 Err(Error::usage(format_args!("cannot tell what {} is", shown(path)), help))
             }
         }
@@ -59,7 +59,8 @@ pub(super) fn run(screen: &mut Screen, from: &Path, to: &Path, force: bool) -> R
     atomic::write(to, content.as_bytes(), ours, Durability::Synced).map_err(|error| failed(&error))?;
     if screen.json() {
         screen.object(&serde_json::json!({
-            "from": text(from), "to": text(to), "activities": told.activities, "limits": told.limits, "resources": told.resources,
+            "from": text(from), "to": text(to), "activities": told.activities, "limits": told.limits, "materials": told.materials,
+            "resources": told.resources,
         }));
     } else {
         screen.say(format_args!("wrote {}: {}", Plain(&to.to_string_lossy()), told.words()));
@@ -71,23 +72,30 @@ pub(super) fn run(screen: &mut Screen, from: &Path, to: &Path, force: bool) -> R
 struct Told {
     activities: usize,
     resources: usize,
+    materials: usize,
     limits: usize,
 }
 
 impl Told {
     fn of(model: &Model) -> Self {
-        Self { activities: model.activities.len(), resources: model.resources.len(), limits: model.limits.len() }
+        Self {
+            activities: model.activities.len(),
+            resources: model.resources.len(),
+            materials: model.materials.len(),
+            limits: model.limits.len(),
+        }
     }
 
     fn words(&self) -> String {
         use super::check::counted;
         let activities =
             if self.activities == 1 { "1 activity".to_owned() } else { format!("{} activities", self.activities) };
-        let rules = counted(self.limits, "limit");
-        if self.resources == 0 {
-            return format!("{activities}, {rules}");
-        }
-        format!("{activities}, {}, {rules}", counted(self.resources, "resource"))
+        let mut words = vec![activities];
+        // What comes from MPS has neither, so they are told only where there are some.
+        let others = [(self.resources, "resource"), (self.materials, "material")];
+        words.extend(others.into_iter().filter(|(number, _)| *number > 0).map(|(number, what)| counted(number, what)));
+        words.push(counted(self.limits, "limit"));
+        words.join(", ")
     }
 }
 

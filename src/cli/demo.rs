@@ -1,4 +1,4 @@
-//! `demo`: lays out the model of a small works to try things on.
+//! `demo`: lays out the models of a small works to try things on.
 
 use std::fs;
 use std::path::Path;
@@ -8,17 +8,26 @@ use super::screen::{HINT, Screen};
 use crate::model::escape::Plain;
 use crate::store::{Durability, StoreError, atomic};
 
-/// The files of the works: where each goes, and what it says.
-const FILES: [(&str, &str); 2] = [
-    ("tileworks.model.toml", include_str!("../../examples/tileworks/tileworks.model.toml")),
+/// The models of the works.
+const MODELS: [&str; 3] = ["fortnight.model.toml", "clay/body_mix.model.toml", "tileworks.model"];
+
+/// Their files: where each goes, and what it says.
+const FILES: [(&str, &str); 7] = [
+    ("fortnight.model.toml", include_str!("../../examples/tileworks/fortnight.model.toml")),
     ("clay/body_mix.model.toml", include_str!("../../examples/tileworks/clay/body_mix.model.toml")),
+    ("tileworks.model/works.toml", include_str!("../../examples/tileworks/tileworks.model/works.toml")),
+    ("tileworks.model/sales.toml", include_str!("../../examples/tileworks/tileworks.model/sales.toml")),
+    ("tileworks.model/maintenance.toml", include_str!("../../examples/tileworks/tileworks.model/maintenance.toml")),
+    ("tileworks.model/uses.csv", include_str!("../../examples/tileworks/tileworks.model/uses.csv")),
+    ("tileworks.model/draws.csv", include_str!("../../examples/tileworks/tileworks.model/draws.csv")),
 ];
 
 pub(super) fn run(screen: &mut Screen, dir: &Path) -> Result<Outcome, Error> {
-    for (name, _) in FILES {
+    // A folder of parts is all or nothing: ours would mix with those of another.
+    for name in MODELS {
         let path = dir.join(name);
         if fs::symlink_metadata(&path).is_ok() {
-            let help = "nothing was written; name another folder, or move that file away";
+            let help = "nothing was written; name another folder, or move that away";
             return Err(Error::usage(format_args!("{} is there already", shown(&path)), help));
         }
     }

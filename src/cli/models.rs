@@ -57,9 +57,25 @@ pub(crate) fn under(path: &Path, ignore: &Ignore) -> Result<Found, Error> {
         });
     }
     if !names_model(path) {
-        return Err(Error::usage(format_args!("{} is not a model", shown(path)), WHAT_A_MODEL_IS));
+        return Err(no_model(path));
     }
     Ok(Found { models: BTreeSet::from([path.to_owned()]), ..Found::default() })
+}
+
+/// That a path is no model; where it lies in one, in which.
+pub(super) fn no_model(path: &Path) -> Error {
+    let message = format!("{} is not a model", shown(path));
+    match folder_of_part(path) {
+        Some(folder) => {
+            Error::usage(message, format_args!("the model is the folder {}, with all of its parts", shown(folder)))
+        }
+        None => Error::usage(message, WHAT_A_MODEL_IS),
+    }
+}
+
+/// The folder of the model that a path lies in as a part, by its name.
+fn folder_of_part(path: &Path) -> Option<&Path> {
+    path.parent().filter(|folder| folder.file_name().is_some_and(read::is_folder_name))
 }
 
 /// Whether a path is that of a model, by its name.
@@ -85,8 +101,9 @@ pub(crate) fn with_ending(stem: &Path, ending: &str) -> PathBuf {
     PathBuf::from(path)
 }
 
-/// `path` without the ending of a model, plan, release or note, if it has one: `works/tileworks`.
+/// `path` without the ending of a model, plan, release or note, if it has one: `works/tileworks`. A part leads to its model.
 pub(crate) fn stem(path: &Path) -> PathBuf {
+    let path = folder_of_part(path).unwrap_or(path);
     let name = path.file_name().unwrap_or_default().to_string_lossy();
     let stem = [MODEL, FOLDER, PLAN, RELEASE, NOTE]
         .iter()
@@ -138,6 +155,7 @@ mod tests {
             "w/tiles.model.toml",
             "w/tiles.model",
             "w/tiles.model/",
+            "w/tiles.model/sales.toml",
             "w/tiles.plan.toml",
             "w/tiles.release.toml",
             "w/tiles.note.md",

@@ -41,7 +41,8 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, paths: &[PathBuf])
 
 fn not_done(path: &Path, error: &OnceError) -> Error {
     match error {
-        OnceError::NotAModel(_) | OnceError::Ignore(_) => Error::usage(error, ""),
+        OnceError::NotAModel(path) => models::no_model(path),
+        OnceError::Ignore(_) => Error::usage(error, ""),
         OnceError::Store(StoreError::Failed { source, .. }) if source.kind() == std::io::ErrorKind::NotFound => {
             Error::reading(path, source)
         }

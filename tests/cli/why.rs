@@ -9,7 +9,7 @@ use serde_json::Value;
 use super::show::{SMALL, planned, works};
 use super::{objects, run};
 
-const TILEWORKS: &str = include_str!("../../examples/tileworks/tileworks.model.toml");
+const TILEWORKS: &str = include_str!("../../examples/tileworks/fortnight.model.toml");
 const BODY: &str = include_str!("../../examples/tileworks/clay/body_mix.model.toml");
 
 fn why(folder: &Path, name: &str) -> Value {

@@ -5,15 +5,15 @@ use std::path::Path;
 
 use crate::support::Works;
 
-/// Copies the models of a folder and of those below it, each into the same place below `to`.
+/// Copies the models of a folder and of those below it, in one file or in parts, each into the same place below `to`.
 fn lay_out(works: &Works, from: &str, to: &str) {
     let from = Path::new(env!("CARGO_MANIFEST_DIR")).join(from);
-    for entry in fs::read_dir(from).unwrap() {
+    for entry in fs::read_dir(&from).unwrap() {
         let path = entry.unwrap().path();
         let name = path.file_name().unwrap().to_str().unwrap();
         if path.is_dir() {
             lay_out(works, path.to_str().unwrap(), &format!("{to}/{name}"));
-        } else if name.ends_with(".model.toml") {
+        } else if name.ends_with(".model.toml") || from.extension().is_some_and(|of| of == "model") {
             works.save(&format!("{to}/{name}"), fs::read(&path).unwrap());
         }
     }

@@ -64,7 +64,7 @@ pub(in crate::cli) fn aim(plan: &Plan) -> String {
     format!("{verb} {}", with_currency(short(plan.aim), plan))
 }
 
-/// `floor_tile 4180 → 3900`; over several periods the sums.
+/// `floor_tile 4180 → 3900`; over several periods the sums, unless these are the same.
 fn one_move(told: &Move) -> String {
     let side = |level: &Option<Value>| {
         let sum = |level: &Value| short(level.numbers().iter().sum());
@@ -73,6 +73,7 @@ fn one_move(told: &Move) -> String {
     let (before, after) = (side(&told.before), side(&told.after));
     match told.periods.len() {
         0 => format!("{} {before} → {after}", told.name),
+        many @ 2.. if before == after => format!("{} shifts between {many} periods", told.name),
         1 => format!("{} {before} → {after} in one period", told.name),
         many => format!("{} {before} → {after} in {many} periods", told.name),
     }
@@ -82,5 +83,24 @@ fn with_currency(number: String, plan: &Plan) -> String {
     match plan.currency.as_deref() {
         Some(currency) if !currency.is_empty() => format!("{number} {}", Plain(currency)),
         _ => number,
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::model::Name;
+    use crate::plan::compare::PeriodMove;
+
+    #[test]
+    fn what_is_only_shifted_is_not_told_as_two_equal_sums() {
+        let moved = |place| PeriodMove { period: Name::new("w").unwrap(), place, before: 0.0, after: 0.0 };
+        let periods = [0, 1].map(moved).to_vec();
+        let told = |before: [f64; 2], after: [f64; 2]| {
+            let [before, after] = [before, after].map(|level| Some(Value::Listed(level.to_vec())));
+            one_move(&Move { name: Name::new("tile").unwrap(), before, after, periods: periods.clone() })
+        };
+        assert_eq!(told([10.0, 20.0], [15.0, 15.0]), "tile shifts between 2 periods");
+        assert_eq!(told([10.0, 20.0], [15.0, 16.0]), "tile 30 → 31 in 2 periods");
     }
 }

@@ -6,6 +6,8 @@ mod wide;
 
 use comfy_table::{Cell, CellAlignment, ContentArrangement, Table};
 
+use super::super::demo::quoted;
+use super::super::models;
 use super::super::screen::{GOOD, HEAD, Screen, WARN};
 use super::number::{align, short};
 use super::{Shown, Standing, since};
@@ -33,7 +35,7 @@ fn sheets(screen: &Screen, shown: &Shown) -> (Vec<(&'static str, String)>, Optio
     if screen.width().is_none_or(|width| widest.is_none_or(|widest| widest <= width)) {
         return (wide, None);
     }
-    let name = Plain(&shown.name).to_string();
+    let name = quoted(&models::stem(&shown.model_path));
     let hint = format!(
         "Of {} periods only sums fit here: `millreeve show {name} --csv` writes all of them, `--why NAME` tells them of one thing.",
         shown.plan.periods.len()

@@ -34,7 +34,7 @@ impl Later {
         match self {
             Self::Whole => "this version plans no whole numbers of things",
             Self::Variants => "this version plans no variants",
-            Self::Steady => "this version knows no releases",
+            Self::Steady => "this version keeps no plan near its release",
             Self::Guard => "this version holds no edits back",
         }
     }

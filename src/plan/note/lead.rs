@@ -82,7 +82,9 @@ fn planned_again(report: &Report<'_>, plan: &Plan, comparison: &Comparison) -> S
     }
     let (_, shown) = amounts(before.abs(), after.abs());
     let gained = difference(before, after);
-    let share = if before.abs() > 0.0 { format!(" ({})", per_cent(gained / before)) } else { String::new() };
+    let share = gained.abs() / before.abs();
+    // Next to nothing is plain from the number itself, and from nothing there is no share.
+    let share = if (1e-4..f64::INFINITY).contains(&share) { format!(" ({})", per_cent(share)) } else { String::new() };
     let by = with_unit(&amount(gained.abs()), plan.currency.as_deref());
     let direction = direction(plan, before, after);
     format!(
@@ -163,6 +165,9 @@ fn moved_most(report: &Report<'_>, comparison: &Comparison) -> String {
     match ordered.as_slice() {
         [] => "no level moves".to_owned(),
         [only] => one_move(report, only),
+        [first, second] if shifts(first) && shifts(second) => {
+            format!("{} and {} shift between periods", Markdown(first.name.as_str()), Markdown(second.name.as_str()))
+        }
         [first, second] => format!("{}, and {}", one_move(report, first), one_move(report, second)),
         [first, more @ ..] => format!("{}, and {} more levels move", one_move(report, first), more.len()),
     }
@@ -181,15 +186,24 @@ fn would_pay(comparison: &Comparison) -> String {
     }
 }
 
+/// Whether a level comes to the same in all, though not in each period.
+fn shifts(told: &Move) -> bool {
+    is_there(told.before.as_ref())
+        && is_there(told.after.as_ref())
+        && !moved(total(told.before.as_ref()), total(told.after.as_ref()))
+}
+
+fn is_there(level: Option<&Value>) -> bool {
+    level.is_some_and(|value| value.numbers().iter().any(|number| number.abs() > 0.0))
+}
+
 fn one_move(report: &Report<'_>, told: &Move) -> String {
     let name = Markdown(told.name.as_str());
     let unit = unit_of_activity(report.model, &told.name);
-    let is_nil = |value: &Value| value.numbers().iter().all(|number| number.abs() <= 0.0);
-    let before = told.before.as_ref().filter(|value| !is_nil(value));
-    let after = told.after.as_ref().filter(|value| !is_nil(value));
+    let before = told.before.as_ref().filter(|value| is_there(Some(value)));
+    let after = told.after.as_ref().filter(|value| is_there(Some(value)));
     match (before, after) {
-        // What is shifted from one period to another comes to the same.
-        (Some(before), Some(after)) if !moved(total(Some(before)), total(Some(after))) => {
+        (Some(_), Some(after)) if shifts(told) => {
             format!("{name} stays at {} and shifts between periods", with_unit(&value(after), unit))
         }
         (Some(before), Some(after)) => {

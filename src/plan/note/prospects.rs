@@ -48,9 +48,9 @@ fn priced_out(report: &Report<'_>, plan: &Plan, planned: &PlannedActivity, told:
         _ => format!(" in {}", periods::name(told.place, &plan.periods)),
     };
     let asked = if plan.minimise {
-        format!("{name}, {kind}: must cost less than {must}, costs {is}{period}")
+        format!("{name}, {kind}: must cost less than {must}{period}, costs {is}")
     } else {
-        format!("{name}, {kind}: must earn {must}, is offered {is}{period}")
+        format!("{name}, {kind}: must earn {must}{period}, is offered {is}")
     };
     if would_enter(planned) {
         let now = if newly { "**it would pay now**" } else { "it would pay" };
