@@ -91,28 +91,61 @@ fn edits_of_entries_that_are_there_are_read_alone() {
 }
 
 #[test]
+fn entries_put_in_and_taken_out_are_read_alone() {
+    let works = works();
+    for (name, from, to) in [
+        ("activities.csv", "m2,5.25\n", "m2,5.25\ntrim,,m,1\n"),
+        ("activities.csv", "wall_tile", "walltile"),
+        ("sales.toml", "[activities.wall_tile]", "[activities.trim]\n[activities.wall_tile]"),
+        ("sales.toml", "[activities.wall_tile]", "[activities.trim_3]\nunit = \"m\"\n[activities.wall_tile]"),
+        ("sales.toml", "tags = [\"glazed\"]", "tags = []"),
+        ("trims.toml", "[activities.trim_7]\nprice = 7\n", ""),
+        ("trims.toml", "[activities.trim_7]", "[activities.edge]"),
+        ("resources.csv", "dryer,m2", "saw,h,10,,\ndryer,m2"),
+        ("resources.csv", "dryer,m2,inf,,\n", ""),
+        ("stores.toml", "[materials.clay]", "[materials.glaze]\npurchase = { price = [3, 4] }\n[materials.clay]"),
+        (
+            "works.toml",
+            "[limits.glazed_share]",
+            "[limits.least]\nterms = { floor_tile = 1 }\nat_least = 1\n[limits.glazed_share]",
+        ),
+    ] {
+        let new = edited(&works, name, from, to);
+        assert!(in_part(&works, &new).is_some(), "{name} {to}");
+        assert_eq!(in_part(&works, &new), whole(&new), "{name} {to}");
+        assert_eq!(in_part(&new, &works), whole(&works), "{name} {to}");
+    }
+    // What a new activity needs, in the parts of two teams.
+    let new = edited(&works, "activities.csv", "m2,5.25\n", "m2,5.25\nstep,,m,1\n");
+    let new = edited(&new, "uses.csv", "terrace_slab,kiln", "step,kiln,0.01\nterrace_slab,kiln");
+    assert!(in_part(&works, &new).is_some());
+    assert_eq!(in_part(&works, &new), whole(&new));
+}
+
+#[test]
 fn what_concerns_other_entries_or_is_faulty_is_left_to_reading_the_whole() {
     let works = works();
     for (name, from, to) in [
         ("works.toml", "title", "aim"),
         ("works.toml", "days = [5, 4]", "days = [5, 5]"),
         ("sales.toml", "format = 1\n", ""),
-        ("sales.toml", "[activities.wall_tile]", "[activities.trim]\n[activities.wall_tile]"),
-        ("sales.toml", "tags = [\"glazed\"]", "tags = []"),
+        ("sales.toml", "[activities.wall_tile]", "[activities.floor_tile]\n[activities.wall_tile]"),
+        ("sales.toml", "[activities.wall_tile]", "[limits.new]\n[activities.wall_tile]"),
+        ("sales.toml", "[activities.wall_tile]", "limits = {}\n[activities.wall_tile]"),
         ("sales.toml", "price = 17.5", "price = 17.5\nunit = \"m2\""),
         ("sales.toml", "price = 17.5", "price = -"),
         ("sales.toml", "price = 17.5", "price = 17.5\nuses = { kiln = 1 }"),
         ("activities.csv", "name,label,unit,cost", "name,label,unit,price"),
         ("activities.csv", "name,label", "name,unit"),
         ("activities.csv", "wall_tile,", "wall_tile,\""),
-        ("activities.csv", "m2,5.25\n", "m2,5.25\ntrim,,m,1\n"),
-        ("activities.csv", "wall_tile", "walltile"),
         ("uses.csv", "wall_tile,kiln", "wall_tile,kilm"),
         ("uses.csv", "wall_tile,kiln,0.016", "floor_tile,kiln,0.016"),
         ("uses.csv", "wall_tile,kiln,0.016", "wall_tile,kiln,0.016\nwall_tile,kiln,0.016"),
         ("uses.csv", "wall_tile,kiln,0.016", "wall_tile,kiln"),
         ("draws.csv", "rate@w2", "rate@w3"),
-        ("resources.csv", "dryer,m2,inf,,\n", ""),
+        ("uses.csv", "terrace_slab,kiln", "step,kiln,0.01\nterrace_slab,kiln"),
+        ("resources.csv", "press,h,120,,\n", ""),
+        ("stores.toml", "purchase = { price = 12 }", "purchase = { price = 12 }\n[materials.slip]\n"),
     ] {
         let new = edited(&works, name, from, to);
         assert_eq!(in_part(&works, &new), None, "{name} {to}");
@@ -152,6 +185,8 @@ enum Slip {
     Gone(usize),
     /// A line put in again after another.
     Copied(usize, usize),
+    /// A table or row put in at a line that begins one.
+    Added(usize, &'static str),
 }
 
 impl Slip {
@@ -176,6 +211,13 @@ impl Slip {
                 let line = lines.get(from % count).cloned().unwrap_or_default();
                 lines.insert(to % (lines.len() + 1), line);
             }
+            Self::Added(at, text) => {
+                // In a table of rows, any line; among tables, a header.
+                let tables = lines.iter().any(|line| line.starts_with('['));
+                let starts: Vec<usize> =
+                    (0..lines.len()).filter(|&at| !tables || lines[at].starts_with('[')).chain([lines.len()]).collect();
+                lines.insert(starts[at % starts.len()], text.to_owned());
+            }
         }
         lines.concat()
     }
@@ -188,8 +230,25 @@ fn slip() -> impl Strategy<Value = Slip> {
         2 => (any::<usize>(), sign).prop_map(|(at, sign)| Slip::Sign(at, sign)),
         1 => any::<usize>().prop_map(Slip::Gone),
         1 => any::<(usize, usize)>().prop_map(|(a, b)| Slip::Copied(a, b)),
+        4 => (any::<usize>(), prop::sample::select(ADDED.to_vec())).prop_map(|(at, text)| Slip::Added(at, text)),
     ]
 }
+
+/// Tables and rows that may be put in, each for the part that has such.
+const ADDED: [&str; 12] = [
+    "[activities.step]\nprice = 9\nuses = { kiln = 0.01 }\n",
+    "[activities.step]\ntags = [\"stepped\"]\n",
+    "[activities.trim_30]\n",
+    "[materials.glaze]\npurchase = { price = 3 }\n",
+    "[limits.stepped]\nterms = { \"tag:glazed\" = 1, floor_tile = 1 }\nat_most = 9000\n",
+    "[limits.glaze]\nterms = { \"materials.glaze.purchase\" = 1 }\nat_most = 9\n",
+    "step,Step,m,1\n",
+    "edge,,m,1.5\n",
+    "saw,h,10,,\n",
+    "glaze,t,5\n",
+    "edge,kiln,0.01\n",
+    "edge,slip,0.01\n",
+];
 
 proptest! {
     #![proptest_config(ProptestConfig::with_cases(2000))]

@@ -1,20 +1,19 @@
 //! Reading an edited text by what was edited alone.
 //!
 //! What a table means depends on nothing before it but that a table may begin there, and on the names that others have. So where the
-//! edit lies within some of the tables of a text that was read before, these are parsed on their own and take the place of what they
-//! were. It is a short cut and nothing else: whatever is out of the ordinary, and any fault, is left to reading the whole.
+//! edit lies within some of the tables of a text that was read before, or puts tables in or takes some out, these are parsed on their own
+//! and take the place of what was there. It is a short cut and nothing else: whatever is out of the ordinary, and any fault, is left to
+//! reading the whole.
 
 use std::ops::Range;
 use std::path::Path;
 
-use super::blocks::{Block, Blocks, Section};
+use super::blocks::{Block, Blocks};
 use super::calendar::Calendar;
-use super::fields::Fields;
-use super::findings::Findings;
-use super::known::{self, Known, Summable, Supplies};
+use super::replaced::{self, Entries, replaced};
 use super::toml_types::Table;
-use super::{activity, bytes, caps, limit, material, resource, syntax};
-use crate::model::types::{Material, Model};
+use super::{bytes, syntax};
+use crate::model::types::Model;
 
 /// A text that was read before.
 #[derive(Clone, Copy, Debug)]
@@ -29,7 +28,7 @@ pub struct Before<'a> {
 
 /// The model that `bytes` spell, which is what [`text`](super::text) makes of them, and where its tables lie.
 ///
-/// `None` where they differ from the text before in more than the inside of tables, or hold a fault: then they must be read whole.
+/// `None` where they differ from the text before in more than plain tables, or hold a fault: then they must be read whole.
 #[must_use]
 pub fn again(path: &Path, bytes: &[u8], before: Before<'_>) -> Option<(Model, Blocks)> {
     let (old, new) = (bytes::text(path, before.bytes).ok()?, bytes::text(path, bytes).ok()?);
@@ -41,16 +40,36 @@ pub fn again(path: &Path, bytes: &[u8], before: Before<'_>) -> Option<(Model, Bl
     let piece = new.text.get(edited.text.clone())?;
     let root = syntax::parse(super::source::Source { path, text: piece }).ok()?;
     let pieces = Blocks::of(piece, root.get_ref(), None);
-    let known = &before.blocks.tables[edited.blocks.clone()];
-    let same = |(old, new): (&Block, &Block)| old.section == new.section && old.name == new.name;
-    // Every key of the piece lies in a block, and the blocks are those that were there.
-    let first = pieces.tables.first().is_some_and(|block| block.start == 0);
-    if !first || known.len() != pieces.tables.len() || !known.iter().zip(&pieces.tables).all(same) {
+    let gone = &before.blocks.tables[edited.blocks.clone()];
+    let mut entries = Entries::default();
+    entries.extend(gone);
+    // Given once more, what is there already would be a fault.
+    let twice = |block: &&Block| !entries.contains(block) && replaced::is_there(before.model, block);
+    if !begins_with(piece, root.get_ref(), &pieces.tables)
+        || !may_begin(&before.blocks.tables, &pieces.tables)
+        || pieces.tables.iter().any(|block| twice(&block))
+    {
         return None;
     }
+    entries.extend(&pieces.tables);
     let calendar = Calendar::of(before.model.horizon.clone(), before.blocks.days.clone());
-    let model = replaced(before.model, root.get_ref(), &pieces, &calendar)?;
+    let model = replaced(before.model, root.get_ref(), &entries, &calendar)?;
     Some((model, edited.moved(before.blocks, pieces)))
+}
+
+/// Whether nothing but these tables is in a piece of text that was parsed into `root`: what stands before them would belong to another.
+pub(super) fn begins_with(piece: &str, root: &Table<'_>, tables: &[Block]) -> bool {
+    let Some(first) = tables.first() else { return root.is_empty() };
+    let before = piece.get(..first.start).unwrap_or_default();
+    before.lines().map(str::trim_ascii_start).all(|line| line.is_empty() || line.starts_with('#'))
+}
+
+/// Whether tables of these sections may begin in a text that had those of `old`. Where a section has none, it may be spelt otherwise.
+pub(super) fn may_begin(old: &[Block], tables: &[Block]) -> bool {
+    let mut missing: Vec<_> = tables.iter().map(|block| block.section).collect();
+    missing.sort_unstable();
+    missing.dedup();
+    missing.iter().all(|&section| old.iter().any(|block| block.section == section))
 }
 
 /// The part of a text that was edited, as whole blocks.
@@ -88,14 +107,15 @@ impl Edited {
 
     /// The blocks of the new text: those of `old`, with `pieces` in place of those edited.
     fn moved(&self, old: &Blocks, pieces: Blocks) -> Blocks {
-        let mut blocks = old.clone();
-        for (block, piece) in blocks.tables[self.blocks.clone()].iter_mut().zip(pieces.tables) {
-            block.start = self.text.start + piece.start;
-        }
-        for block in &mut blocks.tables[self.blocks.end..] {
-            block.start = block.start.saturating_add_signed(self.moved);
-        }
-        blocks
+        Blocks { tables: self.tables(&old.tables, pieces.tables), days: old.days.clone() }
+    }
+
+    /// As [`moved`](Self::moved); the places of `pieces` count from where the edited text begins.
+    pub(super) fn tables(&self, old: &[Block], pieces: Vec<Block>) -> Vec<Block> {
+        let (first, rest) = (&old[..self.blocks.start], &old[self.blocks.end..]);
+        let placed = |block: Block| Block { start: self.text.start + block.start, ..block };
+        let moved = |block: &Block| Block { start: block.start.saturating_add_signed(self.moved), ..block.clone() };
+        first.iter().cloned().chain(pieces.into_iter().map(placed)).chain(rest.iter().map(moved)).collect()
     }
 }
 
@@ -116,51 +136,4 @@ fn common<'a>(
         count += pair.0.len();
     }
     count
-}
-
-/// `model` with the entries of a piece in place of what they were. `None` where what others refer to has changed, or for a fault.
-pub(super) fn replaced(model: &Model, root: &Table<'_>, pieces: &Blocks, calendar: &Calendar) -> Option<Model> {
-    let mut findings = Findings::default();
-    let mut edited = model.clone();
-    let supplies =
-        Supplies { resources: Known::new(None, &model.resources), materials: Known::new(None, &model.materials) };
-    let activities = Known::new(None, &model.activities);
-    let there = Summable { supplies, activities, tags: known::tags(&model.activities) };
-    for Block { section, name, .. } in &pieces.tables {
-        let (key, node) = root.get(section.word())?.get_ref().as_table()?.get_key_value(name.as_str())?;
-        let (table, span) = (node.get_ref().as_table()?, key.span());
-        let mut fields = Fields::open(table, span, section.keys(), calendar, &mut findings);
-        match section {
-            Section::Resources => {
-                let read = resource::read(&mut fields);
-                replace(edited.resources.get_mut(name)?, read, |resource| resource.surge.len())?;
-            }
-            Section::Activities => {
-                let read = activity::read(&mut fields, model.aim, &there.supplies);
-                replace(edited.activities.get_mut(name)?, read, |activity| activity.tags.clone())?;
-            }
-            Section::Materials => {
-                let read = material::read(&mut fields);
-                replace(edited.materials.get_mut(name)?, read, flows)?;
-            }
-            Section::Limits => {
-                *edited.limits.get_mut(name)? = limit::read(&mut fields, &there);
-            }
-        }
-    }
-    let fits = findings.is_empty() && !calendar.is_full() && caps::fit(&edited, &there.tags);
-    fits.then_some(edited)
-}
-
-/// Puts an entry in the place of what it was, where what limits ask of it has stayed.
-fn replace<T, A: PartialEq>(old: &mut T, new: T, asked: impl Fn(&T) -> A) -> Option<()> {
-    let same = asked(old) == asked(&new);
-    *old = new;
-    same.then_some(())
-}
-
-/// What there is of a material that a limit can sum.
-fn flows(material: &Material) -> (usize, Vec<bool>, bool) {
-    let late = material.sale.iter().map(|sale| sale.late.is_some()).collect();
-    (material.purchase.len(), late, material.stock.is_some() || material.closing.is_some())
 }

@@ -41,14 +41,8 @@ pub(super) fn check(root: &Table<'_>, model: &Model, calendar: &Calendar, tags: 
         let message = format!("the model lists more than {MOST_LISTED} numbers by period");
         findings.add(&span(root, "periods"), "too-many", message, "plan fewer periods, or split the model");
     }
-    let counts = [
-        ("resources", model.resources.len(), MOST_RESOURCES),
-        ("activities", model.activities.len(), MOST_ACTIVITIES),
-        ("materials", model.materials.len(), MOST_MATERIALS),
-        ("limits", model.limits.len(), MOST_LIMITS),
-    ];
     let mut crowded = false;
-    for (section, count, most) in counts {
+    for (section, count, most) in counts(model) {
         if count > most {
             crowded = true;
             let message = format!("{count} {section} are more than the {most} that one model may have");
@@ -77,8 +71,21 @@ pub(super) fn check(root: &Table<'_>, model: &Model, calendar: &Calendar, tags: 
     }
 }
 
+/// The sections of a model: how many entries each has, and may have.
+fn counts(model: &Model) -> [(&'static str, usize, usize); 4] {
+    [
+        ("resources", model.resources.len(), MOST_RESOURCES),
+        ("activities", model.activities.len(), MOST_ACTIVITIES),
+        ("materials", model.materials.len(), MOST_MATERIALS),
+        ("limits", model.limits.len(), MOST_LIMITS),
+    ]
+}
+
 /// Whether an edited model exceeds none of the caps that an edit of its tables can reach.
 pub(super) fn fit(model: &Model, tags: &Tags) -> bool {
+    if counts(model).into_iter().any(|(_, count, most)| count > most) {
+        return false;
+    }
     let Size { columns, rows, coefficients } = Size::of(model, tags);
     let listed = if model.horizon.count() > 1 { listed(model) } else { 0 };
     columns <= MOST_COLUMNS && rows <= MOST_ROWS && coefficients <= MOST_COEFFICIENTS && listed <= MOST_LISTED

@@ -1,10 +1,26 @@
-//! Addresses of what is planned of a material or a resource: `materials.slip.purchase.1`, `resources.kiln.surge`.
+//! Addresses of what is planned of a material or a resource: `materials.slip.purchase.1`, `resources.kiln.surge`; and whether it is there.
 
 use super::findings::{Among, Cure, Findings, shown};
-use super::known::Known;
+use super::known::{Known, Tags};
 use super::toml_types::Key;
 use crate::model::name::Name;
-use crate::model::types::{Flow, Material, Resource, Term};
+use crate::model::types::{Flow, Material, Model, Resource, Term};
+
+/// Whether a model has what a term stands for, as reading a limit asks.
+pub(super) fn is_there(term: &Term, model: &Model, tags: &Tags) -> bool {
+    match term {
+        Term::All => true,
+        Term::Activity(name) => model.activities.contains_key(name),
+        Term::Tag(tag) => tags.contains_key(tag),
+        Term::Material(name, flow) => {
+            model.materials.get(name).is_some_and(|material| lacking(name, material, *flow).is_none())
+        }
+        Term::Surge(name, tier) => {
+            let there = model.resources.get(name).map_or(0, |resource| resource.surge.len());
+            no_tier("resources", name, "surge", there, *tier).is_none()
+        }
+    }
+}
 
 /// The term at `materials.` and `rest`.
 pub(super) fn of_material(

@@ -28,6 +28,7 @@ mod number;
 mod oddities;
 mod over;
 mod parts;
+mod replaced;
 mod resource;
 mod source;
 mod syntax;

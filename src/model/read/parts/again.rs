@@ -4,30 +4,26 @@
 //! together, read as a model's parts are, and takes the place of what the entries were. It is a short cut and nothing else: whatever is out
 //! of the ordinary, and any fault, is left to reading the whole.
 
-use std::collections::{BTreeMap, BTreeSet};
 use std::path::Path;
 use std::sync::Arc;
 
 use super::sheets::Sheets;
 use super::traces::{self, Traces};
 use super::{Kind, Merging, Parts, Periods, csv_tables, laid, merge, merge_csv, too_much};
-use crate::model::name::Name;
-use crate::model::read::again::{Edited, replaced};
-use crate::model::read::blocks::{Block, Blocks, Section};
+use crate::model::read::again::{Edited, begins_with, may_begin};
+use crate::model::read::blocks::Block;
 use crate::model::read::calendar::Calendar;
 use crate::model::read::findings::Findings;
+use crate::model::read::replaced::{Entries, replaced};
 use crate::model::read::source::Source;
 use crate::model::read::toml_types::Table;
 use crate::model::read::{bytes, syntax};
 use crate::model::types::Model;
 
-/// Entries of a model, by their sections.
-type Entries = BTreeMap<Section, BTreeSet<Name>>;
-
 /// The model that parts spell, which is what reading them whole makes of them, and where its entries lie now. `before` are the parts that
 /// spelt `model`.
 ///
-/// `None` where they differ in more than the inside of tables and in rows of entries that were there, or hold a fault.
+/// `None` where they differ in more than plain tables and rows, or hold a fault.
 pub(in crate::model::read) fn again(
     path: &Path,
     parts: &Parts<'_>,
@@ -42,7 +38,7 @@ pub(in crate::model::read) fn again(
         return None;
     }
     let mut now = traces.clone();
-    let mut entries = Entries::new();
+    let mut entries = Entries::default();
     let mut texts = Vec::with_capacity(parts.len());
     for (((name, new), (_, old)), blocks) in parts.iter().zip(before).zip(&mut now.parts) {
         let (text, kind) = laid(path, name, new).ok()?;
@@ -65,10 +61,8 @@ pub(in crate::model::read) fn again(
         sheets.push(path.join(name), excerpt, *kind);
     }
     let root = document(&sheets, model)?;
-    let block = |section: Section| move |name: Name| Block { start: 0, section, name };
-    let tables = entries.into_iter().flat_map(|(section, names)| names.into_iter().map(block(section))).collect();
     let calendar = Calendar::of(model.horizon.clone(), traces.days.clone());
-    let model = replaced(model, &root, &Blocks { tables, days: None }, &calendar)?;
+    let model = replaced(model, &root, &entries, &calendar)?;
     Some((model, now))
 }
 
@@ -91,29 +85,20 @@ fn edited(
         Some(kind) => traces::rows(&text, kind)?,
         None => {
             let root = syntax::parse(Source { path, text: &text }).ok()?;
-            // Every key of the piece lies in a table.
-            let whole =
-                root.get_ref().keys().all(|key| Section::ALL.iter().any(|section| section.word() == key.get_ref()));
-            traces::tables(&text, root.get_ref()).filter(|_| whole)?
+            traces::tables(&text, root.get_ref())
+                .filter(|tables| begins_with(&text, root.get_ref(), tables) && may_begin(blocks, tables))?
         }
     };
-    for block in blocks[edited.blocks.clone()].iter().chain(&pieces) {
-        entries.entry(block.section).or_default().insert(block.name.clone());
-    }
-    let placed = |mut block: Block| {
-        block.start = block.start - header.len() + edited.text.start;
-        block
-    };
-    let moved = |block: &Block| Block { start: block.start.saturating_add_signed(edited.moved), ..block.clone() };
-    let (first, rest) = (&blocks[..edited.blocks.start], &blocks[edited.blocks.end..]);
-    Some(first.iter().cloned().chain(pieces.into_iter().map(placed)).chain(rest.iter().map(moved)).collect())
+    entries.extend(blocks[edited.blocks.clone()].iter().chain(&pieces));
+    let behind_header = |block: Block| Block { start: block.start - header.len(), ..block };
+    Some(edited.tables(blocks, pieces.into_iter().map(behind_header).collect()))
 }
 
 /// What a part says of some entries, as a text of its own.
 fn excerpt(text: &str, kind: Option<Kind>, blocks: &[Block], entries: &Entries) -> Option<String> {
     let mut excerpt = String::new();
     for (at, block) in blocks.iter().enumerate() {
-        if !entries.get(&block.section).is_some_and(|names| names.contains(&block.name)) {
+        if !entries.contains(block) {
             continue;
         }
         if excerpt.is_empty() && kind.is_some() {
