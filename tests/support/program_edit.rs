@@ -63,6 +63,9 @@ fn row_bound(rng: &mut Rng, program: &Program) -> Program {
 fn coefficient(rng: &mut Rng, program: &Program) -> Program {
     let mut edited = program.clone();
     let used: Vec<usize> = (0..edited.columns.len()).filter(|&at| !edited.columns[at].entries.is_empty()).collect();
+    if used.is_empty() {
+        return edited;
+    }
     let entries = &mut edited.columns[*rng.pick(&used)].entries;
     let at = rng.below(entries.len());
     entries[at].1 *= factor(rng);
@@ -100,14 +103,22 @@ fn new_row(rng: &mut Rng, program: &Program) -> Program {
     edited
 }
 
+/// Never the last one: there would be nothing left to edit.
 fn column_withdrawn(rng: &mut Rng, program: &Program) -> Program {
     let mut edited = program.clone();
+    if edited.columns.len() == 1 {
+        return edited;
+    }
     edited.columns.remove(rng.below(program.columns.len()));
     edited
 }
 
+/// Never the last one, likewise.
 fn row_withdrawn(rng: &mut Rng, program: &Program) -> Program {
     let mut edited = program.clone();
+    if edited.rows.len() == 1 {
+        return edited;
+    }
     let gone = rng.below(program.rows.len());
     edited.rows.remove(gone);
     for column in &mut edited.columns {
