@@ -39,7 +39,7 @@ fn g2_two_hosts_on_one_mount() {
     // The first finds that out by itself, and ends; only where it was stopped in the middle of a renewal is it the other. Should it look at the model before that, it finds the plan in place.
     works.save("m", &tiles(3));
     third.wait_current("m", aim(3));
-    let (told, plan) = (first.objects.len(), identity(&works.plan("m")));
+    let plan = identity(&works.plan("m"));
     first.signal(Signal::CONT);
     let moment = Duration::from_millis(500);
     let ended = (0..40).find_map(|_| match (first.wait_end(moment), third.wait_end(moment)) {
@@ -49,7 +49,6 @@ fn g2_two_hosts_on_one_mount() {
     });
     let (status, is_first) = ended.unwrap();
     assert_eq!(status.code(), Some(3), "{:#?} {:#?}", first.log, third.log);
-    assert!(first.objects[told..].iter().all(|object| object["start"].is_null()), "{:#?}", first.objects);
     assert_eq!(identity(&works.plan("m")), plan);
 
     // What ends well leaves nothing to wait for.
