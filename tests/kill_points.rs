@@ -13,8 +13,17 @@
 #[path = "kill_points/calls.rs"]
 mod calls;
 #[cfg(all(target_os = "linux", target_arch = "x86_64"))]
+#[path = "kill_points/disk.rs"]
+mod disk;
+#[cfg(all(target_os = "linux", target_arch = "x86_64"))]
 #[path = "kill_points/points.rs"]
 mod points;
+#[cfg(all(target_os = "linux", target_arch = "x86_64"))]
+#[path = "kill_points/power.rs"]
+mod power;
+#[cfg(all(target_os = "linux", target_arch = "x86_64"))]
+#[path = "kill_points/recorder.rs"]
+mod recorder;
 #[cfg(all(target_os = "linux", target_arch = "x86_64"))]
 #[expect(dead_code, reason = "other tests draw more kinds of numbers")]
 #[path = "support/rng.rs"]

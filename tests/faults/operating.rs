@@ -1,13 +1,17 @@
 //! What an operator sees and does: the status, settings that change, a service manager, fairness.
 
 use std::fs;
+use std::io::Read;
 use std::os::unix::net::UnixDatagram;
+use std::process::{Command, Stdio};
 use std::time::Duration;
 
-use rustix::process::Signal;
+use millreeve::plan::{note, text};
+use rustix::process::{Pid, Signal, kill_process};
 use serde_json::Value;
 
-use crate::support::{Daemon, Works, aim, command, heavy, pause, tiles, wait_until, write};
+use crate::lab::PROGRAM;
+use crate::support::{Daemon, Works, aim, command, heavy, pause, tiles, wait_until, within, write};
 
 fn status(works: &Works) -> Value {
     let (code, out, err) = works.run(&["--json", "keep", ".", "--status"]);
@@ -166,4 +170,70 @@ fn one_message_for_many_models_and_none_too_long() {
     daemon.stop();
     assert_eq!(daemon.logged("is a link"), 20, "{:#?}", daemon.log);
     assert!(daemon.log.iter().all(|line| line.len() <= 2048), "{:#?}", daemon.log);
+}
+
+#[test]
+fn e13_a_reader_that_never_reads() {
+    let works = Works::new(&[]);
+    // More than a pipe holds is told of so many models with so long names.
+    let names: Vec<_> = (0..120).map(|number| format!("{}-{number}", "n".repeat(200))).collect();
+    for (name, capacity) in names.iter().zip(1..) {
+        works.save(name, &tiles(capacity));
+    }
+    let mut keep = command(&["--json", "keep"]);
+    keep.arg(works.root()).stdin(Stdio::null()).stdout(Stdio::piped()).stderr(Stdio::null());
+    let mut daemon = keep.spawn().unwrap();
+    wait_until("all plans", || names.iter().all(|name| works.note(name).exists()));
+    works.save("m", &tiles(7));
+    wait_until("a plan of a later save", || works.note("m").exists());
+    kill_process(Pid::from_child(&daemon), Signal::TERM).unwrap();
+    assert_eq!(daemon.wait().unwrap().code(), Some(0));
+    // What it begins to read then is whole lines.
+    let mut told = String::new();
+    daemon.stdout.take().unwrap().read_to_string(&mut told).unwrap();
+    let whole: Vec<_> = told.lines().take(20).map(|line| serde_json::from_str::<Value>(line).unwrap()).collect();
+    assert!(whole.len() == 20 && whole.iter().all(|object| object["standing"] == "current"), "{whole:?}");
+    works.check();
+}
+
+/// E11: the system's killer of processes strikes with kill -9, and a supervisor starts the daemon again.
+#[test]
+fn e11_killed_again_and_again_under_a_supervisor() {
+    let works = Works::new(&[("m", &tiles(1))]);
+    let end = works.outside("end");
+    let script = "until test -e \"$2\"; do \"$0\" keep \"$1\"; done";
+    let mut shell = within(Command::new("sh"), &["-c", script, PROGRAM]);
+    shell.arg(works.root()).arg(&end).stdin(Stdio::null()).stdout(Stdio::null()).stderr(Stdio::null());
+    let mut supervisor = shell.spawn().unwrap();
+    let lock = works.path(".millreeve/lock");
+    let mut last = None;
+    // Of a daemon that has just begun, before, while or after it plans.
+    let mut next = || {
+        wait_until("a daemon", || {
+            let told = fs::read_to_string(&lock).unwrap_or_default();
+            let found = told.strip_prefix("process ").and_then(|rest| rest.split(' ').next()?.parse().ok());
+            found.is_some() && std::mem::replace(&mut last, found) != found
+        });
+        Pid::from_raw(last.unwrap()).unwrap()
+    };
+    for capacity in 2..=6 {
+        let daemon = next();
+        works.save("m", &tiles(capacity));
+        if capacity % 2 == 0 {
+            wait_until("its plan", || {
+                works.plan("m").exists() && works.standing("m").1.to_bits() == aim(capacity).to_bits()
+            });
+        }
+        kill_process(daemon, Signal::KILL).unwrap();
+    }
+    let daemon = next();
+    wait_until("the last plan and its note", || {
+        works.note("m").exists()
+            && works.standing("m") == ("current".to_owned(), aim(6))
+            && note::speaks_of(&works.note_text("m")) == text::seal(&works.plan_text("m"))
+    });
+    write(&end, "");
+    kill_process(daemon, Signal::TERM).unwrap();
+    assert!(supervisor.wait().unwrap().success());
+    works.check();
 }

@@ -9,7 +9,7 @@ use crate::scenario::{Asked, Case, Done, Lost, SCENARIOS, Scenario};
 use crate::tracer::{At, End, Fault};
 
 /// A number from the environment, for a longer run or another one.
-fn from_environment(name: &str, default: usize) -> usize {
+pub(crate) fn from_environment(name: &str, default: usize) -> usize {
     std::env::var(name).map_or(default, |text| text.parse().unwrap())
 }
 
@@ -19,7 +19,7 @@ fn cases(folder: &Path) -> Vec<Case> {
 }
 
 /// A folder in memory where there is one: a kill loses nothing that was written, synced or not, so syncing would only cost time.
-fn scratch() -> tempfile::TempDir {
+pub(crate) fn scratch() -> tempfile::TempDir {
     tempfile::tempdir_in("/dev/shm").or_else(|_| tempfile::tempdir()).unwrap()
 }
 
@@ -42,15 +42,24 @@ fn for_each_call(count: usize, test: impl Fn(&Case, usize, &mut Rng, &Path) + Sy
     for (number, (case, _)) in points.iter().filter(|(_, (case, _))| case.scenario.asked == Asked::Keep) {
         case.copy(&own(*number));
     }
+    on_all_processors(points.len(), |at| {
+        let (number, &(case, call)) = points[at];
+        let works = match case.scenario.asked {
+            Asked::Once => case.copy(&own(number)),
+            Asked::Keep => own(number).join("works"),
+        };
+        test(case, call, &mut Rng::new(seed ^ (number as u64) << 20), &works);
+        std::fs::remove_dir_all(own(number)).unwrap();
+    });
+    println!("{count} points in {} calls of {} scenarios, seed {seed}", all.len(), cases.len());
+}
+
+/// Does something for each number below `count`, on all processors.
+pub(crate) fn on_all_processors(count: usize, work: impl Fn(usize) + Sync) {
     let next = AtomicUsize::new(0);
     let work = || {
-        while let Some(&(number, &(case, call))) = points.get(next.fetch_add(1, Ordering::Relaxed)) {
-            let works = match case.scenario.asked {
-                Asked::Once => case.copy(&own(number)),
-                Asked::Keep => own(number).join("works"),
-            };
-            test(case, call, &mut Rng::new(seed ^ (number as u64) << 20), &works);
-            std::fs::remove_dir_all(own(number)).unwrap();
+        while let Some(number) = Some(next.fetch_add(1, Ordering::Relaxed)).filter(|&number| number < count) {
+            work(number);
         }
     };
     thread::scope(|scope| {
@@ -58,7 +67,6 @@ fn for_each_call(count: usize, test: impl Fn(&Case, usize, &mut Rng, &Path) + Sy
             scope.spawn(work);
         }
     });
-    println!("{count} points in {} calls of {} scenarios, seed {seed}", all.len(), cases.len());
 }
 
 #[test]

@@ -9,7 +9,8 @@ use std::path::{Path, PathBuf};
 use millreeve::plan::{note, text};
 use millreeve::store::atomic::is_temp;
 
-use crate::tracer::{At, End, Run, pass, run};
+use crate::disk::Change;
+use crate::tracer::{At, End, Run, pass, record, run};
 
 /// A small tileworks.
 fn tileworks(title: &str, kiln: &str) -> String {
@@ -89,6 +90,10 @@ pub(crate) struct Case {
     fresh: Files,
     /// What a pass writes that has lost the records, and has only the last plan to go by.
     unrecorded: Files,
+    /// What a pass writes that has lost the records and the notes when the plans were in place already.
+    unnoted: Files,
+    /// The same where the records are those of before.
+    outdated: Files,
     /// How many calls there are to meddle with.
     pub(crate) calls: usize,
     status: i32,
@@ -103,8 +108,18 @@ impl Case {
         lay_out(scenario.done, &template);
         let before = files(&template);
         let none = Files::new;
-        let mut case =
-            Self { scenario, template, before, after: none(), fresh: none(), unrecorded: none(), calls: 0, status: 0 };
+        let mut case = Self {
+            scenario,
+            template,
+            before,
+            after: none(),
+            fresh: none(),
+            unrecorded: none(),
+            unnoted: none(),
+            outdated: none(),
+            calls: 0,
+            status: 0,
+        };
         let undisturbed = case.copy(&folder.join(&name).join("undisturbed"));
         let run = case.run(&undisturbed, None);
         let End::Exit(status) = run.end else { panic!("{scenario:?}: {run:?}") };
@@ -120,6 +135,8 @@ impl Case {
         let _ = fs::remove_dir_all(unrecorded.join(".millreeve"));
         pass(&unrecorded);
         case.unrecorded = files(&unrecorded);
+        case.unnoted = case.without_notes(&undisturbed, None);
+        case.outdated = case.without_notes(&undisturbed, Some(&case.template.join(".millreeve")));
         case.expect_plans_of_a_fresh_start();
         case
     }
@@ -138,6 +155,19 @@ impl Case {
         );
     }
 
+    /// What a pass writes in a folder where all was done, its notes taken away and its records replaced by these.
+    fn without_notes(&self, works: &Path, records: Option<&Path>) -> Files {
+        for name in self.after.keys().filter(|name| name.ends_with(".note.md")) {
+            fs::remove_file(works.join(name)).unwrap();
+        }
+        let _ = fs::remove_dir_all(works.join(".millreeve"));
+        if let Some(records) = records.filter(|records| records.exists()) {
+            copy(records, &works.join(".millreeve"));
+        }
+        pass(works);
+        files(works)
+    }
+
     /// The folder as it is before, at `folder`/works.
     pub(crate) fn copy(&self, folder: &Path) -> PathBuf {
         let works = folder.join("works");
@@ -150,6 +180,14 @@ impl Case {
         match self.scenario.asked {
             Asked::Once => run(works, &["once"], 0, at),
             Asked::Keep => run(works, &["--json", "keep"], 2, at),
+        }
+    }
+
+    /// Runs it undisturbed, and answers what it changes.
+    pub(crate) fn record(&self, works: &Path) -> Vec<Change> {
+        match self.scenario.asked {
+            Asked::Once => record(works, &["once"], 0),
+            Asked::Keep => record(works, &["--json", "keep"], 2),
         }
     }
 
@@ -234,8 +272,8 @@ impl Case {
     /// The texts that a file may have: what it was, what it becomes, what a fresh start writes and, where a record could not be read,
     /// what is told without it.
     fn known(&self, name: &str, lost: Lost) -> Vec<&String> {
-        let unrecorded = (lost != Lost::Nothing).then_some(&self.unrecorded);
-        let known = [&self.before, &self.after, &self.fresh].into_iter().chain(unrecorded);
+        let unrecorded = (lost != Lost::Nothing).then_some([&self.unrecorded, &self.unnoted, &self.outdated]);
+        let known = [&self.before, &self.after, &self.fresh].into_iter().chain(unrecorded.into_iter().flatten());
         known.filter_map(|files| files.get(name)).collect()
     }
 }
@@ -268,7 +306,11 @@ fn lay_out(done: Done, folder: &Path) {
 }
 
 pub(crate) fn write(path: &Path, text: &str) {
-    fs::File::create(path).unwrap().write_all(text.as_bytes()).unwrap();
+    write_bytes(path, text.as_bytes());
+}
+
+pub(crate) fn write_bytes(path: &Path, bytes: &[u8]) {
+    fs::File::create(path).unwrap().write_all(bytes).unwrap();
 }
 
 fn copy(from: &Path, to: &Path) {

@@ -18,6 +18,8 @@ use nix::sys::wait::{WaitPidFlag, WaitStatus, waitpid};
 use nix::unistd::Pid;
 
 use crate::calls::{About, Call, by_number};
+use crate::disk::Change;
+use crate::recorder::Recorder;
 
 const PROGRAM: &str = env!("CARGO_BIN_EXE_millreeve");
 
@@ -75,8 +77,19 @@ fn without_settings(command: &mut Command) -> &mut Command {
 }
 
 /// Runs the program with these arguments, which concern `root`. `keep` is asked to end once it has told of `until_told` models.
-#[expect(clippy::zombie_processes, reason = "the tracer waits for it, as for all its threads")]
 pub(crate) fn run(root: &Path, arguments: &[&str], until_told: usize, at: Option<At>) -> Run {
+    follow(root, arguments, until_told, at).0
+}
+
+/// The same, undisturbed; answers what it changes in the folder.
+pub(crate) fn record(root: &Path, arguments: &[&str], until_told: usize) -> Vec<Change> {
+    let (run, recorder) = follow(root, arguments, until_told, None);
+    assert!(matches!(run.end, End::Exit(_)), "{run:?}");
+    recorder.changes
+}
+
+#[expect(clippy::zombie_processes, reason = "the tracer waits for it, as for all its threads")]
+fn follow(root: &Path, arguments: &[&str], until_told: usize, at: Option<At>) -> (Run, Recorder) {
     let folder = root.parent().unwrap();
     let [out, err] = ["out", "err"].map(|name| folder.join(name));
     let mut command = Command::new("sh");
@@ -84,9 +97,12 @@ pub(crate) fn run(root: &Path, arguments: &[&str], until_told: usize, at: Option
     command.args(["-c", "kill -STOP $$; exec \"$0\" \"$@\"", PROGRAM]).args(arguments).arg(root);
     let [to_out, to_err] = [&out, &err].map(|path| File::create(path).unwrap());
     let child = without_settings(&mut command).stdout(to_out).stderr(to_err).spawn().unwrap();
+    let root = root.canonicalize().unwrap();
     let mut tracer = Tracer {
         main: Pid::from_raw(child.id().cast_signed()),
-        root: root.canonicalize().unwrap(),
+        recorder: Recorder::new(&root),
+        out: out.canonicalize().unwrap(),
+        root,
         at,
         until_told,
         program: false,
@@ -97,12 +113,15 @@ pub(crate) fn run(root: &Path, arguments: &[&str], until_told: usize, at: Option
     };
     let end = tracer.follow();
     let said = [out, err].map(|path| fs::read_to_string(path).unwrap()).concat();
-    Run { end, calls: tracer.calls, struck: tracer.struck, said }
+    (Run { end, calls: tracer.calls, struck: tracer.struck, said }, tracer.recorder)
 }
 
 struct Tracer {
     main: Pid,
     root: PathBuf,
+    /// Where standard output goes.
+    out: PathBuf,
+    recorder: Recorder,
     at: Option<At>,
     until_told: usize,
     /// Whether the shell has become the program.
@@ -160,6 +179,8 @@ impl Tracer {
             if let Some(error) = error {
                 let rax = i64::from(-(error as i32)).cast_unsigned();
                 ptrace::setregs(pid, user_regs_struct { rax, ..registers })?;
+            } else if self.program && self.at.is_none() && registers.rax.cast_signed() >= 0 {
+                self.recorder.made(pid, &registers);
             }
             return Ok(());
         }
@@ -174,14 +195,17 @@ impl Tracer {
 
     fn entered(&mut self, pid: Pid, registers: &user_regs_struct) -> nix::Result<Option<Errno>> {
         let Some(call) = by_number(registers.orig_rax) else { return Ok(None) };
-        if call.name == "write" && registers.rdi == 1 {
+        let Some(file) = file(pid, registers, call.about) else { return Ok(None) };
+        if call.name == "write" && file == self.out {
             self.told += 1;
             if self.told == self.until_told {
                 kill(self.main, Signal::SIGTERM)?;
             }
             return Ok(None);
         }
-        let Some(file) = self.file(pid, registers, call.about) else { return Ok(None) };
+        if !file.starts_with(&self.root) {
+            return Ok(None);
+        }
         self.calls += 1;
         let Some(error) = self.strike(call) else { return Ok(None) };
         self.struck.push(format!("call {}: {} of {}", self.calls, call.name, file.display()));
@@ -205,20 +229,19 @@ impl Tracer {
             Fault::Full => (self.calls >= at && call.fills).then_some(Some(Errno::ENOSPC)),
         }
     }
+}
 
-    /// The file that a call is about, if it is one of the folder's.
-    fn file(&self, pid: Pid, registers: &user_regs_struct, about: About) -> Option<PathBuf> {
-        let arguments = [registers.rdi, registers.rsi, registers.rdx, registers.r10];
-        let file = match about {
-            About::Path(path) => text(pid, arguments[path])?,
-            About::Descriptor(descriptor) => opened(pid, arguments[descriptor])?,
-            About::Below(folder, path) => match text(pid, arguments[path])? {
-                path if path.as_os_str().is_empty() => opened(pid, arguments[folder])?,
-                path if path.is_absolute() => path,
-                path => opened(pid, arguments[folder])?.join(path),
-            },
-        };
-        file.starts_with(&self.root).then_some(file)
+/// The file that a call is about.
+pub(crate) fn file(pid: Pid, registers: &user_regs_struct, about: About) -> Option<PathBuf> {
+    let arguments = [registers.rdi, registers.rsi, registers.rdx, registers.r10];
+    match about {
+        About::Path(path) => text(pid, arguments[path]),
+        About::Descriptor(descriptor) => opened(pid, arguments[descriptor]),
+        About::Below(folder, path) => match text(pid, arguments[path])? {
+            path if path.as_os_str().is_empty() => opened(pid, arguments[folder]),
+            path if path.is_absolute() => Some(path),
+            path => Some(opened(pid, arguments[folder])?.join(path)),
+        },
     }
 }
 

@@ -225,8 +225,11 @@ impl Replanner {
         let Ok(plan_text) = marked(&plan_text, &Standing::Current) else { return Ok(None) };
         let Ok(now) = text::read(&plan_text) else { return Ok(None) };
         let edits = known.map(|known| compare(&known.model, &read.model)).unwrap_or_default();
-        let before = on_disk.plan().or_else(|| was.as_ref().map(|written| &written.plan));
-        let mended = before.is_some_and(|plan| plan.standing != Standing::Current);
+        let there = on_disk.plan().or_else(|| was.as_ref().map(|written| &written.plan));
+        let mended = there.is_some_and(|plan| plan.standing != Standing::Current);
+        // A plan that came with its model, or was made by a run whose record is lost, is news after the last one that is known.
+        let last = known.map(|known| &known.plan).filter(|plan| plan.answers != read.meaning);
+        let before = last.or(there);
         let telling = Telling::of(job).edited(&edits, &[]).model(Some(&read.model));
         let recorded = record.filter(|record| record.plan == plan_text && record.source == read.bytes);
         // The note on disk still holds unless there is something new to tell.
