@@ -104,6 +104,8 @@ pub struct Reckoning {
     pub primal_infeasible: Option<usize>,
     /// How many levels could still improve the aim; `None` where there was no basis.
     pub dual_infeasible: Option<usize>,
+    /// Whether the last basis was carried over by name, as far as the two programs overlap.
+    pub by_name: bool,
     /// Simplex iterations.
     pub pivots: usize,
     /// Pivots in exact arithmetic after that, to the one plan.

@@ -35,8 +35,20 @@ pub(super) struct Run<'a> {
     pub(super) stop: &'a Stop,
     /// Iterations it may take.
     pub(super) cap: usize,
+    /// Iterations it may take from a basis that was carried over by name.
+    pub(super) cap_by_name: usize,
     /// The variant to take whatever the look says.
     pub(super) insisted: Option<Start>,
+}
+
+impl Run<'_> {
+    /// The start to take from a basis: none where it is optimal.
+    fn start(&self, look: &Look, program: &Program) -> Start {
+        match look.start(program) {
+            Start::None => Start::None,
+            start => self.insisted.unwrap_or(start),
+        }
+    }
 }
 
 /// Solves `program` from `anchor`. An error is the reason why that led nowhere, as a short phrase.
@@ -125,6 +137,8 @@ fn start_by_name(
     instance.set_basis(&mended).map_err(lost)?;
     let first = Look::at(&mut instance, program).map_err(lost)?;
     account.by_name = true;
+    let start = run.insisted.unwrap_or_else(|| first.start_by_name(program));
+    let run = &Run { cap: run.cap_by_name, insisted: Some(start), ..*run };
     match begin(anchor, &mut instance, program, first, run, account)? {
         Settled::Optimal(look) => Ok(Reached::Optimal(instance, look)),
         Settled::Other(outcome) => Ok(Reached::Other(outcome)),
@@ -141,7 +155,7 @@ fn begin(
     run: &Run<'_>,
     account: &mut Account,
 ) -> Result<Settled, &'static str> {
-    account.start = first.start(program);
+    account.start = run.start(&first, program);
     account.primal_infeasible = Some(first.primal);
     account.dual_infeasible = Some(first.dual);
     let settled = settle(instance, program, first, run, account)?;
@@ -190,7 +204,7 @@ fn settle(
     if look.is_optimal() {
         return Ok(Settled::Optimal(Box::new(look)));
     }
-    let chosen = run.insisted.unwrap_or_else(|| look.start(program));
+    let chosen = run.start(&look, program);
     if account.start == Start::None {
         // The last basis was optimal on the way, and what was let go gives it something to gain after all.
         account.start = chosen;

@@ -26,6 +26,7 @@ fn reckoning(kind: Kind, taken: Start, broken: usize, open: usize, pivots: usize
         taken,
         primal_infeasible: Some(broken),
         dual_infeasible: Some(open),
+        by_name: false,
         pivots,
         exact_pivots: 0,
         detours: vec![],

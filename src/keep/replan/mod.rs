@@ -378,6 +378,7 @@ fn reckoning(known: Option<&Known>, edits: &[Edit], account: &Account, optimum: 
         taken: account.start,
         primal_infeasible: account.primal_infeasible,
         dual_infeasible: account.dual_infeasible,
+        by_name: account.by_name,
         pivots: account.pivots,
         exact_pivots: account.exact_pivots,
         detours: account.detours.clone(),

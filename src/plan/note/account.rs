@@ -49,12 +49,14 @@ fn basis(reckoning: &Reckoning) -> String {
     let (Some(broken), Some(open)) = (reckoning.primal_infeasible, reckoning.dual_infeasible) else {
         return "no earlier basis to start from".to_owned();
     };
+    let carried =
+        if reckoning.by_name { "the last basis, kept by name where both plans overlap," } else { "the last basis" };
     let could_improve = format!("left {} that could improve the aim", count(open, "level"));
     match (broken, open) {
-        (0, 0) => "the last basis stayed optimal".to_owned(),
-        (_, 0) => format!("the last basis broke {} and stayed dual feasible", count(broken, "bound")),
-        (0, _) => format!("the last basis stayed primal feasible and {could_improve}"),
-        _ => format!("the last basis broke {} and {could_improve}", count(broken, "bound")),
+        (0, 0) => format!("{carried} stayed optimal"),
+        (_, 0) => format!("{carried} broke {} and stayed dual feasible", count(broken, "bound")),
+        (0, _) => format!("{carried} stayed primal feasible and {could_improve}"),
+        _ => format!("{carried} broke {} and {could_improve}", count(broken, "bound")),
     }
 }
 
