@@ -10,8 +10,6 @@ mod folders;
 mod git;
 #[path = "faults/hostile.rs"]
 mod hostile;
-#[path = "faults/hosts.rs"]
-mod hosts;
 #[path = "faults/lab.rs"]
 mod lab;
 #[path = "faults/limits.rs"]

@@ -4,6 +4,7 @@
 
 #![expect(
     clippy::unwrap_used,
+    clippy::expect_used,
     clippy::print_stdout,
     clippy::disallowed_methods,
     clippy::cast_precision_loss,
