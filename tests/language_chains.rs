@@ -28,7 +28,7 @@ use rng::Rng;
 use support::{least, same, size, solve};
 use told::told;
 
-const CHAINS: u64 = 80;
+const CHAINS: u64 = 250;
 const EDITS: usize = 8;
 
 /// What a plan shows of an outcome: aim and levels in 10 digits, whether it is exact, whether there are ties.

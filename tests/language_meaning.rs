@@ -20,7 +20,7 @@ use millreeve::solver::session::Session;
 use plain_meaning::meaning;
 use support::{least, same, size, solve};
 
-const CASES: u64 = 600;
+const CASES: u64 = 1500;
 
 /// What a plan says keeps every rule of the model and earns what is told: so nothing is missing. What another engine makes of the rules,
 /// written down another way, comes to the same aim: so nothing is there that the model does not say.

@@ -186,7 +186,7 @@ pub fn rounded_to(number: f64, scale: f64) -> f64 {
         }
         Err(_) => {
             let unit = 10_f64.powi(exponent - 9);
-            (number / unit).round() * unit + 0.0
+            ((number / unit * 1e3).round() / 1e3).round() * unit + 0.0
         }
     }
 }

@@ -26,13 +26,23 @@ struct Rung {
     strategy: i32,
 }
 
-/// From the fastest to the most patient.
+/// From the fastest to the most patient, but on programs of many rows.
 const LADDER: [Rung; 4] = [
     Rung { name: "dual simplex with presolve", presolve: "choose", solver: "simplex", strategy: 1 },
     Rung { name: "dual simplex without presolve", presolve: "off", solver: "simplex", strategy: 1 },
     Rung { name: "primal simplex without presolve", presolve: "off", solver: "simplex", strategy: 4 },
     Rung { name: "interior point and crossover", presolve: "choose", solver: "ipm", strategy: 1 },
 ];
+
+/// With more rows than this the last rung comes first: measured on works of 200 activities over 52 weeks with stocks (7,488 rows), 6.5 s
+/// against 43 s by dual simplex and 43 s by primal.
+const MANY_ROWS: usize = 4_000;
+
+/// The rungs in the order in which `program` climbs them.
+fn ladder(program: &Program) -> impl Iterator<Item = &'static Rung> {
+    let first = if program.rows.len() > MANY_ROWS { LADDER.len() - 1 } else { 0 };
+    LADDER.iter().cycle().skip(first).take(LADDER.len())
+}
 
 /// What a solve from nothing came to.
 pub struct Cold {
@@ -61,7 +71,7 @@ pub fn solve(program: &Program, limit: Duration, stop: &Stop) -> Cold {
     if let Some(conflict) = certificate::plain_contradiction(program) {
         return Cold { end: Reached::Other(Outcome::Infeasible(conflict)), pivots, detours };
     }
-    for rung in &LADDER {
+    for rung in ladder(program) {
         match climb(program, rung, limit, stop, &mut pivots) {
             Ok(Reached::Other(Outcome::Infeasible(conflict @ Conflict { proven: false, .. }))) => {
                 unproven.get_or_insert(Outcome::Infeasible(conflict));
@@ -156,4 +166,51 @@ pub fn explain_unbounded(program: &Program, instance: &mut Instance) -> Growth {
         certificate::growth(program, &own)
     });
     shown.or_else(|| certificate::plain_growth(program)).unwrap_or_default()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::lp::{Column, Key, Row, RowIndex, Sense};
+
+    /// Independent copies of one small program: its optimum of 36 (the Wyndor example of Hillier & Lieberman, *Introduction to Operations
+    /// Research*, from memory) as many times over.
+    fn copies(count: usize) -> Program {
+        let mut program = Program { sense: Sense::Maximise, offset: 0.0, columns: Vec::new(), rows: Vec::new() };
+        for copy in 0..count {
+            let rows = [("a", 4.0), ("b", 12.0), ("c", 18.0)].map(|(name, upper)| Row {
+                key: Key::new(&format!("{copy:05}{name}")),
+                lower: f64::NEG_INFINITY,
+                upper,
+            });
+            let first = program.rows.len();
+            program.rows.extend(rows);
+            for (name, aim, entries) in [("x", 3.0, [(0, 1.0), (2, 3.0)]), ("y", 5.0, [(1, 2.0), (2, 2.0)])] {
+                program.columns.push(Column {
+                    key: Key::new(&format!("{copy:05}{name}")),
+                    lower: 0.0,
+                    upper: f64::INFINITY,
+                    aim,
+                    entries: entries.map(|(row, value)| (RowIndex(first + row), value)).into(),
+                });
+            }
+        }
+        program
+    }
+
+    #[test]
+    fn programs_of_many_rows_come_to_a_proven_basis_too() {
+        for count in [MANY_ROWS / 3, MANY_ROWS / 3 + 1] {
+            let program = copies(count);
+            let Cold { end, detours, .. } = solve(&program, Duration::from_secs(60), &Stop::default());
+            assert!(detours.is_empty(), "{detours:?}");
+            let Reached::Optimal(_, look) = end else { unreachable!("it has a plan") };
+            assert!(look.is_optimal());
+            #[expect(clippy::cast_precision_loss, reason = "some thousands")]
+            let sum = 36.0 * count as f64;
+            assert!((look.checked.aim - sum).abs() <= 1e-9 * sum, "{} is not {sum}", look.checked.aim);
+        }
+        assert_eq!(ladder(&copies(MANY_ROWS / 3 + 1)).next().map(|rung| rung.solver), Some("ipm"));
+        assert_eq!(ladder(&copies(1)).next().map(|rung| rung.solver), Some("simplex"));
+    }
 }

@@ -162,7 +162,8 @@ impl Session {
         account.pivots += pivots;
         account.detours.extend(detours.into_iter().map(Into::into));
         if let Reached::Optimal(..) = end {
-            self.cold_pivots = Some(pivots);
+            // Where no pivot was counted, as after an interior point, one for each row stands for what it took.
+            self.cold_pivots = Some(if pivots == 0 { program.rows.len() } else { pivots });
         }
         end
     }

@@ -272,15 +272,16 @@ fn an_edit_after_a_restart_starts_from_the_last_basis() {
     let mut daemon = works.keep();
     let (status, _, err) = works.run(&["demo", "."]);
     assert_eq!(status, Some(0), "{err}");
-    let first = daemon.wait_standing("tileworks", "current");
+    let first = daemon.wait_standing("fortnight", "current");
     assert_eq!(first["start"], "cold");
     daemon.stop();
-    let model = fs::read_to_string(works.model("tileworks")).unwrap();
+    let model = fs::read_to_string(works.model("fortnight")).unwrap();
     let dearer = model.replace("price    = 21.0", "price    = 22.4").replace("capacity = 168 ", "capacity = 154 ");
+    assert_ne!(dearer, model);
     for (edit, text) in [("the edit", &dearer), ("and back", &model)] {
         let mut daemon = works.keep();
-        works.save("tileworks", text);
-        let told = daemon.wait(edit, |object| object["model"] == "tileworks");
+        works.save("fortnight", text);
+        let told = daemon.wait(edit, |object| object["model"] == "fortnight");
         let start = told["start"].as_str().unwrap();
         assert!(["none", "primal", "dual"].contains(&start), "{edit}: {told}");
         // Killed without a warning, the daemon finds all it needs at the next start.
