@@ -62,7 +62,7 @@ pub fn write(
 /// one, be it put there at the last moment.
 ///
 /// # Errors
-/// As [`write`]; a link on the way, or another folder in the place of the one that the write began in, fails it.
+/// As [`write()`]; a link on the way, or another folder in the place of the one that the write began in, fails it.
 pub fn write_below(
     root: &Path,
     path: &Path,
