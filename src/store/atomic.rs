@@ -58,7 +58,7 @@ pub fn write(
     write_checked((None, path), bytes, ours, durability, &mut |_| Ok(()))
 }
 
-/// As [`write`], and no link below `root`, which is the beginning of `path`, is followed on the way to the file: nothing is written through
+/// As [`write()`], and no link below `root`, which is the beginning of `path`, is followed on the way to the file: nothing is written through
 /// one, be it put there at the last moment.
 ///
 /// # Errors
