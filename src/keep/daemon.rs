@@ -20,6 +20,8 @@ use crate::model::escape::Plain;
 
 /// A scan takes at most this share of the time: one part in so many.
 const SCAN_SHARE: u32 = 20;
+/// The same while events tell of edits in all folders, and scans are for what they miss.
+const SPARE_SCAN_SHARE: u32 = 150;
 /// The same for scans that a hint asked for.
 const HINTED_SCAN_SHARE: u32 = 5;
 /// The least time between two scans.
@@ -242,10 +244,11 @@ impl Dispatcher {
     }
 
     fn hint(&mut self, now: Instant, hint: Hint, actions: &mut Vec<Action>) {
-        let (path, touch) = match hint {
-            Hint::Closed(path) | Hint::Arrived(path) => (path, Touch::Finished),
-            Hint::Writing(path) => (path, Touch::Writing),
-            Hint::Gone(path) => (path, Touch::Gone),
+        let (path, touch, stamp) = match hint {
+            Hint::Closed(path) => (path, Touch::Finished, None),
+            Hint::Arrived(path, stamp) => (path, Touch::Finished, stamp),
+            Hint::Writing(path) => (path, Touch::Writing, None),
+            Hint::Gone(path) => (path, Touch::Gone, None),
             Hint::Folder(_) | Hint::FolderGone(_) => {
                 self.next_scan = now;
                 return;
@@ -263,7 +266,11 @@ impl Dispatcher {
             // What may be reading it now has some parts of before and some of after.
             actions.extend(self.queue.withhold(&model).map(Action::Interrupt));
         } else if self.settling.touch(now, &model, touch) {
-            self.push(&model, What::Replan, actions);
+            // A scan may have found what was moved here before the word of it came: then it is being read already.
+            let in_hand = stamp.is_some() && self.begun.get(&model) == Some(&stamp);
+            if !in_hand {
+                self.push(&model, What::Replan, actions);
+            }
         } else if touch == Touch::Writing {
             // An earlier save is about to be read, and would be found half overwritten by this one.
             actions.extend(self.queue.withhold(&model).map(Action::Interrupt));
@@ -306,7 +313,8 @@ impl Dispatcher {
     fn scanned(&mut self, now: Instant, scanned: Scanned, actions: &mut Vec<Action>) {
         let took = now.saturating_duration_since(scanned.began);
         self.scanning = false;
-        self.next_scan = now + self.scan_every.max(took * SCAN_SHARE);
+        let share = if self.watching == Watching::Events { SPARE_SCAN_SHARE } else { SCAN_SHARE };
+        self.next_scan = now + self.scan_every.max(took * share);
         self.scan_floor = now + LEAST_GAP.max(took * HINTED_SCAN_SHARE);
         let scan = match scanned.found {
             Ok(scan) => scan,

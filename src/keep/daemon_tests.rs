@@ -75,6 +75,27 @@ fn without_events_the_scan_finds_every_edit() {
 }
 
 #[test]
+fn word_of_what_a_scan_found_already_interrupts_nothing() {
+    let mut bench = Bench::new(2);
+    bench.write("a.model.toml", "1");
+    bench.pass(6 * SECOND);
+    assert_eq!(bench.in_hand(), [replan("a")]);
+    let arrived = |path: PathBuf| {
+        let stamp = Stamp::of(&path);
+        Hint::Arrived(path, stamp)
+    };
+    bench.hint(arrived, "a");
+    assert_eq!((&bench.interrupted[..], bench.in_hand()), (&[][..], vec![replan("a")]));
+    // Another one moved there since is news.
+    bench.write("new", "2");
+    std::fs::rename(bench.folder.path().join("new"), bench.model("a").full()).unwrap();
+    bench.hint(arrived, "a");
+    assert_eq!(bench.interrupted, [Worker(0)]);
+    bench.end(Replanned::Interrupted);
+    assert_eq!(bench.in_hand(), [replan("a")]);
+}
+
+#[test]
 fn a_removed_plan_brings_its_model_back_into_hand() {
     let mut bench = Bench::new(2);
     bench.write("a.model.toml", "1");

@@ -7,6 +7,8 @@ use std::sync::atomic::{AtomicBool, Ordering};
 use tokio::sync::mpsc::error::TrySendError;
 use tokio::sync::mpsc::{Receiver, Sender};
 
+use super::scan::Stamp;
+
 /// How many hints may wait. The system's own queue is as long, unless it was changed.
 const MOST: usize = 16_384;
 
@@ -15,8 +17,8 @@ const MOST: usize = 16_384;
 pub enum Hint {
     /// A file was closed by somebody who could write to it.
     Closed(PathBuf),
-    /// A file was moved here: whoever did that had finished it.
-    Arrived(PathBuf),
+    /// A file was moved here: whoever did that had finished it. With how it looks now.
+    Arrived(PathBuf, Option<Stamp>),
     /// Somebody is writing to a file.
     Writing(PathBuf),
     /// A file was removed or moved away.

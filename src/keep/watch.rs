@@ -13,6 +13,7 @@ use rustix::io::Errno;
 
 use super::hints::{Hint, HintSender};
 use super::path::{is_entered, may_concern};
+use super::scan::Stamp;
 use crate::model::escape::Plain;
 use crate::store::atomic::is_temp;
 use crate::store::error::reason;
@@ -174,7 +175,10 @@ fn hint(root: &Path, kind: EventKind, path: PathBuf) -> Option<Hint> {
     let model = may_concern(below);
     match kind {
         EventKind::Access(AccessKind::Close(AccessMode::Write)) if model => Some(Hint::Closed(path)),
-        EventKind::Modify(ModifyKind::Name(RenameMode::To)) if model => Some(Hint::Arrived(path)),
+        EventKind::Modify(ModifyKind::Name(RenameMode::To)) if model => {
+            let stamp = Stamp::of(&path);
+            Some(Hint::Arrived(path, stamp))
+        }
         EventKind::Modify(ModifyKind::Name(RenameMode::To)) => path.is_dir().then_some(Hint::Folder(path)),
         EventKind::Modify(ModifyKind::Name(RenameMode::From)) | EventKind::Remove(RemoveKind::File) if model => {
             Some(Hint::Gone(path))
@@ -246,14 +250,14 @@ mod tests {
         let data = EventKind::Modify(ModifyKind::Data(DataChange::Any));
         let m = "/works/a/m.model.toml";
         assert_eq!(one(closed, m), [Hint::Closed(m.into())]);
-        assert_eq!(one(to, m), [Hint::Arrived(m.into())]);
+        assert_eq!(one(to, m), [Hint::Arrived(m.into(), None)]);
         assert_eq!(one(from, m), [Hint::Gone(m.into())]);
         assert_eq!(one(data, m), [Hint::Writing(m.into())]);
         assert_eq!(one(EventKind::Remove(RemoveKind::File), m), [Hint::Gone(m.into())]);
         let part = "/works/a/m.model/uses.csv";
         assert_eq!(
             (one(closed, part), one(to, part)),
-            (vec![Hint::Closed(part.into())], vec![Hint::Arrived(part.into())])
+            (vec![Hint::Closed(part.into())], vec![Hint::Arrived(part.into(), None)])
         );
         assert_eq!(
             (one(data, part), one(from, part)),
