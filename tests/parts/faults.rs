@@ -121,6 +121,77 @@ fn columns() {
     ));
 }
 
+/// A clay yard over two weeks.
+const YARD: [Part<'static>; 4] = [
+    (
+        "works.toml",
+        "format = 1\nperiods = [\"2027-W01\", \"2027-W02\"]\n[resources.pug_mill]\nunit = \"h\"\ncapacity = 80\n\
+         [materials.clay]\nunit = \"t\"\nopening = 12\npurchase = [{ price = 30 }]\nstock = { at_most = 40 }\n",
+    ),
+    ("materials.csv", "name,unit,opening,closing\nbody,t,4,2\n"),
+    ("activities.csv", "name,unit,price@2027-W01,price@2027-W02\nmill_body,t,0,0\nsell_body,t,95,97.5\n"),
+    ("draws.csv", "activity,material,rate\nmill_body,clay,1.1\nsell_body,body,1\n"),
+];
+
+/// What is said when something in a part of the yard is replaced.
+fn told_in_the_yard(name: &str, edits: &[(&str, &str)]) -> String {
+    let change = |&(from, to): &(&str, &str)| {
+        let change = |(part, text): &Part<'_>| {
+            let text = if *part == name { text.replacen(from, to, 1) } else { (*text).to_owned() };
+            ((*part).to_owned(), text)
+        };
+        let changed: Vec<_> = YARD.iter().map(change).collect();
+        assert!(changed.iter().zip(YARD).any(|((_, text), (_, was))| text != was), "{name} has no {from:?}");
+        changed
+    };
+    let all: Vec<_> = edits.iter().map(change).collect();
+    told(&all.iter().map(|parts| borrowed(parts)).collect::<Vec<_>>())
+}
+
+#[test]
+fn columns_of_one_period() {
+    insta::assert_snapshot!(told_in_the_yard(
+        "activities.csv",
+        &[
+            ("price@2027-W02", "price@2027-W03"),
+            ("price@2027-W02", "price@27W2"),
+            ("price@2027-W02", "price@"),
+            ("price@2027-W02", "price@2027-W01"),
+            ("price@2027-W02", "price@2027-W02@2027-W01"),
+            ("price@2027-W02", "@2027-W02"),
+            ("price@2027-W02", "prise@2027-W02"),
+            ("price@2027-W02", "lead@2027-W02"),
+            ("unit,price@2027-W01", "unit@2027-W01,price@2027-W01"),
+            ("95,97.5", "95,"),
+            ("95,97.5", "95,97,5"),
+        ]
+    ));
+    insta::assert_snapshot!(told_in_the_yard("draws.csv", &[("rate", "rate@2027-W03"), ("rate", "rate@2027-W02")]));
+}
+
+#[test]
+fn materials() {
+    insta::assert_snapshot!(told_in_the_yard(
+        "materials.csv",
+        &[
+            ("name,unit,opening,closing", "material,unit,opening,closing"),
+            ("name,unit,opening,closing", "name,unit,open,closing"),
+            ("name,unit,opening,closing", "name,unit,opening@2027-W01,closing"),
+            ("name,unit,opening,closing", "name,unit,opening,stock"),
+            ("name,unit,opening,closing", "name,unit,opening,purchase"),
+            ("name,unit,opening,closing", "name,unit,opening,sale"),
+            ("name,unit,opening,closing", "name,unit,opening,discard"),
+            ("name,unit,opening,closing", "name,unit,opening,capacity"),
+            ("body,t,4,2", "body,t,4,-2"),
+            ("body,t,4,2", "body,t,-4,2"),
+            ("body,t,4,2", "body,t,4 t,2"),
+            ("body,t,4,2", "clay,t,4,2"),
+            ("body,t,4,2", "body,t,4,2\nbody,t,5,"),
+            ("body,t,4,2", "bodi,t,4,2"),
+        ]
+    ));
+}
+
 #[test]
 fn more_faults_than_are_told_are_counted_over_all_parts() {
     let rows: String = (0..30).map(|row| format!("t{row},x\n")).collect();

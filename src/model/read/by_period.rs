@@ -139,7 +139,9 @@ impl ByPeriod<'_> {
         if let Some(left_out) = horizon.periods().find(|period| numbers[period.position()].is_none()) {
             let label = horizon.label(left_out).unwrap_or_default();
             let message = format!("`{}` has no number for period `{label}`", shown(self.key));
-            findings.add(span, "period-missing", message, "add one, or `each` for all periods that are not named");
+            let help =
+                "add one, or one for all periods that are not named: `each` in a table, a column without `@` in CSV";
+            findings.add(span, "period-missing", message, help);
             return None;
         }
         Some(Value::of(numbers.into_iter().flatten().collect()))

@@ -140,8 +140,8 @@ impl Kind {
             return findings.add(&cell.span, "unknown-column", message, *cure);
         }
         let columns = self.columns();
-        let list = format!("the columns are {}; `price@PERIOD` gives a number for one period", columns.join(", "));
-        let list = if matches!(self, Self::Rates(_)) { list.replace("price@", "rate@") } else { list };
+        let by_period = self.by_period().map(|word| format!("; `{word}@PERIOD` gives a number for one period"));
+        let list = format!("the columns are {}{}", columns.join(", "), by_period.unwrap_or_default());
         let whose = match self {
             Self::Entries(entries) => entries.whose,
             Self::Rates(rates) => rates.key,
@@ -151,6 +151,24 @@ impl Kind {
             Self::Rates(_) => format!("unknown column `{}` in {whose}.csv", shown(word)),
         };
         findings.add(&cell.span, "unknown-column", message, Cure::Nearest(shown(word), Among::Words(columns, list)));
+    }
+
+    /// Adds the fault that the column which `cell` begins names a period and not what differs by it.
+    pub(super) fn wordless(self, cell: &Cell<'_>, findings: &mut Findings) {
+        let message = "what differs by period must stand before `@`".to_owned();
+        let cure = match self.by_period() {
+            Some(word) => format!("write {word}{}, say, or take the column out", shown(&cell.text)),
+            None => "take the column out".to_owned(),
+        };
+        findings.add(&cell.span, "unknown-column", message, cure);
+    }
+
+    /// A column, if there is one, whose numbers may differ by period.
+    fn by_period(self) -> Option<&'static str> {
+        match self {
+            Self::Entries(entries) => entries.values.first().copied(),
+            Self::Rates(_) => Some(RATE),
+        }
     }
 
     fn columns(self) -> Vec<&'static str> {

@@ -71,6 +71,8 @@ impl<'a> Header<'a> {
                     letters(at)
                 );
                 findings.add(&cell.span, "duplicate-key", message, "keep one of the two");
+                columns.push(Column { word: cell.text.clone(), holds: None, period: None });
+                continue;
             }
             seen.insert(&cell.text, at);
             let raw = part.text.get(cell.span.start - part.base..cell.span.end - part.base);
@@ -84,6 +86,11 @@ impl<'a> Header<'a> {
     /// The cells of a row in the columns that hold this.
     pub(super) fn cells<'r>(&'r self, row: &'r [Cell<'a>], holds: Holds) -> impl Iterator<Item = &'r Cell<'a>> {
         self.columns.iter().zip(row).filter(move |(column, _)| column.holds == Some(holds)).map(|(_, cell)| cell)
+    }
+
+    /// Whether there is a column of which it is not known what it holds.
+    pub(super) fn has_untold(&self) -> bool {
+        self.columns.iter().any(|column| column.holds.is_none() && !column.word.is_empty())
     }
 
     fn has_all_needed(&self, part: Part<'_>, cells: &[Cell<'_>], findings: &mut Findings) -> bool {
@@ -115,6 +122,9 @@ fn column<'a>(kind: Kind, cell: &Cell<'a>, periods: &Periods<'_>, findings: &mut
     let mut column = Column { word: cell.text.clone(), holds: None, period: None };
     if word.is_empty() {
         // Spreadsheets write empty columns; what stands in one is told at its cell.
+        if period.is_some() {
+            kind.wordless(cell, findings);
+        }
         return column;
     }
     let Some(holds) = kind.column(word) else {
@@ -146,6 +156,10 @@ fn is_period(period: &str, cell: &Cell<'_>, periods: &Periods<'_>, findings: &mu
     let (message, cure) = match periods {
         Periods::Untold => return true,
         Periods::Named(labels) if labels.contains(&period) => return true,
+        Periods::Named(labels) if period.is_empty() => {
+            let message = "a period must stand after `@`".to_owned();
+            (message, format!("the periods are {}", shown(&labels.join(", "))))
+        }
         Periods::Named(labels) => {
             let list = || format!("the periods are {}", shown(&labels.join(", ")));
             (format!("no period `{}`", shown(period)), near::help(period, labels.iter().copied(), list))

@@ -35,15 +35,16 @@ pub(super) struct Part<'a> {
     pub(super) kind: Kind,
 }
 
-/// The entries of a part, or what each activity uses, draws or makes by it: a table for each name.
-pub(super) fn table<'a>(part: Part<'a>, periods: &Periods<'_>, findings: &mut Findings) -> Table<'a> {
+/// The entries of a part, or what each activity uses, draws or makes by it: a table for each name. `None`, with a fault added, where the first
+/// row does not say what the others hold.
+pub(super) fn table<'a>(part: Part<'a>, periods: &Periods<'_>, findings: &mut Findings) -> Option<Table<'a>> {
     let mut table = Table::new();
     let (mut reader, mut cells) = (Cells::of(part.text, part.base), Vec::new());
     // A text of blank lines is an empty one, which is told before.
     if !reader.record(&mut cells) {
-        return table;
+        return Some(table);
     }
-    let Some(header) = Header::read(part, &cells, periods, findings) else { return table };
+    let header = Header::read(part, &cells, periods, findings)?;
     while reader.record(&mut cells) {
         if cells.iter().all(|cell| cell.text.is_empty()) {
             continue;
@@ -51,9 +52,11 @@ pub(super) fn table<'a>(part: Part<'a>, periods: &Periods<'_>, findings: &mut Fi
         let row = Row { part, header: &header, cells: &cells };
         if row.is_sound(findings) {
             row.put(&mut table, findings);
+        } else {
+            row.declare(&mut table);
         }
     }
-    table
+    Some(table)
 }
 
 /// Where the rows of a part begin that say something, each with its name: what lets an edited part be read by its edited rows alone. `None`
@@ -131,6 +134,14 @@ impl<'a> Row<'_, 'a> {
         }
     }
 
+    /// Has it that there is an entry of the row's name, though what the row says of it cannot be read.
+    fn declare(&self, table: &mut Table<'a>) {
+        let name = self.header.cells(self.cells, Holds::Name).next().filter(|name| !name.text.is_empty());
+        if let (Kind::Entries(_), Some(name)) = (self.part.kind, name) {
+            table.entry(key(name)).or_insert_with(|| node(name, DeValue::Table(Table::new())));
+        }
+    }
+
     fn put_rate(&self, activity: &Cell<'a>, table: &mut Table<'a>, findings: &mut Findings) {
         let Some(other) = self.named(Holds::Other, findings) else { return };
         let rates = table.entry(key(activity)).or_insert_with(|| node(activity, DeValue::Table(Table::new())));
@@ -192,7 +203,10 @@ impl<'a> Row<'_, 'a> {
 
     /// The cells that hold something, with their columns. An empty cell is a key left out.
     fn given(&self) -> impl Iterator<Item = (&Column<'a>, &Cell<'a>)> {
-        self.header.columns.iter().zip(self.cells).filter(|(_, cell)| !cell.text.is_empty())
+        // Where a column cannot be told, numbers by period may seem incomplete that are not.
+        let told = |column: &Column<'_>| column.period.is_none() || !self.header.has_untold();
+        let given = move |(column, cell): &(&Column<'_>, &Cell<'_>)| !cell.text.is_empty() && told(column);
+        self.header.columns.iter().zip(self.cells).filter(given)
     }
 
     fn twice(&self, what: &str, first: usize, second: &Cell<'_>, findings: &mut Findings) {

@@ -123,7 +123,7 @@ fn document<'a>(sheets: &'a Sheets<'a>, model: &Model) -> Option<Table<'a>> {
     }
     let labels: Vec<&str> = model.horizon.periods().filter_map(|period| model.horizon.label(period)).collect();
     let periods = if labels.is_empty() { Periods::None } else { Periods::Named(labels) };
-    let tables = csv_tables(sheets, &periods, &mut findings);
+    let tables = csv_tables(sheets, &periods, &mut findings)?;
     merge_csv(&mut root, tables, sheets, &mut findings);
     findings.is_empty().then_some(root)
 }

@@ -195,17 +195,22 @@ fn merged<'a>(
     }
     let csv = {
         let periods = Periods::of(&root);
-        csv_tables(sheets, &periods, findings)
+        csv_tables(sheets, &periods, findings)?
     };
     merge_csv(&mut root, csv, sheets, findings);
     Some(root)
 }
 
-/// The tables of the CSV parts.
-fn csv_tables<'a>(sheets: &'a Sheets<'a>, periods: &Periods<'_>, findings: &mut Findings) -> Vec<(Kind, Table<'a>)> {
+/// The tables of the CSV parts; `None`, with a fault added, where the rows of one cannot be read: of what they may name nothing can be said.
+fn csv_tables<'a>(
+    sheets: &'a Sheets<'a>,
+    periods: &Periods<'_>,
+    findings: &mut Findings,
+) -> Option<Vec<(Kind, Table<'a>)>> {
     let parts =
         sheets.iter().filter_map(|sheet| Some(csv::Part { text: sheet.text, base: sheet.base, kind: sheet.csv? }));
-    parts.map(|part| (part.kind, csv::table(part, periods, findings))).collect()
+    let tables: Vec<_> = parts.map(|part| Some((part.kind, csv::table(part, periods, findings)?))).collect();
+    tables.into_iter().collect()
 }
 
 /// Merges the tables of CSV parts into those of the TOML parts: first the entries, then what they use, draw and make.
