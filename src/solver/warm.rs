@@ -35,8 +35,6 @@ pub(super) struct Run<'a> {
     pub(super) stop: &'a Stop,
     /// Iterations it may take.
     pub(super) cap: usize,
-    /// Iterations it may take from a basis that was carried over by name.
-    pub(super) cap_by_name: usize,
     /// The variant to take whatever the look says.
     pub(super) insisted: Option<Start>,
 }
@@ -138,7 +136,7 @@ fn start_by_name(
     let first = Look::at(&mut instance, program).map_err(lost)?;
     account.by_name = true;
     let start = run.insisted.unwrap_or_else(|| first.start_by_name(program));
-    let run = &Run { cap: run.cap_by_name, insisted: Some(start), ..*run };
+    let run = &Run { insisted: Some(start), ..*run };
     match begin(anchor, &mut instance, program, first, run, account)? {
         Settled::Optimal(look) => Ok(Reached::Optimal(instance, look)),
         Settled::Other(outcome) => Ok(Reached::Other(outcome)),
