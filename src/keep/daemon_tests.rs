@@ -289,6 +289,20 @@ fn scans_give_way_to_work_while_much_is_waiting() {
 }
 
 #[test]
+fn long_scans_come_seldom_and_more_so_where_events_tell_of_edits() {
+    let mut bench = Bench::new(1);
+    bench.scan_takes = 200 * MILLISECOND;
+    let pause = |bench: &mut Bench| {
+        bench.pass(100 * SECOND);
+        let scans = bench.scans.len();
+        bench.scans[scans - 1] - bench.scans[scans - 2]
+    };
+    assert_eq!(pause(&mut bench), 151 * bench.scan_takes);
+    bench.event(Event::Followed(Followed { added: 0, watching: Watching::Asked }));
+    assert_eq!(pause(&mut bench), 21 * bench.scan_takes);
+}
+
+#[test]
 fn odd_files_are_mentioned_once_and_never_read() {
     let mut bench = Bench::new(1);
     std::os::unix::fs::symlink("/etc/hostname", bench.folder.path().join("l.model.toml")).unwrap();

@@ -188,22 +188,29 @@ pub fn is_model(name: &OsStr) -> bool {
     stem(name, MODEL).is_some()
 }
 
-/// Whether a file of this name is a note or a release.
-#[must_use]
-pub fn is_beside(name: &OsStr) -> bool {
-    stem(name, NOTE).is_some() || stem(name, RELEASE).is_some()
-}
-
 /// Whether a file of this name is a plan or a note.
 #[must_use]
 pub fn is_output(name: &OsStr) -> bool {
     stem(name, PLAN).is_some() || stem(name, NOTE).is_some()
 }
 
-/// The name of the model that a plan of this name belongs to.
+/// What lies beside a model.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Beside {
+    /// Its plan.
+    Plan,
+    /// Its note.
+    Note,
+    /// Its release.
+    Release,
+}
+
+/// The name of the model that a file of this name lies beside, and as what.
 #[must_use]
-pub fn model_of_plan(name: &OsStr) -> Option<OsString> {
-    stem(name, PLAN).map(|stem| OsString::from_vec([stem, MODEL].concat()))
+pub fn model_beside(name: &OsStr) -> Option<(OsString, Beside)> {
+    let kinds = [(PLAN, Beside::Plan), (NOTE, Beside::Note), (RELEASE, Beside::Release)];
+    let (stem, kind) = kinds.into_iter().find_map(|(suffix, kind)| Some((stem(name, suffix)?, kind)))?;
+    Some((OsString::from_vec([stem, MODEL].concat()), kind))
 }
 
 /// The name of the file that would be the same model as a folder of this name.
@@ -366,7 +373,7 @@ mod tests {
         assert_eq!(model.note(), Path::new("/works/north/tile.x.note.md"));
         assert_eq!(model.release(), Path::new("/works/north/tile.x.release.toml"));
         assert_eq!(model.name(), "tile.x");
-        assert_eq!(model_of_plan(OsStr::new("tile.x.plan.toml")).unwrap(), "tile.x.model.toml");
+        assert_eq!(model_beside(OsStr::new("tile.x.plan.toml")), Some(("tile.x.model.toml".into(), Beside::Plan)));
         let odd = ModelPath::new(&root(), Path::new(OsStr::from_bytes(b"a\n\xff.model.toml"))).unwrap();
         assert_eq!(odd.plan().as_os_str().as_bytes(), b"/works/a\n\xff.plan.toml");
         assert_eq!(odd.to_string(), "a\\u{a}\u{fffd}.model.toml");

@@ -1,6 +1,6 @@
 //! Looking at the whole folder: what correctness rests on.
 
-use std::collections::{BTreeMap, BTreeSet, HashSet};
+use std::collections::{BTreeMap, BTreeSet};
 use std::ffi::OsString;
 use std::fs::{self, Metadata};
 use std::io;
@@ -8,7 +8,7 @@ use std::os::unix::fs::MetadataExt;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use super::path::{Form, Ignore, ModelPath, file_of_folder, is_beside, is_entered, is_model, model_of_plan};
+use super::path::{Beside, Form, Ignore, ModelPath, file_of_folder, is_entered, is_model, model_beside};
 use crate::model::read::{self, Listing};
 use crate::store::atomic::is_temp;
 use crate::store::error::reason;
@@ -72,22 +72,15 @@ impl Lying {
     /// # Errors
     /// What the system says; [`io::ErrorKind::InvalidInput`] where what lies there is neither a plain file nor a folder.
     fn look(path: &Path) -> io::Result<Option<Self>> {
-        Self::look_for(path, true)
-    }
-
-    /// The same; where it is known that there is no folder of that name, none is looked for.
-    fn look_for(path: &Path, may_be_in_parts: bool) -> io::Result<Option<Self>> {
         let Some((file, folder)) = read::forms(path) else { return Ok(None) };
-        let parts = if may_be_in_parts { Self::in_parts(&folder)? } else { None };
+        let parts = Self::in_parts(&folder)?;
         match about(&file)? {
             Some(metadata) if metadata.is_file() => {
                 // Where both are there, neither can be planned until one is gone.
                 let parts = parts.and_then(|lying| lying.stamp.parts);
                 Ok(Some(Self { form: Form::File, stamp: Stamp { parts, ..Stamp::from(&metadata) } }))
             }
-            None if parts.is_none() && may_be_in_parts && leads_to_folder(&folder) => {
-                Err(io::ErrorKind::InvalidInput.into())
-            }
+            None if parts.is_none() && leads_to_folder(&folder) => Err(io::ErrorKind::InvalidInput.into()),
             Some(_) if parts.is_none() => Err(io::ErrorKind::InvalidInput.into()),
             _ => Ok(parts),
         }
@@ -235,25 +228,26 @@ pub fn scan(root: &Arc<Path>, ignore: &Ignore) -> io::Result<Scan> {
     Ok(scan)
 }
 
-/// What a folder's list of names says of one model: only what is on it need be looked at.
-#[derive(Clone, Copy, Debug, Default)]
+/// What a folder's list says of one model. Only what is on it need be looked at, from within the folder: that is what a scan's time goes into.
+#[derive(Debug, Default)]
 struct Listed {
-    file: bool,
+    file: Option<io::Result<Metadata>>,
     folder: bool,
-    plan: bool,
+    plan: Option<Stamp>,
+    note: Option<Stamp>,
+    release: Option<Stamp>,
 }
 
 /// Looks into one folder, and returns the folders in it.
 fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) -> io::Result<Vec<PathBuf>> {
     let mut inner = Vec::new();
     let mut models: BTreeMap<OsString, Listed> = BTreeMap::new();
-    let mut beside = HashSet::new();
     for entry in fs::read_dir(root.join(folder))? {
         let entry = entry?;
         let name = entry.file_name();
         let is_folder = entry.file_type().is_ok_and(|kind| kind.is_dir());
         if is_model(&name) {
-            models.entry(name).or_default().file = true;
+            models.entry(name).or_default().file = present(entry.metadata());
         } else if let Some(model) = file_of_folder(&name) {
             let relative = folder.join(&name);
             // A plain file of such a name is somebody else's.
@@ -261,10 +255,14 @@ fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) 
                 models.entry(model).or_default().folder = true;
                 scan.folders.extend(is_folder.then_some(relative));
             }
-        } else if let Some(model) = model_of_plan(&name) {
-            models.entry(model).or_default().plan = true;
-        } else if is_beside(&name) {
-            beside.insert(name);
+        } else if let Some((model, kind)) = model_beside(&name) {
+            let stamp = entry.metadata().ok().filter(Metadata::is_file).map(|metadata| Stamp::from(&metadata));
+            let listed = models.entry(model).or_default();
+            match kind {
+                Beside::Plan => listed.plan = stamp,
+                Beside::Note => listed.note = stamp,
+                Beside::Release => listed.release = stamp,
+            }
         } else if is_temp(&name) {
             scan.temps.push(entry.path());
         } else if is_folder && is_entered(&name) && !ignore.covers(&folder.join(&name)) {
@@ -274,15 +272,15 @@ fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) 
     for (name, listed) in models {
         let relative = folder.join(name);
         if let Some(model) = ModelPath::new(root, &relative).filter(|_| !ignore.covers(&relative)) {
-            look_at(model, listed, &beside, scan)?;
+            look_at(model, listed, scan)?;
         }
     }
     Ok(inner)
 }
 
 /// Looks at one model. Fails where the folder lets names be read and nothing behind them: then nothing is known of the others either.
-fn look_at(model: ModelPath, listed: Listed, beside: &HashSet<OsString>, scan: &mut Scan) -> io::Result<()> {
-    match look(&model, listed, beside) {
+fn look_at(model: ModelPath, listed: Listed, scan: &mut Scan) -> io::Result<()> {
+    match look(&model, listed) {
         Ok(Some((form, sight))) => {
             scan.sights.insert(model.lying(form), sight);
         }
@@ -303,33 +301,30 @@ fn look_at(model: ModelPath, listed: Listed, beside: &HashSet<OsString>, scan: &
 ///
 /// # Errors
 /// What the system says; [`io::ErrorKind::InvalidInput`] where the model is no plain file.
-fn look(model: &ModelPath, listed: Listed, beside: &HashSet<OsString>) -> io::Result<Option<(Form, Sight)>> {
-    let is_there = listed.file || listed.folder;
-    let lying = if is_there { Lying::look_for(&model.full(), listed.folder)? } else { None };
-    let (form, sight) = match lying {
-        Some(Lying { form, stamp }) => {
-            let plan = if listed.plan { Stamp::of(&model.plan()) } else { None };
-            (form, Sight { model: Some(stamp), plan, ..Sight::default() })
-        }
-        None => match about(&model.plan())?.filter(Metadata::is_file) {
-            Some(plan) => (Form::File, Sight { plan: Some(Stamp::from(&plan)), ..Sight::default() }),
-            None => return Ok(None),
-        },
+fn look(model: &ModelPath, listed: Listed) -> io::Result<Option<(Form, Sight)>> {
+    let Listed { file, folder, plan, note, release } = listed;
+    let lying = match file.transpose()? {
+        _ if folder => Lying::look(&model.full())?,
+        Some(file) if file.is_file() => Some(Lying { form: Form::File, stamp: Stamp::from(&file) }),
+        Some(_) => return Err(io::ErrorKind::InvalidInput.into()),
+        None => None,
     };
-    let listed = |path: PathBuf| path.file_name().is_some_and(|name| beside.contains(name)).then(|| Stamp::of(&path));
-    Ok(Some((
-        form,
-        Sight { note: listed(model.note()).flatten(), release: listed(model.release()).flatten(), ..sight },
-    )))
+    let (form, stamp) = lying.map_or((Form::File, None), |lying| (lying.form, Some(lying.stamp)));
+    let is_there = stamp.is_some() || plan.is_some();
+    Ok(is_there.then_some((form, Sight { model: stamp, plan, note, release })))
 }
 
 /// What the system says of a path; `None` where nothing is.
 fn about(path: &Path) -> io::Result<Option<Metadata>> {
-    match fs::symlink_metadata(path) {
-        // The name of a plan's model may be too long to be there.
-        Err(error) if matches!(error.kind(), io::ErrorKind::NotFound | io::ErrorKind::InvalidFilename) => Ok(None),
-        about => about.map(Some),
-    }
+    present(fs::symlink_metadata(path)).transpose()
+}
+
+/// What the system said of something; `None` where it is not there.
+fn present(about: io::Result<Metadata>) -> Option<io::Result<Metadata>> {
+    // The name of a plan's model may be too long to be there.
+    let is_missing =
+        |error: &io::Error| matches!(error.kind(), io::ErrorKind::NotFound | io::ErrorKind::InvalidFilename);
+    (!about.as_ref().is_err_and(is_missing)).then_some(about)
 }
 
 #[cfg(test)]

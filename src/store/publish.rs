@@ -78,6 +78,9 @@ pub fn finish(record: &Record, outputs: &Outputs<'_>) -> Result<Finished, StoreE
     if !holds(&outputs.plan, &record.plan) {
         return Ok(Finished::AnotherPlan);
     }
+    if holds(&outputs.note, &record.note) {
+        return Ok(Finished::Agreed);
+    }
     match outputs.note.put(&record.note)? {
         Written::Same => Ok(Finished::Agreed),
         Written::New | Written::Replaced => Ok(Finished::NoteWritten),

@@ -20,6 +20,8 @@ pub(super) struct Bench {
     pub(super) folders: BTreeSet<PathBuf>,
     pub(super) statuses: Vec<Status>,
     pub(super) scans: Vec<Instant>,
+    /// How long a scan takes.
+    pub(super) scan_takes: Duration,
     pub(super) ended: bool,
 }
 
@@ -43,6 +45,7 @@ impl Bench {
             folders: BTreeSet::new(),
             statuses: Vec::new(),
             scans: Vec::new(),
+            scan_takes: Duration::ZERO,
             ended: false,
         };
         bench.claim();
@@ -75,7 +78,9 @@ impl Bench {
                     self.scans.push(self.now);
                     let found = crate::keep::scan::scan(&self.root, &crate::keep::Ignore::new(&[]).unwrap());
                     let found = found.map_err(|error| error.to_string());
-                    self.event(Event::Scanned(Scanned { began: self.now, found, locked: true }));
+                    let began = self.now;
+                    self.now += self.scan_takes;
+                    self.event(Event::Scanned(Scanned { began, found, locked: true }));
                 }
                 Action::Run(worker, job) => {
                     let (model, stamp) = (job.path.clone(), Stamp::of(&job.path.full()));
