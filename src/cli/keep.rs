@@ -5,6 +5,7 @@ use std::time::Instant;
 
 use tracing::level_filters::LevelFilter;
 
+use super::demo::quoted;
 use super::exit::{Error, Outcome, shown};
 use super::logging::Log;
 use super::once::locked;
@@ -13,6 +14,7 @@ use super::screen::Screen;
 use super::worker::planners;
 use super::{Setting, logging, status, told};
 use crate::keep::{self, KeepError, Manager, Operating, Replanned};
+use crate::model::read;
 use crate::store::error::reason;
 
 pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path, asked: bool) -> Result<Outcome, Error> {
@@ -23,6 +25,7 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path, asked:
             "`millreeve once` plans a single model",
         ));
     }
+    refuse_a_model(dir)?;
     let settings = setting.for_folder(dir)?;
     if asked {
         return status::tell(screen, dir, settings.keep.state_dir.as_deref());
@@ -59,6 +62,18 @@ pub(super) fn run(screen: &mut Screen, setting: &Setting<'_>, dir: &Path, asked:
             Err(Error::usage(error, help))
         }
         Err(error @ (KeepError::Store(_) | KeepError::System(_))) => Err(Error::failure(error, "")),
+    }
+}
+
+/// Refuses a folder that is a model: its plan and note lie beside it, in the folder that is to be kept.
+fn refuse_a_model(dir: &Path) -> Result<(), Error> {
+    let whole = dir.canonicalize().map_err(|error| Error::reading(dir, &error))?;
+    match whole.parent().filter(|_| whole.file_name().is_some_and(read::is_folder_name)) {
+        Some(above) => Err(Error::usage(
+            format_args!("{} is a model in parts, not a folder of models", shown(dir)),
+            format_args!("keep the folder that it lies in: millreeve keep {}", quoted(above)),
+        )),
+        None => Ok(()),
     }
 }
 

@@ -287,6 +287,12 @@ fn every_command_takes_a_folder_of_parts() {
     assert_eq!((code, out.lines().count()), (Some(0), 1));
     let (code, _, err) = works.run(&["convert", "m.mps", "n.model"]);
     assert_eq!(code, Some(2), "{err}");
+    // Its plan lies beside it, so what is kept is the folder above.
+    for arguments in [["keep", "m.model"], ["keep", "./m.model/"]] {
+        let (code, _, err) = works.run(&arguments);
+        assert_eq!(code, Some(2), "{err}");
+        assert!(err.contains("is a model in parts") && err.contains("millreeve keep /"), "{err}");
+    }
     works.save("m", &tiles(1));
     for command in ["check", "once", "verify"] {
         let (code, out, _) = works.run(&[command, "m.model"]);
