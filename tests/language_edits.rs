@@ -4,9 +4,11 @@
 
 #[path = "support/promise.rs"]
 mod promise;
+#[path = "language_edits/rows.rs"]
+mod rows;
 #[path = "support/solve.rs"]
 mod support;
-#[path = "support/weeks.rs"]
+#[path = "language_edits/weeks.rs"]
 mod weeks;
 
 use millreeve::edits::{Edit, Renames, compare};
@@ -15,8 +17,9 @@ use millreeve::plan::last::last_plan;
 use millreeve::solver::message::{Answer, Outcome};
 use millreeve::solver::session::Session;
 use promise::promise_kept;
+use rows::{ROWS, Row};
 use support::{least, same, size, solve};
-use weeks::{ROWS, Row, weeks};
+use weeks::weeks;
 
 fn line(edit: &Edit) -> String {
     let side = |text: &Option<String>| text.clone().unwrap_or_else(|| "nothing".to_owned());
