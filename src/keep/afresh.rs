@@ -1,5 +1,6 @@
 //! A plan out of an answer, and a plan out of nothing but a model.
 
+use std::sync::Arc;
 use std::time::Duration;
 
 use crate::lp::{Program, build};
@@ -48,7 +49,7 @@ pub enum Fruitless {
 /// # Errors
 /// Where there is no plan, and where that cannot be told.
 pub fn work_out(model: &Model, meaning: Meaning, time_limit: Duration) -> Result<Planned, Fruitless> {
-    let program = build(model);
+    let program = Arc::new(build(model));
     // The solver's memory is let go with it.
     let mut desk = Desk::new(Worker::new(usize::MAX), time_limit);
     let answer = desk.solve(&ModelKey(String::new()), &program, || None, &Stop::default());

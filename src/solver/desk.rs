@@ -1,6 +1,7 @@
 //! The near side of the boundary: remembers what was asked, so that only what differs need be said again.
 
 use std::collections::BTreeMap;
+use std::sync::Arc;
 use std::time::Duration;
 
 use super::message::{Answer, Last, ModelKey, Optimum, Outcome, Request, Task};
@@ -15,7 +16,7 @@ const ROUNDING: f64 = 1e-6;
 /// Asks a solver about models, each as often as it changes.
 pub struct Desk<S> {
     solver: S,
-    asked: BTreeMap<ModelKey, Program>,
+    asked: BTreeMap<ModelKey, Arc<Program>>,
     time_limit: Duration,
 }
 
@@ -40,7 +41,7 @@ impl<S: Solver> Desk<S> {
     pub fn solve(
         &mut self,
         model: &ModelKey,
-        program: &Program,
+        program: &Arc<Program>,
         last: impl FnOnce() -> Option<Last>,
         stop: &Stop,
     ) -> Answer {
@@ -49,8 +50,9 @@ impl<S: Solver> Desk<S> {
         let change = known.map(|known| Task::Change(Box::new(Difference::between(&known, program))));
         let answer = change.map(|task| self.ask(model, task, stop));
         let answer = answer.filter(|answer| !matches!(answer.outcome, Outcome::Forgotten));
-        let mut answer = answer
-            .unwrap_or_else(|| self.ask(model, Task::Whole(Box::new(program.clone()), last().map(Box::new)), stop));
+        let mut answer = answer.unwrap_or_else(|| {
+            self.ask(model, Task::Whole(Box::new(Program::clone(program)), last().map(Box::new)), stop)
+        });
         if place == Place::Apart {
             answer.outcome = proven_here(answer.outcome, program);
         }
@@ -131,7 +133,7 @@ mod tests {
         let (lower, upper) = (0.0, f64::INFINITY);
         let entries = vec![(RowIndex(0), 1.0)];
         let column = Column { key: Key::new("activities.tile"), lower, upper, aim: 3.0, entries };
-        let program = Program { columns: vec![column], rows: vec![row], ..Program::default() };
+        let program = Arc::new(Program { columns: vec![column], rows: vec![row], ..Program::default() });
         let mut desk = Desk::new(Harmed(Worker::new(usize::MAX), harm), Duration::from_secs(60));
         desk.solve(&ModelKey("m".to_owned()), &program, || None, &Stop::default()).outcome
     }

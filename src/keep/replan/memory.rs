@@ -26,7 +26,7 @@ pub(super) struct Known {
     pub(super) bytes: Vec<u8>,
     pub(super) traced: Traced,
     pub(super) model: Model,
-    pub(super) program: Program,
+    pub(super) program: Arc<Program>,
     pub(super) plan: Plan,
     pub(super) basis: Option<NamedBasis>,
     pub(super) cold_pivots: Option<usize>,
@@ -38,7 +38,7 @@ impl Known {
         let writing = Writing::of(record.source.clone());
         let (model, traced) = writing.read_tracing(&record.model).ok()?;
         let plan = text::read(&record.plan).ok()?.plan;
-        let (bytes, basis, program) = (writing.into_bytes(), record.basis.clone(), build(&model));
+        let (bytes, basis, program) = (writing.into_bytes(), record.basis.clone(), Arc::new(build(&model)));
         Some(Self { bytes, traced, model, program, plan, basis, cold_pivots: record.cold_pivots })
     }
 
@@ -50,14 +50,14 @@ impl Known {
     /// What the solver can start from.
     pub(super) fn last(&self) -> Option<Last> {
         let basis = self.basis.clone()?;
-        Some(Last { program: self.program.clone(), basis, cold_pivots: self.cold_pivots })
+        Some(Last { program: Program::clone(&self.program), basis, cold_pivots: self.cold_pivots })
     }
 
     /// The same under the names that things have now.
     pub(super) fn renamed(&self, renames: &Renames) -> Self {
         let model = renames.applied(&self.model);
         let basis = self.basis.as_ref().map(|basis| basis.renamed(|key| renamed_key(renames, key)));
-        let program = build(&model);
+        let program = Arc::new(build(&model));
         let mut plan = self.plan.clone();
         rename(&mut plan.resources, &renames.resources, |planned| &planned.name, |planned, name| planned.name = name);
         rename(&mut plan.activities, &renames.activities, |planned| &planned.name, |planned, name| planned.name = name);

@@ -270,7 +270,7 @@ impl Replanner {
         on_disk: OnDisk,
         stop: &Stop,
     ) -> Result<Told, Stopped> {
-        let program = build(&read.model);
+        let program = Arc::new(build(&read.model));
         let renames = known.as_ref().map(|known| Renames::between(&known.model, &read.model)).unwrap_or_default();
         let edits =
             known.as_ref().map(|known| compare_renamed(&known.model, &read.model, &renames)).unwrap_or_default();
@@ -315,7 +315,7 @@ impl Replanner {
         &mut self,
         job: &Job,
         mut read: Read,
-        program: Program,
+        program: Arc<Program>,
         optimum: Optimum,
         solved: Solved,
     ) -> Result<Told, Stopped> {

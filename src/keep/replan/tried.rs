@@ -3,6 +3,8 @@
 //! A crash is counted on disk before the next try. In a worker process it cannot take the daemon with it, and what ends the daemon while a
 //! worker solves says nothing about the model. Where there is no such process, a try is counted before it is made, and taken back after.
 
+use std::sync::Arc;
+
 use super::memory::Known;
 use super::{Replanner, Stopped};
 use crate::keep::pool::Job;
@@ -29,7 +31,7 @@ impl Replanner {
     pub(super) fn ask(
         &mut self,
         job: &Job,
-        (bytes, program): (&[u8], &Program),
+        (bytes, program): (&[u8], &Arc<Program>),
         whole: bool,
         known: Option<&Known>,
         stop: &Stop,
@@ -120,7 +122,7 @@ mod tests {
         let notes = Notes { records: records.clone(), place, seen: seen.clone(), answers };
         let mut replanner = Replanner::new(Arc::new(Memory::default()), Box::new(notes), Duration::from_secs(1));
         let job = Job { path, what: What::Replan, state };
-        let answer = replanner.ask(&job, (b"x", &Program::default()), false, None, &Stop::default());
+        let answer = replanner.ask(&job, (b"x", &Arc::default()), false, None, &Stop::default());
         let seen = seen.lock().unwrap().clone();
         (answer.ok().unwrap().outcome, seen, records.tries(Path::new(MODEL), b"x").crashes)
     }

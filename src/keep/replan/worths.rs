@@ -3,6 +3,8 @@
 //! One edit alone is worth the whole difference. Several share it in the order of the list: the sum is always the whole, and each
 //! part is the truth about a model that somebody might have saved in between.
 
+use std::sync::Arc;
+
 use super::memory::Known;
 use crate::edits::{Edit, Kind, apply};
 use crate::lp::build;
@@ -80,7 +82,7 @@ fn aims_between(
         if lost {
             return None;
         }
-        match desk.solve(&key, &build(&between), || known.last(), stop).outcome {
+        match desk.solve(&key, &Arc::new(build(&between)), || known.last(), stop).outcome {
             Outcome::Optimal(optimum) => Some(optimum.aim),
             Outcome::Lost(_) => {
                 // What ended one process would end the next one too.
