@@ -71,6 +71,8 @@ impl Look {
             // moving what has two bounds to the other one. A single gain it forgives until the end (measured: a tenth less time).
             (0, broken) if is_flat(program) && (broken == 1 || broken > program.rows.len()) => Start::Dual,
             (0, _) => Start::Primal,
+            // On a flat program a few bounds are soon kept again, and a primal iteration takes half the time of a dual one.
+            (broken, gains) if gains > 0 && is_flat(program) && broken * FEW <= program.rows.len() => Start::Primal,
             // Neither is feasible: measured on changed coefficients of basic columns and on several edits at once, dual simplex,
             // which mends the gains on the way, does better than primal simplex.
             _ => Start::Dual,
@@ -106,6 +108,10 @@ impl Look {
 
 /// A program with so many times more columns than rows is flat.
 const FLAT: usize = 20;
+
+/// One broken bound for so many rows is few (measured on a mix of 300 rows: with 1 to 8 broken primal simplex takes 0.7 of the time, with 19 to
+/// 133 it takes 1.8).
+const FEW: usize = 30;
 
 /// Whether rows are few for the columns there are.
 pub(super) fn is_flat(program: &Program) -> bool {
