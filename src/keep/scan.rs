@@ -233,7 +233,7 @@ pub fn scan(root: &Arc<Path>, ignore: &Ignore) -> io::Result<Scan> {
 struct Listed {
     file: Option<io::Result<Metadata>>,
     folder: bool,
-    plan: Option<Stamp>,
+    plan: Option<io::Result<Metadata>>,
     note: Option<Stamp>,
     release: Option<Stamp>,
 }
@@ -256,12 +256,11 @@ fn look_into(root: &Arc<Path>, folder: &Path, ignore: &Ignore, scan: &mut Scan) 
                 scan.folders.extend(is_folder.then_some(relative));
             }
         } else if let Some((model, kind)) = model_beside(&name) {
-            let stamp = entry.metadata().ok().filter(Metadata::is_file).map(|metadata| Stamp::from(&metadata));
-            let listed = models.entry(model).or_default();
+            let (listed, about) = (models.entry(model).or_default(), present(entry.metadata()));
             match kind {
-                Beside::Plan => listed.plan = stamp,
-                Beside::Note => listed.note = stamp,
-                Beside::Release => listed.release = stamp,
+                Beside::Plan => listed.plan = about,
+                Beside::Note => listed.note = stamp(about),
+                Beside::Release => listed.release = stamp(about),
             }
         } else if is_temp(&name) {
             scan.temps.push(entry.path());
@@ -309,9 +308,16 @@ fn look(model: &ModelPath, listed: Listed) -> io::Result<Option<(Form, Sight)>> 
         Some(_) => return Err(io::ErrorKind::InvalidInput.into()),
         None => None,
     };
-    let (form, stamp) = lying.map_or((Form::File, None), |lying| (lying.form, Some(lying.stamp)));
-    let is_there = stamp.is_some() || plan.is_some();
-    Ok(is_there.then_some((form, Sight { model: stamp, plan, note, release })))
+    let Some(Lying { form, stamp: model }) = lying else {
+        let plan = plan.transpose()?.filter(Metadata::is_file).map(|plan| Stamp::from(&plan));
+        return Ok(plan.map(|plan| (Form::File, Sight { plan: Some(plan), note, release, ..Sight::default() })));
+    };
+    Ok(Some((form, Sight { model: Some(model), plan: stamp(plan), note, release })))
+}
+
+/// The stamp of what lies beside a model, where that is a plain file that can be looked at.
+fn stamp(about: Option<io::Result<Metadata>>) -> Option<Stamp> {
+    about?.ok().filter(Metadata::is_file).map(|metadata| Stamp::from(&metadata))
 }
 
 /// What the system says of a path; `None` where nothing is.
