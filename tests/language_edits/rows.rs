@@ -2,11 +2,10 @@
 
 use millreeve::edits::Kept;
 use millreeve::model::{
-    Activity, Bound, Closing, Flow, Horizon, Late, Limit, Material, Model, Over, Purchase, Resource, Sale, Stock,
-    Surge, Term,
+    Bound, Closing, Flow, Horizon, Late, Material, Model, Over, Purchase, Sale, Stock, Surge, Term,
 };
 
-use crate::weeks::{listed, name};
+use crate::weeks::{kiln, late, limit, listed, name, press, slip, stock, tile};
 
 const INF: f64 = f64::INFINITY;
 
@@ -16,34 +15,6 @@ pub(crate) struct Row {
     pub(crate) edit: fn(&mut Model),
     pub(crate) told: &'static [&'static str],
     pub(crate) kept: Kept,
-}
-
-fn kiln(model: &mut Model) -> &mut Resource {
-    model.resources.get_mut("kiln").unwrap()
-}
-
-fn press(model: &mut Model) -> &mut Activity {
-    model.activities.get_mut("press").unwrap()
-}
-
-fn slip(model: &mut Model) -> &mut Material {
-    model.materials.get_mut("slip").unwrap()
-}
-
-fn tile(model: &mut Model) -> &mut Material {
-    model.materials.get_mut("tile").unwrap()
-}
-
-fn stock(material: &mut Material) -> &mut Stock {
-    material.stock.as_mut().unwrap()
-}
-
-fn limit<'m>(model: &'m mut Model, limit: &str) -> &'m mut Limit {
-    model.limits.get_mut(limit).unwrap()
-}
-
-fn late(model: &mut Model) -> &mut Late {
-    tile(model).sale[0].late.as_mut().unwrap()
 }
 
 const fn row(what: &'static str, edit: fn(&mut Model), told: &'static [&'static str], kept: Kept) -> Row {

@@ -88,3 +88,31 @@ pub(crate) fn weeks() -> Model {
     model.limits.insert(name("bought"), limit);
     model
 }
+
+pub(crate) fn kiln(model: &mut Model) -> &mut Resource {
+    model.resources.get_mut("kiln").unwrap()
+}
+
+pub(crate) fn press(model: &mut Model) -> &mut Activity {
+    model.activities.get_mut("press").unwrap()
+}
+
+pub(crate) fn slip(model: &mut Model) -> &mut Material {
+    model.materials.get_mut("slip").unwrap()
+}
+
+pub(crate) fn tile(model: &mut Model) -> &mut Material {
+    model.materials.get_mut("tile").unwrap()
+}
+
+pub(crate) fn stock(material: &mut Material) -> &mut Stock {
+    material.stock.as_mut().unwrap()
+}
+
+pub(crate) fn limit<'m>(model: &'m mut Model, limit: &str) -> &'m mut Limit {
+    model.limits.get_mut(limit).unwrap()
+}
+
+pub(crate) fn late(model: &mut Model) -> &mut Late {
+    tile(model).sale[0].late.as_mut().unwrap()
+}
