@@ -1,9 +1,7 @@
 //! Edits of the tileworks, one or more for each key of the language that plans several periods.
 
 use millreeve::edits::Kept;
-use millreeve::model::{
-    Bound, Closing, Flow, Horizon, Late, Material, Model, Over, Purchase, Sale, Stock, Surge, Term,
-};
+use millreeve::model::{Bound, Closing, Flow, Horizon, Late, Material, Model, Over, Purchase, Sale, Surge, Term};
 
 use crate::weeks::{kiln, late, limit, listed, name, press, slip, stock, tile};
 
