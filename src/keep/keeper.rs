@@ -8,13 +8,14 @@ use std::time::Instant;
 
 use tokio::sync::mpsc::UnboundedSender;
 
+use super::clock::now;
 use super::daemon::Dispatcher;
+use super::error::KeepError;
 use super::event::{Action, Event, Scanned, Weight};
 use super::hints::{Hint, HintSender};
 use super::path::{Ignore, ModelPath};
 use super::pool::{Factory, Pool, Replanned, Stop, Worker};
 use super::remote;
-use super::run::{KeepError, now};
 use super::scan::{FolderId, scan};
 use super::settings::{By, Settings};
 use super::watch::{Followed, Watcher, Watching};

@@ -4,7 +4,9 @@
 //! rests on, events only cut the delay.
 
 pub mod afresh;
+mod clock;
 pub mod daemon;
+pub mod error;
 pub mod event;
 pub mod hints;
 mod keeper;
@@ -29,11 +31,12 @@ pub mod verify;
 pub mod watch;
 pub mod workers;
 
+pub use error::KeepError;
 pub use manager::Manager;
 pub use once::{OnceError, once};
 pub use path::{Ignore, IgnoreError, ModelPath};
 pub use pool::{Factory, Job, Planner, Replanned, Stop, What};
 pub use report::{FaultLine, Infeasible, Milliseconds, Report};
-pub use run::{KeepError, Operating, keep, keep_until};
+pub use run::{Operating, keep, keep_until};
 pub use settings::{By, Pace, Settings};
 pub use status::Status;

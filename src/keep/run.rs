@@ -1,54 +1,29 @@
 //! The loop around the dispatcher: it feeds it events and does what it says.
 
 use std::fmt;
-use std::path::{Path, PathBuf};
+use std::path::Path;
 use std::pin::pin;
 use std::time::{Duration, Instant};
 
 use tokio::sync::mpsc::unbounded_channel;
 use tokio::time::sleep_until;
 
+use super::clock::now;
+use super::error::KeepError;
 use super::event::{Action, Event};
 use super::hints;
 use super::keeper::Keeper;
 use super::manager::Manager;
-use super::path::{IgnoreError, ModelPath};
+use super::path::ModelPath;
 use super::pool::{Factory, Replanned};
 use super::settings::Settings;
 use super::signals::{Order, Signals};
-use crate::store::error::{reason, shown};
-use crate::store::{LockError, StoreError};
 
 /// Events are taken in batches of at most so many.
 const BATCH: usize = 4096;
 
 /// How long background work may hold up the end.
 const LINGER: Duration = Duration::from_millis(200);
-
-/// Why a folder is not kept, or no longer.
-#[derive(Debug, thiserror::Error)]
-pub enum KeepError {
-    /// The folder, or the state folder, cannot be used.
-    #[error(transparent)]
-    Store(#[from] StoreError),
-    /// Another process keeps the folder, or its lock cannot be used.
-    #[error(transparent)]
-    Lock(#[from] LockError),
-    /// A glob in the settings cannot be read.
-    #[error(transparent)]
-    Ignore(#[from] IgnoreError),
-    /// The state would lie on a network file system.
-    #[error("{} is on a network file system ({kind}), where the daemon's state cannot lie", shown(.folder))]
-    RemoteState {
-        /// The state folder.
-        folder: PathBuf,
-        /// What kind of file system it is on.
-        kind: &'static str,
-    },
-    /// The system denies threads, timers or signals.
-    #[error("cannot start: {}", reason(.0))]
-    System(#[from] std::io::Error),
-}
 
 /// What ties a daemon to whoever operates it.
 #[derive(Default)]
@@ -159,10 +134,6 @@ async fn run(
             manager.beat(now());
         }
     }
-}
-
-pub(super) fn now() -> Instant {
-    tokio::time::Instant::now().into_std()
 }
 
 /// The system's monotonic clock, as service managers read it.

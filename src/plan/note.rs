@@ -1,6 +1,7 @@
 //! The change note: a page that tells a planner in a minute what was edited and what came of it.
 
 mod account;
+mod layout;
 mod lead;
 mod materials;
 mod moves;

@@ -1,12 +1,14 @@
 //! The plan as the text of `NAME.plan.toml`: writing it, reading it, and telling whether it is ours and unharmed.
 
 pub(super) mod entry;
+mod error;
 mod mark;
 pub(super) mod read;
 pub(super) mod write;
 
+pub use error::PlanError;
 pub use mark::marked;
-pub use read::{Head, PlanError, Written, read, read_head};
+pub use read::{Head, Written, read, read_head};
 pub use write::write;
 
 use super::types::{FORMAT, RULES};

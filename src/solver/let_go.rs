@@ -4,9 +4,9 @@ use super::basis::Basis;
 use super::instance::{Instance, Member};
 use super::live::Refusal;
 use super::look::Look;
+use super::step::step;
 use super::swap::{self, Entrant};
 use super::vertex::bound_at;
-use super::warm::step;
 use crate::lp::{ColumnIndex, Program, RowIndex};
 
 /// Own pivots on the way to letting go; past so many the solver mends the basis as it can.

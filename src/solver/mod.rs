@@ -30,6 +30,7 @@ pub mod ranging;
 pub mod session;
 mod sharp;
 pub mod soft;
+mod step;
 pub mod stop;
 pub mod sum;
 pub mod swap;

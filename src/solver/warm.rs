@@ -13,6 +13,7 @@ use super::live::Refusal;
 use super::look::Look;
 use super::message::{Account, Outcome, Start};
 use super::soft::on_the_way;
+use super::step::step;
 use super::stop::Stop;
 use super::vertex::Vertex;
 use super::{by_name, certificate, inherit, opened};
@@ -176,14 +177,6 @@ fn live(anchor: &mut Anchor) -> Result<Box<Instance>, Refusal> {
     anchor.basis = instance.basis()?;
     anchor.vertex = Vertex::of(&mut instance, &anchor.program, &anchor.basis)?;
     Ok(instance)
-}
-
-/// Turns what `instance` holds into `to`, and looks at its basis there; `vertex` is where it was.
-pub(super) fn step(instance: &mut Instance, from: &Program, vertex: &Vertex, to: &Program) -> Result<Look, Refusal> {
-    let difference = Difference::between(from, to);
-    change(instance, from, to, &difference)?;
-    opened::stay(instance, from, to, &difference)?;
-    Look::near(instance, to, inherit::carried(from, vertex, to, &difference))
 }
 
 enum Settled {

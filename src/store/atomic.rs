@@ -8,11 +8,7 @@ use std::path::{Path, PathBuf};
 use rustix::fs::{FileType, OFlags};
 
 use super::error::{Step, StoreError};
-use super::place::Place;
-
-pub(super) const TEMP_PREFIX: &str = ".millreeve-";
-pub(super) const TEMP_SUFFIX: &str = ".tmp";
-pub(super) const TEMP_RANDOM: usize = 8;
+use super::place::{Place, TEMP_PREFIX, TEMP_RANDOM, TEMP_SUFFIX};
 
 /// How much of the file that stands there is shown to the caller's `ours`, in bytes.
 pub const HEAD: usize = 1024;

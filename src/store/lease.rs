@@ -15,6 +15,7 @@ use std::time::{Duration, Instant};
 use serde::{Deserialize, Serialize};
 
 use super::atomic::{self, Durability};
+use super::host::host;
 use super::reading;
 
 const NAME: &str = "lease.json";
@@ -87,7 +88,7 @@ impl Terms {
     #[must_use]
     pub fn of_this_host() -> Self {
         let boot = fs::read_to_string("/proc/sys/kernel/random/boot_id").unwrap_or_default().trim().to_owned();
-        Self { host: super::lock::host(), boot, every: RENEWED_EVERY }
+        Self { host: host(), boot, every: RENEWED_EVERY }
     }
 
     /// How often it is looked whether another host shows signs of life.

@@ -12,6 +12,7 @@ use rustix::fs::OFlags;
 use super::atomic::open_plain;
 use super::error::{reason, shown};
 use super::folder::Folder;
+use super::host::host;
 use super::lease::{Asked, Lease, Terms, Watched};
 use crate::model::escape::Plain;
 
@@ -182,13 +183,6 @@ fn holder(file: &File) -> String {
         Ok(_) if !text.trim().is_empty() => Plain(text.trim()).to_string(),
         _ => "another process".to_owned(),
     }
-}
-
-/// The name of this host, for messages.
-pub(super) fn host() -> String {
-    let known = ["/proc/sys/kernel/hostname", "/etc/hostname"];
-    let name = known.iter().find_map(|path| std::fs::read_to_string(Path::new(path)).ok());
-    name.map_or_else(|| "unknown".to_owned(), |name| name.trim().to_owned())
 }
 
 #[cfg(test)]

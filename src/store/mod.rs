@@ -5,6 +5,7 @@
 pub mod atomic;
 pub mod error;
 pub mod folder;
+mod host;
 pub mod lease;
 pub mod lock;
 mod place;

@@ -11,7 +11,10 @@ use std::path::{Component, Path};
 use rustix::fs::{AtFlags, CWD, Mode, OFlags, openat, renameat, statat, unlinkat};
 use rustix::io::Errno;
 
-use super::atomic::{TEMP_PREFIX, TEMP_RANDOM, TEMP_SUFFIX};
+// How the name of a temporary file begins, how it ends, and how many letters stand in between.
+pub(super) const TEMP_PREFIX: &str = ".millreeve-";
+pub(super) const TEMP_SUFFIX: &str = ".tmp";
+pub(super) const TEMP_RANDOM: usize = 8;
 
 /// The mode of a new file, before the process's umask.
 const NEW_MODE: u32 = 0o644;

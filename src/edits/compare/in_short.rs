@@ -1,7 +1,6 @@
 //! Whole things in a few words, for edits that bring or take them.
 
-use super::limits::bounds;
-use super::values::{bound_shown, same, shown};
+use super::values::{bound_shown, bounds, same, shown};
 use crate::model::{Activity, Closing, Late, Limit, Material, Purchase, Resource, Sale, Stock, Surge, Value};
 
 pub(super) fn resource(resource: &Resource) -> String {

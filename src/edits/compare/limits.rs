@@ -2,11 +2,11 @@
 
 use std::collections::{BTreeMap, BTreeSet};
 
-use super::values::{bound_kinds, bound_shown};
+use super::values::{bound_kinds, bound_shown, bounds};
 use super::{Concerned, Edits, in_short};
 use crate::edits::edit::{Kind, Planned, Subject};
 use crate::edits::side_by_side::Pair;
-use crate::model::{Bound, Limit, Name, Over, Term, Value};
+use crate::model::{Limit, Name, Over, Term, Value};
 
 impl Edits {
     pub(super) fn limit(&mut self, name: &Name, pair: Pair<'_, Limit>, concerned: &Concerned<'_>) {
@@ -101,12 +101,3 @@ impl Edits {
 
 /// Where the exact bound stands among the [three](bounds).
 const EQUALS: usize = 2;
-
-/// The three ways to bound a limit, each with its number; infinite where it is not used.
-pub(super) fn bounds(bound: &Bound) -> [(&'static str, Value); 3] {
-    let none = || Value::Every(f64::INFINITY);
-    match bound {
-        Bound::Between(least, most) => [("at_least", least.clone()), ("at_most", most.clone()), ("equals", none())],
-        Bound::Equals(value) => [("at_least", none()), ("at_most", none()), ("equals", value.clone())],
-    }
-}

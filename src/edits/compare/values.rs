@@ -2,10 +2,19 @@
 
 use super::Edits;
 use crate::edits::edit::{Kind, Subject};
-use crate::model::{Period, Value};
+use crate::model::{Bound, Period, Value};
 
 /// Two values of one thing, before and after.
 pub(super) type Pair<'a> = (&'a Value, &'a Value);
+
+/// The three ways to bound a limit, each with its number; infinite where it is not used.
+pub(super) fn bounds(bound: &Bound) -> [(&'static str, Value); 3] {
+    let none = || Value::Every(f64::INFINITY);
+    match bound {
+        Bound::Between(least, most) => [("at_least", least.clone()), ("at_most", most.clone()), ("equals", none())],
+        Bound::Equals(value) => [("at_least", none()), ("at_most", none()), ("equals", value.clone())],
+    }
+}
 
 impl Edits {
     /// A number that is always there.

@@ -1,6 +1,6 @@
-//! Values that are written by period: a list of one number per period, or a table of numbers by the names of periods.
+//! Values: one number, or, written by period, a list of one number per period or a table of numbers by the names of periods.
 
-use toml::de::DeArray;
+use toml::de::{DeArray, DeValue};
 
 use super::calendar::{Calendar, EACH, PER_DAY};
 use super::findings::{Among, Cure, Findings, Span, shown};
@@ -8,16 +8,31 @@ use super::number::{self, Role};
 use super::toml_types::{Key, Node, Table};
 use crate::model::value::{Period, Value};
 
+/// The value of `key`: a number, a list of one per period, or a table of numbers by period.
+pub(super) fn value(
+    key: &str,
+    node: &Node<'_>,
+    role: Role,
+    calendar: &Calendar,
+    findings: &mut Findings,
+) -> Option<Value> {
+    match node.get_ref() {
+        DeValue::Table(table) => ByPeriod { key, role, calendar }.table(table, &node.span(), findings),
+        DeValue::Array(list) => ByPeriod { key, role, calendar }.list(list, &node.span(), findings),
+        _ => number::number(key, node, role, findings).map(Value::Every),
+    }
+}
+
 /// One value that is written by period.
-pub(super) struct ByPeriod<'a> {
-    pub(super) key: &'a str,
-    pub(super) role: Role,
-    pub(super) calendar: &'a Calendar,
+struct ByPeriod<'a> {
+    key: &'a str,
+    role: Role,
+    calendar: &'a Calendar,
 }
 
 impl ByPeriod<'_> {
     /// The value in a list.
-    pub(super) fn list(&self, list: &DeArray<'_>, span: &Span, findings: &mut Findings) -> Option<Value> {
+    fn list(&self, list: &DeArray<'_>, span: &Span, findings: &mut Findings) -> Option<Value> {
         if !self.calendar.is_faulty() {
             self.check_length(list.len(), span, findings);
         }
@@ -41,7 +56,7 @@ impl ByPeriod<'_> {
     }
 
     /// The value in a table.
-    pub(super) fn table(&self, table: &Table<'_>, span: &Span, findings: &mut Findings) -> Option<Value> {
+    fn table(&self, table: &Table<'_>, span: &Span, findings: &mut Findings) -> Option<Value> {
         if table.is_empty() {
             let message = format!("`{}` has an empty table where a number is meant", shown(self.key));
             findings.add(span, "wrong-type", message, "give a number, such as 168");

@@ -2,7 +2,7 @@
 
 use std::path::Path;
 
-use super::caps;
+use super::most;
 use super::source::{Places as _, Source};
 use crate::model::fault::Fault;
 
@@ -17,7 +17,7 @@ pub(super) fn text<'a>(path: &'a Path, bytes: &'a [u8]) -> Result<Source<'a>, Bo
 /// As [`text()`], for a text that outlives its path.
 pub(super) fn str<'a>(path: &Path, bytes: &'a [u8]) -> Result<&'a str, Box<Fault>> {
     let whole = |code, message: String, help: &str| Box::new(Source { path, text: "" }.whole(code, message, help));
-    if bytes.len() > caps::MOST_BYTES {
+    if bytes.len() > most::MOST_BYTES {
         return Err(Box::new(too_large(path)));
     }
     if looks_like_utf16(bytes) {
@@ -44,7 +44,7 @@ pub(super) fn str<'a>(path: &Path, bytes: &'a [u8]) -> Result<&'a str, Box<Fault
 
 /// The fault of a file of more bytes than are read.
 pub(super) fn too_large(path: &Path) -> Fault {
-    let message = format!("the file is larger than {} MiB", caps::MOST_BYTES >> 20);
+    let message = format!("the file is larger than {} MiB", most::MOST_BYTES >> 20);
     Source { path, text: "" }.whole("too-long", message, "split the model")
 }
 
@@ -52,12 +52,12 @@ pub(super) fn too_large(path: &Path) -> Fault {
 fn count(source: Source<'_>) -> Option<Box<Fault>> {
     let bytes = source.text.as_bytes();
     let lines = || bytes.iter().filter(|&&byte| byte == b'\n').count();
-    if bytes.len() > caps::MOST_LINES && lines() > caps::MOST_LINES {
-        let message = format!("the file has more than {} lines", caps::MOST_LINES);
+    if bytes.len() > most::MOST_LINES && lines() > most::MOST_LINES {
+        let message = format!("the file has more than {} lines", most::MOST_LINES);
         return Some(Box::new(source.whole("too-long", message, "split the model")));
     }
-    if bytes.len() > caps::MOST_TOKENS && tokens(bytes) > caps::MOST_TOKENS {
-        let message = format!("the file has more than {} words and signs", caps::MOST_TOKENS);
+    if bytes.len() > most::MOST_TOKENS && tokens(bytes) > most::MOST_TOKENS {
+        let message = format!("the file has more than {} words and signs", most::MOST_TOKENS);
         return Some(Box::new(source.whole("too-long", message, "split the model")));
     }
     None

@@ -1,13 +1,9 @@
 //! The periods that a model plans, as its values are written for them.
 
 use std::cell::Cell;
-use std::collections::{HashMap, HashSet};
+use std::collections::HashMap;
 
-use super::caps::{MOST_LISTED, MOST_PERIODS};
-use super::fields::name;
-use super::findings::{Findings, shown};
-use super::number::{self, Role};
-use super::toml_types::{Node, Table, kind};
+use super::most::MOST_LISTED;
 use crate::model::name::Name;
 use crate::model::products;
 use crate::model::value::{Horizon, Period, Value};
@@ -30,24 +26,17 @@ pub(super) struct Calendar {
 }
 
 impl Calendar {
-    /// The periods and days that the keys of a model give.
-    pub(super) fn read(root: &Table<'_>, findings: &mut Findings) -> Self {
-        let mut calendar = Self::default();
-        if let Some(labels) = labels(root, findings) {
-            calendar = Self::of(Horizon::of(labels), None);
-        } else {
-            calendar.faulty = root.contains_key("periods");
-        }
-        if let Some(node) = root.get("days") {
-            let days = number::value("days", node, Role::Days, &calendar, findings);
-            calendar.faulty |= days.is_none();
-            calendar.days = days;
-            calendar.listed = Cell::default();
-        }
-        calendar
+    /// A calendar whose periods cannot be read.
+    pub(super) fn unreadable() -> Self {
+        Self { faulty: true, ..Self::default() }
     }
 
-    /// A calendar that was read before.
+    /// The same with working days; `None` where these cannot be read.
+    pub(super) fn with_days(self, days: Option<Value>) -> Self {
+        Self { faulty: self.faulty || days.is_none(), days, listed: Cell::default(), ..self }
+    }
+
+    /// A calendar of these.
     pub(super) fn of(horizon: Horizon, days: Option<Value>) -> Self {
         let label = |period| Some((Name::new(horizon.label(period)?).ok()?, period));
         let positions = horizon.periods().filter_map(label).collect();
@@ -114,48 +103,4 @@ impl Calendar {
         }
         (!self.is_full()).then_some(value)
     }
-}
-
-/// The names under `periods`; `None` where they are left out or hold a fault.
-fn labels(root: &Table<'_>, findings: &mut Findings) -> Option<Vec<Name>> {
-    let node = root.get("periods")?;
-    let Some(list) = node.get_ref().as_array() else {
-        let message = format!("`periods` must be a list of names, not {}", kind(node));
-        findings.add(&node.span(), "wrong-type", message, "write it as periods = [\"2027-W01\", \"2027-W02\"]");
-        return None;
-    };
-    if list.is_empty() {
-        let message = "`periods` is empty, but a model plans at least one".to_owned();
-        findings.add(&node.span(), "no-periods", message, "name the periods, or take the key out to plan a single one");
-        return None;
-    }
-    if list.len() > MOST_PERIODS {
-        let message = format!("{} periods are more than the {MOST_PERIODS} that one model may have", list.len());
-        findings.add(&node.span(), "too-many", message, "plan fewer periods, or longer ones");
-        return None;
-    }
-    let mut seen = HashSet::new();
-    let labels: Vec<Name> = list.iter().filter_map(|item| label(item, &mut seen, findings)).collect();
-    (labels.len() == list.len()).then_some(labels)
-}
-
-/// The name of one period, which is none of those `seen`.
-fn label(item: &Node<'_>, seen: &mut HashSet<Name>, findings: &mut Findings) -> Option<Name> {
-    let Some(text) = item.get_ref().as_str() else {
-        let message = format!("`periods` holds names, not {}", kind(item));
-        findings.add(&item.span(), "wrong-type", message, "put each name in double quotes");
-        return None;
-    };
-    let label = name(text, &item.span(), findings)?;
-    if [EACH, PER_DAY].contains(&text) {
-        let message = format!("a period cannot be called `{text}`, which has a meaning of its own in values");
-        findings.add(&item.span(), "bad-name", message, "give it another name");
-        return None;
-    }
-    if !seen.insert(label.clone()) {
-        let message = format!("period `{}` is given twice", shown(text));
-        findings.add(&item.span(), "duplicate-period", message, "give each period a name of its own");
-        return None;
-    }
-    Some(label)
 }

@@ -5,13 +5,15 @@ use std::collections::BTreeMap;
 use toml::de::DeValue;
 
 use super::calendar::Calendar;
-use super::fields::{Fields, name};
+use super::fields::Fields;
 use super::findings::{Findings, shown};
 use super::keys::{self, Keys};
 use super::known::{self, Known, Summable, Supplies};
+use super::named::name;
 use super::number::Role;
+
 use super::toml_types::{Table, kind};
-use super::{activity, caps, limit, material, resource};
+use super::{activity, caps, limit, material, periods, resource};
 use crate::model::name::Name;
 use crate::model::types::{Aim, Model};
 use crate::model::value::Value;
@@ -33,7 +35,7 @@ pub(super) fn model(root: &Table<'_>, findings: &mut Findings) -> (Model, Option
     if !format(root, findings) {
         return (model, None);
     }
-    let calendar = Calendar::read(root, findings);
+    let calendar = periods::calendar(root, findings);
     head(root, &mut model, &calendar, findings);
     model.horizon = calendar.horizon().clone();
     let mut walk = Walk { root, calendar: &calendar, findings };

@@ -4,10 +4,12 @@ use std::collections::BTreeMap;
 
 use toml::de::DeValue;
 
+use super::by_period;
 use super::calendar::Calendar;
-use super::caps::MOST_PERIODS;
-use super::findings::{Findings, Span, shown};
+use super::findings::{Findings, Span};
 use super::keys::Keys;
+use super::most::MOST_PERIODS;
+use super::named::name;
 use super::number::{self, Role};
 use super::toml_types::{Key, Node, Table, kind};
 use crate::model::name::Name;
@@ -103,7 +105,7 @@ impl<'a, 'i> Fields<'a, 'i> {
     /// A number, in a role, that may differ by period.
     pub(super) fn value(&mut self, key: &str, role: Role) -> Option<Given> {
         let node = self.table.get(key)?;
-        let value = number::value(key, node, role, self.calendar, self.findings)?;
+        let value = by_period::value(key, node, role, self.calendar, self.findings)?;
         Some(Given { value, span: node.span() })
     }
 
@@ -139,7 +141,7 @@ impl<'a, 'i> Fields<'a, 'i> {
     ) -> BTreeMap<Name, Value> {
         let mut rates = BTreeMap::new();
         for (word, node) in self.table(key, example).into_iter().flatten() {
-            let rate = number::value(word.get_ref(), node, Role::Rate, self.calendar, self.findings);
+            let rate = by_period::value(word.get_ref(), node, Role::Rate, self.calendar, self.findings);
             if let Some(name) = name(word, self.findings) {
                 rates.insert(name, rate.unwrap_or(Value::Every(0.0)));
             }
@@ -184,16 +186,5 @@ impl<'a, 'i> Fields<'a, 'i> {
         let message = format!("`{key}` must be {wanted}, not {}", kind(node));
         self.findings.add(&node.span(), "wrong-type", message, help);
         None
-    }
-}
-
-/// The name that `text` spells.
-pub(super) fn name(text: &str, span: &Span, findings: &mut Findings) -> Option<Name> {
-    match Name::new(text) {
-        Ok(name) => Some(name),
-        Err(error) => {
-            findings.add(span, "bad-name", format!("`{}` is not a name", shown(text)), error.to_string());
-            None
-        }
     }
 }

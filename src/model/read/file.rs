@@ -7,7 +7,7 @@ use std::path::{Path, PathBuf};
 use rustix::fs::{FileType, Mode, OFlags};
 
 use super::bytes;
-use super::caps::MOST_BYTES;
+use super::most::MOST_BYTES;
 use crate::model::escape::Plain;
 use crate::model::fault::Fault;
 

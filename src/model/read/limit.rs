@@ -2,12 +2,12 @@
 
 use std::collections::BTreeMap;
 
-use super::bounds;
 use super::fields::{Fields, Given};
 use super::findings::shown;
 use super::known::Summable;
-use super::number::{self, Role};
+use super::number::Role;
 use super::toml_types::Key;
+use super::{bounds, by_period};
 use super::{over, term};
 use crate::model::types::{Bound, Limit, Over, Term};
 use crate::model::value::Value;
@@ -74,7 +74,7 @@ fn sum(fields: &mut Fields<'_, '_>, key: &str, there: &Summable<'_, '_>) -> Opti
         if term::refuse_dotted(word, node, fields.findings()) {
             continue;
         }
-        let value = number::value(word.get_ref(), node, Role::Rate, fields.calendar(), fields.findings());
+        let value = by_period::value(word.get_ref(), node, Role::Rate, fields.calendar(), fields.findings());
         let Some(term) = term::read(word, there, fields.findings()) else { continue };
         if let Some(other) = spelt.insert(term.clone(), word) {
             let (first, second) = if other.span().start < word.span().start { (other, word) } else { (word, other) };

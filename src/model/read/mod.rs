@@ -24,10 +24,13 @@ mod keys;
 mod known;
 mod limit;
 mod material;
+mod most;
+mod named;
 mod number;
 mod oddities;
 mod over;
 mod parts;
+mod periods;
 mod replaced;
 mod resource;
 mod source;
@@ -41,12 +44,12 @@ use std::path::Path;
 
 pub use again::{Before, again};
 pub use blocks::Blocks;
-pub use caps::{
+pub use fields::LONGEST_TEXT;
+pub use file::{FileProblem, file};
+pub use most::{
     MOST_ACTIVITIES, MOST_BYTES, MOST_COEFFICIENTS, MOST_COLUMNS, MOST_LIMITS, MOST_LINES, MOST_LISTED, MOST_MATERIALS,
     MOST_PARTS, MOST_PERIODS, MOST_RESOURCES, MOST_ROWS, MOST_TOKENS,
 };
-pub use fields::LONGEST_TEXT;
-pub use file::{FileProblem, file};
 pub use number::{LARGEST, SMALLEST_RATE};
 pub use parts::Traces;
 pub use parts::folder::{Listing, is_part};

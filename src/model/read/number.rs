@@ -2,11 +2,8 @@
 
 use toml::de::{DeFloat, DeInteger, DeValue};
 
-use super::by_period::ByPeriod;
-use super::calendar::Calendar;
 use super::findings::{Findings, Span, shown};
 use super::toml_types::{Node, kind};
-use crate::model::value::Value;
 
 /// The largest magnitude a model may hold.
 pub const LARGEST: f64 = 1e15;
@@ -44,21 +41,6 @@ impl Role {
 
     fn is_never_below_0(self) -> bool {
         matches!(self, Self::Room | Self::Floor | Self::Days)
-    }
-}
-
-/// The value of `key`: a number, a list of one per period, or a table of numbers by period.
-pub(super) fn value(
-    key: &str,
-    node: &Node<'_>,
-    role: Role,
-    calendar: &Calendar,
-    findings: &mut Findings,
-) -> Option<Value> {
-    match node.get_ref() {
-        DeValue::Table(table) => ByPeriod { key, role, calendar }.table(table, &node.span(), findings),
-        DeValue::Array(list) => ByPeriod { key, role, calendar }.list(list, &node.span(), findings),
-        _ => number(key, node, role, findings).map(Value::Every),
     }
 }
 

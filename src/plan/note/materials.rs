@@ -1,7 +1,7 @@
 //! What a note says of materials: what is bought, sold, late and left, and where that touches a bound.
 
+use super::layout::{ROWS, section};
 use super::scarce::farthest;
-use super::tables::{ROWS, section};
 use super::words::{amount, labelled, per_unit, total, with_unit};
 use super::{Report, periods};
 use crate::model::{Material, Name, Value};

@@ -1,6 +1,6 @@
 //! What a note says of levels: what is made, what moves, what enters the mix and what leaves it.
 
-use super::tables::{few, name_of_activity, section, table};
+use super::layout::{few, name_of_activity, section, table};
 use super::words::{change, total, unit_of_activity, value, values, with_unit};
 use super::{Report, periods};
 use crate::lp::build::worth_of_one;

@@ -1,6 +1,6 @@
 //! What a note says of what is not made: how far each prospect and idle activity is from paying.
 
-use super::tables::{ROWS, name_of_activity, section};
+use super::layout::{ROWS, name_of_activity, section};
 use super::words::{amounts, per_unit, unit_of_activity};
 use super::{Report, periods};
 use crate::plan::compare::{Comparison, PricedOut, is_made, nearest_to_paying, would_enter};

@@ -1,6 +1,6 @@
 //! What a note says of resources and limits: what binds, what more of it is worth, and where extra capacity is taken.
 
-use super::tables::{few, section, table};
+use super::layout::{few, section, table};
 use super::words::{amount, amounts, labelled, per_unit, total, unit_of_resource, value, with_unit};
 use super::{Report, periods};
 use crate::model::{Name, Over, Value};

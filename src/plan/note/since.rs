@@ -1,9 +1,9 @@
 //! What a note says of the release.
 
 use super::ReleaseTold;
+use super::layout::section;
 use super::moves::move_table;
 use super::periods::from_to;
-use super::tables::section;
 use super::words::{amount, count, counted, difference, signed, text, with_unit};
 use crate::model::Model;
 use crate::plan::compare::moved;

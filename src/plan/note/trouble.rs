@@ -1,8 +1,8 @@
 //! Why there is no plan, in a planner's words.
 
 use super::Trouble;
+use super::layout::ROWS;
 use super::rules::{self, Place};
-use super::tables::ROWS;
 use super::words::{amount, count, listed, text, with_unit};
 use crate::model::Model;
 use crate::model::escape::{Markdown, Plain};

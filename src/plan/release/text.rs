@@ -4,8 +4,9 @@ use serde::Deserialize;
 
 use super::{FORMAT, Release};
 use crate::plan::number;
+use crate::plan::text::PlanError;
 use crate::plan::text::entry::{ActivityEntry, all, periods_of};
-use crate::plan::text::read::{PlanError, meaning_of, message_of};
+use crate::plan::text::read::{meaning_of, message_of};
 use crate::plan::text::write::{line, periods, quoted, seal_line, state, value};
 use crate::plan::text::{seal_for, version};
 use crate::plan::types::{Plan, Standing};

@@ -4,7 +4,7 @@
 
 use serde::Deserialize;
 
-use super::read::PlanError;
+use super::error::PlanError;
 use crate::model::escape::Plain;
 use crate::model::{Name, Value};
 use crate::plan::each::{Each, Span};

@@ -1,6 +1,6 @@
 //! Giving a written plan another standing without touching its numbers.
 
-use super::read::PlanError;
+use super::error::PlanError;
 use super::write::{seal_line, standing};
 use super::{HEADER, head, seal, seal_for, value_of};
 use crate::plan::types::Standing;

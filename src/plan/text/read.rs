@@ -3,6 +3,7 @@
 use serde::Deserialize;
 
 use super::entry::{ActivityEntry, LimitEntry, MaterialEntry, ResourceEntry, all, periods_of};
+use super::error::PlanError;
 use super::{HEADER, VERSIONS, seal, seal_for, version};
 use crate::model::escape::Plain;
 use crate::model::meaning::Meaning;
@@ -17,30 +18,6 @@ pub struct Written {
     pub seal: String,
     /// Whether the seal is right: nobody has edited the file since it was written.
     pub sealed: bool,
-}
-
-/// Why a file gives no plan.
-#[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
-pub enum PlanError {
-    /// Its first line is not that of our plans.
-    #[error("not a plan written by millreeve")]
-    NotOurs,
-    /// A later version wrote it.
-    #[error("written by a newer millreeve: {what} {found}, this one knows up to {known}")]
-    Newer {
-        /// The version that is ahead: `format` or `rules`.
-        what: &'static str,
-        /// Its number in the file.
-        found: u32,
-        /// The highest number known.
-        known: u32,
-    },
-    /// Its first line is ours, but what follows is no plan. One line, safe to show.
-    #[error("not a whole plan: {0}")]
-    Broken(String),
-    /// It has been edited since it was written.
-    #[error("edited since it was written: its seal does not fit")]
-    Edited,
 }
 
 /// What the first lines of a plan say: enough to decide whether it answers a model, without reading the rest.

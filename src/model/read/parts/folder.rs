@@ -8,8 +8,8 @@ use std::os::unix::fs::MetadataExt;
 use std::path::Path;
 
 use crate::model::read::FileProblem;
-use crate::model::read::caps::{MOST_BYTES, MOST_PARTS};
 use crate::model::read::file::file;
+use crate::model::read::most::{MOST_BYTES, MOST_PARTS};
 
 /// How often a folder that changes while it is read is read again.
 const TRIES: usize = 4;

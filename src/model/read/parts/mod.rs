@@ -27,7 +27,7 @@ use super::csv::{self, Kind, Periods};
 use super::findings::Findings;
 use super::source::Places;
 use super::toml_types::Table;
-use super::{Reading, bytes, caps, document, oddities, syntax};
+use super::{Reading, bytes, document, most, oddities, syntax};
 use crate::model::fault::{Fault, Faults};
 use crate::model::near;
 use crate::model::types::Model;
@@ -154,12 +154,12 @@ fn unknown_csv(path: &Path, name: &str) -> Box<Fault> {
 fn too_much(sheets: &Sheets<'_>, parts: &Parts<'_>) -> Option<Fault> {
     let bytes: usize = parts.iter().map(|(_, bytes)| bytes.len()).sum();
     let tokens = || parts.iter().map(|(_, part)| bytes::tokens(part)).sum::<usize>();
-    let message = if parts.len() > caps::MOST_PARTS {
-        format!("{} parts are more than the {} that one model may have", parts.len(), caps::MOST_PARTS)
-    } else if bytes > caps::MOST_BYTES {
-        format!("its parts together are larger than {} MiB", caps::MOST_BYTES >> 20)
-    } else if bytes > caps::MOST_TOKENS && tokens() > caps::MOST_TOKENS {
-        format!("its parts together have more than {} words and signs", caps::MOST_TOKENS)
+    let message = if parts.len() > most::MOST_PARTS {
+        format!("{} parts are more than the {} that one model may have", parts.len(), most::MOST_PARTS)
+    } else if bytes > most::MOST_BYTES {
+        format!("its parts together are larger than {} MiB", most::MOST_BYTES >> 20)
+    } else if bytes > most::MOST_TOKENS && tokens() > most::MOST_TOKENS {
+        format!("its parts together have more than {} words and signs", most::MOST_TOKENS)
     } else {
         return None;
     };
