@@ -7,7 +7,7 @@ use std::sync::atomic::{AtomicBool, Ordering};
 use tokio::sync::mpsc::error::TrySendError;
 use tokio::sync::mpsc::{Receiver, Sender};
 
-use super::scan::Stamp;
+use super::stamp::Stamp;
 
 /// How many hints may wait. The system's own queue is as long, unless it was changed.
 const MOST: usize = 16_384;

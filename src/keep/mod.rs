@@ -25,6 +25,7 @@ pub mod scan;
 pub mod settings;
 pub mod settle;
 mod signals;
+pub mod stamp;
 pub mod status;
 mod twins;
 pub mod verify;

@@ -9,7 +9,7 @@ use std::thread;
 
 use super::path::{Form, ModelPath};
 use super::report::Report;
-use super::scan::{Sight, Stamp};
+use super::stamp::{Sight, Stamp};
 
 /// A worker, by its number.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]

@@ -6,8 +6,8 @@ use std::time::{Duration, Instant};
 
 use super::path::ModelPath;
 use super::pool::What;
-use super::scan::Sight;
 use super::settings::Pace;
+use super::stamp::Sight;
 
 /// Parts that are saved within this time of each other are taken for one edit: a checkout, or a change that needs two of them.
 const BURST: Duration = Duration::from_millis(100);
@@ -244,7 +244,7 @@ mod tests {
     use std::sync::Arc;
 
     use super::*;
-    use crate::keep::scan::Stamp;
+    use crate::keep::stamp::Stamp;
 
     const SECOND: Duration = Duration::from_secs(1);
 

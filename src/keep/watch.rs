@@ -13,7 +13,7 @@ use rustix::io::Errno;
 
 use super::hints::{Hint, HintSender};
 use super::path::{is_entered, may_concern};
-use super::scan::Stamp;
+use super::stamp::Stamp;
 use crate::model::escape::Plain;
 use crate::store::atomic::is_temp;
 use crate::store::error::reason;
