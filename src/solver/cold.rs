@@ -96,36 +96,39 @@ fn climb(program: &Program, rung: &Rung, limit: Duration, stop: &Stop, pivots: &
     scratch.live.set("time_limit", limit.as_secs_f64())?;
     let ending = scratch.live.run(stop);
     *pivots = scratch.live.pivots();
-    Ok(match ending {
-        Ending::Optimal => {
-            let basis = scratch.basis()?;
-            drop(scratch);
-            let mut instance = ready(program)?;
-            instance.set_basis(&basis)?;
-            let mut look = Look::at(&mut instance, program)?;
-            if !look.is_optimal() {
-                // The solver's tolerances are wider than the proof's: a few more pivots with tight ones.
-                instance.live.set("time_limit", limit.as_secs_f64())?;
-                let polished = instance.live.run(stop);
-                *pivots += instance.live.pivots();
-                if polished == Ending::Stopped {
-                    return Ok(Reached::Other(Outcome::Interrupted));
-                }
-                look = Look::at(&mut instance, program)?;
-            }
-            if look.is_optimal() {
-                Reached::Optimal(Box::new(instance), Box::new(look))
-            } else {
-                Reached::Other(Outcome::Undecided(String::new()))
-            }
+    if ending != Ending::Optimal {
+        return Ok(without_plan(ending, program, &mut scratch, limit));
+    }
+    let basis = scratch.basis()?;
+    drop(scratch);
+    let mut instance = ready(program)?;
+    instance.set_basis(&basis)?;
+    let mut look = Look::at(&mut instance, program)?;
+    if !look.is_optimal() {
+        // The solver's tolerances are wider than the proof's: a few more pivots with tight ones.
+        instance.live.set("time_limit", limit.as_secs_f64())?;
+        let polished = instance.live.run(stop);
+        *pivots += instance.live.pivots();
+        if polished != Ending::Optimal {
+            return Ok(without_plan(polished, program, &mut instance, limit));
         }
-        Ending::Infeasible => Reached::Other(Outcome::Infeasible(explain_infeasible(program, &mut scratch))),
-        Ending::Unbounded => Reached::Other(Outcome::Unbounded(explain_unbounded(program, &mut scratch))),
-        Ending::OutOfTime => {
-            Reached::Other(Outcome::Undecided(format!("the time limit of {} s was reached", limit.as_secs_f64())))
-        }
-        Ending::Stopped => Reached::Other(Outcome::Interrupted),
-        Ending::OutOfPivots | Ending::Trouble => Reached::Other(Outcome::Undecided(String::new())),
+        look = Look::at(&mut instance, program)?;
+    }
+    Ok(if look.is_optimal() {
+        Reached::Optimal(Box::new(instance), Box::new(look))
+    } else {
+        Reached::Other(Outcome::Undecided(String::new()))
+    })
+}
+
+/// What a run came to that did not end in an optimum.
+fn without_plan(ending: Ending, program: &Program, instance: &mut Instance, limit: Duration) -> Reached {
+    Reached::Other(match ending {
+        Ending::Infeasible => Outcome::Infeasible(explain_infeasible(program, instance)),
+        Ending::Unbounded => Outcome::Unbounded(explain_unbounded(program, instance)),
+        Ending::OutOfTime => Outcome::Undecided(format!("the time limit of {} s was reached", limit.as_secs_f64())),
+        Ending::Stopped => Outcome::Interrupted,
+        Ending::Optimal | Ending::OutOfPivots | Ending::Trouble => Outcome::Undecided(String::new()),
     })
 }
 
@@ -196,6 +199,17 @@ mod tests {
             }
         }
         program
+    }
+
+    /// The solver's own tolerance takes 9e-8 for nothing, and a plan for one that has an end.
+    #[test]
+    fn a_little_earned_without_limit_has_no_end() {
+        let mut program = copies(1);
+        let (lower, upper) = (0.0, f64::INFINITY);
+        program.columns.push(Column { key: Key::new("z"), lower, upper, aim: 9e-8, entries: Vec::new() });
+        let Cold { end, detours, .. } = solve(&program, Duration::from_secs(60), &Stop::default());
+        let Reached::Other(Outcome::Unbounded(growth)) = end else { panic!("it has no end: {detours:?}") };
+        assert!(growth.proven && detours.is_empty(), "{growth:?} {detours:?}");
     }
 
     #[test]
