@@ -152,6 +152,9 @@ impl<R: FnMut(&ModelPath, &Replanned)> Keeper<R> {
     /// Keeps the watcher in step with folders that come and go. Answers whether the dispatcher is to hear of it.
     pub(super) fn heed(&mut self, hint: &Hint) -> bool {
         match (hint, &mut self.watcher) {
+            (Hint::Closed(path) | Hint::Arrived(path, _) | Hint::Writing(path) | Hint::Gone(path), _) => {
+                return !self.ignores(path);
+            }
             (Hint::Folder(path), Some(watcher)) => watcher.appeared(path),
             (Hint::FolderGone(path), Some(watcher)) => return watcher.vanished(path),
             // What it knows of folders may be void: it starts anew with the scan that follows.
@@ -159,6 +162,14 @@ impl<R: FnMut(&ModelPath, &Replanned)> Keeper<R> {
             _ => {}
         }
         true
+    }
+
+    /// Whether a scan would leave out what lies at a path.
+    fn ignores(&self, path: &Path) -> bool {
+        let Ok(below) = path.strip_prefix(&self.root) else { return true };
+        let mut ways = below.ancestors().filter(|way| !way.as_os_str().is_empty());
+        let model = ModelPath::concerned(&self.root, path);
+        ways.any(|way| self.ignore.covers(way)) || model.is_some_and(|(model, _)| self.ignore.covers(model.relative()))
     }
 
     /// Takes new settings, or leaves all as it is where they are wrong.

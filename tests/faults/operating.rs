@@ -88,6 +88,34 @@ fn f7_sighup_reads_the_settings_again() {
 }
 
 #[test]
+fn what_is_ignored_is_not_planned_by_an_event_either() {
+    let works = Works::new(&[("m", &tiles(1))]);
+    let config = works.outside("settings.toml");
+    write(&config, "[watch]\nignore = [\"**/draft-*.model.toml\", \"old\", \"**/spare.model\"]\n");
+    for folder in ["old", "spare.model", "draft-3.model"] {
+        fs::create_dir(works.path(folder)).unwrap();
+    }
+    let mut daemon = Daemon::spawn(command(&["--json", "keep", "--config"]).arg(&config).arg(works.root()));
+    daemon.wait_current("m", aim(1));
+    daemon.wait_watching();
+    works.save("draft-1", &tiles(2));
+    works.save("old/x", &tiles(3));
+    write(&works.path("spare.model/works.toml"), &tiles(4));
+    write(&works.path("draft-3.model/works.toml"), &tiles(5));
+    write(&works.path("new"), &tiles(6));
+    fs::rename(works.path("new"), works.model("draft-2")).unwrap();
+    // The events of these come after those.
+    works.save("m", &tiles(7));
+    daemon.wait_current("m", aim(7));
+    daemon.wait_scan(&works);
+    daemon.wait_scan(&works);
+    for model in ["draft-1", "x", "spare", "draft-3", "draft-2"] {
+        assert!(daemon.told(model).is_empty() && !works.plan(model).exists(), "{model}: {:#?}", daemon.objects);
+    }
+    daemon.stop();
+}
+
+#[test]
 fn f8_signs_of_life() {
     let works = Works::new(&[("m", &tiles(1))]);
     let socket = works.outside("notify");
