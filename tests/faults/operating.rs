@@ -100,9 +100,9 @@ fn what_is_ignored_is_not_planned_by_an_event_either() {
     daemon.wait_watching();
     works.save("draft-1", &tiles(2));
     works.save("old/x", &tiles(3));
-    write(&works.path("spare.model/works.toml"), &tiles(4));
-    write(&works.path("draft-3.model/works.toml"), &tiles(5));
-    write(&works.path("new"), &tiles(6));
+    write(&works.path("spare.model/works.toml"), tiles(4));
+    write(&works.path("draft-3.model/works.toml"), tiles(5));
+    write(&works.path("new"), tiles(6));
     fs::rename(works.path("new"), works.model("draft-2")).unwrap();
     // The events of these come after those.
     works.save("m", &tiles(7));
