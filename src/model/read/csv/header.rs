@@ -47,6 +47,8 @@ pub(super) struct Column<'a> {
 /// The first row of a part.
 pub(super) struct Header<'a> {
     pub(super) columns: Vec<Column<'a>>,
+    /// Whether there is a column of which it is not known what it holds.
+    pub(super) has_untold: bool,
 }
 
 impl<'a> Header<'a> {
@@ -79,18 +81,14 @@ impl<'a> Header<'a> {
             let sound = !cells::misquoted(raw.unwrap_or_default(), cell, findings);
             columns.push(if sound { column(part.kind, cell, periods, findings) } else { nameless() });
         }
-        let header = Self { columns };
+        let has_untold = columns.iter().any(|column| column.holds.is_none() && !column.word.is_empty());
+        let header = Self { columns, has_untold };
         header.has_all_needed(part, cells, findings).then_some(header)
     }
 
     /// The cells of a row in the columns that hold this.
     pub(super) fn cells<'r>(&'r self, row: &'r [Cell<'a>], holds: Holds) -> impl Iterator<Item = &'r Cell<'a>> {
         self.columns.iter().zip(row).filter(move |(column, _)| column.holds == Some(holds)).map(|(_, cell)| cell)
-    }
-
-    /// Whether there is a column of which it is not known what it holds.
-    pub(super) fn has_untold(&self) -> bool {
-        self.columns.iter().any(|column| column.holds.is_none() && !column.word.is_empty())
     }
 
     fn has_all_needed(&self, part: Part<'_>, cells: &[Cell<'_>], findings: &mut Findings) -> bool {

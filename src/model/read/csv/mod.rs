@@ -204,7 +204,7 @@ impl<'a> Row<'_, 'a> {
     /// The cells that hold something, with their columns. An empty cell is a key left out.
     fn given(&self) -> impl Iterator<Item = (&Column<'a>, &Cell<'a>)> {
         // Where a column cannot be told, numbers by period may seem incomplete that are not.
-        let told = |column: &Column<'_>| column.period.is_none() || !self.header.has_untold();
+        let told = |column: &Column<'_>| column.period.is_none() || !self.header.has_untold;
         let given = move |(column, cell): &(&Column<'_>, &Cell<'_>)| !cell.text.is_empty() && told(column);
         self.header.columns.iter().zip(self.cells).filter(given)
     }
